@@ -1,0 +1,52 @@
+#include "hold.h"
+
+#include <math.h>
+
+#include "vector.h"
+
+void tw_hold_attachment(const tw_support *support, double a[3])
+{
+    a[0] = support->station_m;
+    a[1] = support->offset_m;
+    a[2] = support->elevation_m;
+}
+
+void tw_hold_swing(const tw_support *support, const double F[3], double swing[3])
+{
+    double size = tw_norm(F);
+    swing[0] = swing[1] = swing[2] = 0.0;
+    if (support->hold == TW_HOLD_HANGER && size > 0.0) {
+        tw_axpy(swing, -support->hanger_length_m / size, F, swing);
+    } else if (support->hold == TW_HOLD_POST) {
+        swing[0] = -F[0] / support->stiffness_along_N_per_m;
+        swing[1] = -F[1] / support->stiffness_across_N_per_m;
+    }
+}
+
+void tw_hold_flexibility(const tw_support *support, const double F[3], double sign, double block[9])
+{
+    double size = tw_norm(F);
+    if (support->hold == TW_HOLD_HANGER && size > 0.0) {
+        double factor = sign * support->hanger_length_m / size;
+        for (int i = 0; i < 3; i++) {
+            for (int j = 0; j < 3; j++) {
+                block[3 * i + j] += factor * ((i == j ? 1.0 : 0.0) - F[i] * F[j] / (size * size));
+            }
+        }
+    } else if (support->hold == TW_HOLD_POST) {
+        block[0] += sign / support->stiffness_along_N_per_m;
+        block[4] += sign / support->stiffness_across_N_per_m;
+    }
+}
+
+double tw_hold_energy(const tw_support *support, const double F[3])
+{
+    switch (support->hold) {
+    case TW_HOLD_HANGER: return -support->hanger_length_m * tw_norm(F);
+    case TW_HOLD_POST:
+        return -0.5 * (F[0] * F[0] / support->stiffness_along_N_per_m + F[1] * F[1] / support->stiffness_across_N_per_m);
+    case TW_HOLD_ANCHOR:
+    case TW_HOLD_SHEAVE: break;
+    }
+    return 0.0;
+}

@@ -1,0 +1,192 @@
+#include "limit.h"
+
+#include <math.h>
+
+#include "ground.h"
+
+double tw_limit_utilisation_most(double value, double most)
+{
+    return value / most;
+}
+
+double tw_limit_utilisation_least(double value, double least, double scale)
+{
+    if (least <= 0.0) {
+        return fmax(0.0, 1.0 - (value - least) / scale);
+    }
+    return value >= least ? least / value : 2.0 - value / least;
+}
+
+/* Keep the worse of two places. */
+static void offer(tw_verdict *worst, double value, double allowed, double margin, double utilisation)
+{
+    if (!worst->judged || utilisation > worst->utilisation) {
+        worst->judged = 1;
+        worst->value = value;
+        worst->allowed = allowed;
+        worst->margin = margin;
+        worst->utilisation = utilisation;
+    }
+}
+
+static void offer_most(tw_verdict *worst, double value, double most)
+{
+    offer(worst, value, most, most - value, tw_limit_utilisation_most(value, most));
+}
+
+static void offer_least(tw_verdict *worst, double value, double least, double scale)
+{
+    offer(worst, value, least, value - least, tw_limit_utilisation_least(value, least, scale));
+}
+
+static void judge_clearance(const tw_limit *limit, const tw_section *section, size_t span, tw_verdict *place)
+{
+    double clearance, station;
+    if (tw_ground_clearance(section, span, limit->crossing, limit->from_m, limit->to_m, &clearance, &station)) {
+        offer_least(place, clearance, limit->least, 1.0);
+        place->station_m = station;
+    }
+}
+
+/* Station of the largest tension: it sits at a piece's end. */
+static double tension_station(const tw_section *section, size_t span, double most)
+{
+    for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
+        const tw_piece *piece = &section->pieces[p];
+        double t[3];
+        tw_piece_tension(piece, 0.0, t);
+        if (hypot(hypot(t[0], t[1]), t[2]) >= most * (1.0 - 1e-12)) {
+            return piece->start[0];
+        }
+    }
+    return section->clamp[3 * (span + 1)];
+}
+
+static void judge_tension(const tw_project *project, const tw_limit *limit, const tw_section *section, size_t span,
+                          tw_verdict *place)
+{
+    size_t first = section->piece_first[span];
+    double most = isnan(limit->share) ? limit->most : limit->share * project->line.breaking_strength_N;
+    double value = tw_span_tension_max(section->pieces + first, section->piece_first[span + 1] - first);
+    offer_most(place, value, most);
+    place->station_m = tension_station(section, span, value);
+}
+
+static void judge_span(const tw_project *project, const tw_limit *limit, const tw_section *section, size_t span,
+                       tw_verdict *place)
+{
+    tw_span_state state;
+    switch (limit->kind) {
+    case TW_LIMIT_CLEARANCE: judge_clearance(limit, section, span, place); return;
+    case TW_LIMIT_TENSION: judge_tension(project, limit, section, span, place); return;
+    case TW_LIMIT_SAG:
+        tw_section_span_state(section, span, &state);
+        if (!isnan(limit->most)) {
+            offer_most(place, state.sag_m, limit->most);
+        }
+        if (!isnan(limit->least)) {
+            offer_least(place, state.sag_m, limit->least, 1.0);
+        }
+        place->station_m = state.sag_station_m;
+        return;
+    case TW_LIMIT_CATENARY_CONSTANT:
+        tw_section_span_state(section, span, &state);
+        offer_most(place, state.horizontal_tension_N / project->line.weight_N_per_m, limit->most);
+        return;
+    case TW_LIMIT_SLOPE: {
+        size_t first = section->piece_first[span];
+        double slope = tw_span_slope(section->pieces + first, section->piece_first[span + 1] - first);
+        offer_most(place, slope, limit->most);
+        return;
+    }
+    case TW_LIMIT_SUPPORT_LOAD:
+    case TW_LIMIT_UPLIFT:
+    case TW_LIMIT_SWING: return;
+    }
+}
+
+static double capacity(const tw_support *support, tw_direction direction)
+{
+    switch (direction) {
+    case TW_DIRECTION_ALONG: return support->capacity_along_N;
+    case TW_DIRECTION_ACROSS: return support->capacity_across_N;
+    case TW_DIRECTION_DOWN: return support->capacity_down_N;
+    case TW_DIRECTION_UP: return support->capacity_up_N;
+    case TW_DIRECTION_RESULTANT: break;
+    }
+    return (double)NAN;
+}
+
+static double component(const tw_support_state *state, tw_direction direction)
+{
+    switch (direction) {
+    case TW_DIRECTION_ALONG: return fabs(state->along_N);
+    case TW_DIRECTION_ACROSS: return fabs(state->across_N);
+    case TW_DIRECTION_DOWN: return fmax(0.0, state->down_N);
+    case TW_DIRECTION_UP: return fmax(0.0, -state->down_N);
+    case TW_DIRECTION_RESULTANT: break;
+    }
+    return state->resultant_N;
+}
+
+/* The support's own share of bare line weight: half of each span beside it. */
+static double weight_share(const tw_section *section, size_t support)
+{
+    double length = support > 0 ? 0.5 * section->length_m[support - 1] : 0.0;
+    length += support < section->span_count ? 0.5 * section->length_m[support] : 0.0;
+    double share = length * section->project->line.weight_N_per_m;
+    return share > 0.0 ? share : 1.0;
+}
+
+static void judge_support(const tw_project *project, const tw_limit *limit, const tw_section *section,
+                          const tw_section *bare, size_t support, tw_verdict *place)
+{
+    const tw_support *at = &project->supports[support];
+    tw_support_state state;
+    tw_section_support_state(limit->kind == TW_LIMIT_SWING ? bare : section, support, &state);
+    if (limit->kind == TW_LIMIT_SWING) {
+        if (at->hold == TW_HOLD_HANGER) {
+            offer_most(place, state.swing_rad, limit->most);
+        }
+    } else if (limit->kind == TW_LIMIT_UPLIFT) {
+        offer_least(place, state.down_N, limit->least, weight_share(section, support));
+    } else {
+        double most = isnan(limit->share) ? limit->most : limit->share * capacity(at, limit->direction);
+        if (!isnan(most)) {
+            offer_most(place, component(&state, limit->direction), most);
+        }
+    }
+    place->station_m = at->station_m;
+}
+
+static int looks_at_supports(tw_limit_kind kind)
+{
+    return kind == TW_LIMIT_SUPPORT_LOAD || kind == TW_LIMIT_UPLIFT || kind == TW_LIMIT_SWING;
+}
+
+tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_section *section, const tw_section *bare)
+{
+    const tw_limit *rule = &project->limits[limit];
+    const unsigned char *covers = project->limit_covers + limit * project->support_count;
+    int supports = looks_at_supports(rule->kind);
+    size_t count = supports ? project->support_count : section->span_count;
+    const tw_verdict nowhere = {.span = TW_NONE, .support = TW_NONE, .station_m = (double)NAN};
+    tw_verdict worst = nowhere;
+    for (size_t k = 0; k < count; k++) {
+        tw_verdict place = nowhere;
+        if (!covers[k]) {
+            continue;
+        }
+        if (supports) {
+            place.support = k;
+            judge_support(project, rule, section, bare, k, &place);
+        } else {
+            place.span = k;
+            judge_span(project, rule, section, k, &place);
+        }
+        if (place.judged && (!worst.judged || place.utilisation > worst.utilisation)) {
+            worst = place;
+        }
+    }
+    return worst;
+}

@@ -1,0 +1,241 @@
+/* line: the plain structs that describe a line, its supports, loading and limits, and what settles out of them.
+ *
+ * SI throughout, the unit in the name. Axes: x along the route (station), y across it (positive to the left when
+ * looking ahead), z up (elevation). Natural length s runs along the unstretched line at the stringing temperature,
+ * from the first support. NaN marks an optional number that is not given. Nothing here owns memory unless its
+ * comment says so.
+ */
+#ifndef TW_LINE_H
+#define TW_LINE_H
+
+#include <stddef.h>
+
+#include "status.h"
+
+#define TW_NONE ((size_t)-1) /* "no such index" */
+
+typedef struct tw_line {
+    double diameter_m;          /* bare outside diameter; 0 where neither ice nor wind acts */
+    double weight_N_per_m;      /* bare, per natural metre */
+    double stiffness_N;         /* EA */
+    double expansion_per_K;     /* thermal strain per kelvin */
+    double breaking_strength_N; /* NaN: not given */
+} tw_line;
+
+typedef enum tw_hold {
+    TW_HOLD_ANCHOR, /* the line ends here; fixed point */
+    TW_HOLD_HANGER, /* clamp at the lower end of a link that swings along and across */
+    TW_HOLD_SHEAVE, /* natural length runs over it; not built yet, refused by check */
+    TW_HOLD_POST    /* clamp on an elastic support */
+} tw_hold;
+
+typedef struct tw_support {
+    double station_m;
+    double offset_m;    /* y */
+    double elevation_m; /* of the point where the hold is fixed */
+    double height_m;    /* above the ground profile where given so (elevation follows it when moved); else NaN */
+    tw_hold hold;
+    double hanger_length_m;           /* hanger only, > 0 */
+    double hanger_weight_N;           /* hanger only, >= 0; half of it acts at the clamp */
+    double stiffness_along_N_per_m;   /* post only; infinity: rigid */
+    double stiffness_across_N_per_m;  /* post only; infinity: rigid */
+    double capacity_along_N;          /* capacities: NaN where not given */
+    double capacity_across_N;
+    double capacity_down_N;
+    double capacity_up_N;
+} tw_support;
+
+typedef struct tw_crossing {
+    double from_m; /* stations */
+    double to_m;
+    double top_m;  /* elevation */
+} tw_crossing;
+
+typedef enum tw_place {
+    TW_PLACE_WHOLE,   /* the whole line */
+    TW_PLACE_STATION, /* a station of the line as strung, bare; fixed on the line from then on */
+    TW_PLACE_LENGTH   /* natural length from the first support */
+} tw_place;
+
+typedef enum tw_frame {
+    TW_FRAME_SPAN, /* vector is (along the span's plan direction, across it to the left, up) */
+    TW_FRAME_ROUTE /* vector is (x, y, z) */
+} tw_frame;
+
+typedef struct tw_load {
+    int is_point;     /* 1: force at from_m; 0: load per natural metre between from_m and to_m */
+    tw_place place;
+    tw_frame frame;
+    double from_m;    /* NaN on the whole line */
+    double to_m;      /* NaN on the whole line and for a point load */
+    double vector[3]; /* N for a point load, N/m otherwise */
+} tw_load;
+
+typedef struct tw_condition {
+    double temperature_degC;
+    double ice_thickness_m;            /* radial */
+    double ice_density_kg_per_m3;
+    double wind_pressure_Pa;           /* NaN where given by speed */
+    double wind_speed_m_per_s;         /* NaN where given by pressure */
+    double air_density_kg_per_m3;      /* used with speed */
+    double wind_drag;
+    double wind_angle_rad;             /* from the span's direction, anticlockwise seen from above; pi/2: square, to the left */
+    double resultant_addition_N_per_m; /* added to the length of the resultant of weight, ice and wind */
+    size_t load_first;                 /* this condition's own loads: project->loads[load_first ... + load_count - 1] */
+    size_t load_count;
+} tw_condition;
+
+typedef enum tw_stringing_rule {
+    TW_STRING_PULL,           /* value: horizontal tension, N, equal in every span, hangers plumb */
+    TW_STRING_TENSION,        /* value: larger line tension at support `index`, N; equal horizontal tension */
+    TW_STRING_SAG,            /* value: vertical sag of span `index`, m; equal horizontal tension */
+    TW_STRING_TOTAL_LENGTH,   /* value: sum of natural lengths, m; equal horizontal tension */
+    TW_STRING_SPAN_LENGTHS,   /* lengths_m: natural length of each span */
+    TW_STRING_NONE            /* only a window search can run */
+} tw_stringing_rule;
+
+typedef struct tw_stringing {
+    double temperature_degC; /* reference of all expansion; bare line, no ice, no wind */
+    tw_stringing_rule rule;
+    double value;
+    size_t index;
+    const double *lengths_m; /* [support_count - 1], TW_STRING_SPAN_LENGTHS only */
+    double tolerance;        /* fraction of the pull that the crew keeps, >= 0 */
+} tw_stringing;
+
+typedef struct tw_mark {
+    tw_place place; /* station as strung, or natural length; never WHOLE */
+    double at_m;
+} tw_mark;
+
+typedef enum tw_limit_kind {
+    TW_LIMIT_CLEARANCE,
+    TW_LIMIT_TENSION,
+    TW_LIMIT_SUPPORT_LOAD,
+    TW_LIMIT_UPLIFT,
+    TW_LIMIT_SWING,
+    TW_LIMIT_SAG,
+    TW_LIMIT_CATENARY_CONSTANT,
+    TW_LIMIT_SLOPE
+} tw_limit_kind;
+
+typedef enum tw_direction {
+    TW_DIRECTION_ALONG,
+    TW_DIRECTION_ACROSS,
+    TW_DIRECTION_DOWN,
+    TW_DIRECTION_UP,
+    TW_DIRECTION_RESULTANT
+} tw_direction;
+
+typedef struct tw_limit {
+    tw_limit_kind kind;
+    double least;           /* clearance m, uplift N, sag m; NaN: none */
+    double most;            /* tension N, support load N, swing rad, sag m, catenary constant m, slope (rise over run); NaN: none */
+    double share;           /* of breaking strength (tension) or of capacity (support load); NaN: none */
+    size_t crossing;        /* clearance: index, or TW_NONE for the ground */
+    double from_m;          /* clearance: stations; NaN: the whole route */
+    double to_m;
+    tw_direction direction; /* support load */
+} tw_limit;
+
+/* The whole problem. Arrays are borrowed and must outlive every call. */
+typedef struct tw_project {
+    tw_line line;
+    size_t support_count; /* >= 2 */
+    const tw_support *supports;
+    size_t ground_count; /* 0, or >= 2 */
+    const double *ground_station_m; /* strictly increasing */
+    const double *ground_elevation_m;
+    size_t crossing_count;
+    const tw_crossing *crossings;
+    size_t condition_count; /* >= 1 */
+    const tw_condition *conditions;
+    size_t load_count;
+    const tw_load *loads;
+    size_t mark_count;
+    const tw_mark *marks;
+    size_t limit_count;
+    const tw_limit *limits;
+    const unsigned char *limit_applies; /* [limit_count][condition_count]: the limit is judged in the condition */
+    const unsigned char *limit_covers;  /* [limit_count][support_count]: it looks at the support, or at the span that
+                                           starts there (tension, sag, slope, catenary constant, clearance) */
+    tw_stringing stringing;
+} tw_project;
+
+/* What a poll callback returns: 0 to go on, anything else to cancel. Called often; it should look at the clock first. */
+typedef int (*tw_poll)(void *data);
+
+typedef struct tw_options {
+    double gap_relative;       /* widest bracket that counts as settled: (P - D) / (|stretch energy| + |work of loads|) */
+    double residual_relative;  /* largest out-of-balance force over the largest tension, discretised line */
+    double closing_relative;   /* largest closing error over the chord, exact line */
+    size_t elements_per_span;  /* of the discretised line to begin with; doubled until the bracket closes */
+    size_t elements_most;      /* whole line; the doubling stops here */
+    size_t evaluations_most;   /* of the energy by the optimiser, per settle */
+    size_t newton_most;        /* steps, per solve */
+    double seconds_most;       /* monotonic deadline of one call */
+    size_t scan_points;        /* pulls at which a window search looks first */
+    int verify;                /* 1: a window's answers are settled with their bracket before they are returned */
+    tw_poll poll;              /* may be NULL */
+    void *poll_data;
+} tw_options;
+
+tw_options tw_options_default(void);
+
+/* One span in one condition. Tensions are magnitudes unless "horizontal". */
+typedef struct tw_span_state {
+    double span_m;                /* plan distance between the clamps */
+    double rise_m;                /* far clamp above near clamp */
+    double natural_length_m;
+    double line_length_m;         /* stretched */
+    double horizontal_tension_N;  /* component along the span's plan direction, at its start */
+    double tension_from_N;
+    double tension_to_N;
+    double tension_max_N;
+    double sag_m;                 /* greatest vertical distance from the chord down to the line */
+    double sag_station_m;         /* where */
+    double slant_sag_m;           /* greatest distance from the chord in the direction of the resultant load */
+    double blowout_m;             /* greatest horizontal distance from the vertical plane of the chord */
+    double low_station_m;         /* lowest point of the line between the clamps */
+    double low_elevation_m;
+    double slope_max;             /* |dz| over plan distance */
+    double small_deflection_sag_m;/* taut-string sag under the same loads and horizontal tension */
+} tw_span_state;
+
+/* Force of the line and hold on the support, and where the line is held. */
+typedef struct tw_support_state {
+    double along_N;   /* positive ahead */
+    double across_N;  /* positive to the left */
+    double down_N;    /* positive downwards; negative is uplift */
+    double resultant_N;
+    double swing_rad; /* of a hanger from the vertical; else NaN */
+    double position_m[3];
+} tw_support_state;
+
+typedef struct tw_mark_state {
+    double at_length_m; /* natural length from the first support */
+    double tension_N;
+    double position_m[3];
+} tw_mark_state;
+
+/* One condition, settled. The arrays belong to the caller and have the project's counts; load marks are the
+ * condition's point loads, in the order of its loads. */
+typedef struct tw_settled {
+    tw_status status;         /* TW_OK: settled, and proven so by the bracket */
+    double energy_J;          /* potential energy of the discretised line's shape, integrated finely: from above */
+    double energy_lower_J;    /* complementary energy of the exact line: from below */
+    double gap_J;
+    double gap_relative;
+    double residual_N;        /* largest out-of-balance force on a node of the discretised line */
+    double closing_m;         /* largest closing error of the exact line */
+    size_t elements;          /* of the discretised line */
+    size_t evaluations;       /* of its energy by the optimiser */
+    size_t newton_steps;      /* of its finish */
+    size_t exact_steps;       /* Newton steps of the exact line */
+    tw_span_state *spans;     /* [support_count - 1] */
+    tw_support_state *supports; /* [support_count] */
+    tw_mark_state *marks;     /* [mark_count], may be NULL when 0 */
+    tw_mark_state *loads;     /* [load_count of the condition], point loads only; others NaN */
+} tw_settled;
+
+#endif

@@ -1,0 +1,69 @@
+/* section: spans coupled at their supports, hung exactly in one condition.
+ *
+ * Unknowns are the tension vectors R_k at each span's start. A hold j between spans k and k+1 takes the force
+ * F_j = t_k(S) - R_{k+1} - G_j (force of the hold on the line; G_j: half the hanger's weight), and adds to the
+ * complementary energy
+ *     anchor  F.a            hanger  F.a - l |F|          post  F.a - F_x^2/(2 k_x) - F_y^2/(2 k_y)
+ * so that D(R) = sum_spans [ -int W*(|t|) ds + load terms ] + sum_holds. -D is convex; its Hessian is block tridiagonal
+ * with 3x3 blocks over the spans. Damped Newton.
+ */
+#ifndef TW_SECTION_H
+#define TW_SECTION_H
+
+#include "line.h"
+#include "material.h"
+#include "span.h"
+
+enum { TW_SECTION_WORK_PER_SPAN = 42 }; /* doubles of scratch */
+
+typedef struct tw_section {
+    const tw_project *project;
+    tw_material material;
+    size_t span_count;
+    size_t piece_capacity;   /* allocated */
+    size_t piece_count;
+    tw_piece *pieces;        /* in order along the line; owned */
+    size_t *piece_first;     /* [span_count + 1]: pieces of span k are piece_first[k] ... piece_first[k+1] - 1; owned */
+    double *length_m;        /* [span_count] natural length of each span; owned */
+    double *pull;            /* [3 span_count] tension vector at each span's start; owned */
+    double *clamp;           /* [3 (span_count + 1)] where the line is held; owned */
+    double *clamp_load;      /* [3 (span_count + 1)] G_j: load that acts at the clamp itself; owned */
+    double *hold_force;      /* [3 (span_count + 1)] force of each hold on the line; owned */
+    double *load_length_m;   /* [loads of the condition] natural length of each point load, else NaN; owned */
+    double *load_from_m;     /* [loads of the condition] natural length where each load begins; owned */
+    double *load_to_m;       /* [loads of the condition] and ends; owned */
+    double *cut_m;           /* scratch: where the loads cut one span; owned */
+    double *work;            /* scratch of the solver; owned */
+    double energy_lower_J;   /* D */
+    double closing_m;        /* largest closing error */
+    size_t steps;            /* Newton steps taken */
+} tw_section;
+
+/* Room for every condition of the project. NULL-safe free; create returns NULL without memory. */
+tw_section *tw_section_create(const tw_project *project);
+void tw_section_free(tw_section *section);
+
+/* Put the loads of a condition on natural lengths `length_m` [span_count].
+ * condition TW_NONE: the bare line at the stringing temperature.
+ * strung: the bare strung section by which stations become natural lengths; NULL where no place is a station. */
+tw_status tw_section_load(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
+                          int with_addition);
+
+/* Find the equilibrium. warm: start from the pulls already there. Fills everything from pull on. */
+tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm);
+
+/* Natural length from the first support <-> span and length within it. */
+void tw_section_locate(const tw_section *section, double s, size_t *span, double *within);
+/* First natural length at which the line passes a station; TW_ERROR_PLACE when it does not. */
+tw_status tw_section_at_station(const tw_section *section, double station_m, double *s);
+/* Position and tension vector at a natural length from the first support; either may be NULL. */
+void tw_section_at(const tw_section *section, double s, double position[3], double tension[3]);
+
+/* Sums of a hung section, J: stretch energy and the potential of all loads (-work), datum elevation 0. */
+double tw_section_stored(const tw_section *section);
+
+/* What the result keys of the contract ask for. */
+void tw_section_span_state(const tw_section *section, size_t span, tw_span_state *state);
+void tw_section_support_state(const tw_section *section, size_t support, tw_support_state *state);
+
+#endif

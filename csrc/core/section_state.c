@@ -1,0 +1,217 @@
+/* section_state: what can be read off a hung section. */
+#include <math.h>
+
+#include "section.h"
+#include "vector.h"
+
+void tw_section_locate(const tw_section *section, double s, size_t *span, double *within)
+{
+    size_t k = 0;
+    while (k + 1 < section->span_count && s > section->length_m[k]) {
+        s -= section->length_m[k];
+        k++;
+    }
+    *span = k;
+    *within = fmin(fmax(s, 0.0), section->length_m[k]);
+}
+
+static const tw_piece *piece_within(const tw_section *section, size_t span, double *s)
+{
+    size_t p = section->piece_first[span];
+    while (p + 1 < section->piece_first[span + 1] && *s > section->pieces[p].length_m) {
+        *s -= section->pieces[p].length_m;
+        p++;
+    }
+    return &section->pieces[p];
+}
+
+void tw_section_at(const tw_section *section, double s, double position[3], double tension[3])
+{
+    size_t span;
+    double within;
+    tw_section_locate(section, s, &span, &within);
+    const tw_piece *piece = piece_within(section, span, &within);
+    if (position) {
+        tw_piece_position(&section->material, piece, within, position);
+    }
+    if (tension) {
+        tw_piece_tension(piece, within, tension);
+    }
+}
+
+static int passes(const tw_material *material, const tw_piece *piece, double s0, double s1, double station_m, double *s)
+{
+    double a[3], b[3];
+    double slack = 1e-9 * (1.0 + fabs(station_m));
+    tw_piece_position(material, piece, s0, a);
+    tw_piece_position(material, piece, s1, b);
+    if (station_m < fmin(a[0], b[0]) - slack || station_m > fmax(a[0], b[0]) + slack) {
+        return 0;
+    }
+    *s = tw_piece_at_station(material, piece, s0, s1, station_m);
+    return 1;
+}
+
+tw_status tw_section_at_station(const tw_section *section, double station_m, double *s)
+{
+    double passed = 0.0;
+    for (size_t p = 0; p < section->piece_count; p++) {
+        const tw_piece *piece = &section->pieces[p];
+        double turn, at;
+        int turns = tw_piece_turns(piece, &turn);
+        if (passes(&section->material, piece, 0.0, turns ? turn : piece->length_m, station_m, &at)
+            || (turns && passes(&section->material, piece, turn, piece->length_m, station_m, &at))) {
+            *s = passed + at;
+            return TW_OK;
+        }
+        passed += piece->length_m;
+    }
+    return TW_ERROR_PLACE;
+}
+
+/* A span's own frame between its present clamps. */
+typedef struct chord_frame {
+    double start[3];
+    double span, rise;
+    double u[2]; /* plan direction */
+} chord_frame;
+
+static chord_frame chord_of(const tw_section *section, size_t span)
+{
+    const double *a = section->clamp + 3 * span;
+    chord_frame frame;
+    tw_copy(a, frame.start);
+    frame.span = hypot(a[3] - a[0], a[4] - a[1]);
+    frame.rise = a[5] - a[2];
+    frame.u[0] = (a[3] - a[0]) / frame.span;
+    frame.u[1] = (a[4] - a[1]) / frame.span;
+    return frame;
+}
+
+static void total_load(const tw_piece *pieces, size_t count, double load[3])
+{
+    load[0] = load[1] = load[2] = 0.0;
+    for (size_t p = 0; p < count; p++) {
+        tw_axpy(load, pieces[p].length_m, pieces[p].load, load);
+        tw_axpy(load, 1.0, pieces[p].force, load);
+    }
+}
+
+static double slant_sag(const tw_section *section, const tw_piece *pieces, size_t count, const chord_frame *frame)
+{
+    double load[3], at;
+    total_load(pieces, count, load);
+    const double *u = frame->u;
+    const double own[3] = {load[0] * u[0] + load[1] * u[1], load[1] * u[0] - load[0] * u[1], load[2]};
+    double d[3];
+    tw_span_slant(frame->span, frame->rise, own, d);
+    const double direction[3] = {d[0] * u[0] - d[1] * u[1], d[0] * u[1] + d[1] * u[0], d[2]};
+    return fmax(0.0, tw_span_extreme(&section->material, pieces, count, direction, frame->start, &at));
+}
+
+/* Taut string: deflection M(x)/H with the loads per natural metre taken per metre of span; its greatest. */
+static double small_deflection_sag(const tw_piece *pieces, size_t count, double natural, double span, double H)
+{
+    double scale = span / natural;
+    double support = 0.0, x = 0.0;
+    for (size_t p = 0; p < count; p++) {
+        double l = pieces[p].length_m * scale;
+        support += -pieces[p].load[2] * l * (span - x - 0.5 * l) - pieces[p].force[2] * (span - x - l);
+        x += l;
+    }
+    double shear = support / span, moment = 0.0, most = 0.0;
+    for (size_t p = 0; p < count; p++) {
+        double l = pieces[p].length_m * scale;
+        double q = -pieces[p].load[2];
+        double top = q > 0.0 ? shear / q : -1.0;
+        if (top > 0.0 && top < l) {
+            most = fmax(most, moment + 0.5 * shear * top);
+        }
+        moment += shear * l - 0.5 * q * l * l;
+        shear -= q * l - pieces[p].force[2];
+        most = fmax(most, moment);
+    }
+    return most / H;
+}
+
+static double line_length(const tw_section *section, const tw_piece *pieces, size_t count)
+{
+    double length = 0.0;
+    for (size_t p = 0; p < count; p++) {
+        double part;
+        tw_piece_energies(&section->material, pieces[p].tension, pieces[p].load, pieces[p].length_m, NULL, NULL, &part);
+        length += part;
+    }
+    return length;
+}
+
+static void span_tensions(const tw_section *section, size_t span, const tw_piece *pieces, size_t count,
+                          const chord_frame *frame, tw_span_state *state)
+{
+    const double *pull = section->pull + 3 * span;
+    double far[3];
+    tw_piece_tension(&pieces[count - 1], pieces[count - 1].length_m, far);
+    state->horizontal_tension_N = pull[0] * frame->u[0] + pull[1] * frame->u[1];
+    state->tension_from_N = tw_norm(pull);
+    state->tension_to_N = tw_norm(far);
+    state->tension_max_N = tw_span_tension_max(pieces, count);
+    state->slope_max = tw_span_slope(pieces, count);
+}
+
+void tw_section_span_state(const tw_section *section, size_t span, tw_span_state *state)
+{
+    const tw_piece *pieces = section->pieces + section->piece_first[span];
+    size_t count = section->piece_first[span + 1] - section->piece_first[span];
+    const tw_material *material = &section->material;
+    const chord_frame frame = chord_of(section, span);
+    const double slope = frame.rise / frame.span;
+    const double down[3] = {slope * frame.u[0], slope * frame.u[1], -1.0};
+    const double left[3] = {-frame.u[1], frame.u[0], 0.0};
+    const double right[3] = {frame.u[1], -frame.u[0], 0.0};
+    const double fall[3] = {0.0, 0.0, -1.0};
+    double at, position[3];
+    state->span_m = frame.span;
+    state->rise_m = frame.rise;
+    state->natural_length_m = section->length_m[span];
+    state->line_length_m = line_length(section, pieces, count);
+    span_tensions(section, span, pieces, count, &frame, state);
+    state->sag_m = fmax(0.0, tw_span_extreme(material, pieces, count, down, frame.start, &at));
+    const tw_piece *piece = piece_within(section, span, &at);
+    tw_piece_position(material, piece, at, position);
+    state->sag_station_m = position[0];
+    state->slant_sag_m = slant_sag(section, pieces, count, &frame);
+    state->blowout_m = fmax(0.0, fmax(tw_span_extreme(material, pieces, count, left, frame.start, &at),
+                                      tw_span_extreme(material, pieces, count, right, frame.start, &at)));
+    tw_span_extreme(material, pieces, count, fall, frame.start, &at);
+    piece = piece_within(section, span, &at);
+    tw_piece_position(material, piece, at, position);
+    state->low_station_m = position[0];
+    state->low_elevation_m = position[2];
+    state->small_deflection_sag_m =
+        small_deflection_sag(pieces, count, section->length_m[span], frame.span, state->horizontal_tension_N);
+}
+
+void tw_section_support_state(const tw_section *section, size_t support, tw_support_state *state)
+{
+    const tw_support *at = &section->project->supports[support];
+    const double *F = section->hold_force + 3 * support;
+    int hangs = at->hold == TW_HOLD_HANGER;
+    state->along_N = -F[0];
+    state->across_N = -F[1];
+    state->down_N = F[2] + (hangs ? 0.5 * at->hanger_weight_N : 0.0);
+    state->resultant_N = sqrt(F[0] * F[0] + F[1] * F[1] + state->down_N * state->down_N);
+    tw_copy(section->clamp + 3 * support, state->position_m);
+    state->swing_rad = hangs ? atan2(hypot(F[0], F[1]), F[2]) : (double)NAN;
+}
+
+double tw_section_stored(const tw_section *section)
+{
+    double total = 0.0;
+    for (size_t p = 0; p < section->piece_count; p++) {
+        const tw_piece *piece = &section->pieces[p];
+        double stored;
+        tw_piece_energies(&section->material, piece->tension, piece->load, piece->length_m, NULL, &stored, NULL);
+        total += stored;
+    }
+    return total;
+}

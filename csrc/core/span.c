@@ -1,0 +1,294 @@
+#include "span.h"
+
+#include <math.h>
+
+#include "vector.h"
+
+/* A piece resolved along its load: t = a e + b with b normal to e. */
+typedef struct resolved {
+    double e[3]; /* unit load; zero where there is none */
+    double b[3];
+    double h2;       /* |b|^2 */
+    double a0, a1;   /* t.e at the start and the end */
+    double T0, T1;   /* |t| */
+    double inverse;  /* int ds/T */
+} resolved;
+
+/* atanh(x)/x */
+static double atanh_ratio(double x)
+{
+    double x2 = x * x;
+    return x < 1e-4 ? 1.0 + x2 * (1.0 / 3.0 + x2 / 5.0) : atanh(x) / x;
+}
+
+/* int ds/T: the difference of asinh(a/h), as 2 atanh where that is small, as one logarithm where it is large. */
+static double inverse_integral(double a0, double a1, double T0, double T1, double h2, double load, double length)
+{
+    double x = load * length / (T0 + T1);
+    if (x < 0.9) {
+        return 2.0 * length / (T0 + T1) * atanh_ratio(x);
+    }
+    if (a0 > 0.0 && a1 < 0.0) {
+        return log((a0 + T0) * (T1 - a1) / h2) / load;
+    }
+    return log(a0 > 0.0 ? (a0 + T0) / (a1 + T1) : (T1 - a1) / (T0 - a0)) / load;
+}
+
+static resolved resolve(const double tension[3], const double load[3], double length)
+{
+    resolved r;
+    double q = tw_norm(load);
+    for (int i = 0; i < 3; i++) {
+        r.e[i] = q > 0.0 ? load[i] / q : 0.0;
+    }
+    r.a0 = tw_dot(tension, r.e);
+    tw_axpy(tension, -r.a0, r.e, r.b);
+    r.a1 = r.a0 - q * length;
+    r.h2 = tw_dot(r.b, r.b);
+    r.T0 = sqrt(r.a0 * r.a0 + r.h2);
+    r.T1 = sqrt(r.a1 * r.a1 + r.h2);
+    r.inverse = inverse_integral(r.a0, r.a1, r.T0, r.T1, r.h2, q, length);
+    return r;
+}
+
+/* d/dR int t/|t| ds = int (I/T - t t'/T^3) ds, from int ds/T, int ds/T^3 and int a ds/T^3. */
+static void direction_flexibility(const resolved *r, double length, double factor, double flexibility[6])
+{
+    double product = r->T0 * r->T1;
+    double aa = r->a0 * r->a1;
+    double sum = aa < 0.0 ? r->h2 + r->h2 * (r->a0 * r->a0 + r->a1 * r->a1 + r->h2) / (product - aa) : r->h2 + aa + product;
+    double cubic = length * (r->T0 + r->T1) / (product * sum);
+    double mixed = length * (r->a0 + r->a1) / ((r->T0 + r->T1) * product);
+    double along = factor * (r->h2 * cubic - r->inverse);
+    int k = 0;
+    for (int i = 0; i < 3; i++) {
+        for (int j = i; j < 3; j++) {
+            double ee = along * r->e[i] * r->e[j];
+            double eb = factor * mixed * (r->e[i] * r->b[j] + r->e[j] * r->b[i]);
+            double bb = factor * cubic * r->b[i] * r->b[j];
+            flexibility[k++] = ee - eb - bb;
+        }
+    }
+    flexibility[0] += factor * r->inverse;
+    flexibility[3] += factor * r->inverse;
+    flexibility[5] += factor * r->inverse;
+}
+
+void tw_piece_displacement(const tw_material *material, const double tension[3], const double load[3], double length,
+                           double displacement[3], double flexibility[6])
+{
+    double compliance = 1.0 / material->stiffness_N;
+    double unit = 1.0 + material->strain;
+    if (length <= 0.0) {
+        displacement[0] = displacement[1] = displacement[2] = 0.0;
+        for (int i = 0; flexibility && i < 6; i++) {
+            flexibility[i] = 0.0;
+        }
+        return;
+    }
+    resolved r = resolve(tension, load, length);
+    double along = length * (r.a0 + r.a1) / (r.T0 + r.T1);
+    for (int i = 0; i < 3; i++) {
+        double direction = along * r.e[i] + r.inverse * r.b[i];
+        displacement[i] = unit * direction + compliance * length * (tension[i] - 0.5 * length * load[i]);
+    }
+    if (flexibility) {
+        direction_flexibility(&r, length, unit, flexibility);
+        flexibility[0] += compliance * length;
+        flexibility[3] += compliance * length;
+        flexibility[5] += compliance * length;
+    }
+}
+
+void tw_piece_energies(const tw_material *material, const double tension[3], const double load[3], double length,
+                       double *conjugate_J, double *stored_J, double *line_length_m)
+{
+    double first = 0.0;  /* int T ds */
+    double second = 0.0; /* int T^2 ds */
+    double unit = 1.0 + material->strain;
+    if (length > 0.0) {
+        resolved r = resolve(tension, load, length);
+        double a = r.a0 + r.a1;
+        double T = r.T0 + r.T1;
+        first = 0.25 * length * (T + a * a / T) + 0.5 * r.h2 * r.inverse;
+        second = length * ((r.a0 * r.a0 + r.a0 * r.a1 + r.a1 * r.a1) / 3.0 + r.h2);
+    }
+    double stored = 0.5 * second / material->stiffness_N;
+    if (conjugate_J) {
+        *conjugate_J = unit * first + stored;
+    }
+    if (stored_J) {
+        *stored_J = stored;
+    }
+    if (line_length_m) {
+        *line_length_m = unit * length + first / material->stiffness_N;
+    }
+}
+
+void tw_piece_tension(const tw_piece *piece, double s, double tension[3])
+{
+    tw_axpy(piece->tension, -s, piece->load, tension);
+}
+
+void tw_piece_position(const tw_material *material, const tw_piece *piece, double s, double position[3])
+{
+    double displacement[3];
+    tw_piece_displacement(material, piece->tension, piece->load, s, displacement, NULL);
+    tw_axpy(piece->start, 1.0, displacement, position);
+}
+
+int tw_piece_turns(const tw_piece *piece, double *s)
+{
+    *s = piece->load[0] != 0.0 ? piece->tension[0] / piece->load[0] : -1.0;
+    return *s > 0.0 && *s < piece->length_m;
+}
+
+/* Newton on the station, kept inside a bracket that bisection would halve. */
+double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double station_m)
+{
+    double near[3], far[3], t[3];
+    tw_piece_position(material, piece, s0, near);
+    tw_piece_position(material, piece, s1, far);
+    double run = far[0] - near[0];
+    double low = s0, high = s1;
+    double s = run != 0.0 ? s0 + (s1 - s0) * (station_m - near[0]) / run : s0;
+    for (int i = 0; i < 60 && high > low; i++) {
+        double r[3];
+        s = s >= low && s <= high ? s : 0.5 * (low + high);
+        tw_piece_position(material, piece, s, r);
+        double miss = r[0] - station_m;
+        if ((miss <= 0.0) == (run >= 0.0)) {
+            low = s;
+        } else {
+            high = s;
+        }
+        tw_piece_tension(piece, s, t);
+        double size = tw_norm(t);
+        double step = miss * size / (t[0] * tw_material_stretch(material, size));
+        s -= step;
+        if (!(fabs(step) > 1e-14 * (fabs(station_m) + s1))) {
+            break;
+        }
+    }
+    return fmin(fmax(s, s0), s1);
+}
+
+void tw_span_hang(const tw_material *material, tw_piece *pieces, size_t count, const double start[3],
+                  const double pull[3], double end[3], double end_tension[3], double flexibility[6])
+{
+    double step[3];
+    double piece_flexibility[6];
+    tw_copy(start, end);
+    tw_copy(pull, end_tension);
+    for (int i = 0; flexibility && i < 6; i++) {
+        flexibility[i] = 0.0;
+    }
+    for (size_t k = 0; k < count; k++) {
+        tw_piece *piece = &pieces[k];
+        tw_copy(end, piece->start);
+        tw_copy(end_tension, piece->tension);
+        tw_piece_displacement(material, piece->tension, piece->load, piece->length_m, step,
+                              flexibility ? piece_flexibility : NULL);
+        tw_axpy(end, 1.0, step, end);
+        tw_axpy(end_tension, -piece->length_m, piece->load, end_tension);
+        tw_axpy(end_tension, -1.0, piece->force, end_tension);
+        for (int i = 0; flexibility && i < 6; i++) {
+            flexibility[i] += piece_flexibility[i];
+        }
+    }
+}
+
+/* Natural length within a piece where direction . t = 0, or -1. */
+static double stationary(const tw_piece *piece, const double direction[3])
+{
+    double rate = tw_dot(direction, piece->load);
+    double s = rate != 0.0 ? tw_dot(direction, piece->tension) / rate : -1.0;
+    return s > 0.0 && s < piece->length_m ? s : -1.0;
+}
+
+double tw_span_extreme(const tw_material *material, const tw_piece *pieces, size_t count, const double direction[3],
+                       const double origin[3], double *s_at)
+{
+    double best = -INFINITY;
+    double passed = 0.0;
+    for (size_t k = 0; k < count; k++) {
+        const double places[3] = {0.0, stationary(&pieces[k], direction), pieces[k].length_m};
+        for (int i = 0; i < 3; i++) {
+            if (places[i] < 0.0 || (i == 2 && k + 1 < count)) {
+                continue;
+            }
+            double r[3];
+            tw_piece_position(material, &pieces[k], places[i], r);
+            tw_axpy(r, -1.0, origin, r);
+            double value = tw_dot(direction, r);
+            if (value > best) {
+                best = value;
+                *s_at = passed + places[i];
+            }
+        }
+        passed += pieces[k].length_m;
+    }
+    return best;
+}
+
+void tw_span_slant(double span_m, double rise_m, const double load[3], double direction[3])
+{
+    const double chord[3] = {span_m, 0.0, rise_m};
+    double square = tw_dot(chord, chord);
+    double across[3];
+    tw_axpy(load, -tw_dot(load, chord) / square, chord, across);
+    double size = tw_dot(across, across);
+    double factor = size > 0.0 ? tw_norm(load) / size : 0.0;
+    for (int i = 0; i < 3; i++) {
+        direction[i] = factor * across[i];
+    }
+}
+
+static double slope_of(const double t[3])
+{
+    double run = hypot(t[0], t[1]);
+    return run > 0.0 ? fabs(t[2]) / run : INFINITY;
+}
+
+/* Where |t_z|/|t_xy| is stationary: z' (x^2 + y^2) = z (x x' + y y'). With x, y, z linear in s its square terms cancel,
+ * and one place is left; -1 where it is not within the piece. */
+static double slope_stationary(const tw_piece *piece)
+{
+    const double *t = piece->tension;
+    const double *q = piece->load;
+    double rr = t[0] * t[0] + t[1] * t[1];
+    double rd = -(t[0] * q[0] + t[1] * q[1]);
+    double dd = q[0] * q[0] + q[1] * q[1];
+    double rate = -q[2] * rd - t[2] * dd;
+    double s = rate != 0.0 ? (q[2] * rr + t[2] * rd) / rate : -1.0;
+    return s > 0.0 && s < piece->length_m ? s : -1.0;
+}
+
+double tw_span_slope(const tw_piece *pieces, size_t count)
+{
+    double slope = 0.0;
+    for (size_t k = 0; k < count; k++) {
+        double t[3];
+        slope = fmax(slope, slope_of(pieces[k].tension));
+        tw_piece_tension(&pieces[k], pieces[k].length_m, t);
+        slope = fmax(slope, slope_of(t));
+        double inner = slope_stationary(&pieces[k]);
+        if (inner >= 0.0) {
+            tw_piece_tension(&pieces[k], inner, t);
+            slope = fmax(slope, slope_of(t));
+        }
+    }
+    return slope;
+}
+
+double tw_span_tension_max(const tw_piece *pieces, size_t count)
+{
+    double most = 0.0;
+    for (size_t k = 0; k < count; k++) {
+        double t[3];
+        most = fmax(most, tw_norm(pieces[k].tension));
+        tw_piece_tension(&pieces[k], pieces[k].length_m, t);
+        most = fmax(most, tw_norm(t));
+    }
+    return most;
+}

@@ -1,0 +1,268 @@
+#include "stringing.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "hold.h"
+#include "uniform.h"
+#include "vector.h"
+
+/* The clamps of the strung line, measured from the supports, and what each span is like at one pull. */
+typedef struct strung {
+    const tw_project *project;
+    size_t span_count;
+    double *swing;    /* [3 (span_count + 1)] */
+    double *length_m; /* [span_count] */
+    double *pull;     /* [3 span_count] tension vector at each span's start */
+} strung;
+
+static strung strung_on(const tw_project *project, double *length_m, double *work)
+{
+    strung line = {.project = project, .span_count = project->support_count - 1, .length_m = length_m};
+    line.swing = work;
+    line.pull = work + 3 * project->support_count;
+    return line;
+}
+
+static void hang_plumb(strung *line)
+{
+    for (size_t j = 0; j <= line->span_count; j++) {
+        const tw_support *support = &line->project->supports[j];
+        line->swing[3 * j] = line->swing[3 * j + 1] = 0.0;
+        line->swing[3 * j + 2] = support->hold == TW_HOLD_HANGER ? -support->hanger_length_m : 0.0;
+    }
+}
+
+/* Plan run, rise and plan direction between the clamps of a span. */
+static void chord_of(const strung *line, size_t span, double *run, double *rise, double u[2])
+{
+    double near[3], far[3];
+    tw_hold_attachment(&line->project->supports[span], near);
+    tw_hold_attachment(&line->project->supports[span + 1], far);
+    tw_axpy(near, 1.0, line->swing + 3 * span, near);
+    tw_axpy(far, 1.0, line->swing + 3 * span + 3, far);
+    *run = hypot(far[0] - near[0], far[1] - near[1]);
+    *rise = far[2] - near[2];
+    u[0] = (far[0] - near[0]) / *run;
+    u[1] = (far[1] - near[1]) / *run;
+}
+
+static tw_status lengths_between_clamps(strung *line, double pull_N)
+{
+    const tw_line *data = &line->project->line;
+    for (size_t k = 0; k < line->span_count; k++) {
+        double run, rise, u[2], v;
+        chord_of(line, k, &run, &rise, u);
+        const tw_uniform span = {run, -rise, data->weight_N_per_m, data->stiffness_N, 0.0};
+        tw_status status = tw_uniform_length(&span, pull_N, &line->length_m[k], &v);
+        if (status != TW_OK) {
+            return status;
+        }
+        line->pull[3 * k] = pull_N * u[0];
+        line->pull[3 * k + 1] = pull_N * u[1];
+        line->pull[3 * k + 2] = -v;
+    }
+    return TW_OK;
+}
+
+/* Where posts lean and the route turns, the clamps follow their hold forces. Returns the largest move. */
+static double follow_holds(strung *line)
+{
+    double weight = line->project->line.weight_N_per_m;
+    double moved = 0.0;
+    for (size_t j = 0; j <= line->span_count; j++) {
+        const tw_support *support = &line->project->supports[j];
+        double F[3] = {0.0, 0.0, support->hold == TW_HOLD_HANGER ? 0.5 * support->hanger_weight_N : 0.0};
+        double swing[3];
+        if (j > 0) {
+            tw_axpy(F, 1.0, line->pull + 3 * (j - 1), F);
+            F[2] += weight * line->length_m[j - 1];
+        }
+        if (j < line->span_count) {
+            tw_axpy(F, -1.0, line->pull + 3 * j, F);
+        }
+        tw_hold_swing(support, F, swing);
+        for (int i = 0; i < 3; i++) {
+            moved = fmax(moved, fabs(swing[i] - line->swing[3 * j + (size_t)i]));
+        }
+        tw_copy(swing, line->swing + 3 * j);
+    }
+    return moved;
+}
+
+static tw_status string_to(strung *line, double pull_N)
+{
+    hang_plumb(line);
+    for (int i = 0; i < 100; i++) {
+        tw_status status = lengths_between_clamps(line, pull_N);
+        if (status != TW_OK || follow_holds(line) < 1e-11) {
+            return status;
+        }
+    }
+    return TW_NOT_SETTLED;
+}
+
+tw_status tw_stringing_at_pull(const tw_project *project, double pull_N, double *length_m, double *work)
+{
+    strung line = strung_on(project, length_m, work);
+    return string_to(&line, pull_N);
+}
+
+static double tension_beside(const strung *line, size_t support)
+{
+    double weight = line->project->line.weight_N_per_m;
+    double largest = 0.0;
+    if (support > 0) {
+        double far[3];
+        tw_copy(line->pull + 3 * (support - 1), far);
+        far[2] += weight * line->length_m[support - 1];
+        largest = tw_norm(far);
+    }
+    if (support < line->span_count) {
+        largest = fmax(largest, tw_norm(line->pull + 3 * support));
+    }
+    return largest;
+}
+
+static double sag_of(const strung *line, size_t span)
+{
+    const tw_line *data = &line->project->line;
+    double run, rise, u[2], end[3], far[3], at;
+    const double zero[3] = {0.0, 0.0, 0.0};
+    const tw_material material = {data->stiffness_N, 0.0};
+    tw_piece piece = {.length_m = line->length_m[span], .load = {0.0, 0.0, -data->weight_N_per_m}};
+    chord_of(line, span, &run, &rise, u);
+    const double down[3] = {rise / run * u[0], rise / run * u[1], -1.0};
+    tw_span_hang(&material, &piece, 1, zero, line->pull + 3 * span, end, far, NULL);
+    return tw_span_extreme(&material, &piece, 1, down, zero, &at);
+}
+
+/* What the rule measures at a pull, less what it asks for; falls with the pull, but for the tension rule. */
+static tw_status measure(strung *line, double pull_N, double *miss)
+{
+    const tw_stringing *rule = &line->project->stringing;
+    tw_status status = string_to(line, pull_N);
+    if (status != TW_OK) {
+        return status;
+    }
+    switch (rule->rule) {
+    case TW_STRING_TENSION: *miss = rule->value - tension_beside(line, rule->index); break;
+    case TW_STRING_SAG: *miss = sag_of(line, rule->index) - rule->value; break;
+    case TW_STRING_TOTAL_LENGTH:
+        *miss = -rule->value;
+        for (size_t k = 0; k < line->span_count; k++) {
+            *miss += line->length_m[k];
+        }
+        break;
+    case TW_STRING_PULL:
+    case TW_STRING_SPAN_LENGTHS:
+    case TW_STRING_NONE: return TW_ERROR_RANGE;
+    }
+    return TW_OK;
+}
+
+/* The bracket narrows by the Illinois rule on the logarithm of the pull; it keeps a sign change, so it cannot leave. */
+static tw_status solve_rule(strung *line, double low, double high, double *pull_N)
+{
+    double miss_low, miss_high, miss;
+    tw_status status = measure(line, low, &miss_low);
+    if (status == TW_OK) {
+        status = measure(line, high, &miss_high);
+    }
+    if (status != TW_OK) {
+        return status;
+    }
+    if (!(miss_low >= 0.0 && miss_high <= 0.0)) {
+        return TW_OUT_OF_REACH;
+    }
+    int side = 0;
+    for (int i = 0; i < 200 && high / low - 1.0 > 4e-16; i++) {
+        double a = log(low), b = log(high);
+        double middle = miss_low > miss_high ? a + (b - a) * miss_low / (miss_low - miss_high) : 0.5 * (a + b);
+        *pull_N = i % 3 == 2 ? exp(0.5 * (a + b)) : fmin(fmax(exp(middle), low), high);
+        status = measure(line, *pull_N, &miss);
+        if (status != TW_OK || fabs(miss) <= 2e-16 * line->project->stringing.value) {
+            return status;
+        }
+        if (miss > 0.0) {
+            low = *pull_N;
+            miss_low = miss;
+            miss_high *= side > 0 ? 0.5 : 1.0;
+            side = 1;
+        } else {
+            high = *pull_N;
+            miss_high = miss;
+            miss_low *= side < 0 ? 0.5 : 1.0;
+            side = -1;
+        }
+    }
+    return measure(line, *pull_N, &miss);
+}
+
+static double longest_span(const tw_project *project)
+{
+    double longest = 0.0;
+    for (size_t k = 0; k + 1 < project->support_count; k++) {
+        const tw_support *near = &project->supports[k];
+        longest = fmax(longest, hypot(near[1].station_m - near->station_m, near[1].offset_m - near->offset_m));
+    }
+    return longest;
+}
+
+void tw_stringing_range(const tw_project *project, double *low_N, double *high_N)
+{
+    double weight = project->line.weight_N_per_m;
+    double high = project->line.breaking_strength_N;
+    *low_N = 0.12 * weight * longest_span(project);
+    if (isnan(high)) {
+        high = 0.0;
+        for (size_t i = 0; i < project->limit_count; i++) {
+            const tw_limit *limit = &project->limits[i];
+            double most = isnan(limit->most) ? 0.0 : 2.0 * limit->most;
+            if (limit->kind == TW_LIMIT_TENSION) {
+                high = fmax(high, most);
+            } else if (limit->kind == TW_LIMIT_CATENARY_CONSTANT) {
+                high = fmax(high, most * weight);
+            }
+        }
+    }
+    *high_N = high > *low_N ? high : fmax(0.02 * project->line.stiffness_N, 10.0 * *low_N);
+    if (!(*low_N > 0.0)) {
+        *low_N = 1e-4 * *high_N;
+    }
+}
+
+/* A support's tension falls with the pull until the line is about 1.5 spans deep; only the taut branch is meant. */
+static tw_status lengths_by_rule(strung *line, double *pull_N)
+{
+    const tw_project *project = line->project;
+    double low, high;
+    tw_stringing_range(project, &low, &high);
+    if (project->stringing.rule == TW_STRING_TENSION) {
+        high = project->stringing.value;
+        low = fmin(0.42 * project->line.weight_N_per_m * longest_span(project), 0.9 * high);
+        low = fmax(low, 1e-6 * high);
+    } else {
+        low *= 0.05;
+        high = fmax(high, 0.3 * project->line.stiffness_N);
+    }
+    return solve_rule(line, low, high, pull_N);
+}
+
+tw_status tw_stringing_lengths(const tw_project *project, double *length_m, double *pull_N, double *work)
+{
+    const tw_stringing *rule = &project->stringing;
+    strung line = strung_on(project, length_m, work);
+    *pull_N = rule->rule == TW_STRING_PULL ? rule->value : (double)NAN;
+    switch (rule->rule) {
+    case TW_STRING_PULL: return string_to(&line, rule->value);
+    case TW_STRING_TENSION:
+    case TW_STRING_SAG:
+    case TW_STRING_TOTAL_LENGTH: return lengths_by_rule(&line, pull_N);
+    case TW_STRING_SPAN_LENGTHS:
+        memcpy(length_m, rule->lengths_m, line.span_count * sizeof(double));
+        return TW_OK;
+    case TW_STRING_NONE: break;
+    }
+    return TW_ERROR_RANGE;
+}

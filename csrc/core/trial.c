@@ -1,0 +1,154 @@
+#include "trial.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "alloc.h"
+#include "stringing.h"
+
+tw_trial *tw_trial_create(const tw_project *project)
+{
+    size_t conditions = project->condition_count;
+    tw_trial *trial = tw_calloc(1, sizeof *trial);
+    if (!trial) {
+        return NULL;
+    }
+    trial->project = project;
+    trial->bare_condition = TW_NONE;
+    trial->length_m = tw_calloc(project->support_count, sizeof(double));
+    trial->string_work = tw_calloc(TW_STRINGING_WORK(project), sizeof(double));
+    trial->strung = tw_section_create(project);
+    trial->bare = tw_section_create(project);
+    trial->sections = tw_calloc(conditions, sizeof(tw_section *));
+    trial->solved = tw_calloc(conditions, sizeof(int));
+    trial->warm = tw_calloc(conditions, sizeof(int));
+    if (!trial->length_m || !trial->string_work || !trial->strung || !trial->bare || !trial->sections || !trial->solved || !trial->warm) {
+        goto fail;
+    }
+    for (size_t c = 0; c < conditions; c++) {
+        trial->sections[c] = tw_section_create(project);
+        if (!trial->sections[c]) {
+            goto fail;
+        }
+    }
+    return trial;
+fail:
+    tw_trial_free(trial);
+    return NULL;
+}
+
+void tw_trial_free(tw_trial *trial)
+{
+    if (!trial) {
+        return;
+    }
+    for (size_t c = 0; trial->sections && c < trial->project->condition_count; c++) {
+        tw_section_free(trial->sections[c]);
+    }
+    tw_section_free(trial->strung);
+    tw_section_free(trial->bare);
+    tw_free(trial->length_m);
+    tw_free(trial->string_work);
+    tw_free(trial->sections);
+    tw_free(trial->solved);
+    tw_free(trial->warm);
+    tw_free(trial);
+}
+
+tw_status tw_trial_string(tw_trial *trial, double pull_N)
+{
+    trial->strung_ready = 0;
+    trial->bare_condition = TW_NONE;
+    memset(trial->solved, 0, trial->project->condition_count * sizeof(int));
+    trial->pull_N = pull_N;
+    if (isnan(pull_N)) {
+        return tw_stringing_lengths(trial->project, trial->length_m, &trial->pull_N, trial->string_work);
+    }
+    return tw_stringing_at_pull(trial->project, pull_N, trial->length_m, trial->string_work);
+}
+
+tw_status tw_trial_strung(tw_trial *trial, const tw_options *options, const tw_section **section)
+{
+    *section = trial->strung;
+    if (trial->strung_ready) {
+        return TW_OK;
+    }
+    tw_status status = tw_section_load(trial->strung, TW_NONE, trial->length_m, NULL, 0);
+    if (status == TW_OK) {
+        status = tw_section_solve(trial->strung, options, 0);
+        trial->settles++;
+    }
+    trial->strung_ready = status == TW_OK;
+    return status;
+}
+
+static int needs_strung(const tw_project *project, size_t condition)
+{
+    const tw_condition *state = &project->conditions[condition];
+    for (size_t i = 0; i < state->load_count; i++) {
+        if (project->loads[state->load_first + i].place == TW_PLACE_STATION) {
+            return 1;
+        }
+    }
+    return 0;
+}
+
+static tw_status solve_into(tw_trial *trial, tw_section *section, size_t condition, const tw_options *options, int warm,
+                            int with_addition)
+{
+    const tw_section *strung = NULL;
+    tw_status status = TW_OK;
+    if (needs_strung(trial->project, condition)) {
+        status = tw_trial_strung(trial, options, &strung);
+    }
+    if (status == TW_OK) {
+        status = tw_section_load(section, condition, trial->length_m, strung, with_addition);
+    }
+    if (status == TW_OK) {
+        status = tw_section_solve(section, options, warm);
+        trial->settles++;
+    }
+    return status;
+}
+
+tw_status tw_trial_section(tw_trial *trial, size_t condition, const tw_options *options, const tw_section **section)
+{
+    *section = trial->sections[condition];
+    if (trial->solved[condition]) {
+        return TW_OK;
+    }
+    tw_status status = solve_into(trial, trial->sections[condition], condition, options, trial->warm[condition], 1);
+    trial->solved[condition] = trial->warm[condition] = status == TW_OK;
+    return status;
+}
+
+static tw_status without_addition(tw_trial *trial, size_t condition, const tw_options *options,
+                                  const tw_section **section)
+{
+    if (trial->project->conditions[condition].resultant_addition_N_per_m == 0.0) {
+        return tw_trial_section(trial, condition, options, section);
+    }
+    *section = trial->bare;
+    if (trial->bare_condition == condition) {
+        return TW_OK;
+    }
+    tw_status status = solve_into(trial, trial->bare, condition, options, 0, 0);
+    trial->bare_condition = status == TW_OK ? condition : TW_NONE;
+    return status;
+}
+
+tw_status tw_trial_judge(tw_trial *trial, size_t limit, size_t condition, const tw_options *options,
+                         tw_verdict *verdict)
+{
+    const tw_section *section = NULL;
+    const tw_section *bare = NULL;
+    tw_status status = tw_trial_section(trial, condition, options, &section);
+    bare = section;
+    if (status == TW_OK && trial->project->limits[limit].kind == TW_LIMIT_SWING) {
+        status = without_addition(trial, condition, options, &bare);
+    }
+    if (status == TW_OK) {
+        *verdict = tw_limit_judge(trial->project, limit, section, bare);
+    }
+    return status;
+}

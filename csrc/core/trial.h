@@ -1,0 +1,44 @@
+/* trial: one set of natural lengths tried in every condition; the workspace of all searches.
+ *
+ * Each condition keeps its own section, so that the next pull starts from the last one's equilibrium. Nothing is
+ * allocated after creation.
+ */
+#ifndef TW_TRIAL_H
+#define TW_TRIAL_H
+
+#include "limit.h"
+#include "line.h"
+#include "section.h"
+
+typedef struct tw_trial {
+    const tw_project *project;
+    double pull_N;         /* NaN: natural lengths were given */
+    double *length_m;      /* [support_count - 1] owned */
+    double *string_work;   /* scratch of stringing; owned */
+    tw_section *strung;    /* bare, at stringing; solved on demand */
+    int strung_ready;
+    tw_section **sections; /* [condition_count] owned */
+    int *solved;           /* [condition_count] 1: sections[c] is at the present lengths */
+    int *warm;             /* [condition_count] 1: its pulls are a start */
+    tw_section *bare;      /* the condition without its resultant addition, for swing */
+    size_t bare_condition; /* which one it holds, or TW_NONE */
+    size_t settles;        /* sections solved so far */
+} tw_trial;
+
+tw_trial *tw_trial_create(const tw_project *project);
+void tw_trial_free(tw_trial *trial);
+
+/* String to a pull, or by the project's own rule when pull is NaN. Forgets what was solved. */
+tw_status tw_trial_string(tw_trial *trial, double pull_N);
+
+/* The bare strung line, solved. */
+tw_status tw_trial_strung(tw_trial *trial, const tw_options *options, const tw_section **section);
+
+/* A condition, solved at the present lengths. */
+tw_status tw_trial_section(tw_trial *trial, size_t condition, const tw_options *options, const tw_section **section);
+
+/* One limit in one condition. */
+tw_status tw_trial_judge(tw_trial *trial, size_t limit, size_t condition, const tw_options *options,
+                         tw_verdict *verdict);
+
+#endif
