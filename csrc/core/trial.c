@@ -122,8 +122,7 @@ tw_status tw_trial_section(tw_trial *trial, size_t condition, const tw_options *
     return status;
 }
 
-static tw_status without_addition(tw_trial *trial, size_t condition, const tw_options *options,
-                                  const tw_section **section)
+tw_status tw_trial_bare(tw_trial *trial, size_t condition, const tw_options *options, const tw_section **section)
 {
     if (trial->project->conditions[condition].resultant_addition_N_per_m == 0.0) {
         return tw_trial_section(trial, condition, options, section);
@@ -145,7 +144,7 @@ tw_status tw_trial_judge(tw_trial *trial, size_t limit, size_t condition, const 
     tw_status status = tw_trial_section(trial, condition, options, &section);
     bare = section;
     if (status == TW_OK && trial->project->limits[limit].kind == TW_LIMIT_SWING) {
-        status = without_addition(trial, condition, options, &bare);
+        status = tw_trial_bare(trial, condition, options, &bare);
     }
     if (status == TW_OK) {
         *verdict = tw_limit_judge(trial->project, limit, section, bare);

@@ -37,6 +37,9 @@ tw_status tw_trial_strung(tw_trial *trial, const tw_options *options, const tw_s
 /* A condition, solved at the present lengths. */
 tw_status tw_trial_section(tw_trial *trial, size_t condition, const tw_options *options, const tw_section **section);
 
+/* The same without its resultant addition, from which swing is taken. */
+tw_status tw_trial_bare(tw_trial *trial, size_t condition, const tw_options *options, const tw_section **section);
+
 /* One limit in one condition. */
 tw_status tw_trial_judge(tw_trial *trial, size_t limit, size_t condition, const tw_options *options,
                          tw_verdict *verdict);

@@ -1,0 +1,331 @@
+#include "check.h"
+
+#include <math.h>
+#include <string.h>
+
+
+enum {
+    OPEN_LOW = 1,  /* the low end is excluded */
+    OPTIONAL = 2,  /* NaN stands for "not given" */
+    INFINITE = 4   /* infinity is allowed */
+};
+
+typedef struct range {
+    char field[32];
+    size_t offset;
+    double low, high;
+    int flags;
+    char expected[72];
+} range;
+
+#define LINE(field) #field, offsetof(tw_line, field)
+static const range line_rules[] = {
+    {LINE(diameter_m), 0.0, 2.0, 0, "a diameter from 0 to 2 m"},
+    {LINE(weight_N_per_m), 0.0, 1e6, 0, "a weight from 0 to 1e6 N/m"},
+    {LINE(stiffness_N), 0.0, 1e14, OPEN_LOW, "a stiffness EA above 0, up to 1e14 N"},
+    {LINE(expansion_per_K), -1e-3, 1e-3, 0, "an expansion within 1e-3 per kelvin"},
+    {LINE(breaking_strength_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a breaking strength above 0"},
+};
+
+#define SUPPORT(field) #field, offsetof(tw_support, field)
+static const range support_rules[] = {
+    {SUPPORT(station_m), -1e7, 1e7, 0, "a station within 10,000 km"},
+    {SUPPORT(offset_m), -1e6, 1e6, 0, "an offset within 1,000 km"},
+    {SUPPORT(elevation_m), -2e4, 2e4, 0, "an elevation within 20 km"},
+    {SUPPORT(height_m), -2e4, 2e4, OPTIONAL, "a height within 20 km"},
+    {SUPPORT(hanger_length_m), 0.0, 1e3, 0, "a hanger length from 0 to 1 km"},
+    {SUPPORT(hanger_weight_N), 0.0, 1e7, 0, "a hanger weight from 0 to 1e7 N"},
+    {SUPPORT(stiffness_along_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
+    {SUPPORT(stiffness_across_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
+    {SUPPORT(capacity_along_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
+    {SUPPORT(capacity_across_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
+    {SUPPORT(capacity_down_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
+    {SUPPORT(capacity_up_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
+};
+
+#define CROSSING(field) #field, offsetof(tw_crossing, field)
+static const range crossing_rules[] = {
+    {CROSSING(from_m), -1e7, 1e7, 0, "a station within 10,000 km"},
+    {CROSSING(to_m), -1e7, 1e7, 0, "a station within 10,000 km"},
+    {CROSSING(top_m), -2e4, 2e4, 0, "an elevation within 20 km"},
+};
+
+#define CONDITION(field) #field, offsetof(tw_condition, field)
+static const range condition_rules[] = {
+    {CONDITION(temperature_degC), -273.15, 2000.0, 0, "a temperature from -273.15 to 2000 degC"},
+    {CONDITION(ice_thickness_m), 0.0, 2.0, 0, "a radial ice thickness from 0 to 2 m"},
+    {CONDITION(ice_density_kg_per_m3), 0.0, 2000.0, 0, "an ice density from 0 to 2000 kg/m3"},
+    {CONDITION(wind_pressure_Pa), 0.0, 1e6, OPTIONAL, "a wind pressure from 0 to 1e6 Pa"},
+    {CONDITION(wind_speed_m_per_s), 0.0, 300.0, OPTIONAL, "a wind speed from 0 to 300 m/s"},
+    {CONDITION(air_density_kg_per_m3), 0.0, 10.0, 0, "an air density from 0 to 10 kg/m3"},
+    {CONDITION(wind_drag), 0.0, 10.0, 0, "a drag coefficient from 0 to 10"},
+    {CONDITION(wind_angle_rad), -6.3, 6.3, 0, "an angle within a full turn"},
+    {CONDITION(resultant_addition_N_per_m), 0.0, 1e6, 0, "an addition from 0 to 1e6 N/m"},
+};
+
+#define LOAD(field) #field, offsetof(tw_load, field)
+static const range load_rules[] = {
+    {LOAD(from_m), -1e7, 1e7, OPTIONAL, "a place within 10,000 km"},
+    {LOAD(to_m), -1e7, 1e7, OPTIONAL, "a place within 10,000 km"},
+    {LOAD(vector[0]), -1e9, 1e9, 0, "a load within 1e9 N"},
+    {LOAD(vector[1]), -1e9, 1e9, 0, "a load within 1e9 N"},
+    {LOAD(vector[2]), -1e9, 1e9, 0, "a load within 1e9 N"},
+};
+
+#define MARK(field) #field, offsetof(tw_mark, field)
+static const range mark_rules[] = {
+    {MARK(at_m), -1e7, 1e7, 0, "a place within 10,000 km"},
+};
+
+#define LIMIT(field) #field, offsetof(tw_limit, field)
+static const range limit_rules[] = {
+    {LIMIT(least), 0.0, 1e12, OPTIONAL, "a least value from 0"},
+    {LIMIT(most), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a most value above 0"},
+    {LIMIT(share), 0.0, 100.0, OPEN_LOW | OPTIONAL, "a share above 0"},
+    {LIMIT(from_m), -1e7, 1e7, OPTIONAL, "a station within 10,000 km"},
+    {LIMIT(to_m), -1e7, 1e7, OPTIONAL, "a station within 10,000 km"},
+};
+
+#define OPTION(field) #field, offsetof(tw_options, field)
+static const range option_rules[] = {
+    {OPTION(gap_relative), 0.0, 1.0, OPEN_LOW, "a gap above 0, up to 1"},
+    {OPTION(residual_relative), 0.0, 1.0, OPEN_LOW, "a residual above 0, up to 1"},
+    {OPTION(closing_relative), 0.0, 1.0, OPEN_LOW, "a closing error above 0, up to 1"},
+    {OPTION(seconds_most), 0.0, 1e9, OPEN_LOW, "a time above 0 s"},
+};
+
+static void copy_text(char *to, const char *from, size_t size)
+{
+    size_t length = strlen(from);
+    memcpy(to, from, length < size ? length : size - 1);
+}
+
+static tw_status fail(tw_fault *fault, const char *table, size_t index, const char *field, const char *expected)
+{
+    memset(fault, 0, sizeof *fault);
+    copy_text(fault->table, table, sizeof fault->table);
+    copy_text(fault->field, field, sizeof fault->field);
+    copy_text(fault->expected, expected, sizeof fault->expected);
+    fault->index = index;
+    return TW_ERROR_RANGE;
+}
+
+static int holds(const range *r, double value)
+{
+    if (isnan(value)) {
+        return r->flags & OPTIONAL;
+    }
+    if (isinf(value)) {
+        return value > 0.0 && (r->flags & INFINITE);
+    }
+    return (r->flags & OPEN_LOW ? value > r->low : value >= r->low) && value <= r->high;
+}
+
+static tw_status check_rows(const range *rules, size_t rule_count, const char *table, const void *rows, size_t size,
+                            size_t count, int single, tw_fault *fault)
+{
+    for (size_t row = 0; row < count; row++) {
+        for (size_t i = 0; i < rule_count; i++) {
+            double value;
+            memcpy(&value, (const char *)rows + row * size + rules[i].offset, sizeof value);
+            if (!holds(&rules[i], value)) {
+                return fail(fault, table, single ? TW_NONE : row, rules[i].field, rules[i].expected);
+            }
+        }
+    }
+    return TW_OK;
+}
+
+#define COUNT(rules) (sizeof(rules) / sizeof(rules)[0])
+#define CHECK_ROWS(rules, table, rows, count) \
+    check_rows(rules, COUNT(rules), table, rows, sizeof *(rows), count, 0, fault)
+
+static tw_status check_numbers(const tw_project *p, tw_fault *fault)
+{
+    tw_status status = check_rows(line_rules, COUNT(line_rules), "line", &p->line, sizeof p->line, 1, 1, fault);
+    if (status == TW_OK) {
+        status = CHECK_ROWS(support_rules, "supports", p->supports, p->support_count);
+    }
+    if (status == TW_OK) {
+        status = CHECK_ROWS(crossing_rules, "crossings", p->crossings, p->crossing_count);
+    }
+    if (status == TW_OK) {
+        status = CHECK_ROWS(condition_rules, "conditions", p->conditions, p->condition_count);
+    }
+    if (status == TW_OK) {
+        status = CHECK_ROWS(load_rules, "loads", p->loads, p->load_count);
+    }
+    if (status == TW_OK) {
+        status = CHECK_ROWS(mark_rules, "marks", p->marks, p->mark_count);
+    }
+    if (status == TW_OK) {
+        status = CHECK_ROWS(limit_rules, "limits", p->limits, p->limit_count);
+    }
+    return status;
+}
+
+static tw_status check_support(const tw_project *p, size_t j, tw_fault *fault)
+{
+    const tw_support *support = &p->supports[j];
+    int end = j == 0 || j + 1 == p->support_count;
+    if (j > 0 && !(support->station_m > support[-1].station_m)) {
+        return fail(fault, "supports", j, "station_m", "stations that grow from support to support");
+    }
+    switch (support->hold) {
+    case TW_HOLD_ANCHOR: return TW_OK;
+    case TW_HOLD_POST:
+        if (isnan(support->stiffness_along_N_per_m) || isnan(support->stiffness_across_N_per_m)) {
+            return fail(fault, "supports", j, "stiffness_along_N_per_m", "both stiffnesses of a post");
+        }
+        return TW_OK;
+    case TW_HOLD_HANGER:
+        if (!(support->hanger_length_m > 0.0)) {
+            return fail(fault, "supports", j, "hanger_length_m", "a hanger length above 0");
+        }
+        return end ? fail(fault, "supports", j, "hold", "an anchor or a post at the line's ends") : TW_OK;
+    case TW_HOLD_SHEAVE: break;
+    }
+    return fail(fault, "supports", j, "hold", "an anchor, a hanger or a post");
+}
+
+static tw_status check_ground(const tw_project *p, tw_fault *fault)
+{
+    for (size_t k = 0; k < p->ground_count; k++) {
+        if (!isfinite(p->ground_station_m[k]) || (k > 0 && !(p->ground_station_m[k] > p->ground_station_m[k - 1]))) {
+            return fail(fault, "ground", k, "station_m", "finite stations that grow from point to point");
+        }
+        if (!(fabs(p->ground_elevation_m[k]) <= 2e4)) {
+            return fail(fault, "ground", k, "elevation_m", "an elevation within 20 km");
+        }
+    }
+    return p->ground_count == 1 ? fail(fault, "ground", 0, "station_m", "at least two points, or none") : TW_OK;
+}
+
+static tw_status check_conditions(const tw_project *p, tw_fault *fault)
+{
+    for (size_t c = 0; c < p->condition_count; c++) {
+        const tw_condition *state = &p->conditions[c];
+        if (state->load_first > p->load_count || state->load_count > p->load_count - state->load_first) {
+            return fail(fault, "conditions", c, "loads", "loads that exist");
+        }
+        if (p->line.expansion_per_K * (state->temperature_degC - p->stringing.temperature_degC) <= -0.5) {
+            return fail(fault, "conditions", c, "temperature_degC", "a thermal strain above -0.5");
+        }
+    }
+    for (size_t i = 0; i < p->load_count; i++) {
+        const tw_load *load = &p->loads[i];
+        int placed = load->place != TW_PLACE_WHOLE;
+        if (load->is_point ? !placed || isnan(load->from_m)
+                           : placed && !(load->from_m < load->to_m)) {
+            return fail(fault, "loads", i, "from_m", "a point load with its place, or a stretch with from before to");
+        }
+    }
+    return TW_OK;
+}
+
+static tw_status check_limit(const tw_project *p, size_t i, tw_fault *fault)
+{
+    const tw_limit *limit = &p->limits[i];
+    int most = !isnan(limit->most), least = !isnan(limit->least), share = !isnan(limit->share);
+    int by_least = limit->kind == TW_LIMIT_CLEARANCE || limit->kind == TW_LIMIT_UPLIFT;
+    if (by_least && (!least || most)) {
+        return fail(fault, "limits", i, "least", "a least value, and no most");
+    }
+    if (limit->kind == TW_LIMIT_SAG) {
+        return most || least ? TW_OK : fail(fault, "limits", i, "most", "a most or a least value");
+    }
+    if (!by_least && most == share) {
+        return fail(fault, "limits", i, "most", "either a most value or a share");
+    }
+    if (limit->kind == TW_LIMIT_TENSION && share && isnan(p->line.breaking_strength_N)) {
+        return fail(fault, "limits", i, "share", "a breaking strength for the share to be of");
+    }
+    if (limit->kind == TW_LIMIT_CLEARANCE) {
+        if (limit->crossing != TW_NONE && limit->crossing >= p->crossing_count) {
+            return fail(fault, "limits", i, "crossing", "a crossing that exists");
+        }
+        if (limit->crossing == TW_NONE && p->ground_count == 0) {
+            return fail(fault, "limits", i, "crossing", "a ground profile to keep clear of");
+        }
+    }
+    return TW_OK;
+}
+
+static tw_status check_stringing(const tw_project *p, tw_fault *fault)
+{
+    const tw_stringing *rule = &p->stringing;
+    if (!(rule->temperature_degC >= -273.15 && rule->temperature_degC <= 2000.0)) {
+        return fail(fault, "stringing", TW_NONE, "temperature_degC", "a temperature from -273.15 to 2000 degC");
+    }
+    if (!(rule->tolerance >= 0.0 && rule->tolerance < 0.9)) {
+        return fail(fault, "stringing", TW_NONE, "tolerance", "a tolerance from 0 to 0.9");
+    }
+    switch (rule->rule) {
+    case TW_STRING_NONE: return TW_OK;
+    case TW_STRING_SPAN_LENGTHS:
+        for (size_t k = 0; k + 1 < p->support_count; k++) {
+            if (!(rule->lengths_m[k] > 0.0 && rule->lengths_m[k] <= 1e7)) {
+                return fail(fault, "stringing", k, "lengths_m", "a natural length above 0, up to 10,000 km");
+            }
+        }
+        return TW_OK;
+    case TW_STRING_TENSION:
+        if (rule->index >= p->support_count) {
+            return fail(fault, "stringing", TW_NONE, "index", "a support that exists");
+        }
+        break;
+    case TW_STRING_SAG:
+        if (rule->index + 1 >= p->support_count) {
+            return fail(fault, "stringing", TW_NONE, "index", "a span that exists");
+        }
+        break;
+    case TW_STRING_PULL:
+    case TW_STRING_TOTAL_LENGTH: break;
+    }
+    return rule->value > 0.0 && rule->value <= 1e12 ? TW_OK
+                                                    : fail(fault, "stringing", TW_NONE, "value", "a value above 0");
+}
+
+tw_status tw_check_project(const tw_project *project, tw_fault *fault)
+{
+    tw_status status = TW_OK;
+    memset(fault, 0, sizeof *fault);
+    if (project->support_count < 2 || project->condition_count < 1) {
+        return fail(fault, project->support_count < 2 ? "supports" : "conditions", TW_NONE, "count",
+                    "at least two supports and one condition");
+    }
+    status = check_numbers(project, fault);
+    for (size_t j = 0; status == TW_OK && j < project->support_count; j++) {
+        status = check_support(project, j, fault);
+    }
+    if (status == TW_OK) {
+        status = check_ground(project, fault);
+    }
+    if (status == TW_OK) {
+        status = check_conditions(project, fault);
+    }
+    for (size_t k = 0; status == TW_OK && k < project->crossing_count; k++) {
+        if (!(project->crossings[k].from_m < project->crossings[k].to_m)) {
+            status = fail(fault, "crossings", k, "to_m", "a station beyond from");
+        }
+    }
+    for (size_t i = 0; status == TW_OK && i < project->limit_count; i++) {
+        status = check_limit(project, i, fault);
+    }
+    return status == TW_OK ? check_stringing(project, fault) : status;
+}
+
+tw_status tw_check_options(const tw_options *options, tw_fault *fault)
+{
+    memset(fault, 0, sizeof *fault);
+    if (options->elements_per_span < 1 || options->elements_most < options->elements_per_span) {
+        return fail(fault, "options", TW_NONE, "elements_per_span", "from 1 to elements_most");
+    }
+    if (options->elements_most > (1u << 24) || options->evaluations_most < 1 || options->newton_most < 1) {
+        return fail(fault, "options", TW_NONE, "elements_most", "up to 16,777,216, and at least one evaluation and step");
+    }
+    if (options->scan_points < 4 || options->scan_points > 100000) {
+        return fail(fault, "options", TW_NONE, "scan_points", "from 4 to 100,000");
+    }
+    return check_rows(option_rules, COUNT(option_rules), "options", options, sizeof *options, 1, 1, fault);
+}

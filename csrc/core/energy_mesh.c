@@ -1,0 +1,160 @@
+/* energy_mesh: makes the discretised line of energy.h out of the exact line of section.h. */
+#include "energy.h"
+
+#include <math.h>
+
+#include "alloc.h"
+#include "sum.h"
+#include "vector.h"
+
+enum { BLOCK = TW_BLOCKTRI_SIZE };
+
+/* A mesh leaves the force of a link within about 1e-8 of its own size; k l is this many times EA + F, so that the link's
+ * length is then right to 1e-9. */
+static const double link_over_line = 10.0;
+
+/* A piece without length has no element; its point force falls on the node before. */
+static size_t piece_elements(const tw_piece *piece, double span_length_m, size_t per_span)
+{
+    double share = (double)per_span * piece->length_m / span_length_m;
+    if (!(piece->length_m > 0.0)) {
+        return 0;
+    }
+    return share > 1.0 ? (size_t)(share + 0.5) : 1;
+}
+
+size_t tw_energy_elements(const tw_section *section, size_t per_span)
+{
+    size_t count = 0;
+    for (size_t k = 0; k < section->span_count; k++) {
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            count += piece_elements(&section->pieces[p], section->length_m[k], per_span);
+        }
+    }
+    return count;
+}
+
+static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j)
+{
+    const tw_support *support = &section->project->supports[j];
+    const double point[3] = {support->station_m, support->offset_m, support->elevation_m};
+    const double stiffness[2] = {support->stiffness_along_N_per_m, support->stiffness_across_N_per_m};
+    hold->kind = support->hold;
+    for (int i = 0; i < 3; i++) {
+        int elastic = hold->kind == TW_HOLD_POST && i < 2 && isfinite(stiffness[i]);
+        hold->fixed[i] = hold->kind != TW_HOLD_HANGER && !elastic;
+        hold->place[i] = hold->fixed[i] ? point[i] : section->clamp[3 * j + (size_t)i];
+        hold->offset[i] = hold->place[i] - point[i];
+        if (elastic) {
+            hold->stiffness[i] = stiffness[i];
+        }
+    }
+    if (hold->kind == TW_HOLD_HANGER) {
+        hold->link_m = support->hanger_length_m;
+        hold->link_over_m = tw_norm(hold->offset) - hold->link_m;
+        hold->link_force_N = tw_norm(section->hold_force + 3 * j);
+        hold->link_stiffness =
+            link_over_line * (section->material.stiffness_N + hold->link_force_N) / hold->link_m;
+    }
+}
+
+/* One element that starts at natural length s of the piece: edges, length, its share of the uniform load. */
+static void mesh_element(tw_energy *energy, size_t element, const tw_piece *piece, double s, double length)
+{
+    double *edge = energy->edge + BLOCK * element;
+    double *node = energy->load + BLOCK * element + 3; /* start, middle, end */
+    double tension[3];
+    energy->length_m[element] = length;
+    for (int half = 0; half < 2; half++) {
+        tw_piece_tension(piece, s + 0.5 * length * half, tension);
+        tw_piece_displacement(&energy->material, tension, piece->load, 0.5 * length, edge + 3 * half, NULL);
+    }
+    tw_axpy(node, length / 6.0, piece->load, node);
+    tw_axpy(node + 3, length / 1.5, piece->load, node + 3);
+    tw_axpy(node + 6, length / 6.0, piece->load, node + 6);
+}
+
+/* The edges of a span must reach from clamp to clamp; what they miss (the exact line's closing error and rounding) is
+ * spread over them, so that the bracket is honest whatever the exact line was. */
+static void close_span(tw_energy *energy, const tw_energy_hold *from, const tw_energy_hold *to, double span_length_m)
+{
+    tw_sum reached[3] = {{0.0, 0.0}};
+    double missing[3];
+    for (size_t e = 2 * from->block; e < 2 * to->block; e++) {
+        for (int i = 0; i < 3; i++) {
+            tw_sum_add(&reached[i], energy->edge[3 * e + (size_t)i]);
+        }
+    }
+    for (int i = 0; i < 3; i++) {
+        missing[i] = (to->place[i] - from->place[i]) - tw_sum_value(&reached[i]);
+    }
+    for (size_t e = 2 * from->block; e < 2 * to->block; e++) {
+        double *edge = energy->edge + 3 * e;
+        tw_axpy(edge, 0.5 * energy->length_m[e / 2] / span_length_m, missing, edge);
+    }
+}
+
+static void mesh_span(tw_energy *energy, const tw_section *section, size_t span, size_t per_span)
+{
+    size_t element = energy->holds[span].block;
+    for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
+        const tw_piece *piece = &section->pieces[p];
+        size_t count = piece_elements(piece, section->length_m[span], per_span);
+        for (size_t i = 0; i < count; i++) {
+            double length = piece->length_m / (double)count;
+            mesh_element(energy, element++, piece, length * (double)i, length);
+        }
+        double *end = energy->load + BLOCK * element + 3;
+        tw_axpy(end, 1.0, piece->force, end);
+    }
+    energy->holds[span + 1].block = element;
+    close_span(energy, &energy->holds[span], &energy->holds[span + 1], section->length_m[span]);
+}
+
+static void mesh_section(tw_energy *energy, const tw_section *section, size_t per_span)
+{
+    for (size_t j = 0; j < energy->hold_count; j++) {
+        place_hold(&energy->holds[j], section, j);
+    }
+    for (size_t k = 0; k < section->span_count; k++) {
+        mesh_span(energy, section, k, per_span);
+    }
+    for (size_t j = 0; j < energy->hold_count; j++) {
+        double *end = energy->load + BLOCK * energy->holds[j].block + 3;
+        tw_axpy(end, 1.0, section->clamp_load + 3 * j, end);
+    }
+}
+
+tw_energy *tw_energy_create(const tw_section *section, size_t per_span)
+{
+    tw_energy *energy = tw_calloc(1, sizeof *energy);
+    if (energy == NULL) {
+        return NULL;
+    }
+    energy->material = section->material;
+    energy->element_count = tw_energy_elements(section, per_span);
+    energy->hold_count = section->span_count + 1;
+    energy->edge = tw_calloc(energy->element_count, BLOCK * sizeof(double));
+    energy->length_m = tw_calloc(energy->element_count, sizeof(double));
+    energy->load = tw_calloc(energy->element_count + 1, BLOCK * sizeof(double));
+    energy->holds = tw_calloc(energy->hold_count, sizeof *energy->holds);
+    if (energy->edge == NULL || energy->length_m == NULL || energy->load == NULL || energy->holds == NULL) {
+        goto fail;
+    }
+    mesh_section(energy, section, per_span);
+    return energy;
+fail:
+    tw_energy_free(energy);
+    return NULL;
+}
+
+void tw_energy_free(tw_energy *energy)
+{
+    if (energy != NULL) {
+        tw_free(energy->edge);
+        tw_free(energy->length_m);
+        tw_free(energy->load);
+        tw_free(energy->holds);
+        tw_free(energy);
+    }
+}

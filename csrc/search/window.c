@@ -1,0 +1,281 @@
+#include "window.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "alloc.h"
+#include "clock.h"
+#include "settle.h"
+#include "stringing.h"
+#include "window_search.h"
+
+static size_t count_rows(const tw_project *project)
+{
+    size_t rows = 0;
+    for (size_t i = 0; i < project->limit_count * project->condition_count; i++) {
+        rows += project->limit_applies[i] != 0;
+    }
+    return rows;
+}
+
+static size_t curve_capacity(const tw_options *options)
+{
+    return 2 * options->scan_points + 8;
+}
+
+static void list_rows(const tw_project *project, tw_window *window)
+{
+    size_t r = 0;
+    for (size_t i = 0; i < project->limit_count; i++) {
+        for (size_t c = 0; c < project->condition_count; c++) {
+            if (project->limit_applies[i * project->condition_count + c]) {
+                window->row_limit[r] = i;
+                window->row_condition[r++] = c;
+            }
+        }
+    }
+}
+
+tw_window *tw_window_create(const tw_project *project, const tw_options *options)
+{
+    size_t rows = count_rows(project);
+    size_t room = rows ? rows : 1;
+    size_t pulls = curve_capacity(options);
+    tw_window *window = tw_calloc(1, sizeof *window);
+    if (!window) {
+        return NULL;
+    }
+    window->row_count = rows;
+    window->interval_N = tw_calloc(2 * pulls, sizeof(double));
+    window->conflict = tw_calloc(room, sizeof *window->conflict);
+    window->relax = tw_calloc(project->limit_count + 2 * TW_WINDOW_RELAX_SUPPORTS_MOST, sizeof *window->relax);
+    window->row_limit = tw_calloc(room, sizeof(size_t));
+    window->row_condition = tw_calloc(room, sizeof(size_t));
+    window->curve_pull_N = tw_calloc(pulls, sizeof(double));
+    window->curve = tw_calloc(pulls * room, sizeof(double));
+    if (!window->interval_N || !window->conflict || !window->relax || !window->row_limit || !window->row_condition
+        || !window->curve_pull_N || !window->curve) {
+        tw_window_free(window);
+        return NULL;
+    }
+    list_rows(project, window);
+    return window;
+}
+
+void tw_window_free(tw_window *window)
+{
+    if (!window) {
+        return;
+    }
+    tw_free(window->interval_N);
+    tw_free(window->conflict);
+    tw_free(window->relax);
+    tw_free(window->row_limit);
+    tw_free(window->row_condition);
+    tw_free(window->curve_pull_N);
+    tw_free(window->curve);
+    tw_free(window);
+}
+
+static void run_free(tw_window_run *run)
+{
+    tw_trial_free(run->trial);
+    tw_free(run->supports);
+    tw_free(run->u);
+    tw_free(run->masked);
+}
+
+static tw_status run_create(const tw_project *project, const tw_options *options, tw_optimiser optimiser,
+                            tw_window *window, tw_window_run *run)
+{
+    memset(run, 0, sizeof *run);
+    run->project = *project;
+    run->options = options;
+    run->optimiser = optimiser;
+    run->window = window;
+    run->curve_capacity = curve_capacity(options);
+    run->best_f = INFINITY;
+    run->best_pull_N = NAN;
+    run->deadline = tw_clock_deadline(options->seconds_most);
+    run->supports = tw_calloc(project->support_count, sizeof *run->supports);
+    run->u = tw_calloc(window->row_count + 1, sizeof(double));
+    run->masked = tw_calloc(window->row_count + 1, 1);
+    if (!run->supports || !run->u || !run->masked) {
+        goto fail;
+    }
+    memcpy(run->supports, project->supports, project->support_count * sizeof *run->supports);
+    run->project.supports = run->supports;
+    run->trial = tw_trial_create(&run->project);
+    if (!run->trial) {
+        goto fail;
+    }
+    return TW_OK;
+fail:
+    run_free(run);
+    return TW_ERROR_MEMORY;
+}
+
+/* The row that governs at a pull, with its verdict. */
+static void govern(tw_window_run *run, double pull_N, size_t *limit, size_t *condition, tw_verdict *verdict)
+{
+    size_t row;
+    tw_window_try(run, pull_N, run->u);
+    tw_window_worst(run, run->u, &row);
+    *limit = *condition = TW_NONE;
+    if (row != TW_NONE && run->stop == TW_OK) {
+        tw_window_row(run, row, verdict);
+        *limit = run->window->row_limit[row];
+        *condition = run->window->row_condition[row];
+    }
+}
+
+static void fill_end(tw_window_run *run, double pull_N, int at_range_end, tw_window_end *end)
+{
+    end->pull_N = pull_N;
+    govern(run, pull_N, &end->limit, &end->condition, &end->verdict);
+    if (at_range_end) {
+        end->limit = end->condition = TW_NONE;
+    }
+}
+
+static void no_verdict(tw_verdict *verdict)
+{
+    const tw_verdict nothing = {.value = NAN, .allowed = NAN, .margin = NAN, .utilisation = NAN, .span = TW_NONE,
+                                .support = TW_NONE, .station_m = NAN};
+    *verdict = nothing;
+}
+
+/* The interval with the lowest worst utilisation over the tolerance is the window. */
+static void choose(tw_window_run *run)
+{
+    tw_window *w = run->window;
+    double tolerance = run->project.stringing.tolerance;
+    size_t chosen = 0;
+    w->specify.worst_utilisation = INFINITY;
+    w->specify.tolerance = tolerance;
+    for (size_t i = 0; i < w->interval_count && run->stop == TW_OK; i++) {
+        double pull;
+        double f = tw_window_minimax(run, w->interval_N[2 * i], w->interval_N[2 * i + 1], tolerance, &pull);
+        if (f < w->specify.worst_utilisation) {
+            w->specify.worst_utilisation = f;
+            w->specify.pull_N = pull;
+            chosen = i;
+        }
+    }
+    double low = w->interval_N[2 * chosen], high = w->interval_N[2 * chosen + 1];
+    fill_end(run, low, low <= w->range_low_N, &w->low);
+    fill_end(run, high, high >= w->range_high_N * (1.0 - 1e-12), &w->high);
+    govern(run, w->specify.pull_N, &w->specify.limit, &w->specify.condition, &w->specify.verdict);
+}
+
+/* Every condition at one pull, settled with its bracket. */
+static tw_status verify_pull(tw_window_run *run, double pull_N)
+{
+    tw_window *w = run->window;
+    tw_status status = tw_trial_string(run->trial, pull_N);
+    for (size_t c = 0; status == TW_OK && c < run->project.condition_count; c++) {
+        const tw_section *section;
+        tw_settled settled = {0};
+        status = tw_trial_section(run->trial, c, run->options, &section);
+        if (status == TW_OK) {
+            status = tw_settle(section, run->options, &settled);
+            w->gap_relative = isnan(w->gap_relative) ? settled.gap_relative : fmax(w->gap_relative, settled.gap_relative);
+        }
+    }
+    return status;
+}
+
+static tw_status verify(tw_window_run *run)
+{
+    tw_window *w = run->window;
+    const double pulls[3] = {w->low.pull_N, w->high.pull_N, w->specify.pull_N};
+    tw_status status = TW_OK;
+    for (int i = 0; status == TW_OK && i < 3; i++) {
+        status = verify_pull(run, pulls[i]);
+    }
+    w->verified = status == TW_OK;
+    return status;
+}
+
+/* Judged on every row once more, without the optimiser: what does not hold is no window. */
+static tw_status confirm(tw_window_run *run)
+{
+    tw_window *w = run->window;
+    const double pulls[3] = {w->low.pull_N, w->high.pull_N, w->specify.pull_N};
+    for (int i = 0; i < 3; i++) {
+        if (run->stop == TW_OK && !(tw_window_try(run, pulls[i], run->u) <= 1.0 + 2e-9)) {
+            return TW_NOT_SETTLED;
+        }
+    }
+    return run->stop;
+}
+
+static void reset(const tw_window_run *run)
+{
+    tw_window *w = run->window;
+    w->interval_count = w->price_count = w->conflict_count = w->relax_count = w->curve_count = 0;
+    w->evaluations = w->settles = 0;
+    w->verified = 0;
+    w->gap_relative = NAN;
+    w->low.pull_N = w->high.pull_N = w->specify.pull_N = w->specify.worst_utilisation = NAN;
+    no_verdict(&w->low.verdict);
+    no_verdict(&w->high.verdict);
+    no_verdict(&w->specify.verdict);
+    w->low.limit = w->high.limit = w->specify.limit = TW_NONE;
+    w->low.condition = w->high.condition = w->specify.condition = TW_NONE;
+    tw_stringing_range(&run->project, &w->range_low_N, &w->range_high_N);
+}
+
+/* A search that was stopped hands over the best pull it tried, and no window. */
+static void best_so_far(tw_window_run *run)
+{
+    tw_window *w = run->window;
+    w->interval_count = w->conflict_count = w->relax_count = w->price_count = 0;
+    w->specify.pull_N = run->best_pull_N;
+    w->specify.worst_utilisation = isfinite(run->best_f) ? run->best_f : (double)NAN;
+    w->specify.tolerance = 0.0;
+}
+
+static tw_status search(tw_window_run *run)
+{
+    tw_window *w = run->window;
+    tw_window_scan(run);
+    w->interval_count = tw_window_intervals(run, w->interval_N, run->curve_capacity);
+    if (run->stop != TW_OK) {
+        return run->stop;
+    }
+    if (w->interval_count == 0) {
+        tw_window_explain_shut(run);
+        return run->stop == TW_OK ? TW_SHUT : run->stop;
+    }
+    choose(run);
+    tw_status status = confirm(run);
+    if (status == TW_OK) {
+        tw_window_prices(run);
+        status = run->stop;
+    }
+    return status == TW_OK && run->options->verify ? verify(run) : status;
+}
+
+tw_status tw_window_search_with(const tw_project *project, const tw_options *options, tw_optimiser optimiser,
+                                tw_window *window)
+{
+    tw_window_run run;
+    window->status = run_create(project, options, optimiser, window, &run);
+    if (window->status != TW_OK) {
+        return window->status;
+    }
+    reset(&run);
+    window->status = search(&run);
+    if (window->status != TW_OK && window->status != TW_SHUT) {
+        best_so_far(&run);
+    }
+    window->settles = run.trial->settles;
+    run_free(&run);
+    return window->status;
+}
+
+tw_status tw_window_search(const tw_project *project, const tw_options *options, tw_window *window)
+{
+    return tw_window_search_with(project, options, tw_optimise_slsqp, window);
+}

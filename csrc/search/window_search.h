@@ -1,0 +1,52 @@
+/* window_search: what the parts of the window search share; see window.h for the method. */
+#ifndef TW_WINDOW_SEARCH_H
+#define TW_WINDOW_SEARCH_H
+
+#include "trial.h"
+#include "window.h"
+
+enum { TW_WINDOW_WORKING_MOST = 24 }; /* rows that one call of the optimiser sees */
+
+typedef struct tw_window_run {
+    tw_project project;    /* the user's, with `supports` in the place of its own, so that a support can be moved */
+    tw_support *supports;  /* owned */
+    const tw_options *options;
+    tw_optimiser optimiser;
+    tw_window *window;
+    tw_trial *trial;       /* on `project`; owned */
+    double deadline;
+    tw_status stop;        /* TW_OK, or why the search has to end; latched */
+    size_t curve_capacity;
+    double *u;             /* [row_count] scratch; owned */
+    unsigned char *masked; /* [row_count] 1: left out of f; owned */
+    double best_pull_N;    /* lowest f of the user's own project so far */
+    double best_f;
+    int moved;             /* a support is moved: pulls tried now are not the user's */
+} tw_window_run;
+
+/* Utilisation of the worst row that is not masked, at every row's u. */
+double tw_window_worst(const tw_window_run *run, const double *u, size_t *row);
+
+/* String to a pull and judge every row into u [row_count]; returns f. A row that cannot be settled counts as 1000. */
+double tw_window_try(tw_window_run *run, double pull_N, double *u);
+
+/* Judge one row at the pull strung last. */
+double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict);
+
+/* Scan the range into window->curve, then look between its points for islands. */
+void tw_window_scan(tw_window_run *run);
+
+/* Open stretches of pulls on the scanned curve, masked rows left out; ends bracketed to rounding.
+ * interval [2 most]; returns their number. */
+size_t tw_window_intervals(tw_window_run *run, double *interval, size_t most);
+
+/* Pull between low and high with the smallest f over [pull (1 - tolerance), pull (1 + tolerance)]; that f. */
+double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double tolerance, double *pull_N);
+
+/* Boundary between a pull where the masked rows hold and one where they do not: the last pull that holds. */
+double tw_window_boundary(tw_window_run *run, double holds_N, double fails_N);
+
+void tw_window_prices(tw_window_run *run);
+void tw_window_explain_shut(tw_window_run *run);
+
+#endif

@@ -1,0 +1,131 @@
+/* Every allocation fails in turn: the call says so, leaves nothing behind, and the next one is right to the last byte. */
+#include "alloc_count.h"
+#include "check.h"
+#include "fixture.h"
+#include "settle.h"
+#include "stringing.h"
+#include "trial.h"
+
+enum { SPANS = 3 };
+
+/* A call under test: does all of its work from nothing, frees it, and leaves a number that tells whether it was right. */
+typedef tw_status (*call)(const fixture *f, double *answer);
+
+static tw_status section_call(const fixture *f, double *answer)
+{
+    double lengths_m[SPANS], pull_N, work[6 * (SPANS + 1)];
+    tw_section *strung = tw_section_create(&f->project);
+    tw_section *section = tw_section_create(&f->project);
+    tw_status status = strung && section ? TW_OK : TW_ERROR_MEMORY;
+    if (status == TW_OK) {
+        status = tw_stringing_lengths(&f->project, lengths_m, &pull_N, work);
+    }
+    if (status == TW_OK) {
+        status = tw_section_load(strung, TW_NONE, lengths_m, NULL, 1);
+    }
+    if (status == TW_OK) {
+        status = tw_section_solve(strung, &f->options, 0);
+    }
+    if (status == TW_OK) {
+        status = tw_section_load(section, 0, lengths_m, strung, 1);
+    }
+    if (status == TW_OK) {
+        status = tw_section_solve(section, &f->options, 0);
+    }
+    if (status == TW_OK) {
+        *answer = section->energy_lower_J;
+    }
+    tw_section_free(section);
+    tw_section_free(strung);
+    return status;
+}
+
+static tw_status settle_call(const fixture *f, double *answer)
+{
+    tw_settled out = {0};
+    const tw_section *section;
+    tw_trial *trial = tw_trial_create(&f->project);
+    tw_status status = trial ? tw_trial_string(trial, (double)NAN) : TW_ERROR_MEMORY;
+    if (status == TW_OK) {
+        status = tw_trial_section(trial, 0, &f->options, &section);
+    }
+    if (status == TW_OK) {
+        status = tw_settle(section, &f->options, &out);
+        CHECK(status == out.status);
+        *answer = out.energy_J;
+    }
+    tw_trial_free(trial);
+    return status;
+}
+
+static tw_status judge_call(const fixture *f, double *answer)
+{
+    tw_verdict verdict;
+    tw_trial *trial = tw_trial_create(&f->project);
+    tw_status status = trial ? TW_OK : TW_ERROR_MEMORY;
+    *answer = 0.0;
+    for (size_t i = 0; i < f->project.limit_count && status == TW_OK; i++) {
+        status = tw_trial_string(trial, 20e3);
+        if (status == TW_OK) {
+            status = tw_trial_judge(trial, i, 0, &f->options, &verdict);
+        }
+        if (status == TW_OK) {
+            *answer += verdict.utilisation;
+        }
+    }
+    tw_trial_free(trial);
+    return status;
+}
+
+/* Refuse the first allocation (and refused_most - 1 more), then the second, and so on until the call needs none of them. */
+static void refuse_in_turn(const fixture *f, call run, size_t refused_most, const char *name)
+{
+    double right = (double)NAN, answer;
+    CHECK(run(f, &right) == TW_OK && isfinite(right));
+    size_t granted = 0;
+    for (;; granted++) {
+        tw_test_refuse(granted, refused_most);
+        answer = (double)NAN;
+        tw_status status = run(f, &answer);
+        size_t refused = tw_test_refused();
+        tw_test_fail_never();
+        CHECK(tw_test_live() == 0);
+        if (refused == 0) {
+            CHECK(status == TW_OK && answer == right);
+            break;
+        }
+        CHECK(status == TW_ERROR_MEMORY);
+        CHECK(run(f, &answer) == TW_OK && answer == right);
+    }
+    printf("%s: %zu allocations\n", name, granted);
+    CHECK(granted > 0);
+}
+
+static void refuse_each_way(const fixture *f, call run, const char *name)
+{
+    refuse_in_turn(f, run, 1, name);
+    refuse_in_turn(f, run, TW_TEST_EACH, name);
+}
+
+int main(void)
+{
+    fixture f;
+    static const tw_limit limits[] = {
+        {.kind = TW_LIMIT_TENSION, .least = NAN, .most = 60e3, .share = NAN, .from_m = NAN, .to_m = NAN},
+        {.kind = TW_LIMIT_SWING, .least = NAN, .most = 0.5, .share = NAN, .from_m = NAN, .to_m = NAN},
+    };
+    static const unsigned char all[] = {1, 1, 1, 1, 1, 1, 1, 1};
+    fixture_three_spans(&f);
+    f.condition.resultant_addition_N_per_m = 2.0;
+    f.options.elements_per_span = 1; /* a mesh that has to be doubled */
+    f.project.stringing.rule = TW_STRING_PULL;
+    f.project.stringing.value = 20e3;
+    f.project.limits = limits;
+    f.project.limit_count = 2;
+    f.project.limit_applies = all;
+    f.project.limit_covers = all;
+    refuse_each_way(&f, section_call, "section");
+    refuse_each_way(&f, settle_call, "settle");
+    refuse_each_way(&f, judge_call, "judge");
+    return check_end("alloc_test");
+}
