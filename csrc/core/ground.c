@@ -4,7 +4,7 @@
 
 #include "vector.h"
 
-enum { TANGENTS = 5 };
+enum { TANGENTS = 7 };
 
 /* Straight top: elevation z0 at x0, rising by slope, between x0 and x1. */
 typedef struct top {
@@ -84,38 +84,45 @@ static double at_station(const stretch *line, double station)
     if (station >= line->x1) {
         return line->forward ? line->s1 : line->s0;
     }
-    return tw_piece_at_station(line->material, line->piece, line->s0, line->s1, station);
+    double a = line->forward ? line->x0 : line->x1, b = line->forward ? line->x1 : line->x0;
+    return tw_piece_at_station(line->material, line->piece, line->s0, line->s1, a, b, station);
 }
 
-/* Exact least clearance over one straight top between stations from and to. */
+/* Exact least clearance over one straight top between stations from and to. Along a piece, d(clearance)/ds has the sign
+ * of normal . t, which is linear in s: where it grows through zero within the stretch is the least place, otherwise an end. */
 static void judge_top(const stretch *line, const top *t, double from, double to, least *best)
 {
     const double normal[3] = {-t->slope, 0.0, 1.0};
-    double a = at_station(line, from);
-    double b = at_station(line, to);
-    double rate = tw_dot(normal, line->piece->load);
-    offer_place(line, t, a, best);
-    offer_place(line, t, b, best);
-    if (rate != 0.0) {
-        double s = tw_dot(normal, line->piece->tension) / rate;
-        if (s > fmin(a, b) && s < fmax(a, b)) {
-            offer_place(line, t, s, best);
+    double rate = -tw_dot(normal, line->piece->load);
+    double at_zero = tw_dot(normal, line->piece->tension);
+    double s = rate > 0.0 ? -at_zero / rate : -1.0;
+    if (s > line->s0 && s < line->s1) {
+        double r[3];
+        tw_piece_position(line->material, line->piece, s, r);
+        if (r[0] >= from && r[0] <= to) {
+            offer(best, r[2] - t->z0 - t->slope * (r[0] - t->x0), r[0]);
+            return;
         }
+        offer_place(line, t, at_station(line, r[0] < from ? from : to), best);
+        return;
     }
+    offer_place(line, t, at_station(line, from), best);
+    offer_place(line, t, at_station(line, to), best);
 }
 
-/* No clearance over the top is less than this: the line lies above each of its tangents, and each of those comes
+/* No clearance over the top is less than this: the line lies above its tangent from the nearest point, and that comes
  * closest to a straight top at one of its ends. */
 static double bound(const stretch *line, const top *t, double from, double to)
 {
-    double best = -INFINITY;
-    for (int i = 0; line->convex && i < TANGENTS; i++) {
-        double at_from = line->tangent_z[i] + line->tangent_slope[i] * (from - line->tangent_x[i])
-                         - t->z0 - t->slope * (from - t->x0);
-        double at_to = at_from + (line->tangent_slope[i] - t->slope) * (to - from);
-        best = fmax(best, fmin(at_from, at_to));
+    if (!line->convex) {
+        return -INFINITY;
     }
-    return best;
+    double along = (0.5 * (from + to) - line->x0) / (line->x1 - line->x0);
+    int i = (int)(along * (TANGENTS - 1) + 0.5);
+    double at_from = line->tangent_z[i] + line->tangent_slope[i] * (from - line->tangent_x[i])
+                     - t->z0 - t->slope * (from - t->x0);
+    double at_to = at_from + (line->tangent_slope[i] - t->slope) * (to - from);
+    return at_from < at_to ? at_from : at_to;
 }
 
 static stretch make_stretch(const tw_material *material, const tw_piece *piece, double s0, double s1)
@@ -149,7 +156,7 @@ static void judge_profile(const tw_project *project, const stretch *line, double
     for (int pass = 0; pass < 2; pass++) {
         for (size_t k = first; k + 1 < project->ground_count && project->ground_station_m[k] < to; k++) {
             top t = profile_top(project, k);
-            double a = fmax(from, t.x0), b = fmin(to, t.x1);
+            double a = from > t.x0 ? from : t.x0, b = to < t.x1 ? to : t.x1;
             double no_less = a < b ? bound(line, &t, a, b) : INFINITY;
             if (pass == 0 && no_less < lowest_bound) {
                 lowest_bound = no_less;

@@ -48,7 +48,7 @@ static int passes(const tw_material *material, const tw_piece *piece, double s0,
     if (station_m < fmin(a[0], b[0]) - slack || station_m > fmax(a[0], b[0]) + slack) {
         return 0;
     }
-    *s = tw_piece_at_station(material, piece, s0, s1, station_m);
+    *s = tw_piece_at_station(material, piece, s0, s1, a[0], b[0], station_m);
     return 1;
 }
 

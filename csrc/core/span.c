@@ -14,11 +14,18 @@ typedef struct resolved {
     double inverse;  /* int ds/T */
 } resolved;
 
-/* atanh(x)/x */
+/* atanh(x)/x = sum x^2k / (2k + 1); ten terms below 0.15 leave less than 1e-18. */
 static double atanh_ratio(double x)
 {
-    double x2 = x * x;
-    return x < 1e-4 ? 1.0 + x2 * (1.0 / 3.0 + x2 / 5.0) : atanh(x) / x;
+    double y = x * x;
+    if (y > 0.0225) {
+        return atanh(x) / x;
+    }
+    double sum = 1.0 / 21.0;
+    for (int k = 9; k >= 0; k--) {
+        sum = sum * y + 1.0 / (2 * k + 1);
+    }
+    return sum;
 }
 
 /* int ds/T: the difference of asinh(a/h), as 2 atanh where that is small, as one logarithm where it is large. */
@@ -144,16 +151,14 @@ int tw_piece_turns(const tw_piece *piece, double *s)
 }
 
 /* Newton on the station, kept inside a bracket that bisection would halve. */
-double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double station_m)
+double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double x0,
+                           double x1, double station_m)
 {
-    double near[3], far[3], t[3];
-    tw_piece_position(material, piece, s0, near);
-    tw_piece_position(material, piece, s1, far);
-    double run = far[0] - near[0];
+    double run = x1 - x0;
     double low = s0, high = s1;
-    double s = run != 0.0 ? s0 + (s1 - s0) * (station_m - near[0]) / run : s0;
+    double s = run != 0.0 ? s0 + (s1 - s0) * (station_m - x0) / run : s0;
     for (int i = 0; i < 60 && high > low; i++) {
-        double r[3];
+        double r[3], t[3];
         s = s >= low && s <= high ? s : 0.5 * (low + high);
         tw_piece_position(material, piece, s, r);
         double miss = r[0] - station_m;
@@ -166,7 +171,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
         double size = tw_norm(t);
         double step = miss * size / (t[0] * tw_material_stretch(material, size));
         s -= step;
-        if (!(fabs(step) > 1e-14 * (fabs(station_m) + s1))) {
+        if (!(fabs(step) > 1e-8 * (s1 - s0))) { /* quadratic: the next step would be rounding */
             break;
         }
     }

@@ -42,8 +42,10 @@ void tw_piece_position(const tw_material *material, const tw_piece *piece, doubl
 /* The one place within a piece where the station turns back (t_x = 0): returns 1 and where, or 0. */
 int tw_piece_turns(const tw_piece *piece, double *s);
 
-/* Natural length at which the piece passes a station, between s0 and s1 where the station grows or falls throughout. */
-double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double station_m);
+/* Natural length at which the piece passes a station, between s0 and s1 (stations x0 and x1), where the station grows or
+ * falls throughout. */
+double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double x0,
+                           double x1, double station_m);
 
 /* Hang `count` pieces from `start` with tension `pull` at the span's start: fills tension and start of each piece;
  * writes the end position, the end tension, and the 3x3 flexibility (may be NULL). O(count). */

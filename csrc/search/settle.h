@@ -19,8 +19,11 @@
 
 /* section: solved. Fills status, energy_J, energy_lower_J, gap_J, gap_relative, residual_N, elements, evaluations and
  * newton_steps of out, all of one shape, and leaves its other fields alone. Returns out->status:
- * TW_OK only with the proof; TW_CANCELLED, TW_DEADLINE: what stands in out is the best shape so far;
- * TW_EVALUATION_LIMIT, TW_NOT_SETTLED, TW_NOT_FINITE: not in balance, or a hanger has grown; TW_GAP_TOO_WIDE; TW_SLACK; errors. */
+ *     TW_OK                                              only with the proof
+ *     TW_CANCELLED, TW_DEADLINE                          out holds the best shape so far
+ *     TW_EVALUATION_LIMIT, TW_NOT_SETTLED, TW_NOT_FINITE not in balance, or a hanger has grown
+ *     TW_GAP_TOO_WIDE, TW_SLACK                          in balance, but not proven; no tension anywhere
+ *     TW_ERROR_MEMORY, TW_ERROR_OPTIMISER                could not run */
 tw_status tw_settle(const tw_section *section, const tw_options *options, tw_settled *out);
 
 /* tw_settle with another optimiser in the place of NLopt's: for tests, which put a lying one there. */

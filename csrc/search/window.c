@@ -9,6 +9,8 @@
 #include "stringing.h"
 #include "window_search.h"
 
+static const double STILL_HOLDS = 1.0 + 2e-9; /* utilisation of an answer judged again */
+
 static size_t count_rows(const tw_project *project)
 {
     size_t rows = 0;
@@ -115,11 +117,11 @@ fail:
     return TW_ERROR_MEMORY;
 }
 
-/* The row that governs at a pull, with its verdict. */
-static void govern(tw_window_run *run, double pull_N, size_t *limit, size_t *condition, tw_verdict *verdict)
+/* The row that governs at a pull, with its verdict; f there, judged on every row without the optimiser. */
+static double govern(tw_window_run *run, double pull_N, size_t *limit, size_t *condition, tw_verdict *verdict)
 {
     size_t row;
-    tw_window_try(run, pull_N, run->u);
+    double f = tw_window_try(run, pull_N, run->u);
     tw_window_worst(run, run->u, &row);
     *limit = *condition = TW_NONE;
     if (row != TW_NONE && run->stop == TW_OK) {
@@ -127,15 +129,17 @@ static void govern(tw_window_run *run, double pull_N, size_t *limit, size_t *con
         *limit = run->window->row_limit[row];
         *condition = run->window->row_condition[row];
     }
+    return f;
 }
 
-static void fill_end(tw_window_run *run, double pull_N, int at_range_end, tw_window_end *end)
+static double fill_end(tw_window_run *run, double pull_N, int at_range_end, tw_window_end *end)
 {
     end->pull_N = pull_N;
-    govern(run, pull_N, &end->limit, &end->condition, &end->verdict);
+    double f = govern(run, pull_N, &end->limit, &end->condition, &end->verdict);
     if (at_range_end) {
         end->limit = end->condition = TW_NONE;
     }
+    return f;
 }
 
 static void no_verdict(tw_verdict *verdict)
@@ -145,8 +149,9 @@ static void no_verdict(tw_verdict *verdict)
     *verdict = nothing;
 }
 
-/* The interval with the lowest worst utilisation over the tolerance is the window. */
-static void choose(tw_window_run *run)
+/* The interval with the lowest worst utilisation over the tolerance is the window. What it says is judged once more on
+ * every row: what does not hold is no window. */
+static tw_status choose(tw_window_run *run)
 {
     tw_window *w = run->window;
     double tolerance = run->project.stringing.tolerance;
@@ -163,9 +168,10 @@ static void choose(tw_window_run *run)
         }
     }
     double low = w->interval_N[2 * chosen], high = w->interval_N[2 * chosen + 1];
-    fill_end(run, low, low <= w->range_low_N, &w->low);
-    fill_end(run, high, high >= w->range_high_N * (1.0 - 1e-12), &w->high);
-    govern(run, w->specify.pull_N, &w->specify.limit, &w->specify.condition, &w->specify.verdict);
+    double f = fill_end(run, low, low <= w->range_low_N, &w->low);
+    f = fmax(f, fill_end(run, high, high >= w->range_high_N * (1.0 - 1e-12), &w->high));
+    f = fmax(f, govern(run, w->specify.pull_N, &w->specify.limit, &w->specify.condition, &w->specify.verdict));
+    return run->stop != TW_OK ? run->stop : f <= STILL_HOLDS ? TW_OK : TW_NOT_SETTLED;
 }
 
 /* Every condition at one pull, settled with its bracket. */
@@ -195,19 +201,6 @@ static tw_status verify(tw_window_run *run)
     }
     w->verified = status == TW_OK;
     return status;
-}
-
-/* Judged on every row once more, without the optimiser: what does not hold is no window. */
-static tw_status confirm(tw_window_run *run)
-{
-    tw_window *w = run->window;
-    const double pulls[3] = {w->low.pull_N, w->high.pull_N, w->specify.pull_N};
-    for (int i = 0; i < 3; i++) {
-        if (run->stop == TW_OK && !(tw_window_try(run, pulls[i], run->u) <= 1.0 + 2e-9)) {
-            return TW_NOT_SETTLED;
-        }
-    }
-    return run->stop;
 }
 
 static void reset(const tw_window_run *run)
@@ -248,8 +241,7 @@ static tw_status search(tw_window_run *run)
         tw_window_explain_shut(run);
         return run->stop == TW_OK ? TW_SHUT : run->stop;
     }
-    choose(run);
-    tw_status status = confirm(run);
+    tw_status status = choose(run);
     if (status == TW_OK) {
         tw_window_prices(run);
         status = run->stop;

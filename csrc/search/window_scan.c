@@ -180,7 +180,7 @@ static double call_optimiser(view *v, double start)
         .variables = v->epigraph ? 2 : 1,
         .constraints = v->count,
         .evaluations_most = 100,
-        .x_tolerance = 1e-9,
+        .x_tolerance = v->epigraph ? 1e-7 : 1e-8,
         .low = low,
         .high = high,
         .objective = v->epigraph ? least_t : furthest,
@@ -213,24 +213,13 @@ static int add_to_view(view *v, size_t row, double factor)
     return 1;
 }
 
-static size_t factors_of(double tolerance, double factors[3])
-{
-    factors[0] = 1.0 - tolerance;
-    factors[1] = 1.0 + tolerance;
-    factors[2] = 1.0;
-    if (tolerance <= 0.0) {
-        factors[0] = 1.0;
-        return 1;
-    }
-    return 3;
-}
-
-/* f over the tolerance, judged on every row; adds each factor's worst row to the view and counts those that were new. */
+/* f over the tolerance: judged at both of its ends on every row (f is unimodal between the islands of the scan).
+ * Adds each end's worst row to the view and counts those that were new. */
 static double judge_tolerance(tw_window_run *run, double pull_N, double tolerance, view *v, int *added)
 {
-    double factors[3], worst = 0.0;
-    size_t count = factors_of(tolerance, factors);
-    for (size_t i = 0; i < count; i++) {
+    const double factors[2] = {1.0 - tolerance, 1.0 + tolerance};
+    double worst = 0.0;
+    for (int i = 0; i < (tolerance > 0.0 ? 2 : 1); i++) {
         size_t row;
         tw_window_try(run, pull_N * factors[i], run->u);
         worst = fmax(worst, tw_window_worst(run, run->u, &row));
@@ -268,30 +257,51 @@ static double golden(tw_window_run *run, double low_N, double high_N, double tol
     return fmin(fc, fd);
 }
 
-/* 1: a step of 1e-4 either way lowers f: what the optimiser gave is no minimum. */
-static int not_lowest(tw_window_run *run, double low_N, double high_N, double tolerance, double pull_N, double f)
+/* 1: a step of 1e-4 either way lowers the worst of the view's rows: what the optimiser gave is no minimum. (Where that
+ * rises, f rises: it lies on or above those rows.) */
+static int not_lowest(view *v, double low_N, double high_N, double pull_N, double f)
 {
     const double sides[2] = {fmax(low_N, pull_N * (1.0 - 1e-4)), fmin(high_N, pull_N * (1.0 + 1e-4))};
     for (int i = 0; i < 2; i++) {
-        if (judge_tolerance(run, sides[i], tolerance, NULL, NULL) < f - 1e-9) {
+        double worst = 0.0;
+        for (size_t k = 0; k < v->count; k++) {
+            worst = fmax(worst, row_at(v->run, v->row[k], sides[i] * v->factor[k]));
+        }
+        if (worst < f - 1e-9) {
             return 1;
         }
     }
     return 0;
 }
 
+/* First rows of the view: the worst of the curve at the two ends of the stretch. */
+static void first_rows(view *v, double low_N, double high_N, double tolerance)
+{
+    const tw_window *w = v->run->window;
+    size_t low = 0, high = w->curve_count - 1, row;
+    while (low + 1 < w->curve_count && w->curve_pull_N[low + 1] <= low_N) {
+        low++;
+    }
+    while (high > 0 && w->curve_pull_N[high - 1] >= high_N) {
+        high--;
+    }
+    tw_window_worst(v->run, curve_row(v->run, low), &row);
+    add_to_view(v, row, 1.0 - tolerance);
+    tw_window_worst(v->run, curve_row(v->run, high), &row);
+    add_to_view(v, row, 1.0 + tolerance);
+}
+
 double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double tolerance, double *pull_N)
 {
     view v = {.run = run, .low = low_N, .ratio = log(high_N / low_N), .epigraph = 1};
-    int added = 0;
+    int added = 1;
     double best = INFINITY;
     double start = 0.5;
     *pull_N = low_N;
     if (!(v.ratio > 0.0)) {
         return judge_tolerance(run, low_N, tolerance, NULL, NULL);
     }
-    judge_tolerance(run, low_N, tolerance, &v, &added);
-    judge_tolerance(run, high_N, tolerance, &v, &added);
+    first_rows(&v, low_N, high_N, tolerance);
     for (int round = 0; round < 8 && added > 0 && run->stop == TW_OK; round++) {
         double z = call_optimiser(&v, start);
         double pull = view_pull(&v, z);
@@ -303,7 +313,7 @@ double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double
         }
         start = z;
     }
-    if (not_lowest(run, low_N, high_N, tolerance, *pull_N, best)) {
+    if (not_lowest(&v, low_N, high_N, *pull_N, best)) {
         double other;
         double f = golden(run, low_N, high_N, tolerance, &other);
         if (f < best) {

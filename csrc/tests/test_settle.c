@@ -143,6 +143,21 @@ static void test_extremes(void)
     }
 }
 
+/* A short span far from the route's origin, where the energies in route coordinates keep no more than eight digits of its
+ * own: rounding must not be taken for a bracket turned over. */
+static void test_far_away(void)
+{
+    fixture f;
+    tw_section *section;
+    fixture_span(&f, 1.3, 0.0, 1.2995, 6.56, 1.27e6);
+    f.supports[0].station_m += 1e5;
+    f.supports[1].station_m += 1e5;
+    tw_settled out = settle(&f, &section);
+    CHECK(out.status == TW_OK);
+    CHECK(fabs(out.gap_relative) < 1e-6);
+    tw_section_free(section);
+}
+
 /* Two hundred thousand nodes still come to 1e-9 of the tension, in about the time per node of two thousand. */
 static void test_many_nodes(void)
 {
@@ -345,6 +360,7 @@ int main(void)
     test_lifeline();
     test_three_spans();
     test_extremes();
+    test_far_away();
     test_many_nodes();
     test_from_afar();
     test_wrong_exact_line();
