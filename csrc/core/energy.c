@@ -315,7 +315,7 @@ static void tracker_step(tracker *t, const double edge[3], const double *load)
     tw_sum_add(&t->work, work);
 }
 
-/* Between the clamps from and to: adds stretch energy, the loads' work from the chord's middle, and in route coordinates. */
+/* Between the clamps from and to: adds stretch energy, the loads' work from the chord's middle, and from the datum. */
 static void span_bound(const tw_energy *energy, const tw_energy_hold *from, const tw_energy_hold *to, const double *x,
                        tw_sum *stored, tw_sum *work, tw_sum *route)
 {

@@ -27,7 +27,7 @@ typedef struct tw_energy_hold {
     tw_hold kind;
     size_t block;          /* whose end node is the clamp */
     int fixed[3];          /* along, across, up */
-    double place[3];       /* clamp in the start shape, m */
+    double place[3];       /* clamp in the start shape, from the first support, m */
     double offset[3];      /* clamp less the point of fixing in the start shape, m */
     double stiffness[2];   /* post: along, across, N/m; 0 where rigid or no post */
     double link_m;         /* hanger: length */
@@ -55,7 +55,7 @@ typedef struct tw_energy_state {
 
 /* The shape judged on its own, integrated finely. */
 typedef struct tw_energy_parts {
-    double potential_J; /* in route coordinates: comes from above to the complementary energy */
+    double potential_J; /* datum at the first support: comes from above to the complementary energy */
     double stored_J;    /* stretch of the line and of posts */
     double work_J;      /* of the loads between clamps, from the middle of each chord: free of the datum */
     double link_excess; /* largest (|c - a| - l) / l of the hangers; <= 0 where none is too long */

@@ -37,13 +37,16 @@ size_t tw_energy_elements(const tw_section *section, size_t per_span)
 static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j)
 {
     const tw_support *support = &section->project->supports[j];
-    const double point[3] = {support->station_m, support->offset_m, support->elevation_m};
+    const tw_support *datum = &section->project->supports[0];
+    const double point[3] = {support->station_m - datum->station_m, support->offset_m - datum->offset_m,
+                             support->elevation_m - datum->elevation_m};
+    const double zero[3] = {datum->station_m, datum->offset_m, datum->elevation_m};
     const double stiffness[2] = {support->stiffness_along_N_per_m, support->stiffness_across_N_per_m};
     hold->kind = support->hold;
     for (int i = 0; i < 3; i++) {
         int elastic = hold->kind == TW_HOLD_POST && i < 2 && isfinite(stiffness[i]);
         hold->fixed[i] = hold->kind != TW_HOLD_HANGER && !elastic;
-        hold->place[i] = hold->fixed[i] ? point[i] : section->clamp[3 * j + (size_t)i];
+        hold->place[i] = hold->fixed[i] ? point[i] : section->clamp[3 * j + (size_t)i] - zero[i];
         hold->offset[i] = hold->place[i] - point[i];
         if (elastic) {
             hold->stiffness[i] = stiffness[i];

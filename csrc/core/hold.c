@@ -11,9 +11,9 @@ void tw_hold_attachment(const tw_support *support, double a[3])
     a[2] = support->elevation_m;
 }
 
-void tw_hold_swing(const tw_support *support, const double F[3], double swing[3])
+void tw_hold_swing(const tw_support *support, const double F[3], double soft_N, double swing[3])
 {
-    double size = tw_norm(F);
+    double size = sqrt(tw_dot(F, F) + soft_N * soft_N);
     swing[0] = swing[1] = swing[2] = 0.0;
     if (support->hold == TW_HOLD_HANGER && size > 0.0) {
         tw_axpy(swing, -support->hanger_length_m / size, F, swing);
@@ -23,9 +23,9 @@ void tw_hold_swing(const tw_support *support, const double F[3], double swing[3]
     }
 }
 
-void tw_hold_flexibility(const tw_support *support, const double F[3], double sign, double block[9])
+void tw_hold_flexibility(const tw_support *support, const double F[3], double soft_N, double sign, double block[9])
 {
-    double size = tw_norm(F);
+    double size = sqrt(tw_dot(F, F) + soft_N * soft_N);
     if (support->hold == TW_HOLD_HANGER && size > 0.0) {
         double factor = sign * support->hanger_length_m / size;
         for (int i = 0; i < 3; i++) {
@@ -39,10 +39,10 @@ void tw_hold_flexibility(const tw_support *support, const double F[3], double si
     }
 }
 
-double tw_hold_energy(const tw_support *support, const double F[3])
+double tw_hold_energy(const tw_support *support, const double F[3], double soft_N)
 {
     switch (support->hold) {
-    case TW_HOLD_HANGER: return -support->hanger_length_m * tw_norm(F);
+    case TW_HOLD_HANGER: return -support->hanger_length_m * sqrt(tw_dot(F, F) + soft_N * soft_N);
     case TW_HOLD_POST:
         return -0.5 * (F[0] * F[0] / support->stiffness_along_N_per_m + F[1] * F[1] / support->stiffness_across_N_per_m);
     case TW_HOLD_ANCHOR:

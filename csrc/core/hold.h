@@ -4,6 +4,9 @@
  *     anchor  F.a            hanger  F.a - l |F|          post  F.a - F_x^2/(2 k_x) - F_y^2/(2 k_y)
  * c - a is the derivative of what stands behind F.a. To add a hold: give its swing, flexibility and energy here, its
  * own energy in energy.c, its ranges in check.c.
+ *
+ * A hanger's l |F| has a kink at F = 0, where it goes slack. soft_N > 0 rounds it off to l sqrt(|F|^2 + soft^2), which lies
+ * above it by at most soft l: the complementary energy stays a lower bound.
  */
 #ifndef TW_HOLD_H
 #define TW_HOLD_H
@@ -13,12 +16,12 @@
 void tw_hold_attachment(const tw_support *support, double a[3]);
 
 /* c - a under F. */
-void tw_hold_swing(const tw_support *support, const double force[3], double swing[3]);
+void tw_hold_swing(const tw_support *support, const double force[3], double soft_N, double swing[3]);
 
 /* block += sign * (-d swing / dF), positive semidefinite; block is 3x3. */
-void tw_hold_flexibility(const tw_support *support, const double force[3], double sign, double block[9]);
+void tw_hold_flexibility(const tw_support *support, const double force[3], double soft_N, double sign, double block[9]);
 
 /* What stands behind F.a. */
-double tw_hold_energy(const tw_support *support, const double force[3]);
+double tw_hold_energy(const tw_support *support, const double force[3], double soft_N);
 
 #endif

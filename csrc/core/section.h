@@ -34,7 +34,8 @@ typedef struct tw_section {
     double *load_to_m;       /* [loads of the condition] and ends; owned */
     double *cut_m;           /* scratch: where the loads cut one span; owned */
     double *work;            /* scratch of the solver; owned */
-    double energy_lower_J;   /* D */
+    double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 unless one is slack */
+    double energy_lower_J;   /* D, datum at the first support */
     double closing_m;        /* largest closing error */
     size_t steps;            /* Newton steps taken */
 } tw_section;

@@ -9,6 +9,8 @@
 #include "uniform.h"
 #include "vector.h"
 
+static const double SOFTEST = 2e-9; /* the last rounding of a slack hanger, over the largest tension */
+
 /* Scratch, carved from section->work. */
 typedef struct scratch {
     double *error;  /* [3 n] closing error, the gradient of -D */
@@ -48,7 +50,7 @@ static void balance_holds(tw_section *section, const scratch *s)
             double ahead = j < section->span_count ? section->pull[3 * j + (size_t)i] : 0.0;
             F[i] = behind - ahead - section->clamp_load[3 * j + (size_t)i];
         }
-        tw_hold_swing(&section->project->supports[j], F, s->swing + 3 * j);
+        tw_hold_swing(&section->project->supports[j], F, section->soft_N, s->swing + 3 * j);
     }
 }
 
@@ -87,11 +89,12 @@ static int newton_step(tw_section *section, const scratch *s)
         const double block[9] = {b[0], b[1], b[2], b[1], b[3], b[4], b[2], b[4], b[5]};
         double *diag = s->diag + 9 * k;
         memcpy(diag, block, sizeof block);
-        tw_hold_flexibility(&section->project->supports[k], section->hold_force + 3 * k, 1.0, diag);
-        tw_hold_flexibility(&section->project->supports[k + 1], section->hold_force + 3 * k + 3, 1.0, diag);
+        tw_hold_flexibility(&section->project->supports[k], section->hold_force + 3 * k, section->soft_N, 1.0, diag);
+        tw_hold_flexibility(&section->project->supports[k + 1], section->hold_force + 3 * k + 3, section->soft_N, 1.0,
+                            diag);
         if (k + 1 < n) {
-            tw_hold_flexibility(&section->project->supports[k + 1], section->hold_force + 3 * k + 3, -1.0,
-                                 s->off + 9 * k);
+            tw_hold_flexibility(&section->project->supports[k + 1], section->hold_force + 3 * k + 3,
+                                section->soft_N, -1.0, s->off + 9 * k);
         }
     }
     if (!tw_couple_factor(s->diag, s->off, n)) {
@@ -179,17 +182,19 @@ static tw_status start_pulls(tw_section *section)
     return TW_OK;
 }
 
-/* Positions, and D = sum over spans of -int W* and over holds of F . a + (hold energy). */
+/* Positions, and D = sum over spans of -int W* and over holds of F . a + (hold energy), datum at the first support. */
 static void finish(tw_section *section, const scratch *s)
 {
-    double lower = 0.0;
+    double lower = 0.0, datum[3];
+    tw_hold_attachment(&section->project->supports[0], datum);
     for (size_t j = 0; j <= section->span_count; j++) {
         const tw_support *support = &section->project->supports[j];
         const double *F = section->hold_force + 3 * j;
         double a[3];
         tw_hold_attachment(support, a);
         tw_axpy(a, 1.0, s->swing + 3 * j, section->clamp + 3 * j);
-        lower += tw_dot(F, a) + tw_hold_energy(support, F);
+        tw_axpy(a, -1.0, datum, a);
+        lower += tw_dot(F, a) + tw_hold_energy(support, F, section->soft_N);
     }
     for (size_t k = 0; k < section->span_count; k++) {
         for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
@@ -217,45 +222,77 @@ static double longest_chord(const tw_section *section)
     return longest;
 }
 
-tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm)
+/* Newton from the pulls that stand. */
+static tw_status iterate(tw_section *section, const tw_options *options, const scratch *s, double scale)
 {
-    const scratch s = carve(section);
-    double scale = longest_chord(section);
     double wanted = options->closing_relative * scale;
     double enough = 1e-10 * scale;
-    section->steps = 0;
-    tw_status status = warm ? TW_OK : start_pulls(section);
-    if (status != TW_OK) {
-        return status;
-    }
-    double worst = close_up(section, &s, 1);
-    if (warm && !isfinite(worst)) {
-        return tw_section_solve(section, options, 0);
-    }
-    while (worst > wanted || section->steps == 0) {
+    size_t first = section->steps;
+    double worst = close_up(section, s, 1);
+    while (worst > wanted || section->steps == first) {
         double before = worst;
-        if (section->steps >= options->newton_most || !newton_step(section, &s)) {
-            status = TW_NOT_SETTLED;
-            break;
+        if (section->steps - first >= options->newton_most || !isfinite(worst) || !newton_step(section, s)) {
+            return TW_NOT_SETTLED;
         }
-        worst = advance(section, &s);
+        worst = advance(section, s);
         section->steps++;
+        section->closing_m = worst;
         if (!isfinite(worst)) {
-            status = TW_NOT_SETTLED;
-            break;
+            return TW_NOT_SETTLED;
         }
         if (before <= enough && worst > 0.25 * before) {
             break; /* at the floor of rounding */
         }
         if (options->poll && options->poll(options->poll_data)) {
-            status = TW_CANCELLED;
-            break;
+            return TW_CANCELLED;
         }
     }
-    if (status == TW_NOT_SETTLED && warm) {
-        return tw_section_solve(section, options, 0);
+    return TW_OK;
+}
+
+static int has_hanger(const tw_section *section)
+{
+    for (size_t j = 0; j <= section->span_count; j++) {
+        if (section->project->supports[j].hold == TW_HOLD_HANGER) {
+            return 1;
+        }
     }
-    section->closing_m = worst;
-    finish(section, &s);
+    return 0;
+}
+
+/* A hanger may hang slack: follow the rounded-off kink of l |F| down to nothing. */
+static tw_status iterate_softened(tw_section *section, const tw_options *options, const scratch *s, double scale)
+{
+    double largest = 0.0;
+    tw_status status = start_pulls(section);
+    for (size_t k = 0; k < section->span_count; k++) {
+        largest = fmax(largest, tw_norm(section->pull + 3 * k));
+    }
+    for (double soft = 0.1; status == TW_OK && soft > SOFTEST; soft *= 0.1) {
+        section->soft_N = soft * largest;
+        status = iterate(section, options, s, scale);
+    }
+    return status;
+}
+
+tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm)
+{
+    const scratch s = carve(section);
+    double scale = longest_chord(section);
+    section->steps = 0;
+    section->soft_N = 0.0;
+    tw_status status = warm ? iterate(section, options, &s, scale) : TW_NOT_SETTLED;
+    if (status == TW_NOT_SETTLED) {
+        status = start_pulls(section);
+        if (status == TW_OK) {
+            status = iterate(section, options, &s, scale);
+        }
+    }
+    if (status == TW_NOT_SETTLED && has_hanger(section)) {
+        status = iterate_softened(section, options, &s, scale);
+    }
+    if (status == TW_OK || status == TW_CANCELLED) {
+        finish(section, &s);
+    }
     return status;
 }

@@ -65,7 +65,8 @@ static tw_status lengths_between_clamps(strung *line, double pull_N)
     return TW_OK;
 }
 
-/* Where posts lean and the route turns, the clamps follow their hold forces. Returns the largest move. */
+/* Where posts lean and the route turns, the clamps follow their hold forces; a hanger that the line would lift is held
+ * down plumb, as the rule says. Returns the largest move. */
 static double follow_holds(strung *line)
 {
     double weight = line->project->line.weight_N_per_m;
@@ -81,7 +82,11 @@ static double follow_holds(strung *line)
         if (j < line->span_count) {
             tw_axpy(F, -1.0, line->pull + 3 * j, F);
         }
-        tw_hold_swing(support, F, swing);
+        if (support->hold == TW_HOLD_HANGER && F[2] <= 0.0) {
+            F[0] = F[1] = 0.0;
+            F[2] = 1.0;
+        }
+        tw_hold_swing(support, F, 0.0, swing);
         for (int i = 0; i < 3; i++) {
             moved = fmax(moved, fabs(swing[i] - line->swing[3 * j + (size_t)i]));
         }
