@@ -2,13 +2,13 @@
 #define TW_IMPORTS_NUMPY
 #include "python.h"
 
-#include <nlopt.h>
 #include <numpy/arrayobject.h>
 #include <numpy/ufuncobject.h>
 
 #include "fields.h"
 #include "line.h"
 #include "module.h"
+#include "optimise.h"
 #include "status.h"
 
 static PyObject *defaults(void)
@@ -37,7 +37,7 @@ static PyObject *statuses(void)
 static PyObject *nlopt_version_text(void)
 {
     int major, minor, bugfix;
-    nlopt_version(&major, &minor, &bugfix);
+    tw_optimise_version(&major, &minor, &bugfix);
     return PyUnicode_FromFormat("%d.%d.%d", major, minor, bugfix);
 }
 

@@ -38,6 +38,11 @@ static void constrain(unsigned m, double *values, unsigned n, const double *x, d
     stop_if(r, bad);
 }
 
+void tw_optimise_version(int *major, int *minor, int *bugfix)
+{
+    nlopt_version(major, minor, bugfix);
+}
+
 tw_status tw_optimise_slsqp(const tw_optimise_problem *problem, double *x, size_t *evaluations)
 {
     run r = {problem, nlopt_create(NLOPT_LD_SLSQP, (unsigned)problem->variables), 0};

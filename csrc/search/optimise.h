@@ -24,6 +24,9 @@ typedef struct tw_optimise_problem {
 /* x [variables]: start in, candidate out. evaluations: of the objective, added to. Returns an error (< 0) or anything else. */
 typedef tw_status (*tw_optimiser)(const tw_optimise_problem *problem, double *x, size_t *evaluations);
 
+/* The version of NLopt in use. */
+void tw_optimise_version(int *major, int *minor, int *bugfix);
+
 tw_status tw_optimise_slsqp(const tw_optimise_problem *problem, double *x, size_t *evaluations);
 
 #endif

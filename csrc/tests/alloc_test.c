@@ -5,6 +5,7 @@
 #include "settle.h"
 #include "stringing.h"
 #include "trial.h"
+#include "window.h"
 
 enum { SPANS = 3 };
 
@@ -77,6 +78,23 @@ static tw_status judge_call(const fixture *f, double *answer)
     return status;
 }
 
+/* Open or shut, both are answers; the optimiser's work on the way is not repeated here. */
+static tw_status window_call(const fixture *f, double *answer)
+{
+    tw_window *window = tw_window_create(&f->project, &f->options);
+    tw_status status = window ? tw_window_search(&f->project, &f->options, window) : TW_ERROR_MEMORY;
+    if (status == TW_OK) {
+        *answer = window->specify.pull_N;
+        CHECK(window->verified && window->interval_count > 0);
+    } else if (status == TW_SHUT) {
+        *answer = (double)(window->conflict_count + 100 * window->relax_count) + window->conflict[0].needs_N;
+        status = TW_OK;
+    }
+    CHECK(window == NULL || status == TW_OK || window->interval_count == 0);
+    tw_window_free(window);
+    return status;
+}
+
 /* Refuse the first allocation (and refused_most - 1 more), then the second, and so on until the call needs none of them. */
 static void refuse_in_turn(const fixture *f, call run, size_t refused_most, const char *name)
 {
@@ -110,22 +128,27 @@ static void refuse_each_way(const fixture *f, call run, const char *name)
 int main(void)
 {
     fixture f;
-    static const tw_limit limits[] = {
+    tw_limit limits[] = {
         {.kind = TW_LIMIT_TENSION, .least = NAN, .most = 60e3, .share = NAN, .from_m = NAN, .to_m = NAN},
-        {.kind = TW_LIMIT_SWING, .least = NAN, .most = 0.5, .share = NAN, .from_m = NAN, .to_m = NAN},
+        {.kind = TW_LIMIT_SWING, .least = NAN, .most = 0.6, .share = NAN, .from_m = NAN, .to_m = NAN},
+        {.kind = TW_LIMIT_SAG, .least = NAN, .most = 25.0, .share = NAN, .from_m = NAN, .to_m = NAN},
     };
-    static const unsigned char all[] = {1, 1, 1, 1, 1, 1, 1, 1};
+    static const unsigned char all[] = {1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1};
     fixture_three_spans(&f);
     f.condition.resultant_addition_N_per_m = 2.0;
     f.options.elements_per_span = 1; /* a mesh that has to be doubled */
     f.project.stringing.rule = TW_STRING_PULL;
     f.project.stringing.value = 20e3;
     f.project.limits = limits;
-    f.project.limit_count = 2;
+    f.project.limit_count = 3;
     f.project.limit_applies = all;
     f.project.limit_covers = all;
     refuse_each_way(&f, section_call, "section");
     refuse_each_way(&f, settle_call, "settle");
     refuse_each_way(&f, judge_call, "judge");
+    refuse_each_way(&f, window_call, "open window");
+    limits[0].most = 20e3;
+    limits[2].most = 10.0;
+    refuse_each_way(&f, window_call, "shut window");
     return check_end("alloc_test");
 }
