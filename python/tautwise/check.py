@@ -1,0 +1,246 @@
+"""From the tables of a document to checked models, gathering every fault on the way.
+
+A table that fails does not hide what is wrong elsewhere: rules between tables look at whatever could be read.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import Any, TypeVar
+
+from pydantic import ValidationError
+
+from tautwise.errors import Fault, InputError
+from tautwise.faults import example_of, faults_of, keys_of, unknown_key
+from tautwise.keylines import Path as KeyPath
+from tautwise.limits import LIMITS, BaseLimit
+from tautwise.profile import Ground, csv_ground, point_ground
+from tautwise.reader import ARRAYS, Document
+from tautwise.strict import Refused, described, did_you_mean, shown
+from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support, Table
+from tautwise.units import quantity
+
+MOST = {"crossing": 2000, "support": 2000, "condition": 500, "mark": 2000, "limit": 500}
+LOADS_MOST = 2000
+TOP_TABLES = ("line", "ground", "stringing")
+TOP_KEYS = (*keys_of(Head), "include", *TOP_TABLES, *ARRAYS)
+
+T = TypeVar("T", bound=Table)
+
+
+@dataclass
+class Checked:
+    """What could be read of a document; None where a table is missing or wrong."""
+
+    document: Document
+    head: Head = field(default_factory=Head)
+    line: Line | None = None
+    ground: Ground | None = None
+    ground_given: bool = False
+    stringing: Stringing | None = None
+    crossings: list[Crossing | None] = field(default_factory=list)
+    supports: list[Support | None] = field(default_factory=list)
+    conditions: list[Condition | None] = field(default_factory=list)
+    marks: list[Mark | None] = field(default_factory=list)
+    limits: list[BaseLimit | None] = field(default_factory=list)
+    faults: list[Fault] = field(default_factory=list)
+
+    def fault(self, path: KeyPath, problem: str, expected: str = "", example: str = "") -> None:
+        """Note a fault at a key path."""
+        self.faults.append(self.document.fault(path, problem, expected, example))
+
+    def raw(self, *path: str | int) -> dict[str, Any]:
+        """The table at a path as it was written; empty where there is none."""
+        value: Any = self.document.tables
+        for part in path:
+            if isinstance(part, int):
+                value = value[part] if isinstance(value, list | tuple) and 0 <= part < len(value) else None
+            else:
+                value = value.get(part) if isinstance(value, dict) else None
+        return value if isinstance(value, dict) else {}
+
+    def count(self, key: str) -> int:
+        """How many tables an array of tables has, right or wrong."""
+        value = self.document.tables.get(key)
+        return len(value) if isinstance(value, list | tuple) else 0
+
+    def names(self, key: str, label: str = "name") -> list[str | None]:
+        """The names in an array of tables, None where there is no usable one."""
+        written = [self.raw(key, number).get(label) for number in range(self.count(key))]
+        return [name if isinstance(name, str) else None for name in written]
+
+    def station(self, number: int) -> float | None:
+        """The station of a support, even where something else about it is wrong."""
+        try:
+            return quantity(self.raw("support", number).get("station"), "m")
+        except Refused:
+            return None
+
+    def station_range(self) -> tuple[float, float] | None:
+        """Stations of the first and the last support, where both could be read."""
+        if self.count("support") < 2:
+            return None
+        first, last = self.station(0), self.station(self.count("support") - 1)
+        return None if first is None or last is None else (first, last)
+
+    def listed(self, *path: str | int) -> list[str]:
+        """The names in a list of names, those that are none left out; empty where there is no list."""
+        value = self.raw(*path[:-1]).get(str(path[-1]))
+        return [name for name in value if isinstance(name, str)] if isinstance(value, list | tuple) else []
+
+
+def read_tables(document: Document) -> Checked:
+    """Read each table by itself; rules between them come after."""
+    checked = Checked(document, faults=list(document.faults))
+    _top_keys(checked)
+    head = {key: value for key, value in document.tables.items() if key in keys_of(Head)}
+    checked.head = _table(checked, (), Head, head) or Head()
+    checked.line = _required(checked, "line", Line, 'weight = "11.9 N/m"')
+    checked.stringing = _required(checked, "stringing", Stringing, 'temperature = "15 degC"')
+    checked.ground = _ground(checked)
+    checked.crossings = _array(checked, "crossing", Crossing)
+    checked.supports = _array(checked, "support", Support)
+    checked.conditions = _array(checked, "condition", Condition)
+    checked.marks = _array(checked, "mark", Mark)
+    checked.limits = [_limit(checked, number) for number in _numbers(checked, "limit")]
+    _unique_names(checked)
+    return checked
+
+
+def exactly_one(checked: Checked, path: KeyPath, model: type[Table], keys: Sequence[str]) -> str | None:
+    """Note a fault unless exactly one of some keys is given; the key where one is.
+
+    More than one is reported at the last, where the reader's eye should stop.
+    """
+    given = [key for key in keys if checked.raw(*path).get(key) is not None]
+    options = " or ".join((", ".join(keys[:-1]), keys[-1])) if len(keys) > 1 else keys[0]
+    if not given:
+        checked.fault(path, f"{options} is missing", "exactly one of them", example_of(model, keys[0]))
+        return None
+    if len(given) > 1:
+        problem = f"{' and '.join(given)} are given at once"
+        checked.fault((*path, given[-1]), problem, f"exactly one of {options}")
+        return None
+    return given[0]
+
+
+def at_most_one(checked: Checked, path: KeyPath, model: type[Table], keys: Sequence[str]) -> str | None:
+    """As `exactly_one`, but none is right too."""
+    if any(checked.raw(*path).get(key) is not None for key in keys):
+        return exactly_one(checked, path, model, keys)
+    return None
+
+
+def known_names(checked: Checked, path: KeyPath, array: str) -> None:
+    """A fault for each name in the list at a path that no table of an array bears."""
+    there = checked.names(array)
+    for number, name in enumerate(checked.listed(*path)):
+        if name not in there:
+            known = [other for other in there if other]
+            checked.fault((*path, number), f'there is no {array} "{shown(name)}"; {did_you_mean(name, known)}')
+
+
+def _top_keys(checked: Checked) -> None:
+    for key in checked.document.tables:
+        if key not in TOP_KEYS:
+            checked.faults.append(unknown_key(checked.document, (key,), TOP_KEYS))
+
+
+def _table(checked: Checked, path: KeyPath, model: type[T], raw: Any) -> T | None:
+    try:
+        return model.model_validate(raw)
+    except ValidationError as error:
+        checked.faults.extend(faults_of(error, model, checked.document, path))
+        return None
+
+
+def _required(checked: Checked, key: str, model: type[T], example: str) -> T | None:
+    raw = checked.document.tables.get(key)
+    if raw is None:
+        checked.fault((), f"the table [{key}] is missing", f"[{key}] with its keys", example)
+        return None
+    return _table(checked, (key,), model, raw) if _is_table(checked, (key,), raw) else None
+
+
+def _is_table(checked: Checked, path: KeyPath, raw: Any) -> bool:
+    if isinstance(raw, dict):
+        return True
+    key = next(part for part in reversed(path) if isinstance(part, str))
+    header = f"[[{key}]]" if key in ARRAYS else f"[{key}]"
+    checked.fault(path, f"{described(raw)} where a table is needed", f"a table under {header}")
+    return False
+
+
+def _ground(checked: Checked) -> Ground | None:
+    raw = checked.document.tables.get("ground")
+    if raw is None:
+        return None
+    checked.ground_given = True
+    if not _is_table(checked, ("ground",), raw):
+        return None
+    table = _table(checked, ("ground",), GroundTable, raw)
+    given = exactly_one(checked, ("ground",), GroundTable, ("profile", "points"))
+    if table is None or given is None:
+        return None
+    try:
+        if table.profile is None:
+            return point_ground(checked.document, table.points)
+        ground, source = csv_ground(checked.document, table.profile)
+    except InputError as error:
+        checked.faults.extend(error.faults)
+        return None
+    checked.document.sources.append(source)
+    return ground
+
+
+def _array(checked: Checked, key: str, model: type[T]) -> list[T | None]:
+    rows: list[T | None] = []
+    for number in _numbers(checked, key):
+        path = (key, number)
+        raw = checked.document.tables[key][number]
+        rows.append(_table(checked, path, model, raw) if _is_table(checked, path, raw) else None)
+    return rows
+
+
+def _numbers(checked: Checked, key: str) -> range:
+    raw = checked.document.tables.get(key)
+    if raw is None:
+        return range(0)
+    if not isinstance(raw, list | tuple):
+        checked.fault((key,), f"{described(raw)} where a list of tables is needed", f"one table under each [[{key}]]")
+        return range(0)
+    if len(raw) > MOST[key]:
+        checked.fault((key,), f"{len(raw)} tables; at most {MOST[key]} are read")
+        return range(0)
+    return range(len(raw))
+
+
+def _limit(checked: Checked, number: int) -> BaseLimit | None:
+    path = ("limit", number)
+    raw = checked.document.tables["limit"][number]
+    if not _is_table(checked, path, raw):
+        return None
+    kind = raw.get("kind")
+    kinds = ", ".join(LIMITS)
+    if kind is None:
+        checked.fault((*path, "kind"), "missing", f"one of {kinds}", 'kind = "clearance"')
+        return None
+    model = LIMITS.get(kind) if isinstance(kind, str) else None
+    if model is None:
+        guess = did_you_mean(kind, LIMITS) if isinstance(kind, str) else ""
+        problem = f"{described(kind)} is no kind of limit" + (f"; {guess}" if guess.startswith("did") else "")
+        checked.fault((*path, "kind"), problem, f"one of {kinds}", 'kind = "clearance"')
+        return None
+    return _table(checked, path, model, raw)
+
+
+def _unique_names(checked: Checked) -> None:
+    for key in ARRAYS:
+        label = "id" if key == "limit" else "name"
+        seen: set[str] = set()
+        for number, name in enumerate(checked.names(key, label)):
+            if name is not None and name in seen:
+                problem = f'there is another {key} "{shown(name)}"'
+                checked.fault((key, number, label), problem, "one of its own")
+            seen.add(name or "")

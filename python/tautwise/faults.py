@@ -1,0 +1,140 @@
+"""Faults from what pydantic collects: each error becomes a fault with the key's line, expectation and example."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+from typing import Any, get_args
+
+from pydantic import BaseModel, ValidationError
+from pydantic.fields import FieldInfo
+
+from tautwise.errors import Fault
+from tautwise.fields import Kind
+from tautwise.keylines import Path as KeyPath
+from tautwise.limits import LIMITS
+from tautwise.reader import Document
+from tautwise.strict import described, nearest, shown
+
+NOT_YET = {
+    "size": "the catalogue of lines is not available in this version; give diameter, weight, stiffness and strength",
+    "arrange": "arranging supports is not available in this version",
+    "sweep": "sweeps are not available in this version",
+}
+
+
+def faults_of(error: ValidationError, model: type[BaseModel], document: Document, at: KeyPath) -> Iterator[Fault]:
+    """The faults behind a validation error of the table at path `at`."""
+    for item in error.errors(include_url=False, include_input=True):
+        path = item["loc"]
+        kind, context = item["type"], item.get("ctx", {})
+        if kind == "extra_forbidden":
+            yield unknown_key(document, (*at, *path), keys_of(_model_at(model, path[:-1]) or model))
+        elif kind == "tautwise":
+            example = _example(path, context["example"])
+            yield document.fault((*at, *path), context["problem"], context["expected"], example)
+        elif kind == "missing":
+            field = _field_at(model, path)
+            words, example = _expectation(field)
+            yield document.fault((*at, *path), "missing", words, _example(path, example))
+        else:
+            yield _shape_fault(document, (*at, *path), kind, item["input"])
+
+
+def unknown_key(document: Document, path: KeyPath, known: Iterable[str]) -> Fault:
+    """The fault of a key that is not known, with the nearest one that is."""
+    key, keys = str(path[-1]), list(known)
+    if key in NOT_YET and key not in keys:
+        return document.fault(path, NOT_YET[key])
+    guess = nearest(key, keys)
+    if guess:
+        return document.fault(path, f'unknown key; did you mean "{guess}"?')
+    kinds = [kind for kind, model in LIMITS.items() if key in keys_of(model)]
+    if path[0] == "limit" and kinds:
+        return document.fault(path, f"no key of this kind of limit, whose keys are {', '.join(keys)}")
+    return document.fault(path, "unknown key", f"one of {', '.join(keys)}")
+
+
+def keys_of(model: type[BaseModel]) -> list[str]:
+    """The keys of a table as they are written.
+
+    >>> from tautwise.tables import Crossing
+    >>> keys_of(Crossing)
+    ['name', 'from', 'to', 'top']
+    """
+    return [field.alias or name for name, field in model.model_fields.items()]
+
+
+def example_of(model: type[BaseModel], key: str) -> str:
+    """How a key of a table is written.
+
+    >>> from tautwise.tables import Line
+    >>> example_of(Line, "weight")
+    'weight = "11.9 N/m"'
+    """
+    return _example((key,), _expectation(_field_at(model, (key,)))[1])
+
+
+def _example(path: KeyPath, value: str) -> str:
+    if not value or not path or not isinstance(path[-1], str):
+        return value
+    key = path[-1]
+    return f"{key} = {value}" if key.replace("_", "").isalnum() and key.isascii() else value
+
+
+def _shape_fault(document: Document, path: KeyPath, kind: str, value: Any) -> Fault:
+    if kind in {"too_short", "too_long"}:
+        return document.fault(path, "an empty list" if kind == "too_short" else "too long a list")
+    wanted = "a list" if kind.startswith(("tuple", "list")) else "a table"
+    example = '["...", "..."]' if wanted == "a list" else "{ ... }"
+    return document.fault(path, f"{described(value)} where {wanted} is needed", wanted, _example(path, example))
+
+
+def _field_at(model: type[BaseModel], path: KeyPath) -> FieldInfo | None:
+    current: type[BaseModel] | None = model
+    field: FieldInfo | None = None
+    for part in path:
+        if not isinstance(part, str):
+            continue
+        if current is None:
+            return None
+        fields = {field.alias or name: field for name, field in current.model_fields.items()}
+        field = fields.get(part)
+        current = _table_in(field.annotation) if field else None
+    return field
+
+
+def _model_at(model: type[BaseModel], path: KeyPath) -> type[BaseModel] | None:
+    if not path:
+        return model
+    field = _field_at(model, path)
+    return _table_in(field.annotation) if field else None
+
+
+def _table_in(annotation: Any) -> type[BaseModel] | None:
+    if isinstance(annotation, type) and issubclass(annotation, BaseModel):
+        return annotation
+    return next((found for part in get_args(annotation) if (found := _table_in(part))), None)
+
+
+def _expectation(field: FieldInfo | None) -> tuple[str, str]:
+    if field is None:
+        return "", ""
+    kind = next((part for part in (*field.metadata, *_parts(field.annotation)) if isinstance(part, Kind)), None)
+    return (kind.words, kind.example) if kind else ("", "")
+
+
+def _parts(annotation: Any) -> Iterator[Any]:
+    metadata = getattr(annotation, "__metadata__", ())
+    yield from metadata
+    for part in get_args(annotation):
+        yield part
+        yield from _parts(part)
+
+
+def quoted_list(names: Iterable[str]) -> str:
+    """Names in quotes, with commas.
+
+    >>> quoted_list(["hot", "cold"])
+    '"hot", "cold"'
+    """
+    return ", ".join(f'"{shown(name)}"' for name in names)

@@ -1,0 +1,144 @@
+"""The limits of a project file, one model per kind.
+
+`spans` lists spans by the name of the support where each starts; `supports` lists supports by name.
+"""
+
+from __future__ import annotations
+
+from typing import Annotated, ClassVar, Literal
+
+from pydantic import Field
+
+from tautwise.fields import (
+    CatenaryConstant,
+    Choice,
+    Coordinate,
+    Distance,
+    Name,
+    PositiveForce,
+    Prose,
+    Sag,
+    Share,
+    Slope,
+    SomeForce,
+    SwingAngle,
+    Words,
+)
+from tautwise.tables import Table
+
+DIRECTIONS = ("along", "across", "down", "up", "resultant")
+GROUND = "ground"
+
+Names = Annotated[tuple[Name, ...], Field(min_length=1)]
+LimitId = Annotated[str, Words("an id", "strength")]
+
+
+class BaseLimit(Table):
+    """What every limit has: an id, the conditions it is judged in (default: all), and where the rule stands."""
+
+    looks_at: ClassVar[str] = "spans"
+
+    id: LimitId
+    conditions: Names | None = None
+    clause: Prose | None = None
+    why: Prose | None = None
+
+
+class ClearanceLimit(BaseLimit):
+    """The least vertical distance, m, of the line above the ground or a crossing, between two stations."""
+
+    kind: Literal["clearance"]
+    over: Annotated[str, Words("ground or a crossing's name", "ground")] = GROUND
+    least: Distance
+    from_m: Coordinate | None = Field(None, alias="from")
+    to_m: Coordinate | None = Field(None, alias="to")
+
+
+class TensionLimit(BaseLimit):
+    """The most tension of the line, N, or the most share of its breaking strength."""
+
+    kind: Literal["tension"]
+    share: Share | None = None
+    most: PositiveForce | None = None
+    spans: Names | None = None
+
+
+class SupportLoadLimit(BaseLimit):
+    """The most force on a support, N, or the most share of its capacity, in one direction."""
+
+    looks_at: ClassVar[str] = "supports"
+
+    kind: Literal["support_load"]
+    direction: Annotated[str, Choice(DIRECTIONS)] = "resultant"
+    share: Share | None = None
+    most: PositiveForce | None = None
+    supports: Names | None = None
+
+
+class UpliftLimit(BaseLimit):
+    """The least downward force of the line on a support, N."""
+
+    looks_at: ClassVar[str] = "supports"
+
+    kind: Literal["uplift"]
+    least: SomeForce = 0.0
+    supports: Names | None = None
+
+
+class SwingLimit(BaseLimit):
+    """The most swing of a hanger from the vertical, rad."""
+
+    looks_at: ClassVar[str] = "supports"
+
+    kind: Literal["swing"]
+    most: SwingAngle
+    supports: Names | None = None
+
+
+class SagLimit(BaseLimit):
+    """The most and the least sag of a span, m."""
+
+    kind: Literal["sag"]
+    most: Sag | None = None
+    least: Distance | None = None
+    spans: Names | None = None
+
+
+class CatenaryConstantLimit(BaseLimit):
+    """The most horizontal tension over bare weight per metre, m."""
+
+    kind: Literal["catenary_constant"]
+    most: CatenaryConstant
+    spans: Names | None = None
+
+
+class SlopeLimit(BaseLimit):
+    """The most slope of the line, rise over run."""
+
+    kind: Literal["slope"]
+    most: Annotated[float, Slope()]
+    spans: Names | None = None
+
+
+Limit = Annotated[
+    ClearanceLimit
+    | TensionLimit
+    | SupportLoadLimit
+    | UpliftLimit
+    | SwingLimit
+    | SagLimit
+    | CatenaryConstantLimit
+    | SlopeLimit,
+    Field(discriminator="kind"),
+]
+
+LIMITS: dict[str, type[BaseLimit]] = {
+    "clearance": ClearanceLimit,
+    "tension": TensionLimit,
+    "support_load": SupportLoadLimit,
+    "uplift": UpliftLimit,
+    "swing": SwingLimit,
+    "sag": SagLimit,
+    "catenary_constant": CatenaryConstantLimit,
+    "slope": SlopeLimit,
+}

@@ -1,0 +1,226 @@
+"""A project: a line, its supports, ground, conditions and limits, read from a file or built from keyword arguments.
+
+>>> project = Project(
+...     line={"diameter": "16 mm", "weight": "11.9 N/m", "stiffness": "22.5 MN", "expansion": "11.5e-6 / K"},
+...     support=[
+...         {"name": "West", "station": "0 m", "elevation": "24 m"},
+...         {"name": "East", "station": "300 m", "elevation": "24 m"},
+...     ],
+...     stringing={"temperature": "15 degC", "horizontal_tension": "20 kN"},
+...     condition=[{"name": "hot", "temperature": "60 degC"}],
+... )
+>>> project.supports[1].station_m, project.conditions[0].name, project.line.weight_N_per_m
+(300.0, 'hot', 11.9)
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import os
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, cast
+
+from pydantic import BaseModel, ConfigDict, PrivateAttr, SerializeAsAny
+
+from tautwise.check import Checked, read_tables
+from tautwise.errors import Fault, InputError
+from tautwise.from_core import file_path
+from tautwise.limits import BaseLimit
+from tautwise.plausible import warnings_of
+from tautwise.profile import Ground
+from tautwise.reader import Document, Source, read_project
+from tautwise.rules import line_rules, place_rules, stringing_rules, support_rules
+from tautwise.rules_loading import condition_rules, limit_rules, mark_rules
+from tautwise.strict import did_you_mean, shown
+from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
+from tautwise.to_core import problem_of
+
+if TYPE_CHECKING:
+    from tautwise.results import Equilibrium, PullWindow, VetReport
+
+RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
+
+
+class Project(BaseModel):
+    """A checked project; frozen, SI inside.
+
+    Parameters
+    ----------
+    Keyword arguments with the keys and the nesting of a project file; quantities as text with a unit or as pint
+    quantities. A relative ``ground.profile`` is looked for in the working directory.
+
+    Attributes
+    ----------
+    title: of the project, possibly empty.
+    line, ground (or None), stringing: the tables.
+    supports, crossings, conditions, marks, limits: the arrays of tables, in the order of the file.
+    source: the project file as the user named it; None for keyword arguments.
+    input_sha256: the SHA-256 of the file. With included files or a ground profile: of the lines "HASH  NAME" of all of
+        them, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
+    warnings: values that can be read but are hardly meant, one line each.
+
+    Raises
+    ------
+    InputError: everything that is wrong, in one go.
+    """
+
+    model_config = ConfigDict(frozen=True, extra="forbid", arbitrary_types_allowed=True)
+
+    title: str
+    line: Line
+    ground: Ground | None
+    stringing: Stringing
+    crossings: tuple[Crossing, ...]
+    supports: tuple[Support, ...]
+    conditions: tuple[Condition, ...]
+    marks: tuple[Mark, ...]
+    limits: tuple[SerializeAsAny[BaseLimit], ...]
+    source: str | None
+    input_sha256: str
+    _document: Document = PrivateAttr()
+    _warnings: tuple[str, ...] = PrivateAttr(default=())
+
+    def __init__(self, **tables: Any) -> None:
+        document = Document(_without_none(tables), sources=[_keyword_source(tables)])
+        self._fill(document)
+
+    @classmethod
+    def _of(cls, document: Document) -> Project:
+        project = cls.__new__(cls)
+        project._fill(document)
+        return project
+
+    def _fill(self, document: Document) -> None:
+        values = _checked_values(document)
+        BaseModel.__init__(self, **values)
+        self._document = document
+        self._warnings = warnings_of(self, document)
+
+    @property
+    def warnings(self) -> tuple[str, ...]:
+        """Values that can be read but are hardly meant, one line each."""
+        return self._warnings
+
+    def condition_index(self, name: str) -> int:
+        """The number of a condition, from 0.
+
+        Raises
+        ------
+        InputError: there is no such condition.
+        """
+        names = [condition.name for condition in self.conditions]
+        if name not in names:
+            problem = f'there is no condition "{shown(name)}"; {did_you_mean(name, names)}'
+            raise InputError([Fault(self.source, None, "", problem)])
+        return names.index(name)
+
+    def elevation_m(self, support: Support) -> float:
+        """Elevation, m, of the point where a support's hold is fixed."""
+        if support.given_elevation_m is not None:
+            return support.given_elevation_m
+        ground = cast(Ground, self.ground)  # a height without a ground profile is refused when read
+        return ground.elevation(support.station_m) + cast(float, support.height_m)
+
+    def to_core(self) -> dict[str, Any]:
+        """The problem as ``tautwise._core.Project`` takes it: plain values in SI, names resolved to indices."""
+        return problem_of(self)
+
+    def core_fault(self, path: str, problem: str, expected: str = "") -> Fault:
+        """A fault that the core found (path such as ``supports[2].hanger_length_m``), at the key in the file."""
+        return self._document.fault(file_path(self, path), problem, expected)
+
+    def settle(self, condition: str | None = None, pull: float | str | None = None) -> Equilibrium:
+        """The equilibrium in one condition, for the given stringing.
+
+        Parameters
+        ----------
+        condition: its name; may be left out where there is only one.
+        pull: horizontal tension at stringing in N, or as text with a unit, instead of the stringing rule.
+        """
+        import tautwise.solve as solve
+
+        return solve.settle(self, condition, pull=pull)
+
+    def settle_all(self, pull: float | str | None = None) -> tuple[Equilibrium, ...]:
+        """The equilibrium in every condition, in the order of the file; `pull` as in `settle`."""
+        import tautwise.solve as solve
+
+        return solve.settle_all(self, pull=pull)
+
+    def window(self, **options: Any) -> PullWindow:
+        """The pretension window: the pulls that keep every limit in every condition, and the pull to specify."""
+        import tautwise.solve as solve
+
+        return solve.window(self, **options)
+
+    def vet(self, pull: float | str | None = None) -> VetReport:
+        """Every limit in every condition, for the given stringing; `pull` as in `settle`."""
+        import tautwise.solve as solve
+
+        return solve.vet(self, pull=pull)
+
+    def __repr__(self) -> str:
+        counts = (("support", self.supports), ("condition", self.conditions), ("limit", self.limits))
+        words = ", ".join(f"{len(rows)} {word}{'' if len(rows) == 1 else 's'}" for word, rows in counts)
+        return f"Project({self.title!r}: {words})"
+
+    __str__ = __repr__
+
+
+def load(path: str | os.PathLike[str]) -> Project:
+    """Read a project file.
+
+    Parameters
+    ----------
+    path: the file, TOML, by convention ``NAME.taut.toml``. The ground profile and included files lie in its folder.
+
+    Raises
+    ------
+    InputError: everything that is wrong with the file, each with file, line, key, expectation and example.
+    """
+    return Project._of(read_project(path))
+
+
+def _checked_values(document: Document) -> dict[str, Any]:
+    checked = read_tables(document)
+    for rule in RULES:
+        rule(checked)
+    if checked.faults:
+        raise InputError(checked.faults)
+    return _values(checked) | {"source": document.name, "input_sha256": _digest(document.sources)}
+
+
+def _values(checked: Checked) -> dict[str, Any]:
+    return {
+        "title": checked.head.title,
+        "line": checked.line,
+        "ground": checked.ground,
+        "stringing": checked.stringing,
+        "crossings": tuple(checked.crossings),
+        "supports": tuple(checked.supports),
+        "conditions": tuple(checked.conditions),
+        "marks": tuple(checked.marks),
+        "limits": tuple(checked.limits),
+    }
+
+
+def _digest(sources: list[Source]) -> str:
+    if len(sources) == 1:
+        return sources[0].sha256
+    folder = Path(sources[0].name).parent
+    lines = (f"{source.sha256}  {os.path.relpath(source.name, folder)}\n" for source in sources)
+    return hashlib.sha256("".join(lines).encode()).hexdigest()
+
+
+def _keyword_source(tables: dict[str, Any]) -> Source:
+    text = json.dumps(tables, sort_keys=True, ensure_ascii=False, separators=(",", ":"), default=str, skipkeys=True)
+    return Source("", hashlib.sha256(text.encode("utf-8", "surrogatepass")).hexdigest())
+
+
+def _without_none(value: Any) -> Any:
+    if isinstance(value, dict):
+        return {key: _without_none(part) for key, part in value.items() if part is not None}
+    if isinstance(value, list | tuple):
+        return [_without_none(part) for part in value]
+    return value

@@ -1,0 +1,70 @@
+"""The JSON Schema of the project file, made from the same models that read it."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from pydantic import Field
+
+from tautwise.check import MOST
+from tautwise.limits import Limit
+from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support
+
+_WEIGHT = {"oneOf": [{"required": ["weight"]}, {"required": ["mass"]}]}
+_STIFFNESS = {"oneOf": [{"required": ["stiffness"]}, {"required": ["modulus", "area"]}]}
+_GIVEN_ONCE = {
+    "Line": {"allOf": [_WEIGHT, _STIFFNESS]},
+    "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
+    "Support": {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]},
+    "Wind": {"oneOf": [{"required": ["pressure"]}, {"required": ["speed"]}]},
+    "Load": {"oneOf": [{"required": ["force"]}, {"required": ["per_length"]}]},
+    "Mark": {"oneOf": [{"required": ["at"]}, {"required": ["at_length"]}]},
+    "TensionLimit": {"oneOf": [{"required": ["share"]}, {"required": ["most"]}]},
+    "SupportLoadLimit": {"oneOf": [{"required": ["share"]}, {"required": ["most"]}]},
+    "SagLimit": {"anyOf": [{"required": ["most"]}, {"required": ["least"]}]},
+}
+
+
+class ProjectFile(Head):
+    """A Tautwise project file."""
+
+    include: str | list[str] | None = None
+    line: Line
+    ground: GroundTable | None = None
+    crossing: tuple[Crossing, ...] = Field((), max_length=MOST["crossing"])
+    support: tuple[Support, ...] = Field(min_length=2, max_length=MOST["support"])
+    stringing: Stringing
+    condition: tuple[Condition, ...] = Field(min_length=1, max_length=MOST["condition"])
+    mark: tuple[Mark, ...] = Field((), max_length=MOST["mark"])
+    limit: tuple[Limit, ...] = Field((), max_length=MOST["limit"])
+
+
+def project_schema() -> dict[str, Any]:
+    """The JSON Schema (2020-12) of one whole project file, in which nothing is left to an included file.
+
+    Quantities are strings with a pattern and examples; no key beyond those named is allowed.
+
+    >>> schema = project_schema()
+    >>> schema["additionalProperties"], schema["$defs"]["Line"]["properties"]["weight"]["examples"]
+    (False, ['11.9 N/m'])
+    """
+    schema = _without_null(ProjectFile.model_json_schema(by_alias=True, mode="validation"))
+    for name, rule in _GIVEN_ONCE.items():
+        schema["$defs"][name].update(rule)
+    schema["required"] = ["format", *schema["required"]]
+    return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
+
+
+def _without_null(value: Any) -> Any:
+    """Drop the null that optional attributes allow: TOML has none."""
+    if isinstance(value, list):
+        return [_without_null(part) for part in value]
+    if not isinstance(value, dict):
+        return value
+    kept = {key: _without_null(part) for key, part in value.items() if not (key == "default" and part is None)}
+    options = kept.get("anyOf")
+    if isinstance(options, list) and {"type": "null"} in options:
+        options = [option for option in options if option != {"type": "null"}]
+        del kept["anyOf"]
+        kept = {**options[0], **kept} if len(options) == 1 else {**kept, "anyOf": options}
+    return kept

@@ -1,0 +1,112 @@
+"""The commented project file from which a user begins."""
+
+from __future__ import annotations
+
+START_TEXT = """\
+# A line over a small inlet, invented. Change every value to your own; run `tautwise window` on it any time.
+# Quantities are texts with a unit, SI or US: "16 mm", "0.63 in", "11.9 N/m", "0.815 lbf/ft", "-5 degC", "23 degF".
+
+format = "tautwise 1"
+title  = "Inlet crossing"
+
+[line]                                # bare, per metre of unstretched line
+name = "19-wire strand, 16 mm"
+diameter = "16 mm"
+area = "150 mm^2"
+weight = "11.9 N/m"                   # or mass = "1.21 kg/m"
+modulus = "150 GPa"                   # or stiffness = "22.5 MN" (modulus times area)
+expansion = "11.5e-6 / K"
+breaking_strength = "190 kN"
+
+[ground]                              # station along the route, elevation; or profile = "ground.csv"
+points = [
+    ["0 m", "6.0 m"],
+    ["90 m", "4.0 m"],
+    ["120 m", "0.5 m"],
+    ["180 m", "0.5 m"],
+    ["215 m", "5.0 m"],
+    ["300 m", "7.0 m"],
+]
+
+[[crossing]]                          # what the line must keep clear of
+name = "channel"
+from = "120 m"
+to = "180 m"
+top = "3.0 m"                         # elevation of the highest water
+
+[[support]]                           # at least two, in the order of their stations
+name = "West mast"
+station = "0 m"
+height = "15 m"                       # above the ground; or elevation = "21 m"
+hold = "anchor"                       # anchor: the line ends here. In between also: hanger (length, weight),
+                                      # post (stiffness_along, stiffness_across)
+capacity = { along = "90 kN", down = "30 kN" }
+
+[[support]]
+name = "East mast"
+station = "300 m"
+height = "14 m"
+hold = "anchor"
+
+[stringing]
+temperature = "15 degC"               # bare line, no wind; the temperature of the natural length
+horizontal_tension = "20 kN"          # the pull. Or instead: tension = { support = "West mast", value = "21 kN" },
+                                      # sag = { from = "West mast", to = "East mast", value = "6.7 m" },
+                                      # natural_length = "300.1 m". `tautwise window` searches the pull by itself.
+tolerance = "3 %"                     # how well the crew can keep it
+
+[[condition]]
+name = "hot"
+temperature = "60 degC"
+
+[[condition]]
+name = "cold"
+temperature = "-30 degC"
+
+[[condition]]
+name = "ice and wind"
+temperature = "-5 degC"
+ice = { thickness = "10 mm", density = "900 kg/m^3" }     # radial thickness
+wind = { pressure = "300 Pa", drag = 1.0 }                # or speed = "22 m/s"; square across the line
+# load = [ { force = "500 N", at = "150 m" }, { per_length = "20 N/m", from = "40 m", to = "80 m" } ]
+
+[[mark]]                              # a place on the line whose position is reported
+name = "marker ball"
+at = "150 m"
+
+[[limit]]
+id = "channel-clearance"
+kind = "clearance"
+over = "channel"                      # or "ground", the default
+least = "6.5 m"
+
+[[limit]]
+id = "ground-clearance"
+kind = "clearance"
+least = "5 m"
+
+[[limit]]
+id = "strength"
+kind = "tension"
+share = 0.4                           # of breaking_strength; or most = "76 kN"
+
+[[limit]]
+id = "west-mast"
+kind = "support_load"
+supports = ["West mast"]
+direction = "along"
+share = 0.8                           # of capacity; or most = "72 kN"
+
+# Other kinds: uplift (least), swing (most = "35 deg", for hangers), sag (most, least), slope (most = "12 %"),
+# catenary_constant (most = "1800 m"). Limits on spans take spans = ["West mast"], the support where a span starts;
+# every limit takes conditions = ["hot"], clause = "...", why = "...".
+"""
+
+
+def start_text() -> str:
+    """A project file with a comment on each part; it loads as it stands, and its window is open.
+
+    >>> start_text().count("[[support]]")
+    2
+    """
+    return START_TEXT

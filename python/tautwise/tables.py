@@ -1,0 +1,225 @@
+"""The tables of a project file as frozen models, every number in SI with its unit in the attribute's name.
+
+The key of an attribute in a file, or among keyword arguments, is its alias: `diameter_m` is written ``diameter``.
+Rules between keys are in :mod:`tautwise.rules`; here is only what each key holds by itself.
+"""
+
+from __future__ import annotations
+
+import math
+from typing import Annotated, Any
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from tautwise.fields import (
+    AlongLine,
+    Angle,
+    AnyForce,
+    AnyForcePerLength,
+    Area,
+    AxialStiffness,
+    Choice,
+    Coordinate,
+    Density,
+    Direction,
+    Drag,
+    Elevation,
+    Expansion,
+    HangerLength,
+    Height,
+    Lengths,
+    MassPerLength,
+    Modulus,
+    Name,
+    PositiveForce,
+    PositiveForcePerLength,
+    PositiveLength,
+    Pressure,
+    Sag,
+    SomeForce,
+    SomeForcePerLength,
+    Speed,
+    SpringRate,
+    Temperature,
+    Thickness,
+    Tolerance,
+    Words,
+)
+from tautwise.units import STANDARD_GRAVITY_M_PER_S2
+
+HOLDS = ("anchor", "hanger", "post")
+SHEAVE = "a line in service over a sheave is not available in this version"
+
+Hold = Annotated[str, Choice(HOLDS, later=(("sheave", SHEAVE),))]
+
+
+class Table(BaseModel):
+    """Base of the tables: frozen, and no key that is not declared."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid", hide_input_in_errors=True)
+
+
+class Line(Table):
+    """The line itself, bare: per natural metre at the stringing temperature."""
+
+    name: Name | None = None
+    diameter_m: PositiveLength | None = Field(None, alias="diameter")
+    area_m2: Area | None = Field(None, alias="area")
+    given_weight_N_per_m: PositiveForcePerLength | None = Field(None, alias="weight")
+    mass_kg_per_m: MassPerLength | None = Field(None, alias="mass")
+    modulus_Pa: Modulus | None = Field(None, alias="modulus")
+    given_stiffness_N: AxialStiffness | None = Field(None, alias="stiffness")
+    given_expansion_per_K: Expansion | None = Field(None, alias="expansion")
+    breaking_strength_N: PositiveForce | None = Field(None, alias="breaking_strength")
+
+    @property
+    def weight_N_per_m(self) -> float:
+        """Weight, N/m; from the mass with 9.80665 m/s2 where that is given."""
+        if self.given_weight_N_per_m is not None:
+            return self.given_weight_N_per_m
+        return (self.mass_kg_per_m or math.nan) * STANDARD_GRAVITY_M_PER_S2
+
+    @property
+    def stiffness_N(self) -> float:
+        """EA, N; from modulus and area where these are given."""
+        if self.given_stiffness_N is not None:
+            return self.given_stiffness_N
+        return (self.modulus_Pa or math.nan) * (self.area_m2 or math.nan)
+
+    @property
+    def expansion_per_K(self) -> float:
+        """Thermal strain per kelvin; 0 where no condition needs it."""
+        return self.given_expansion_per_K or 0.0
+
+
+class GroundTable(Table):
+    """Where the ground profile is: a CSV file, or points [station, elevation]."""
+
+    profile: Annotated[str, Words("a file name", "ground.csv")] | None = None
+    points: Any = Field(
+        None,
+        json_schema_extra={
+            "type": "array",
+            "minItems": 2,
+            "items": {"type": "array", "minItems": 2, "maxItems": 2, "items": {"type": "string"}},
+            "examples": [[["0 m", "3 m"], ["240 m", "5 m"]]],
+        },
+    )
+
+
+class Crossing(Table):
+    """What must be kept clear of between two stations, up to an elevation."""
+
+    name: Name
+    from_m: Coordinate = Field(alias="from")
+    to_m: Coordinate = Field(alias="to")
+    top_m: Elevation = Field(alias="top")
+
+
+class Capacity(Table):
+    """What a support can take in each direction, N."""
+
+    along_N: PositiveForce | None = Field(None, alias="along")
+    across_N: PositiveForce | None = Field(None, alias="across")
+    down_N: PositiveForce | None = Field(None, alias="down")
+    up_N: PositiveForce | None = Field(None, alias="up")
+
+
+class Support(Table):
+    """A support: where it stands and how it holds the line."""
+
+    name: Name
+    station_m: Coordinate = Field(alias="station")
+    offset_m: Coordinate = Field(0.0, alias="offset")
+    given_elevation_m: Elevation | None = Field(None, alias="elevation")
+    height_m: Height | None = Field(None, alias="height")
+    hold: Hold = "anchor"
+    hanger_length_m: HangerLength | None = Field(None, alias="length")
+    hanger_weight_N: SomeForce = Field(0.0, alias="weight")
+    stiffness_along_N_per_m: SpringRate | None = Field(None, alias="stiffness_along")
+    stiffness_across_N_per_m: SpringRate | None = Field(None, alias="stiffness_across")
+    capacity: Capacity = Capacity()
+
+
+class TensionAt(Table):
+    """The larger of the line's tensions beside a support, as strung."""
+
+    support: Name
+    value_N: PositiveForce = Field(alias="value")
+
+
+class SagOf(Table):
+    """The sag of the span between two neighbouring supports, as strung."""
+
+    from_support: Name = Field(alias="from")
+    to_support: Name = Field(alias="to")
+    value_m: Sag = Field(alias="value")
+
+
+class Stringing(Table):
+    """How the line is strung: bare, at a temperature, by one rule or (for a window search) by none."""
+
+    temperature_degC: Temperature = Field(alias="temperature")
+    horizontal_tension_N: PositiveForce | None = Field(None, alias="horizontal_tension")
+    tension: TensionAt | None = None
+    sag: SagOf | None = None
+    natural_length_m: Annotated[Any, Lengths()] = Field(None, alias="natural_length")
+    tolerance: Tolerance = 0.0
+
+
+class Ice(Table):
+    """A sleeve of ice: radial thickness and density."""
+
+    thickness_m: Thickness = Field(alias="thickness")
+    density_kg_per_m3: Density = Field(alias="density")
+
+
+class Wind(Table):
+    """Wind by pressure or by speed, on the iced diameter; 90 deg blows square across, to the left."""
+
+    pressure_Pa: Pressure | None = Field(None, alias="pressure")
+    speed_m_per_s: Speed | None = Field(None, alias="speed")
+    drag: Drag = 1.0
+    angle_rad: Angle = Field(math.pi / 2, alias="angle")
+    air_density_kg_per_m3: Density = Field(1.225, alias="air_density")
+
+
+class Load(Table):
+    """A force at a place of the line, or a load per length on a stretch of it."""
+
+    name: Name | None = None
+    force_N: AnyForce | None = Field(None, alias="force")
+    per_length_N_per_m: AnyForcePerLength | None = Field(None, alias="per_length")
+    direction: Annotated[Any, Direction()] = "down"
+    at_m: Coordinate | None = Field(None, alias="at")
+    from_m: Coordinate | None = Field(None, alias="from")
+    to_m: Coordinate | None = Field(None, alias="to")
+    at_length_m: AlongLine | None = Field(None, alias="at_length")
+    from_length_m: AlongLine | None = Field(None, alias="from_length")
+    to_length_m: AlongLine | None = Field(None, alias="to_length")
+
+
+class Condition(Table):
+    """A loading condition that the line must live through."""
+
+    name: Name
+    temperature_degC: Temperature = Field(alias="temperature")
+    ice: Ice | None = None
+    wind: Wind | None = None
+    resultant_addition_N_per_m: SomeForcePerLength = Field(0.0, alias="resultant_addition")
+    loads: tuple[Load, ...] = Field((), alias="load")
+
+
+class Mark(Table):
+    """A place on the line whose position is reported in every condition."""
+
+    name: Name
+    at_m: Coordinate | None = Field(None, alias="at")
+    at_length_m: AlongLine | None = Field(None, alias="at_length")
+
+
+class Head(Table):
+    """The keys outside any table."""
+
+    format: Annotated[str, Choice(("tautwise 1",))] = "tautwise 1"
+    title: Annotated[str, Words("a title", "Inlet crossing")] = ""

@@ -1,0 +1,191 @@
+"""The problem that the C core solves, from a checked project: names become indices, heights become elevations."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SupportLoadLimit, SwingLimit
+from tautwise.rules_loading import has_capacity
+from tautwise.tables import Condition, Load, Support
+
+if TYPE_CHECKING:
+    from tautwise.model import Project
+
+_WORD_VECTORS = {"down": (0.0, 0.0, -1.0), "up": (0.0, 0.0, 1.0), "across": (0.0, 1.0, 0.0), "along": (1.0, 0.0, 0.0)}
+_ICE_DENSITY_UNUSED = 900.0
+
+
+def problem_of(project: Project) -> dict[str, Any]:
+    """The `problem` that ``tautwise._core.Project`` takes: plain values, SI, degC, rad; None for "not given"."""
+    return {
+        "line": _line(project),
+        "supports": [_support(project, support) for support in project.supports],
+        "ground": _ground(project),
+        "crossings": [{"from_m": one.from_m, "to_m": one.to_m, "top_m": one.top_m} for one in project.crossings],
+        "conditions": [_condition(condition) for condition in project.conditions],
+        "marks": [_place(mark.at_m, mark.at_length_m) for mark in project.marks],
+        "limits": [_limit(project, limit) for limit in project.limits],
+        "stringing": _stringing(project),
+    }
+
+
+def _line(project: Project) -> dict[str, Any]:
+    line = project.line
+    return {
+        "diameter_m": line.diameter_m or 0.0,
+        "weight_N_per_m": line.weight_N_per_m,
+        "stiffness_N": line.stiffness_N,
+        "expansion_per_K": line.expansion_per_K,
+        "breaking_strength_N": line.breaking_strength_N,
+    }
+
+
+def _support(project: Project, support: Support) -> dict[str, Any]:
+    rigid = math.inf
+    return {
+        "station_m": support.station_m,
+        "offset_m": support.offset_m,
+        "elevation_m": project.elevation_m(support),
+        "height_m": support.height_m,
+        "hold": support.hold,
+        "hanger_length_m": support.hanger_length_m or 0.0,
+        "hanger_weight_N": support.hanger_weight_N,
+        "stiffness_along_N_per_m": support.stiffness_along_N_per_m or rigid,
+        "stiffness_across_N_per_m": support.stiffness_across_N_per_m or rigid,
+        "capacity_along_N": support.capacity.along_N,
+        "capacity_across_N": support.capacity.across_N,
+        "capacity_down_N": support.capacity.down_N,
+        "capacity_up_N": support.capacity.up_N,
+    }
+
+
+def _ground(project: Project) -> dict[str, Any] | None:
+    if project.ground is None:
+        return None
+    return {
+        "station_m": np.array(project.ground.stations_m, dtype=np.float64),
+        "elevation_m": np.array(project.ground.elevations_m, dtype=np.float64),
+    }
+
+
+def _condition(condition: Condition) -> dict[str, Any]:
+    ice, wind = condition.ice, condition.wind
+    core: dict[str, Any] = {
+        "temperature_degC": condition.temperature_degC,
+        "ice_thickness_m": ice.thickness_m if ice else 0.0,
+        "ice_density_kg_per_m3": ice.density_kg_per_m3 if ice else _ICE_DENSITY_UNUSED,
+        "wind_pressure_Pa": wind.pressure_Pa if wind else 0.0,
+        "wind_speed_m_per_s": wind.speed_m_per_s if wind else None,
+        "resultant_addition_N_per_m": condition.resultant_addition_N_per_m,
+        "loads": [_load(load) for load in condition.loads],
+    }
+    if wind:
+        core["air_density_kg_per_m3"] = wind.air_density_kg_per_m3
+        core["wind_drag"] = wind.drag
+        core["wind_angle_rad"] = wind.angle_rad
+    return core
+
+
+def _load(load: Load) -> dict[str, Any]:
+    size = load.force_N if load.force_N is not None else load.per_length_N_per_m
+    by_word = isinstance(load.direction, str)
+    vector = _WORD_VECTORS[load.direction] if by_word else load.direction
+    core: dict[str, Any] = {
+        "is_point": load.force_N is not None,
+        "frame": "span" if by_word else "route",
+        "vector": tuple(part * (size or 0.0) for part in vector),
+        "place": "whole",
+        "from_m": None,
+        "to_m": None,
+    }
+    for place, first, second, last in (
+        ("station", load.at_m, load.from_m, load.to_m),
+        ("length", load.at_length_m, load.from_length_m, load.to_length_m),
+    ):
+        begin = first if first is not None else second
+        if begin is not None:
+            core |= {"place": place, "from_m": begin, "to_m": last}
+    return core
+
+
+def _place(station_m: float | None, length_m: float | None) -> dict[str, Any]:
+    if station_m is not None:
+        return {"place": "station", "at_m": station_m}
+    return {"place": "length", "at_m": length_m}
+
+
+def _limit(project: Project, limit: BaseLimit) -> dict[str, Any]:
+    core: dict[str, Any] = {
+        "kind": getattr(limit, "kind", ""),
+        "least": getattr(limit, "least", None),
+        "most": getattr(limit, "most", None),
+        "share": getattr(limit, "share", None),
+        "applies": [limit.conditions is None or one.name in limit.conditions for one in project.conditions],
+        "covers": _covers(project, limit),
+    }
+    if isinstance(limit, ClearanceLimit):
+        core |= _clearance(project, limit)
+    if isinstance(limit, SupportLoadLimit):
+        core["direction"] = limit.direction
+    return core
+
+
+def _clearance(project: Project, limit: ClearanceLimit) -> dict[str, Any]:
+    stretch: dict[str, Any] = {"from_m": limit.from_m, "to_m": limit.to_m, "crossing": None}
+    if limit.from_m is not None or limit.to_m is not None:
+        stretch["from_m"] = limit.from_m if limit.from_m is not None else project.supports[0].station_m
+        stretch["to_m"] = limit.to_m if limit.to_m is not None else project.supports[-1].station_m
+    if limit.over != GROUND:
+        stretch["crossing"] = [crossing.name for crossing in project.crossings].index(limit.over)
+    return stretch
+
+
+def _covers(project: Project, limit: BaseLimit) -> list[bool]:
+    if limit.looks_at == "spans":
+        spans = getattr(limit, "spans", None)
+        return [_listed(one, spans) for one in project.supports[:-1]] + [False]
+    supports = getattr(limit, "supports", None)
+    return [_listed(one, supports) and _can_be_judged(one, limit) for one in project.supports]
+
+
+def _listed(support: Support, names: Sequence[str] | None) -> bool:
+    return names is None or support.name in names
+
+
+def _can_be_judged(support: Support, limit: BaseLimit) -> bool:
+    if isinstance(limit, SwingLimit):
+        return support.hold == "hanger"
+    if isinstance(limit, SupportLoadLimit) and limit.share is not None:
+        return has_capacity(support, limit.direction)
+    return True
+
+
+def _stringing(project: Project) -> dict[str, Any]:
+    stringing = project.stringing
+    names = [support.name for support in project.supports]
+    rule: str = "none"
+    value: float | None = None
+    index: int | None = None
+    lengths: list[float] | None = None
+    if stringing.horizontal_tension_N is not None:
+        rule, value = "pull", stringing.horizontal_tension_N
+    elif stringing.tension is not None:
+        rule, value, index = "tension", stringing.tension.value_N, names.index(stringing.tension.support)
+    elif stringing.sag is not None:
+        rule, value, index = "sag", stringing.sag.value_m, names.index(stringing.sag.from_support)
+    elif isinstance(stringing.natural_length_m, tuple):
+        rule, lengths = "span_lengths", list(stringing.natural_length_m)
+    elif stringing.natural_length_m is not None:
+        rule, value = "total_length", stringing.natural_length_m
+    return {
+        "temperature_degC": stringing.temperature_degC,
+        "rule": rule,
+        "value": value,
+        "index": index,
+        "lengths_m": lengths,
+        "tolerance": stringing.tolerance,
+    }
