@@ -32,6 +32,8 @@ tw_section *tw_section_create(const tw_project *project)
     section->pieces = tw_calloc(section->piece_capacity, sizeof *section->pieces);
     section->piece_first = tw_calloc(spans + 1, sizeof *section->piece_first);
     section->cut_m = tw_calloc(2 * loads + 1, sizeof(double));
+    section->slack = tw_calloc(spans + 1, 1);
+    section->run_first = tw_calloc(spans + 1, sizeof *section->run_first);
     section->length_m = tw_calloc(spans, sizeof(double));
     section->pull = tw_calloc(3 * spans, sizeof(double));
     section->clamp = tw_calloc(3 * (spans + 1), sizeof(double));
@@ -41,7 +43,8 @@ tw_section *tw_section_create(const tw_project *project)
     section->load_from_m = tw_calloc(loads + 1, sizeof(double));
     section->load_to_m = tw_calloc(loads + 1, sizeof(double));
     section->work = tw_calloc(TW_SECTION_WORK_PER_SPAN * spans + 3, sizeof(double));
-    if (!section->pieces || !section->piece_first || !section->cut_m || !section->length_m || !section->pull
+    if (!section->pieces || !section->piece_first || !section->cut_m || !section->slack
+        || !section->run_first || !section->length_m || !section->pull
         || !section->clamp || !section->clamp_load || !section->hold_force || !section->load_length_m
         || !section->load_from_m || !section->load_to_m || !section->work) {
         tw_section_free(section);
@@ -58,6 +61,8 @@ void tw_section_free(tw_section *section)
     tw_free(section->pieces);
     tw_free(section->piece_first);
     tw_free(section->cut_m);
+    tw_free(section->slack);
+    tw_free(section->run_first);
     tw_free(section->length_m);
     tw_free(section->pull);
     tw_free(section->clamp);

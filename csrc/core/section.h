@@ -6,6 +6,9 @@
  *     anchor  F.a            hanger  F.a - l |F|          post  F.a - F_x^2/(2 k_x) - F_y^2/(2 k_y)
  * so that D(R) = sum_spans [ -int W*(|t|) ds + load terms ] + sum_holds. -D is convex; its Hessian is block tridiagonal
  * with 3x3 blocks over the spans. Damped Newton.
+ *
+ * l |F| has a kink at F = 0: a slack hanger. There F = 0 is kept as a constraint: the spans on both sides run through
+ * as one, and the clamp only has to stay within l of the support. Which hangers are slack is found by an active set.
  */
 #ifndef TW_SECTION_H
 #define TW_SECTION_H
@@ -14,7 +17,7 @@
 #include "material.h"
 #include "span.h"
 
-enum { TW_SECTION_WORK_PER_SPAN = 42 }; /* doubles of scratch */
+enum { TW_SECTION_WORK_PER_SPAN = 45 }; /* doubles of scratch */
 
 typedef struct tw_section {
     const tw_project *project;
@@ -34,7 +37,9 @@ typedef struct tw_section {
     double *load_to_m;       /* [loads of the condition] and ends; owned */
     double *cut_m;           /* scratch: where the loads cut one span; owned */
     double *work;            /* scratch of the solver; owned */
-    double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 unless one is slack */
+    unsigned char *slack;    /* [span_count + 1] 1: the hanger there hangs slack; owned */
+    size_t *run_first;       /* [span_count + 1] scratch of the solver: runs of spans between holds that carry; owned */
+    double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 but where nothing else settles */
     double energy_lower_J;   /* D, datum at the first support */
     double closing_m;        /* largest closing error */
     size_t steps;            /* Newton steps taken */

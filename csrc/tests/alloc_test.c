@@ -137,6 +137,7 @@ int main(void)
     fixture_three_spans(&f);
     f.condition.resultant_addition_N_per_m = 2.0;
     f.options.elements_per_span = 1; /* a mesh that has to be doubled */
+    f.options.scan_points = 12;
     f.project.stringing.rule = TW_STRING_PULL;
     f.project.stringing.value = 20e3;
     f.project.limits = limits;

@@ -208,6 +208,8 @@ double case_complementary(tw_section *section, const double *pull)
     const double zero[3] = {0.0, 0.0, 0.0};
     double behind[3] = {0.0, 0.0, 0.0};
     double lower = 0.0;
+    double datum[3];
+    tw_hold_attachment(&section->project->supports[0], datum);
     for (size_t j = 0; j <= section->span_count; j++) {
         const tw_support *support = &section->project->supports[j];
         double F[3], a[3];
@@ -220,7 +222,8 @@ double case_complementary(tw_section *section, const double *pull)
             tw_span_hang(&section->material, section->pieces + first, count, zero, pull + 3 * j, end, behind, NULL);
         }
         tw_hold_attachment(support, a);
-        lower += tw_dot(F, a) + tw_hold_energy(support, F);
+        tw_axpy(a, -1.0, datum, a);
+        lower += tw_dot(F, a) + tw_hold_energy(support, F, section->soft_N);
     }
     for (size_t p = 0; p < section->piece_count; p++) {
         const tw_piece *piece = &section->pieces[p];
