@@ -4,7 +4,7 @@
 
 #include "vector.h"
 
-enum { TANGENTS = 7 };
+enum { TANGENTS = 11 };
 
 /* Straight top: elevation z0 at x0, rising by slope, between x0 and x1. */
 typedef struct top {
@@ -19,6 +19,7 @@ typedef struct stretch {
     double x0, x1; /* stations, x0 <= x1 */
     int forward;   /* station grows with s */
     int convex;
+    double tangents_per_m;
     double tangent_x[TANGENTS], tangent_z[TANGENTS], tangent_slope[TANGENTS];
 } stretch;
 
@@ -110,19 +111,18 @@ static void judge_top(const stretch *line, const top *t, double from, double to,
     offer_place(line, t, at_station(line, to), best);
 }
 
-/* No clearance over the top is less than this: the line lies above its tangent from the nearest point, and that comes
- * closest to a straight top at one of its ends. */
-static double bound(const stretch *line, const top *t, double from, double to)
+/* No clearance over the profile from x[0] to x[1] is less than this: the line lies above its tangent from the nearest
+ * point, and that comes closest to a straight top at one of its ends. */
+static double bound(const stretch *line, const double *x, const double *z)
 {
     if (!line->convex) {
         return -INFINITY;
     }
-    double along = (0.5 * (from + to) - line->x0) / (line->x1 - line->x0);
-    int i = (int)(along * (TANGENTS - 1) + 0.5);
-    double at_from = line->tangent_z[i] + line->tangent_slope[i] * (from - line->tangent_x[i])
-                     - t->z0 - t->slope * (from - t->x0);
-    double at_to = at_from + (line->tangent_slope[i] - t->slope) * (to - from);
-    return at_from < at_to ? at_from : at_to;
+    double along = (0.5 * (x[0] + x[1]) - line->x0) * line->tangents_per_m;
+    int i = along <= 0.0 ? 0 : along >= TANGENTS - 1 ? TANGENTS - 1 : (int)(along + 0.5);
+    double near = line->tangent_z[i] + line->tangent_slope[i] * (x[0] - line->tangent_x[i]) - z[0];
+    double far = line->tangent_z[i] + line->tangent_slope[i] * (x[1] - line->tangent_x[i]) - z[1];
+    return near < far ? near : far;
 }
 
 static stretch make_stretch(const tw_material *material, const tw_piece *piece, double s0, double s1)
@@ -135,6 +135,7 @@ static stretch make_stretch(const tw_material *material, const tw_piece *piece, 
     line.forward = last[0] >= first[0];
     line.x0 = fmin(first[0], last[0]);
     line.x1 = fmax(first[0], last[0]);
+    line.tangents_per_m = line.x1 > line.x0 ? (TANGENTS - 1) / (line.x1 - line.x0) : 0.0;
     for (int i = 0; line.convex && i < TANGENTS; i++) {
         double r[3], t[3];
         double s = s0 + (s1 - s0) * i / (TANGENTS - 1);
@@ -150,24 +151,27 @@ static stretch make_stretch(const tw_material *material, const tw_piece *piece, 
 /* The stretch with the lowest bound is judged first, then only those whose bound lies below what was found. */
 static void judge_profile(const tw_project *project, const stretch *line, double from, double to, least *best)
 {
+    const double *x = project->ground_station_m, *z = project->ground_elevation_m;
     size_t first = profile_stretch(project, from);
     size_t lowest = first;
     double lowest_bound = INFINITY;
+    for (size_t k = first; k + 1 < project->ground_count && x[k] < to; k++) {
+        double no_less = bound(line, x + k, z + k);
+        if (no_less < lowest_bound) {
+            lowest_bound = no_less;
+            lowest = k;
+        }
+    }
     for (int pass = 0; pass < 2; pass++) {
-        for (size_t k = first; k + 1 < project->ground_count && project->ground_station_m[k] < to; k++) {
-            top t = profile_top(project, k);
-            double a = from > t.x0 ? from : t.x0, b = to < t.x1 ? to : t.x1;
-            double no_less = a < b ? bound(line, &t, a, b) : INFINITY;
-            if (pass == 0 && no_less < lowest_bound) {
-                lowest_bound = no_less;
-                lowest = k;
-            } else if (pass == 1 && k != lowest && no_less < best->clearance) {
+        for (size_t k = pass ? first : lowest; k + 1 < project->ground_count && x[k] < to; k++) {
+            double a = from > x[k] ? from : x[k], b = to < x[k + 1] ? to : x[k + 1];
+            if (a < b && (!best->found || bound(line, x + k, z + k) < best->clearance)) {
+                const top t = profile_top(project, k);
                 judge_top(line, &t, a, b, best);
             }
-        }
-        if (pass == 0 && lowest_bound < INFINITY) {
-            top t = profile_top(project, lowest);
-            judge_top(line, &t, fmax(from, t.x0), fmin(to, t.x1), best);
+            if (pass == 0) {
+                break;
+            }
         }
     }
 }

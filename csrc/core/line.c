@@ -11,7 +11,7 @@ tw_options tw_options_default(void)
         .evaluations_most = 1000,
         .newton_most = 200,
         .seconds_most = 60.0,
-        .scan_points = 24,
+        .scan_points = 20,
         .verify = 1,
         .poll = NULL,
         .poll_data = NULL,

@@ -14,18 +14,15 @@ typedef struct resolved {
     double inverse;  /* int ds/T */
 } resolved;
 
-/* atanh(x)/x = sum x^2k / (2k + 1); ten terms below 0.15 leave less than 1e-18. */
+/* atanh(x)/x = sum x^2k / (2k + 1); eleven terms below 0.15 leave less than 1e-18. */
 static double atanh_ratio(double x)
 {
     double y = x * x;
     if (y > 0.0225) {
         return atanh(x) / x;
     }
-    double sum = 1.0 / 21.0;
-    for (int k = 9; k >= 0; k--) {
-        sum = sum * y + 1.0 / (2 * k + 1);
-    }
-    return sum;
+    return 1.0 + y * (1.0 / 3.0 + y * (1.0 / 5.0 + y * (1.0 / 7.0 + y * (1.0 / 9.0 + y * (1.0 / 11.0 + y * (1.0 / 13.0
+               + y * (1.0 / 15.0 + y * (1.0 / 17.0 + y * (1.0 / 19.0 + y / 21.0)))))))));
 }
 
 /* int ds/T: the difference of asinh(a/h), as 2 atanh where that is small, as one logarithm where it is large. */
@@ -45,8 +42,9 @@ static resolved resolve(const double tension[3], const double load[3], double le
 {
     resolved r;
     double q = tw_norm(load);
+    double inverse = q > 0.0 ? 1.0 / q : 0.0;
     for (int i = 0; i < 3; i++) {
-        r.e[i] = q > 0.0 ? load[i] / q : 0.0;
+        r.e[i] = load[i] * inverse;
     }
     r.a0 = tw_dot(tension, r.e);
     tw_axpy(tension, -r.a0, r.e, r.b);

@@ -218,7 +218,7 @@ void tw_stringing_range(const tw_project *project, double *low_N, double *high_N
 {
     double weight = project->line.weight_N_per_m;
     double high = project->line.breaking_strength_N;
-    *low_N = 0.12 * weight * longest_span(project);
+    *low_N = 0.2 * weight * longest_span(project);
     if (isnan(high)) {
         high = 0.0;
         for (size_t i = 0; i < project->limit_count; i++) {

@@ -18,7 +18,7 @@ tw_status tw_stringing_at_pull(const tw_project *project, double pull_N, double 
  * TW_OUT_OF_REACH: no pull does it. TW_ERROR_RANGE: the project has no rule. */
 tw_status tw_stringing_lengths(const tw_project *project, double *length_m, double *pull_N, double *work);
 
-/* Pulls between which a search looks: from a line that sags about as deep as its longest span is long, to the breaking
+/* Pulls between which a search looks: from a line that sags about two thirds of its longest span, to the breaking
  * strength (or, without one, to twice the largest tension or catenary limit, or 2 % of EA). */
 void tw_stringing_range(const tw_project *project, double *low_N, double *high_N);
 

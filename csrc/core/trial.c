@@ -22,12 +22,17 @@ tw_trial *tw_trial_create(const tw_project *project)
     trial->sections = tw_calloc(conditions, sizeof(tw_section *));
     trial->solved = tw_calloc(conditions, sizeof(int));
     trial->warm = tw_calloc(conditions, sizeof(int));
-    if (!trial->length_m || !trial->string_work || !trial->strung || !trial->bare || !trial->sections || !trial->solved || !trial->warm) {
+    trial->at_N = tw_calloc(conditions, sizeof(double));
+    trial->before_N = tw_calloc(conditions, sizeof(double));
+    trial->before = tw_calloc(conditions, sizeof(double *));
+    if (!trial->length_m || !trial->string_work || !trial->strung || !trial->bare || !trial->sections || !trial->solved
+        || !trial->warm || !trial->at_N || !trial->before_N || !trial->before) {
         goto fail;
     }
     for (size_t c = 0; c < conditions; c++) {
         trial->sections[c] = tw_section_create(project);
-        if (!trial->sections[c]) {
+        trial->before[c] = tw_calloc(3 * (project->support_count - 1), sizeof(double));
+        if (!trial->sections[c] || !trial->before[c]) {
             goto fail;
         }
     }
@@ -42,8 +47,9 @@ void tw_trial_free(tw_trial *trial)
     if (!trial) {
         return;
     }
-    for (size_t c = 0; trial->sections && c < trial->project->condition_count; c++) {
-        tw_section_free(trial->sections[c]);
+    for (size_t c = 0; c < trial->project->condition_count; c++) {
+        tw_section_free(trial->sections ? trial->sections[c] : NULL);
+        tw_free(trial->before ? trial->before[c] : NULL);
     }
     tw_section_free(trial->strung);
     tw_section_free(trial->bare);
@@ -52,6 +58,9 @@ void tw_trial_free(tw_trial *trial)
     tw_free(trial->sections);
     tw_free(trial->solved);
     tw_free(trial->warm);
+    tw_free(trial->at_N);
+    tw_free(trial->before_N);
+    tw_free(trial->before);
     tw_free(trial);
 }
 
@@ -111,14 +120,36 @@ static tw_status solve_into(tw_trial *trial, tw_section *section, size_t conditi
     return status;
 }
 
+/* Draw the pulls of the last two solves on to the present pull, where that is not far beyond them. */
+static void draw_on(tw_trial *trial, size_t condition)
+{
+    double *pull = trial->sections[condition]->pull;
+    double *before = trial->before[condition];
+    double at = trial->at_N[condition];
+    double share = (trial->pull_N - at) / (at - trial->before_N[condition]);
+    int far = trial->warm[condition] < 2 || !(fabs(share) <= 2.0);
+    for (size_t i = 0; i < 3 * (trial->project->support_count - 1); i++) {
+        double last = pull[i];
+        pull[i] += far ? 0.0 : share * (last - before[i]);
+        before[i] = last;
+    }
+    trial->before_N[condition] = at;
+}
+
 tw_status tw_trial_section(tw_trial *trial, size_t condition, const tw_options *options, const tw_section **section)
 {
     *section = trial->sections[condition];
     if (trial->solved[condition]) {
         return TW_OK;
     }
-    tw_status status = solve_into(trial, trial->sections[condition], condition, options, trial->warm[condition], 1);
-    trial->solved[condition] = trial->warm[condition] = status == TW_OK;
+    int warm = trial->warm[condition];
+    if (warm) {
+        draw_on(trial, condition);
+    }
+    tw_status status = solve_into(trial, trial->sections[condition], condition, options, warm > 0, 1);
+    trial->solved[condition] = status == TW_OK;
+    trial->warm[condition] = status != TW_OK ? 0 : warm ? 2 : 1;
+    trial->at_N[condition] = trial->pull_N;
     return status;
 }
 

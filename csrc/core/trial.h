@@ -1,6 +1,6 @@
 /* trial: one set of natural lengths tried in every condition; the workspace of all searches.
  *
- * Each condition keeps its own section, so that the next pull starts from the last one's equilibrium. Nothing is
+ * Each condition keeps its own section, so that the next pull starts from the last equilibria, drawn on in a line. Nothing is
  * allocated after creation.
  */
 #ifndef TW_TRIAL_H
@@ -19,7 +19,10 @@ typedef struct tw_trial {
     int strung_ready;
     tw_section **sections; /* [condition_count] owned */
     int *solved;           /* [condition_count] 1: sections[c] is at the present lengths */
-    int *warm;             /* [condition_count] 1: its pulls are a start */
+    int *warm;             /* [condition_count] how many of the last two solves are a start */
+    double *at_N;          /* [condition_count] pull of the last solve; owned */
+    double *before_N;      /* [condition_count] and of the one before; owned */
+    double **before;       /* [condition_count][3 (support_count - 1)] its span pulls; owned */
     tw_section *bare;      /* the condition without its resultant addition, for swing */
     size_t bare_condition; /* which one it holds, or TW_NONE */
     size_t settles;        /* sections solved so far */

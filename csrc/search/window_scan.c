@@ -7,7 +7,7 @@
 #include "window_search.h"
 
 static const double UNSETTLED = 1000.0;    /* utilisation of a row that cannot be settled at a pull */
-static const double LOG_STEP = 1e-5;       /* central differences in log(pull) */
+static const double LOG_STEP = 1e-6;       /* forward differences in log(pull): candidates are polished without them */
 static const double NEAR_EDGE = 0.8;       /* a bump of f above this is looked at more closely */
 static const double HOLDS = 1.0 + 1e-9;    /* utilisation that counts as held */
 
@@ -134,11 +134,11 @@ static void constrain(void *data, const double *x, double *values, double *gradi
     size_t n = v->epigraph ? 2 : 1;
     for (size_t i = 0; i < v->count; i++) {
         double pull = view_pull(v, x[0]) * v->factor[i];
-        values[i] = row_at(v->run, v->row[i], pull) - (v->epigraph ? x[1] : 1.0);
+        double here = row_at(v->run, v->row[i], pull);
+        values[i] = here - (v->epigraph ? x[1] : 1.0);
         if (gradient) {
             double up = row_at(v->run, v->row[i], pull * exp(LOG_STEP));
-            double down = row_at(v->run, v->row[i], pull * exp(-LOG_STEP));
-            gradient[n * i] = (up - down) / (2.0 * LOG_STEP) * v->ratio;
+            gradient[n * i] = (up - here) / LOG_STEP * v->ratio;
             if (v->epigraph) {
                 gradient[n * i + 1] = -1.0;
             }
@@ -180,7 +180,7 @@ static double call_optimiser(view *v, double start)
         .variables = v->epigraph ? 2 : 1,
         .constraints = v->count,
         .evaluations_most = 100,
-        .x_tolerance = v->epigraph ? 1e-7 : 1e-8,
+        .x_tolerance = 1e-6,
         .low = low,
         .high = high,
         .objective = v->epigraph ? least_t : furthest,

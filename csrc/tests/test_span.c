@@ -242,8 +242,6 @@ static void test_extreme_is_the_furthest_place(void)
         tw_piece pieces[2] = {{.length_m = 0.4 * d.length}, {.length_m = 0.6 * d.length}};
         double start[3] = {1.0, 2.0, 3.0}, end[3], far[3], direction[3], at, r[3];
         tw_copy(d.load, pieces[0].load);
-        tw_axpy(d.load, 0.5, d.tension, pieces[1].load);
-        draw_piece(&seed);
         for (int i = 0; i < 3; i++) {
             pieces[1].load[i] = d.load[2 - i];
             direction[i] = check_draw(&seed);
