@@ -180,7 +180,7 @@ static double call_optimiser(view *v, double start)
         .variables = v->epigraph ? 2 : 1,
         .constraints = v->count,
         .evaluations_most = 100,
-        .x_tolerance = 1e-6,
+        .x_tolerance = v->epigraph ? 1e-9 : 1e-6,
         .low = low,
         .high = high,
         .objective = v->epigraph ? least_t : furthest,
