@@ -175,12 +175,10 @@ tw_section *case_hung(const tw_case *c, size_t condition)
     tw_section *section = tw_section_create(&c->project);
     tw_section *strung = tw_section_create(&c->project);
     tw_status status = section && strung ? TW_OK : TW_ERROR_MEMORY;
-    if (status == TW_OK && condition != TW_NONE) {
-        status = tw_section_load(strung, TW_NONE, c->lengths_m, NULL, 0);
-        status = status == TW_OK ? tw_section_solve(strung, &c->options, 0) : status;
-    }
     if (status == TW_OK) {
-        status = tw_section_load(section, condition, c->lengths_m, strung, 1);
+        int hangs = tw_section_load(strung, TW_NONE, c->lengths_m, NULL, 0) == TW_OK
+                    && tw_section_solve(strung, &c->options, 0) == TW_OK;
+        status = tw_section_load(section, condition, c->lengths_m, hangs ? strung : NULL, 1);
     }
     if (status == TW_OK) {
         status = tw_section_solve(section, &c->options, 0);

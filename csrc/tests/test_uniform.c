@@ -240,7 +240,7 @@ static void test_absurd_numbers_end_with_a_status(void)
             tw_plain_state s;
             double length;
             tw_status status = tw_plain_span_settle(&span, &s);
-            CHECK(status != TW_OK || (is_whole(&s)));
+            CHECK(status != TW_OK || is_whole(&s));
             status = tw_plain_span_length(&span, sizes[c], &length);
             CHECK(status != TW_OK || isfinite(length));
         }
