@@ -1,0 +1,188 @@
+"""Limits judged on a settled section: value, allowed value, utilisation and margin of the worst place."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from .quadrature import Array, golden
+from .section import Settled
+from .states import span_state, support_state
+
+SPAN_KINDS = {"clearance", "tension", "sag", "catenary_constant", "slope"}
+
+
+@dataclass(frozen=True)
+class Verdict:
+    """One rule at one place; it holds while the utilisation is at most 1."""
+
+    value: float
+    allowed: float
+    margin: float
+    utilisation: float
+
+
+def most(value: float, allowed: float) -> Verdict:
+    """A value that must not exceed what is allowed.
+
+    >>> most(30.0, 40.0)
+    Verdict(value=30.0, allowed=40.0, margin=10.0, utilisation=0.75)
+    """
+    return Verdict(value, allowed, allowed - value, value / allowed)
+
+
+def least(value: float, allowed: float, scale: float) -> Verdict:
+    """A value that must not fall below what is allowed: allowed/value, beyond 1 mirrored to stay finite.
+
+    Where 0 is allowed, 1 less the value over a scale, not below 0.
+
+    >>> least(8.0, 6.0, 1.0).utilisation, least(3.0, 6.0, 1.0).utilisation, least(0.25, 0.0, 1.0).utilisation
+    (0.75, 1.5, 0.75)
+    """
+    if allowed <= 0.0:
+        return Verdict(value, allowed, value - allowed, max(0.0, 1.0 - (value - allowed) / scale))
+    utilisation = allowed / value if value >= allowed else 2.0 - value / allowed
+    return Verdict(value, allowed, value - allowed, utilisation)
+
+
+def number(row: Mapping[str, Any], key: str) -> float | None:
+    """An optional number: None where missing, None or NaN."""
+    value = row.get(key)
+    return None if value is None or math.isnan(value) else float(value)
+
+
+def judge(problem: Mapping[str, Any], limit: int, settled: Settled, bare: Settled) -> Verdict | None:
+    """The worst of a limit's places in one condition; `bare` is the condition without its resultant addition."""
+    rule = problem["limits"][limit]
+    by_span = rule["kind"] in SPAN_KINDS
+    count = len(settled.spans) + (0 if by_span else 1)
+    covers = rule.get("covers") or [True] * (count + 1)
+    found: list[Verdict] = []
+    for place in range(count):
+        if covers[place]:
+            found += (
+                judge_span(problem, rule, settled, place)
+                if by_span
+                else judge_support(rule, settled, bare, place, problem)
+            )
+    return max(found, key=lambda verdict: verdict.utilisation, default=None)
+
+
+def judge_span(
+    problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int
+) -> list[Verdict]:
+    """Verdicts of one span."""
+    if rule["kind"] == "clearance":
+        clearance = least_clearance(problem, rule, settled, span)
+        return [] if clearance is None else [least(clearance, rule["least"], 1.0)]
+    state = span_state(settled, span)
+    if rule["kind"] == "tension":
+        share = number(rule, "share")
+        allowed = rule["most"] if share is None else share * problem["line"]["breaking_strength_N"]
+        return [most(state["tension_max_N"], allowed)]
+    if rule["kind"] == "sag":
+        bounds = number(rule, "most"), number(rule, "least")
+        upper = [] if bounds[0] is None else [most(state["sag_m"], bounds[0])]
+        return upper + ([] if bounds[1] is None else [least(state["sag_m"], bounds[1], 1.0)])
+    if rule["kind"] == "catenary_constant":
+        return [most(state["horizontal_tension_N"] / problem["line"]["weight_N_per_m"], rule["most"])]
+    return [most(state["slope_max"], rule["most"])]
+
+
+def judge_support(
+    rule: Mapping[str, Any], settled: Settled, bare: Settled, support: int, problem: Mapping[str, Any]
+) -> list[Verdict]:
+    """Verdicts of one support."""
+    at = settled.section.supports[support]
+    state = support_state(settled, support)
+    if rule["kind"] == "swing":
+        return [most(support_state(bare, support)["swing_rad"], rule["most"])] if at.hold == "hanger" else []
+    if rule["kind"] == "uplift":
+        beside = [span.length_m for k, span in enumerate(settled.spans) if k in (support - 1, support)]
+        return [least(state["down_N"], rule["least"], 0.5 * sum(beside) * problem["line"]["weight_N_per_m"])]
+    direction = rule.get("direction", "resultant")
+    loads = {
+        "along": abs(state["along_N"]),
+        "across": abs(state["across_N"]),
+        "down": max(0.0, state["down_N"]),
+        "up": max(0.0, -state["down_N"]),
+        "resultant": state["resultant_N"],
+    }
+    allowed, share = number(rule, "most"), number(rule, "share")
+    if share is not None:
+        capacity = number(problem["supports"][support], f"capacity_{direction}_N")
+        allowed = None if capacity is None else share * capacity
+    return [] if allowed is None else [most(loads[direction], allowed)]
+
+
+def least_clearance(
+    problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int
+) -> float | None:
+    """Least vertical clearance of a span over the ground or a crossing's top between the rule's stations, m.
+
+    Dense samples of the line, those that lie over the stretch, the stretch's own bounds and the profile's points; then
+    golden section around the lowest. None where the span does not pass there.
+    """
+    top = top_of(problem, rule)
+    if top is None:
+        return None
+    stations, elevations = top
+    low, high = bounds_of(rule, stations)
+    hung, start = settled.spans[span], settled.clamps[span]
+
+    def clearance(s: float) -> float:
+        place = start + hung.position_at(s)
+        return float(place[2]) - float(np.interp(place[0], stations, elevations))
+
+    def station(s: float) -> float:
+        return float(start[0] + hung.position_at(s)[0])
+
+    samples = np.linspace(0.0, hung.length_m, 401)
+    passed = np.array([station(float(s)) for s in samples])
+    edges = [x for x in [low, high, *stations] if low <= x <= high]
+    cuts = {0.0, hung.length_m, *(s for x in edges for s in crossings_of(station, samples, passed, x))}
+    inside = sorted({*cuts, *(float(s) for s, x in zip(samples, passed, strict=True) if low <= x <= high)})
+    inside = [s for s in inside if low - 1e-9 <= station(s) <= high + 1e-9]
+    if not inside:
+        return None
+    heights = [clearance(s) for s in inside]
+    best = min(heights)
+    for at in np.argsort(heights)[:3]:
+        for other in (at - 1, at + 1):
+            if 0 <= other < len(inside):
+                near, far = sorted((inside[at], inside[other]))
+                best = min(best, -golden(lambda s: -clearance(s), near, far)[1])
+    return best
+
+
+def top_of(problem: Mapping[str, Any], rule: Mapping[str, Any]) -> tuple[Array, Array] | None:
+    """Stations and elevations of what must be kept clear of."""
+    if rule.get("crossing") is not None:
+        crossing = problem["crossings"][rule["crossing"]]
+        return np.array([crossing["from_m"], crossing["to_m"]]), np.full(2, float(crossing["top_m"]))
+    ground = problem.get("ground")
+    return None if ground is None else (np.asarray(ground["station_m"]), np.asarray(ground["elevation_m"]))
+
+
+def bounds_of(rule: Mapping[str, Any], stations: Array) -> tuple[float, float]:
+    """First and last station that the rule looks at."""
+    low, high = number(rule, "from_m"), number(rule, "to_m")
+    first = float(stations[0]) if low is None else max(low, float(stations[0]))
+    return first, float(stations[-1]) if high is None else min(high, float(stations[-1]))
+
+
+def crossings_of(station: Any, samples: Array, passed: Array, x: float) -> list[float]:
+    """Natural lengths at which the line passes a station, by bisection between samples."""
+    found = []
+    for i in np.flatnonzero((passed[:-1] - x) * (passed[1:] - x) <= 0.0):
+        low, high = float(samples[i]), float(samples[i + 1])
+        rising = passed[i + 1] > passed[i]
+        for _ in range(50):
+            middle = 0.5 * (low + high)
+            low, high = (middle, high) if (station(middle) < x) == rising else (low, middle)
+        found.append(0.5 * (low + high))
+    return found

@@ -1,0 +1,222 @@
+"""A whole problem, given as the dictionary that the solver takes: strung, settled and judged the slow way."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from itertools import pairwise
+from typing import Any
+
+import numpy as np
+
+from . import limits, loads
+from .quadrature import Array
+from .section import Section, Settled, Support, settle_section
+from .span import Material, Piece
+from .states import span_state, support_state
+from .stringing import Strung, pull_by_rule, string_to
+
+SNAP = 1e-9
+"""Places closer than this share of a span are one place."""
+
+
+class Twin:
+    """The problem; `pull` overrides its stringing rule everywhere.
+
+    >>> problem = {
+    ...     "line": {"diameter_m": 0.02, "weight_N_per_m": 15.97, "stiffness_N": 34.7e6, "expansion_per_K": 1.9e-5},
+    ...     "supports": [{"station_m": x, "elevation_m": 0.0, "hold": "anchor"} for x in (0.0, 300.0)],
+    ...     "conditions": [{"temperature_degC": 15.0}],
+    ...     "stringing": {"temperature_degC": 15.0, "rule": "span_lengths", "lengths_m": [300.8]},
+    ... }
+    >>> round(float(Twin(problem).settle(0).spans[0].pull[0]), 5)
+    17368.80766
+    """
+
+    def __init__(self, problem: Mapping[str, Any]):
+        self.problem = problem
+        self.line = problem["line"]
+        self.supports = [support_of(row) for row in problem["supports"]]
+        self.rule = problem["stringing"]
+        self._strung: dict[float, Strung] = {}
+        self._settled: dict[tuple[int, float | None, bool], Settled] = {}
+
+    def material(self, temperature_degC: float) -> Material:
+        """The line at a temperature: expansion counts from that of the stringing."""
+        warmer = temperature_degC - self.rule["temperature_degC"]
+        return Material(self.line["stiffness_N"], self.line.get("expansion_per_K", 0.0) * warmer)
+
+    def strung(self, pull_N: float) -> Strung:
+        """Bare, strung to a horizontal tension."""
+        if pull_N not in self._strung:
+            reference = self.material(self.rule["temperature_degC"])
+            self._strung[pull_N] = string_to(reference, self.line["weight_N_per_m"], self.supports, pull_N)
+        return self._strung[pull_N]
+
+    def lengths_m(self, pull_N: float | None = None) -> list[float]:
+        """Natural length of each span."""
+        if pull_N is None and self.rule["rule"] == "span_lengths":
+            return [float(length) for length in self.rule["lengths_m"]]
+        return self.strung(self.pull_N() if pull_N is None else pull_N).lengths_m
+
+    def pull_N(self) -> float:
+        """The pull of the stringing rule."""
+        if self.rule["rule"] == "pull":
+            return float(self.rule["value"])
+        longest = max(math.dist(a.place[:2], b.place[:2]) for a, b in pairwise(self.supports))
+        taut = 0.42 * self.line["weight_N_per_m"] * longest
+        low = taut if self.rule["rule"] == "tension" else 0.05 * taut
+        return pull_by_rule(self.strung, self.rule, low)
+
+    def settle(self, condition: int, pull_N: float | None = None, with_addition: bool = True) -> Settled:
+        """A condition in equilibrium; -1 is the bare line at stringing."""
+        key = (condition, pull_N, with_addition)
+        if key not in self._settled:
+            self._settled[key] = settle_section(self.section(condition, pull_N, with_addition))
+        return self._settled[key]
+
+    def states(self, condition: int, pull_N: float | None = None) -> dict[str, list[dict[str, float]]]:
+        """Spans and supports of a condition in equilibrium, keys as in the solver's results."""
+        settled = self.settle(condition, pull_N)
+        return {
+            "spans": [span_state(settled, k) for k in range(len(settled.spans))],
+            "supports": [support_state(settled, j) for j in range(len(self.supports))],
+        }
+
+    def section(self, condition: int, pull_N: float | None, with_addition: bool = True) -> Section:
+        """The loads of a condition on the natural lengths."""
+        lengths = self.lengths_m(pull_N)
+        row = (
+            self.problem["conditions"][condition]
+            if condition >= 0
+            else {"temperature_degC": self.rule["temperature_degC"]}
+        )
+        basic = loads.basic(self.line, row, with_addition)
+        placed = [self.placed(load, lengths, pull_N) for load in row.get("loads", ())]
+        starts = np.concatenate([[0.0], np.cumsum(lengths)])
+        spans = [self.pieces(k, float(starts[k]), lengths[k], basic, placed) for k in range(len(lengths))]
+        return Section(
+            self.material(row["temperature_degC"]), spans, self.supports, self.clamp_loads(starts, placed)
+        )
+
+    def placed(
+        self, load: Mapping[str, Any], lengths: list[float], pull_N: float | None
+    ) -> tuple[float, float, Mapping[str, Any]]:
+        """First and last natural length of a load (one and the same for a point load), and the load."""
+        place = load.get("place", "whole")
+        if place == "whole":
+            return 0.0, sum(lengths), load
+        ends = [load["from_m"], load["from_m"] if load.get("is_point") else load["to_m"]]
+        if place == "station":
+            ends = [length_at_station(self.settle(-1, pull_N), x) for x in ends]
+        return ends[0], ends[1], load
+
+    def vector(self, load: Mapping[str, Any], span: int) -> Array:
+        """A load's vector in route axes."""
+        vector = np.asarray(load["vector"], dtype=np.float64)
+        return vector if load.get("frame", "span") == "route" else self.turned(vector, span)
+
+    def turned(self, vector: Array, span: int) -> Array:
+        """From a span's axes (along, to the left, up) between its supports into the route's."""
+        run = self.supports[span + 1].place - self.supports[span].place
+        along = np.array([run[0], run[1], 0.0]) / math.hypot(run[0], run[1])
+        return np.asarray(
+            vector[0] * along + vector[1] * np.array([-along[1], along[0], 0.0]) + [0.0, 0.0, vector[2]]
+        )
+
+    def pieces(
+        self,
+        span: int,
+        start: float,
+        length: float,
+        basic: Array,
+        placed: list[tuple[float, float, Mapping[str, Any]]],
+    ) -> list[Piece]:
+        """A span cut wherever a load begins, ends or acts."""
+        snap = SNAP * length
+        cuts = [0.0]
+        for place in sorted(end - start for load in placed for end in load[:2]):
+            if cuts[-1] + snap < place < length - snap:
+                cuts.append(place)
+        cuts.append(length)
+        found = []
+        for low, high in pairwise(cuts):
+            load, force = self.turned(basic, span), np.zeros(3)
+            for first, last, row in placed:
+                if row.get("is_point"):
+                    at_end = abs(first - start - high) <= snap and high < length
+                    force = force + (self.vector(row, span) if at_end else 0.0)
+                elif first - start < 0.5 * (low + high) < last - start:
+                    load = load + self.vector(row, span)
+            found.append(Piece(high - low, load, force))
+        return found
+
+    def clamp_loads(self, starts: Array, placed: list[tuple[float, float, Mapping[str, Any]]]) -> Array:
+        """Half of each hanger's weight, and the point loads that act right at a clamp; N, (n + 1, 3)."""
+        found = np.zeros((len(self.supports), 3))
+        for j, support in enumerate(self.supports):
+            span = min(j, len(self.supports) - 2)
+            snap = SNAP * float(starts[span + 1] - starts[span])
+            found[j, 2] -= 0.5 * support.hanger_weight_N if support.hold == "hanger" else 0.0
+            for first, _, row in placed:
+                if row.get("is_point") and abs(first - starts[j]) <= snap:
+                    found[j] += self.vector(row, span)
+        return found
+
+    def judge(self, pull_N: float | None = None) -> dict[tuple[int, int], limits.Verdict]:
+        """The verdict on each limit in each condition that it applies to, where there is one."""
+        found = {}
+        for i, rule in enumerate(self.problem.get("limits", ())):
+            for c in range(len(self.problem["conditions"])):
+                if not rule.get("applies") or rule["applies"][c]:
+                    bare = (
+                        self.settle(c, pull_N, with_addition=False)
+                        if rule["kind"] == "swing"
+                        else self.settle(c, pull_N)
+                    )
+                    verdict = limits.judge(self.problem, i, self.settle(c, pull_N), bare)
+                    if verdict is not None:
+                        found[i, c] = verdict
+        return found
+
+    def worst(self, pull_N: float) -> float:
+        """The greatest utilisation of all limits at a pull; 0 without any."""
+        return max((verdict.utilisation for verdict in self.judge(pull_N).values()), default=0.0)
+
+
+def support_of(row: Mapping[str, Any]) -> Support:
+    """A support from its row of the problem."""
+    stiffness = (row.get("stiffness_along_N_per_m", np.inf), row.get("stiffness_across_N_per_m", np.inf))
+    return Support(
+        np.array([row["station_m"], row.get("offset_m", 0.0), row["elevation_m"]], dtype=np.float64),
+        row.get("hold", "anchor"),
+        row.get("hanger_length_m", 0.0),
+        row.get("hanger_weight_N", 0.0),
+        stiffness,
+    )
+
+
+def length_at_station(settled: Settled, station_m: float) -> float:
+    """First natural length from the first support at which a section passes a station, by bisection."""
+    passed = 0.0
+    for k, hung in enumerate(settled.spans):
+        samples = np.linspace(0.0, hung.length_m, 65)
+        stations = [float(settled.position_at(k, float(s))[0]) - station_m for s in samples]
+        stations[0] = 0.0 if abs(stations[0]) <= 1e-9 * (1.0 + abs(station_m)) else stations[0]
+        stations[-1] = 0.0 if abs(stations[-1]) <= 1e-9 * (1.0 + abs(station_m)) else stations[-1]
+        for i in range(64):
+            if stations[i] * stations[i + 1] <= 0.0:
+                low, high, sign = (
+                    float(samples[i]),
+                    float(samples[i + 1]),
+                    math.copysign(1.0, stations[i + 1] - stations[i]),
+                )
+                while high - low > 4e-16 * hung.length_m:
+                    middle = 0.5 * (low + high)
+                    if not low < middle < high:
+                        break
+                    ahead = (float(settled.position_at(k, middle)[0]) - station_m) * sign > 0.0
+                    low, high = (low, middle) if ahead else (middle, high)
+                return passed + 0.5 * (low + high)
+        passed += hung.length_m
+    raise ValueError(f"the line does not pass station {station_m} m")

@@ -1,0 +1,141 @@
+"""What can be read off a settled section, under the same keys as the solver's results."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from .quadrature import Array, golden
+from .section import Settled
+from .span import Hung
+
+UP = np.array([0.0, 0.0, 1.0])
+
+
+def chord_of(settled: Settled, span: int) -> Array:
+    """Far clamp less near clamp, m."""
+    return np.asarray(settled.clamps[span + 1] - settled.clamps[span])
+
+
+def below_chord(chord: Array) -> Array:
+    """Direction d with d.r = vertical distance of r below a chord that starts at the origin.
+
+    >>> below_chord(np.array([10.0, 0.0, 5.0])).tolist()
+    [0.5, 0.0, -1.0]
+    """
+    run = math.hypot(chord[0], chord[1])
+    return np.array([chord[0] * chord[2] / run**2, chord[1] * chord[2] / run**2, -1.0])
+
+
+def along_load(chord: Array, load: Array) -> Array:
+    """Direction d with d.r = distance of r from the chord, measured along the load: r = chord part + (d.r) load/|load|.
+
+    >>> along_load(np.array([10.0, 0.0, 0.0]), np.array([0.0, 3.0, -4.0])).round(12).tolist()
+    [0.0, 0.6, -0.8]
+    """
+    size = float(np.linalg.norm(load))
+    if size == 0.0 or float(np.linalg.norm(np.cross(chord, load))) == 0.0:
+        return np.zeros(3)
+    basis = np.array([chord, load / size, np.cross(chord, load)])
+    return np.asarray(np.linalg.solve(basis, np.array([0.0, 1.0, 0.0])))
+
+
+def total_load(hung: Hung) -> Array:
+    """Sum of the loads between a span's ends, N."""
+    return np.asarray(hung.pull - hung.end_tension())
+
+
+def slope_max(hung: Hung) -> float:
+    """Greatest |dz| over plan distance along the span: samples of each piece, then golden section."""
+
+    def slope(tension: Array) -> float:
+        return abs(float(tension[2])) / math.hypot(tension[0], tension[1])
+
+    most = 0.0
+    for _, tension, piece in hung.starts():
+        places = np.linspace(0.0, piece.length_m, 257)
+        slopes = [slope(tension - piece.load * s) for s in places]
+        peak = int(np.argmax(slopes))
+        near, far = places[max(peak - 1, 0)], places[min(peak + 1, 256)]
+        refined = golden(lambda s, t=tension, q=piece.load: slope(t - q * s), float(near), float(far))  # type: ignore[misc]
+        most = max(most, slopes[peak], refined[1])
+    return most
+
+
+def small_deflection_sag(hung: Hung, span_m: float, horizontal_N: float) -> float:
+    """Greatest sag of a taut string of constant tension under the same loads, m.
+
+    Each piece's load is spread over its share of the span. v(x) = 1/H int G(x, y) q(y) dy with Green's function
+    G = min(x, y) (L - max(x, y)) / L of -v'' = q/H.
+    """
+    scale = span_m / hung.length_m
+    distributed, points, x = [], [], 0.0
+    for piece in hung.pieces:
+        length = piece.length_m * scale
+        distributed.append((x, x + length, -float(piece.load[2]) / scale))
+        points.append((x + length, -float(piece.force[2])))
+        x += length
+
+    def green(x: float, y: float) -> float:
+        return min(x, y) * (span_m - max(x, y)) / span_m
+
+    def integral(x: float, a: float, b: float) -> float:
+        low, high = min(b, max(a, x)), max(a, min(b, x))
+        left = (high - a) * (green(x, a) + green(x, high)) / 2.0
+        return left + (b - low) * (green(x, low) + green(x, b)) / 2.0
+
+    def sag(x: float) -> float:
+        spread = sum(q * integral(x, a, b) for a, b, q in distributed)
+        return (spread + sum(force * green(x, y) for y, force in points)) / horizontal_N
+
+    candidates = [sag(y) for y, _ in points] + [golden(sag, a, b)[1] for a, b, _ in distributed]
+    return max(0.0, *candidates)
+
+
+def span_state(settled: Settled, span: int) -> dict[str, float]:
+    """One span, keys and units as in the results of the solver."""
+    hung, chord, start = settled.spans[span], chord_of(settled, span), settled.clamps[span]
+    run = math.hypot(chord[0], chord[1])
+    along = np.array([chord[0], chord[1], 0.0]) / run
+    left = np.array([-along[1], along[0], 0.0])
+    sag, sag_at = hung.extreme(below_chord(chord))
+    low, low_at = hung.extreme(-UP)
+    horizontal = float(hung.pull @ along)
+    tensions = [hung.pull, hung.end_tension(), *(tension for _, tension, _ in hung.starts())]
+    tensions += [tension - piece.load * piece.length_m for _, tension, piece in hung.starts()]
+    return {
+        "span_m": run,
+        "rise_m": float(chord[2]),
+        "natural_length_m": hung.length_m,
+        "line_length_m": hung.line_length_m(),
+        "horizontal_tension_N": horizontal,
+        "tension_from_N": float(np.linalg.norm(hung.pull)),
+        "tension_to_N": float(np.linalg.norm(hung.end_tension())),
+        "tension_max_N": max(float(np.linalg.norm(tension)) for tension in tensions),
+        "sag_m": max(0.0, sag),
+        "sag_station_m": float((start + hung.position_at(sag_at))[0]),
+        "slant_sag_m": max(0.0, hung.extreme(along_load(chord, total_load(hung)))[0]),
+        "blowout_m": max(0.0, hung.extreme(left)[0], hung.extreme(-left)[0]),
+        "low_station_m": float((start + hung.position_at(low_at))[0]),
+        "low_elevation_m": float(start[2]) - low,
+        "slope_max": slope_max(hung),
+        "small_deflection_sag_m": small_deflection_sag(hung, run, horizontal),
+    }
+
+
+def support_state(settled: Settled, support: int) -> dict[str, float]:
+    """Force of line and hold on a support, N, and the angle of a hanger from the vertical, rad, else NaN."""
+    at, force = settled.section.supports[support], settled.hold_forces[support]
+    swing = math.nan
+    if at.hold == "hanger":
+        link = at.place - settled.clamps[support]
+        swing = math.atan2(math.hypot(link[0], link[1]), link[2])
+    down = float(force[2]) + (0.5 * at.hanger_weight_N if at.hold == "hanger" else 0.0)
+    return {
+        "along_N": -float(force[0]),
+        "across_N": -float(force[1]),
+        "down_N": down,
+        "resultant_N": math.sqrt(float(force[0]) ** 2 + float(force[1]) ** 2 + down**2),
+        "swing_rad": swing,
+    }

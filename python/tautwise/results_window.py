@@ -1,0 +1,254 @@
+"""The pretension window: which pulls satisfy every limit, what governs its ends, or why there is none.
+
+Pulls are horizontal tensions at installation (bare line at the stringing temperature), N.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any, ClassVar, Protocol
+
+from tautwise.columns import Table, force_column, force_text, number_column, text_column
+from tautwise.errors import ShutWindowError
+from tautwise.records import Record
+
+OPEN_ENDED = "none"
+LEAST_PRICE_SHOWN_N_PER_M = 1.0
+
+
+@dataclass(frozen=True, slots=True)
+class WindowEnd(Record):
+    """One end of the window and the limit that governs it.
+
+    `limit` None: no limit bounds this side within the pulls searched. The end is then open, which deserves a second
+    look: a limit may be missing.
+    """
+
+    horizontal_tension_N: float
+    limit: str | None
+    condition: str | None
+    place: str | None
+    value: float | None = None
+    allowed: float | None = None
+    unit: str | None = None
+    utilisation: float | None = None
+    station_m: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class PullToSpecify(Record):
+    """The pull whose worst utilisation over its tolerance is smallest.
+
+    `least_pull_N` and `most_pull_N` are what the crew may leave it at; `limit` in `condition` at `place` is used most.
+    """
+
+    horizontal_tension_N: float
+    worst_utilisation: float
+    tolerance_percent: float
+    reason: str
+    temperature_degC: float
+    least_pull_N: float
+    most_pull_N: float
+    limit: str | None
+    condition: str | None
+    place: str | None
+
+
+@dataclass(frozen=True, slots=True)
+class Price(Record):
+    """What one unit of a variable buys on the limit that governs an end of the window.
+
+    `value` in `unit`: change of that limit's margin for each unit of the variable (`per`: "pull", "support height",
+    "support station"). `pull_N_per_m`: how far the end of the window moves with it, N/m; None for the pull itself.
+    """
+
+    limit: str | None
+    per: str
+    value: float | None
+    unit: str
+    end: str
+    condition: str | None
+    support: str | None
+    pull_N_per_m: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class Conflict(Record):
+    """One of the limits that exclude one another: it needs a pull of "at least" or "at most" `needs_N`, or "never"."""
+
+    limit: str | None
+    condition: str | None
+    needs_N: float | None
+    side: str
+
+
+@dataclass(frozen=True, slots=True)
+class Relaxation(Record):
+    """A single change that opens a shut window, the smallest of its kind.
+
+    Fields
+    ------
+    change: what to change, in words. by, unit: how far. to: the value after it, in the same unit.
+    pull_N: a pull that then satisfies every limit. limit, support: the one that is meant.
+    where: file and line to change, None where there is none.
+    """
+
+    change: str
+    by: float
+    unit: str
+    to: float | None
+    pull_N: float | None
+    limit: str | None
+    support: str | None
+    where: str | None
+
+
+@dataclass(frozen=True, slots=True)
+class UtilisationCurve(Record):
+    """How far one limit is used in one condition at each of the window's pulls; it holds while <= 1."""
+
+    limit: str
+    condition: str
+    utilisation: tuple[float | None, ...]
+
+
+class WindowOrigin(Protocol):
+    """What a window remembers of where it came from; kept out of JSON, kept by pickle."""
+
+    def judge(self, pull_N: float) -> Mapping[tuple[str, str], float]:
+        """Utilisation of each limit (id) in each condition (name) at a pull."""
+
+
+@dataclass(frozen=True, slots=True)
+class PullWindow(Record):
+    """Every pull that satisfies every limit in every condition; the document of ``window --json``.
+
+    Fields
+    ------
+    open: whether there is such a pull. low, high, specify: None where there is none.
+    intervals: every open stretch found, N; `low` and `high` end the one that holds the pull to specify.
+    searched_N: the pulls that the search looked at.
+    prices: what the pull, a support's height or its station buys at each end.
+    conflict, relax: of a shut window, the limits that exclude one another and the smallest single changes that open it.
+    pulls_N, curves: utilisation of each limit in each condition over the pulls.
+    verified: the answer was settled again, each condition with its bracket, `gap_relative` the widest of them.
+    """
+
+    FORMAT: ClassVar[str] = "tautwise-window 1"
+    KEYS: ClassVar[Mapping[str, str | None]] = {"origin": None}
+
+    open: bool
+    project: str
+    input_sha256: str | None
+    low: WindowEnd | None
+    high: WindowEnd | None
+    specify: PullToSpecify | None
+    prices: tuple[Price, ...]
+    conflict: tuple[Conflict, ...]
+    relax: tuple[Relaxation, ...]
+    temperature_degC: float
+    intervals: tuple[tuple[float, float], ...]
+    searched_N: tuple[float, float]
+    verified: bool
+    gap_relative: float | None
+    evaluations: int
+    settles: int
+    pulls_N: tuple[float, ...]
+    curves: tuple[UtilisationCurve, ...]
+    program: str
+    nlopt: str
+    caution: str
+    origin: WindowOrigin | None = field(default=None, compare=False, repr=False)
+
+    def require_open(self) -> PullWindow:
+        """The same window.
+
+        Raises
+        ------
+        ShutWindowError: no pull satisfies every limit; the message names the conflict.
+        """
+        if not self.open:
+            raise ShutWindowError(f"no pull satisfies every limit: {conflict_text(self.conflict)}")
+        return self
+
+    def plot(self, ax: Any = None, **options: Any) -> Any:
+        """Draw the window; see :func:`tautwise.figure.plot_window`. Returns the Matplotlib axes."""
+        from tautwise.figure import plot_window
+
+        return plot_window(self, ax, **options)
+
+    def _table(self) -> Table:
+        ends = [("lowest", self.low), ("highest", self.high)]
+        pulls = [end.horizontal_tension_N for _, end in ends if end]
+        columns = (
+            text_column(""),
+            force_column("pull", pulls),
+            text_column("governed by"),
+            text_column("condition"),
+            text_column("place"),
+        )
+        rows = (
+            (name, end.horizontal_tension_N, end.limit or OPEN_ENDED, end.condition, end.place)
+            for name, end in ends
+            if end
+        )
+        return Table(columns, tuple(rows))
+
+    def _head(self) -> str:
+        if not self.open or self.specify is None:
+            return f"PullWindow {self.project!r}: shut, {conflict_text(self.conflict)}"
+        return f"PullWindow {self.project!r}: open, specify {force_text(self.specify.horizontal_tension_N)}"
+
+    def __repr__(self) -> str:
+        lines = self._table().lines() if self.open else conflict_table(self.conflict[:8]).lines()
+        return "\n".join([self._head(), *lines])
+
+    def _repr_html_(self) -> str:
+        return (self._table() if self.open else conflict_table(self.conflict)).html(self._head())
+
+
+def conflict_text(conflict: tuple[Conflict, ...]) -> str:
+    """The limits that exclude one another, in one line.
+
+    >>> low = Conflict("clearance", "hot", 21000.0, "at least")
+    >>> conflict_text((low, Conflict("strength", "ice", 18000.0, "at most")))
+    'clearance (hot) needs at least 21.00 kN, strength (ice) at most 18.00 kN'
+    """
+    parts = [f"{each.limit} ({each.condition}) {need_text(each)}" for each in conflict]
+    return ", ".join(parts).replace(") at ", ") needs at ", 1) or "no single limit to blame was found"
+
+
+def need_text(conflict: Conflict) -> str:
+    """What one of the conflicting limits needs."""
+    if conflict.side == "never" or conflict.needs_N is None:
+        return "holds at no pull"
+    return f"{conflict.side} {force_text(conflict.needs_N)}"
+
+
+def conflict_table(conflict: tuple[Conflict, ...]) -> Table:
+    """The limits that exclude one another."""
+    columns = (text_column("limit"), text_column("condition"), text_column("needs a pull of"))
+    return Table(columns, tuple((each.limit, each.condition, need_text(each)) for each in conflict))
+
+
+def price_table(prices: tuple[Price, ...]) -> Table:
+    """What moves the ends of a window: how far for each metre of a support, strongest first."""
+    listed = [price for price in prices if abs(price.pull_N_per_m or 0.0) >= LEAST_PRICE_SHOWN_N_PER_M]
+    listed.sort(key=lambda price: (price.end != "low", -abs(price.pull_N_per_m or 0.0)))
+    columns = (
+        text_column("end"),
+        number_column("moves by", "kN/m", 3),
+        text_column("for each metre of"),
+        text_column("governed by"),
+    )
+    rows = (
+        (
+            f"{price.end}est",
+            (price.pull_N_per_m or 0.0) / 1e3,
+            f"{price.per.removeprefix('support ')} of {price.support}",
+            price.limit,
+        )
+        for price in listed
+    )
+    return Table(columns, tuple(rows))

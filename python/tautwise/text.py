@@ -1,0 +1,237 @@
+"""What the commands print for people: the answer first, then worst first, then what to do next.
+
+Every function returns lines. `Ink` puts the few accents in where a terminal shows them; without it the text is plain.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from tautwise.columns import Table, force_column, force_text, length_column, number_column, plural, text_column
+from tautwise.results_line import Equilibrium, SettleReport, SupportState
+from tautwise.strict import shown
+
+if TYPE_CHECKING:
+    from tautwise.model import Project
+    from tautwise.tables import Condition
+
+BLOWN_M = 5e-4  # blow-out below half a millimetre is not worth a column
+
+Row = tuple[float | str | None, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Ink:
+    """Accents of a terminal, or none.
+
+    >>> Ink(False).strong("West mast")
+    'West mast'
+    """
+
+    on: bool = False
+
+    def strong(self, text: str) -> str:
+        """A head or the answer."""
+        return f"\033[1m{text}\033[0m" if self.on else text
+
+    def alarm(self, text: str) -> str:
+        """Something that fails."""
+        return f"\033[1;31m{text}\033[0m" if self.on else text
+
+    def quiet(self, text: str) -> str:
+        """Something that need not be read each time."""
+        return f"\033[2m{text}\033[0m" if self.on else text
+
+
+def heading(project: Project, ink: Ink) -> list[str]:
+    """Title and file."""
+    names = [project.title, shown(str(project.source or ""), 200)]
+    given = [name for name in names if name]
+    return [ink.strong(given[0]), *given[1:], ""] if given else []
+
+
+def next_steps(steps: Sequence[tuple[str, str]], ink: Ink) -> list[str]:
+    """What to do next: aim and command."""
+    widest = max(len(aim) for aim, _ in steps)
+    lines = [f"  {aim.ljust(widest)}  {command}" for aim, command in steps]
+    return ["", ink.strong("Next"), *lines]
+
+
+def quoted(name: object) -> str:
+    """A file name as a shell takes it.
+
+    >>> quoted("a b.toml")
+    "'a b.toml'"
+    """
+    import shlex
+
+    return shlex.quote(shown(str(name), 200))
+
+
+def caution(text: str, ink: Ink) -> list[str]:
+    """The caution, at the foot of every answer."""
+    return ["", ink.quiet(text)]
+
+
+def settle_text(report: SettleReport, project: Project, ink: Ink, pull: str | None = None) -> list[str]:
+    """The settled conditions, highest tension first, each in full; `pull` as it was asked for."""
+    ranked = sorted(report.conditions, key=lambda each: (each.settled, -(each.tension_max_N or 0.0)))
+    lines = [*heading(project, ink), *_strung_lines(report, project), "", *_summary(ranked, project, ink)]
+    for each in ranked:
+        lines += ["", *condition_text(each, project, ink)]
+    file = quoted(project.source or "FILE")
+    at_pull = f" --pull {quoted(pull)}" if pull else ""
+    steps = [("judge every limit at this pull", f"tautwise vet {file}{at_pull}")] if project.limits else []
+    steps.append(("find the pulls that keep every limit", f"tautwise window {file}"))
+    return [*lines, *next_steps(steps, ink), *caution(report.caution, ink)]
+
+
+def condition_text(found: Equilibrium, project: Project, ink: Ink) -> list[str]:
+    """One condition in full."""
+    condition = next(each for each in project.conditions if each.name == found.name)
+    head = f"{ink.strong(found.name)}: {condition_words(condition)}"
+    if not found.settled:
+        return [head, ink.alarm(f"  NOT SETTLED: {found.status_text}")]
+    lines = [head, *_span_lines(found), "", *_support_lines(found.supports)]
+    if found.marks:
+        lines += ["", *_mark_lines(found)]
+    return [*lines, "", f"  {_bracket_words(found)}"]
+
+
+def condition_words(condition: Condition) -> str:
+    """Temperature and loads of a condition, in short."""
+    words = [f"{condition.temperature_degC:.4g} degC"]
+    if condition.ice and condition.ice.thickness_m:
+        words.append(f"{1e3 * condition.ice.thickness_m:.4g} mm of ice")
+    if condition.wind and condition.wind.pressure_Pa:
+        words.append(f"wind of {condition.wind.pressure_Pa:.4g} Pa")
+    if condition.wind and condition.wind.speed_m_per_s:
+        words.append(f"wind of {condition.wind.speed_m_per_s:.4g} m/s")
+    if condition.resultant_addition_N_per_m:
+        words.append(f"{condition.resultant_addition_N_per_m:.4g} N/m added to the resultant")
+    if condition.loads:
+        words.append(plural(len(condition.loads), "load"))
+    return ", ".join(words)
+
+
+def rounded(value: float, decimals: int, *, up: bool) -> str:
+    """A number cut to decimals towards the safe side, so that what is printed still holds.
+
+    >>> rounded(14.2041, 2, up=True), rounded(22.8799, 2, up=False)
+    ('14.21', '22.87')
+    """
+    scale = 10.0**decimals
+    cut = (math.ceil if up else math.floor)(round(value * scale, 6)) / scale
+    return f"{cut:.{decimals}f}"
+
+
+def _strung_lines(report: SettleReport, project: Project) -> list[str]:
+    strung = report.stringing
+    pull = "to its natural lengths"
+    if strung.horizontal_tension_N is not None:
+        pull = f"with a pull of {force_text(strung.horizontal_tension_N)}"
+    total = math.fsum(strung.natural_length_m)
+    spans = plural(len(strung.natural_length_m), "span")
+    return [
+        f"Strung bare at {strung.temperature_degC:.4g} degC {pull}; natural length {total:.3f} m in {spans}.",
+    ]
+
+
+def _summary(ranked: Sequence[Equilibrium], project: Project, ink: Ink) -> list[str]:
+    strength = project.line.breaking_strength_N
+    shares = [None if strength is None or e.tension_max_N is None else 100 * e.tension_max_N / strength for e in ranked]
+    columns = [
+        text_column("condition"),
+        number_column("temperature", "degC", 1),
+        force_column("tension", [each.tension_max_N for each in ranked]),
+        number_column("of strength", "%", 1),
+        length_column("greatest sag", [each.sag_max_m for each in ranked]),
+        text_column("in span"),
+        text_column("state"),
+    ]
+    rows: list[Row] = [
+        (each.name, each.temperature_degC, each.tension_max_N, share, each.sag_max_m, _deepest(each), each.status)
+        for each, share in zip(ranked, shares, strict=True)
+    ]
+    if strength is None:
+        del columns[3]
+        rows = [(*row[:3], *row[4:]) for row in rows]
+    return [ink.strong("Conditions, highest tension first"), *Table(tuple(columns), tuple(rows)).lines()]
+
+
+def _deepest(found: Equilibrium) -> str | None:
+    return max(found.spans, key=lambda span: span.sag_m).name if found.spans else None
+
+
+def _span_lines(found: Equilibrium) -> list[str]:
+    spans = found.spans
+    blown = max(span.blowout_m for span in spans) >= BLOWN_M
+    columns = [
+        text_column("span"),
+        length_column("length", [span.span_m for span in spans]),
+        force_column("pull", [span.horizontal_tension_N for span in spans]),
+        force_column("tension", [span.tension_max_N for span in spans]),
+        length_column("sag", [span.sag_m for span in spans]),
+        length_column("small-deflection", [span.small_deflection_sag_m for span in spans]),
+        number_column("off by", "%", 2),
+        length_column("blow-out", [span.blowout_m for span in spans]),
+        length_column("lowest at", [1e3]),
+        length_column("elevation", [span.low_point.elevation_m for span in spans if span.low_point]),
+    ]
+    rows: list[Row] = [
+        (
+            s.name, s.span_m, s.horizontal_tension_N, s.tension_max_N, s.sag_m, s.small_deflection_sag_m,
+            s.small_deflection_off_percent, s.blowout_m,
+            s.low_point.station_m if s.low_point else None, s.low_point.elevation_m if s.low_point else None,
+        )
+        for s in spans
+    ]  # fmt: skip
+    if not blown:
+        del columns[7]
+        rows = [(*row[:7], *row[8:]) for row in rows]
+    return Table(tuple(columns), tuple(rows)).lines()
+
+
+def _support_lines(supports: Sequence[SupportState]) -> list[str]:
+    forces = ("along_N", "across_N", "down_N", "resultant_N")
+    most = [max(abs(getattr(each, name)) for name in forces) for each in supports]
+    swinging = any(each.swing_deg is not None for each in supports)
+    heads = ("along", "across", "down", "resultant")
+    columns = [text_column("on support"), *(force_column(head, most) for head in heads)]
+    rows: list[Row] = [
+        (each.name, each.along_N, each.across_N, each.down_N, each.resultant_N, each.swing_deg) for each in supports
+    ]
+    if swinging:
+        columns.append(number_column("swing", "deg", 1))
+    rows = [row[: len(columns)] for row in rows]
+    uplift = [each.name for each in supports if each.down_N < 0.0]
+    note = [f"  Uplift (down is negative) at {', '.join(uplift)}."] if uplift else []
+    return [*Table(tuple(columns), tuple(rows)).lines(), *note]
+
+
+def _mark_lines(found: Equilibrium) -> list[str]:
+    marks = found.marks
+    columns = (
+        text_column("mark"),
+        length_column("along natural line", [1e3]),
+        force_column("tension", [mark.tension_N for mark in marks]),
+        length_column("station", [1e3]),
+        length_column("offset", [0.0]),
+        length_column("elevation", [mark.position_m[2] for mark in marks]),
+    )
+    return Table(columns, tuple((m.name, m.at_length_m, m.tension_N, *m.position_m) for m in marks)).lines()
+
+
+def _bracket_words(found: Equilibrium) -> str:
+    work = f"{found.elements} elements, {plural(found.evaluations, 'evaluation')}"
+    if found.gap_relative is None:
+        return work
+    return f"Proof: two energies enclose the exact one, {found.gap_relative:.1e} of it apart ({work})."
+
+
+def joined(lines: Iterable[str]) -> str:
+    """Lines as one text that ends with a line end."""
+    return "\n".join(lines) + "\n"
