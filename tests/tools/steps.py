@@ -24,7 +24,7 @@ PYTEST_FOUND_NONE = 5
 @dataclass(frozen=True)
 class Step:
     name: str
-    arguments: tuple[str, ...]  # of the virtual environment's Python
+    command: tuple[str, ...]
     shows: int = 1  # so many of the last lines are worth showing when all is well
 
 
@@ -38,19 +38,21 @@ class Outcome:
     output: str
 
 
-PYTEST = ("-m", "pytest", "-q", "--continue-on-collection-errors")
-CTESTS = "tests/tools/ctests.py"
+PYTHON = sys.executable
+PYTEST = (PYTHON, "-m", "pytest", "-q", "--continue-on-collection-errors")
+CTESTS = (PYTHON, "tests/tools/ctests.py")
 # The lanes run side by side, the steps of a lane one after the other.
 LANES = (
     (
-        Step("c-tests", (CTESTS, "sanitize"), shows=40),
-        Step("allocation-failures", (CTESTS, "sanitize", "alloc_test")),
-        Step("coverage", (CTESTS, "coverage"), shows=40),
+        Step("c-tests", (*CTESTS, "sanitize"), shows=40),
+        Step("allocation-failures", (*CTESTS, "sanitize", "alloc_test")),
+        Step("coverage", (*CTESTS, "coverage"), shows=40),
+        Step("sanitized", ("bash", "tests/sanitized")),
     ),
     (
-        Step("ruff", ("-m", "ruff", "check", ".")),
-        Step("mypy", ("-m", "mypy")),
-        Step("budgets", ("tests/tools/budgets.py",), shows=40),
+        Step("ruff", (PYTHON, "-m", "ruff", "check", ".")),
+        Step("mypy", (PYTHON, "-m", "mypy")),
+        Step("budgets", (PYTHON, "tests/tools/budgets.py"), shows=40),
         Step("pytest", (*PYTEST, "-m", "not timing", "--durations=10"), shows=14),
     ),
 )
@@ -75,7 +77,7 @@ def counts(output: str, code: int) -> tuple[int, int, int]:
 def run(step: Step) -> Outcome:
     began = time.monotonic()
     process = subprocess.run(
-        [sys.executable, *step.arguments],
+        step.command,
         cwd=ROOT,
         stdin=subprocess.DEVNULL,
         stdout=subprocess.PIPE,
@@ -85,7 +87,7 @@ def run(step: Step) -> Outcome:
         check=False,
     )
     (LOGS / f"{step.name}.txt").write_text(process.stdout)
-    nothing_to_do = step.arguments[:2] == ("-m", "pytest") and process.returncode == PYTEST_FOUND_NONE
+    nothing_to_do = step.command[: len(PYTEST)] == PYTEST and process.returncode == PYTEST_FOUND_NONE
     passed, failed, skipped = (0, 0, 0) if nothing_to_do else counts(process.stdout, process.returncode)
     outcome = Outcome(step, passed, failed, skipped, time.monotonic() - began, process.stdout)
     show(outcome)
