@@ -230,7 +230,7 @@ def judged(pull=12e3):
     )
 
 
-@pytest.mark.parametrize("pull", [7e3, 12e3, 16e3])
+@pytest.mark.parametrize("pull", [7e3, 14e3])
 def test_limits_agree(pull):
     found = _core.Project(judged()).judge(pull=pull)
     expected = Twin(judged()).judge(pull)
@@ -265,20 +265,22 @@ def narrowed(low=None, high=None):
     )
 
 
-@pytest.mark.parametrize("problem", [narrowed(), narrowed(low=6.0), narrowed(high=45e3)], ids=["plain", "low", "high"])
+@pytest.mark.parametrize("problem", [narrowed(), narrowed(low=7.0, high=45e3)], ids=["plain", "wider"])
 def test_windows_agree(problem):
     found = _core.Project(problem).window()
     low, high = found["range_N"]
-    expected = window.intervals(Twin(problem).worst, low, high, points=16)
+    expected = window.intervals(Twin(problem).worst, low, high, points=12)
     assert found["open"] == bool(expected)
     # The edges are pulls at which a utilisation is 1 to 1e-8 or better; it changes by about as much as the pull.
     np.testing.assert_allclose(np.array(found["intervals"]), np.array(expected), rtol=1e-7)
 
 
 def test_the_window_of_three_spans():
+    """At each edge that the core names the twin turns from holding to failing; between them it holds."""
     problem = judged()
     problem["limits"] = [problem["limits"][i] for i in (0, 3, 6)]
-    found = _core.Project(problem).window()
-    expected = window.intervals(Twin(problem).worst, 3e3, 20e3, points=8)
-    assert found["open"] == bool(expected)
-    np.testing.assert_allclose(np.array(found["intervals"]), np.array(expected), rtol=1e-7)
+    ((low, high),) = _core.Project(problem).window()["intervals"]
+    worst = Twin(problem).worst
+    assert worst(low * (1.0 - 1e-6)) > 1.0 >= worst(low * (1.0 + 1e-6))
+    assert worst(high * (1.0 - 1e-6)) <= 1.0 < worst(high * (1.0 + 1e-6))
+    assert worst(math.sqrt(low * high)) < 1.0

@@ -93,16 +93,18 @@ static PyObject *window_end(const tw_window_end *end)
     return dict;
 }
 
+/* The worse edge gives limit, condition and place; both stand under "edges". */
 static PyObject *window_specify(const tw_window_specify *specify)
 {
-    PyObject *dict = tw_answer_verdict(&specify->verdict);
+    const tw_window_end *low = &specify->edge[0], *high = &specify->edge[1];
     double t = specify->tolerance;
-    if (!dict || put_row(dict, specify->limit, specify->condition) < 0
-        || tw_fields_put(dict, "pull_N", tw_fields_number(specify->pull_N)) < 0
+    PyObject *dict = window_end(low->verdict.utilisation > high->verdict.utilisation ? low : high);
+    if (!dict || tw_fields_put(dict, "pull_N", tw_fields_number(specify->pull_N)) < 0
         || tw_fields_put(dict, "worst_utilisation", tw_fields_number(specify->worst_utilisation)) < 0
         || tw_fields_put(dict, "tolerance", tw_fields_number(t)) < 0
         || tw_fields_put(dict, "least_pull_N", tw_fields_number(specify->pull_N * (1.0 - t))) < 0
-        || tw_fields_put(dict, "most_pull_N", tw_fields_number(specify->pull_N * (1.0 + t))) < 0) {
+        || tw_fields_put(dict, "most_pull_N", tw_fields_number(specify->pull_N * (1.0 + t))) < 0
+        || tw_fields_put(dict, "edges", Py_BuildValue("(NN)", window_end(low), window_end(high))) < 0) {
         Py_CLEAR(dict);
     }
     return dict;

@@ -234,13 +234,17 @@ static PyObject *judged_row(const tw_verdict *verdict, size_t limit, size_t cond
     return row;
 }
 
-static int append_judged(PyObject *list, tw_trial *trial, size_t limit, size_t condition, const tw_options *options)
+/* Judges one row and appends it; -1 and raises. */
+static int append_judged(PyObject *list, tw_trial *trial, size_t limit, size_t condition, tw_options *options)
 {
     tw_verdict verdict = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN};
-    tw_status status;
-    Py_BEGIN_ALLOW_THREADS
-    status = tw_trial_judge(trial, limit, condition, options, &verdict);
-    Py_END_ALLOW_THREADS
+    run_state run;
+    tw_run_begin(&run, options);
+    tw_status status = tw_trial_judge(trial, limit, condition, options, &verdict);
+    tw_run_end(&run);
+    if (run.raised || PyErr_CheckSignals() < 0) {
+        return -1;
+    }
     if (status == TW_OK && !verdict.judged) {
         verdict.value = verdict.allowed = verdict.margin = verdict.utilisation = NAN;
     }

@@ -171,6 +171,10 @@ static tw_status solve_rule(strung *line, double low, double high, double *pull_
 {
     double miss_low, miss_high, miss;
     tw_status status = measure(line, low, &miss_low);
+    while (status == TW_NOT_SETTLED && low < 0.5 * high) {
+        low *= 1.5; /* too slack to be strung at all */
+        status = measure(line, low, &miss_low);
+    }
     if (status == TW_OK) {
         status = measure(line, high, &miss_high);
     }
@@ -248,7 +252,7 @@ static tw_status lengths_by_rule(strung *line, double *pull_N)
         low = fmin(0.42 * project->line.weight_N_per_m * longest_span(project), 0.9 * high);
         low = fmax(low, 1e-6 * high);
     } else {
-        low *= 0.05;
+        low *= 0.3;
         high = fmax(high, 0.3 * project->line.stiffness_N);
     }
     return solve_rule(line, low, high, pull_N);

@@ -13,6 +13,15 @@ static void mark_at(const tw_section *section, double s, tw_mark_state *state)
     state->tension_N = tw_norm(tension);
 }
 
+static double line_length(const tw_section *section)
+{
+    double total = 0.0;
+    for (size_t k = 0; k < section->span_count; k++) {
+        total += section->length_m[k];
+    }
+    return total;
+}
+
 static tw_status report_marks(tw_trial *trial, const tw_section *section, const tw_options *options, tw_settled *out)
 {
     const tw_project *project = trial->project;
@@ -27,6 +36,8 @@ static tw_status report_marks(tw_trial *trial, const tw_section *section, const 
             if (status != TW_OK) {
                 return status;
             }
+        } else if (!(s >= 0.0 && s <= line_length(section) * (1.0 + 1e-12))) {
+            return TW_ERROR_PLACE;
         }
         mark_at(section, s, &out->marks[i]);
     }

@@ -49,7 +49,7 @@ tw_window *tw_window_create(const tw_project *project, const tw_options *options
     }
     window->row_count = rows;
     window->interval_N = tw_calloc(2 * pulls, sizeof(double));
-    window->conflict = tw_calloc(room, sizeof *window->conflict);
+    window->conflict = tw_calloc(2 * room, sizeof *window->conflict);
     window->relax = tw_calloc(project->limit_count + 2 * TW_WINDOW_RELAX_SUPPORTS_MOST, sizeof *window->relax);
     window->row_limit = tw_calloc(room, sizeof(size_t));
     window->row_condition = tw_calloc(room, sizeof(size_t));
@@ -142,11 +142,12 @@ static double fill_end(tw_window_run *run, double pull_N, int at_range_end, tw_w
     return f;
 }
 
-static void no_verdict(tw_verdict *verdict)
+static void no_end(tw_window_end *end)
 {
-    const tw_verdict nothing = {.value = NAN, .allowed = NAN, .margin = NAN, .utilisation = NAN, .span = TW_NONE,
-                                .support = TW_NONE, .station_m = NAN};
-    *verdict = nothing;
+    const tw_window_end nothing = {
+        NAN, TW_NONE, TW_NONE,
+        {.value = NAN, .allowed = NAN, .margin = NAN, .utilisation = NAN, .span = TW_NONE, .support = TW_NONE, .station_m = NAN}};
+    *end = nothing;
 }
 
 /* The interval with the lowest worst utilisation over the tolerance is the window. What it says is judged once more on
@@ -170,7 +171,9 @@ static tw_status choose(tw_window_run *run)
     double low = w->interval_N[2 * chosen], high = w->interval_N[2 * chosen + 1];
     double f = fill_end(run, low, low <= w->range_low_N, &w->low);
     f = fmax(f, fill_end(run, high, high >= w->range_high_N * (1.0 - 1e-12), &w->high));
-    f = fmax(f, govern(run, w->specify.pull_N, &w->specify.limit, &w->specify.condition, &w->specify.verdict));
+    f = fmax(f, tw_window_try(run, w->specify.pull_N, run->u));
+    fill_end(run, w->specify.pull_N * (1.0 - tolerance), 0, &w->specify.edge[0]);
+    fill_end(run, w->specify.pull_N * (1.0 + tolerance), 0, &w->specify.edge[1]);
     return run->stop != TW_OK ? run->stop : f <= STILL_HOLDS ? TW_OK : TW_NOT_SETTLED;
 }
 
@@ -210,12 +213,11 @@ static void reset(const tw_window_run *run)
     w->evaluations = w->settles = 0;
     w->verified = 0;
     w->gap_relative = NAN;
-    w->low.pull_N = w->high.pull_N = w->specify.pull_N = w->specify.worst_utilisation = NAN;
-    no_verdict(&w->low.verdict);
-    no_verdict(&w->high.verdict);
-    no_verdict(&w->specify.verdict);
-    w->low.limit = w->high.limit = w->specify.limit = TW_NONE;
-    w->low.condition = w->high.condition = w->specify.condition = TW_NONE;
+    w->specify.pull_N = w->specify.worst_utilisation = NAN;
+    no_end(&w->low);
+    no_end(&w->high);
+    no_end(&w->specify.edge[0]);
+    no_end(&w->specify.edge[1]);
     tw_stringing_range(&run->project, &w->range_low_N, &w->range_high_N);
 }
 
@@ -227,6 +229,11 @@ static void best_so_far(tw_window_run *run)
     w->specify.pull_N = run->best_pull_N;
     w->specify.worst_utilisation = isfinite(run->best_f) ? run->best_f : (double)NAN;
     w->specify.tolerance = 0.0;
+    no_end(&w->low);
+    no_end(&w->high);
+    no_end(&w->specify.edge[0]);
+    no_end(&w->specify.edge[1]);
+    w->verified = 0;
 }
 
 static tw_status search(tw_window_run *run)

@@ -2,8 +2,9 @@
  *
  * A row is one limit in one condition. Its utilisation u(H) at pull H is smooth between changes of its worst place.
  *     scan      every row at pulls spaced evenly in log H
- *     islands   where the worst utilisation f = max u has a local minimum above 1, or a local maximum below 1, between
- *               scan points, SLSQP looks for its extreme (min t, u <= t), so that a narrow window or gap is not missed
+ *     islands   where the worst utilisation f = max u has a local minimum above 1 between scan points, SLSQP looks for it
+ *               (min t, u <= t); where it has a local maximum below 1, golden section does: so that a window or a gap
+ *               narrower than the scan is not missed
  *     ends      in each cell where f crosses 1: SLSQP, min +-H with u <= 1 on the rows that change there; then the
  *               crossing is bracketed to rounding without the optimiser, and every row is judged again at the end found
  *     specify   min over H of max f on [H (1 - tol), H (1 + tol)]
@@ -27,9 +28,7 @@ typedef struct tw_window_specify {
     double pull_N;
     double worst_utilisation; /* over the tolerance */
     double tolerance;
-    size_t limit; /* the worst */
-    size_t condition;
-    tw_verdict verdict;
+    tw_window_end edge[2]; /* what is worst at pull (1 - tolerance) and at pull (1 + tolerance) */
 } tw_window_specify;
 
 typedef enum tw_variable { TW_VARIABLE_PULL, TW_VARIABLE_SUPPORT_HEIGHT, TW_VARIABLE_SUPPORT_STATION } tw_variable;
@@ -77,9 +76,9 @@ typedef struct tw_window {
     size_t price_count;
     tw_window_price price[TW_WINDOW_PRICES_MOST];
     size_t conflict_count;
-    tw_window_conflict *conflict; /* [row_count] */
+    tw_window_conflict *conflict; /* [conflict_count] */
     size_t relax_count;
-    tw_window_relax *relax; /* [limit_count + 2 TW_WINDOW_RELAX_SUPPORTS_MOST] */
+    tw_window_relax *relax; /* [relax_count] */
     size_t row_count;
     size_t *row_limit;      /* [row_count] */
     size_t *row_condition;  /* [row_count] */

@@ -1,100 +1,11 @@
-/* window_explain: what moves an open window's ends, and what opens a shut one. */
+/* window_explain: the limits that exclude one another, and the smallest single changes that open a shut window. */
 #include <math.h>
 #include <string.h>
 
-#include "ground.h"
 #include "window_search.h"
 
-static const double MOVE_M = 1e-3;        /* central differences of a support's place */
-static const double PULL_STEP = 1e-5;     /* and of the pull, relative */
 static const double FURTHEST_M = 200.0;   /* no relaxation moves a support further */
 static const double OPENER = 1e-6;        /* a relaxed allowance is rounded open by this share */
-
-static double margin_at(tw_window_run *run, size_t row, double pull_N)
-{
-    tw_verdict verdict;
-    tw_trial_string(run->trial, pull_N);
-    tw_window_row(run, row, &verdict);
-    return verdict.margin;
-}
-
-/* Put a support at its place plus a move; one that is given by height follows the ground. */
-static void move_support(tw_window_run *run, const tw_support *home, size_t support, tw_relax_kind kind, double by)
-{
-    tw_support *at = &run->supports[support];
-    *at = *home;
-    if (kind == TW_RELAX_SUPPORT_STATION) {
-        at->station_m += by;
-        double ground = tw_ground_elevation(&run->project, at->station_m);
-        if (!isnan(home->height_m) && !isnan(ground)) {
-            at->elevation_m = ground + home->height_m;
-        }
-    } else if (kind == TW_RELAX_SUPPORT_HEIGHT) {
-        at->elevation_m += by;
-    }
-    run->moved = by != 0.0;
-}
-
-static size_t find_row(const tw_window *w, size_t limit, size_t condition)
-{
-    for (size_t r = 0; r < w->row_count; r++) {
-        if (w->row_limit[r] == limit && w->row_condition[r] == condition) {
-            return r;
-        }
-    }
-    return TW_NONE;
-}
-
-static void add_price(tw_window *w, const tw_window_price *price)
-{
-    if (w->price_count < TW_WINDOW_PRICES_MOST && isfinite(price->margin_per_unit)) {
-        w->price[w->price_count++] = *price;
-    }
-}
-
-static void price_support(tw_window_run *run, tw_window_price price, size_t row, double pull_N, double per_pull)
-{
-    const tw_support home = run->supports[price.support];
-    tw_relax_kind kind = price.variable == TW_VARIABLE_SUPPORT_HEIGHT ? TW_RELAX_SUPPORT_HEIGHT
-                                                                      : TW_RELAX_SUPPORT_STATION;
-    move_support(run, &home, price.support, kind, MOVE_M);
-    double up = margin_at(run, row, pull_N);
-    move_support(run, &home, price.support, kind, -MOVE_M);
-    double down = margin_at(run, row, pull_N);
-    move_support(run, &home, price.support, kind, 0.0);
-    price.margin_per_unit = (up - down) / (2.0 * MOVE_M);
-    price.pull_per_unit = -price.margin_per_unit / per_pull;
-    add_price(run->window, &price);
-}
-
-static void price_end(tw_window_run *run, const tw_window_end *end, int at_high)
-{
-    size_t row = find_row(run->window, end->limit, end->condition);
-    if (row == TW_NONE) {
-        return;
-    }
-    double step = PULL_STEP * end->pull_N;
-    double per_pull = (margin_at(run, row, end->pull_N + step) - margin_at(run, row, end->pull_N - step)) / (2.0 * step);
-    tw_window_price price = {at_high, end->limit, end->condition, TW_VARIABLE_PULL, TW_NONE, per_pull, NAN};
-    add_price(run->window, &price);
-    size_t first = end->verdict.support != TW_NONE ? end->verdict.support : end->verdict.span;
-    size_t last = end->verdict.support != TW_NONE ? first : first + 1;
-    for (size_t j = first; first != TW_NONE && j <= last; j++) {
-        price.support = j;
-        price.variable = TW_VARIABLE_SUPPORT_HEIGHT;
-        price_support(run, price, row, end->pull_N, per_pull);
-        price.variable = TW_VARIABLE_SUPPORT_STATION;
-        price_support(run, price, row, end->pull_N, per_pull);
-    }
-}
-
-void tw_window_prices(tw_window_run *run)
-{
-    price_end(run, &run->window->low, 0);
-    price_end(run, &run->window->high, 1);
-}
-
-/* ---- a shut window ---- */
 
 static size_t best_of_curve(const tw_window_run *run)
 {
@@ -156,6 +67,26 @@ static void add_conflict(tw_window *w, const tw_window_conflict *entry)
     w->conflict[w->conflict_count++] = *entry;
 }
 
+/* What still fails where an entry is just satisfied: its opponent, where f has no two branches that meet at its lowest. */
+static void find_opponent(tw_window_run *run, const tw_window_conflict *entry)
+{
+    tw_window *w = run->window;
+    int up = entry->side == TW_SIDE_AT_MOST;
+    size_t row, k = up ? 0 : w->curve_count - 1;
+    if (entry->side == TW_SIDE_NEVER || !(tw_window_try(run, entry->needs_N, run->u) > 1.0)) {
+        return;
+    }
+    tw_window_worst(run, run->u, &row);
+    while (up ? k + 1 < w->curve_count && w->curve_pull_N[k + 1] <= entry->needs_N
+              : k > 0 && w->curve_pull_N[k - 1] >= entry->needs_N) {
+        k = up ? k + 1 : k - 1;
+    }
+    tw_window_conflict other = {w->row_limit[row], w->row_condition[row], NAN, up ? TW_SIDE_AT_LEAST : TW_SIDE_AT_MOST};
+    if (w->curve[k * w->row_count + row] > 1.0 && needs(run, row, k, up, &other.needs_N)) {
+        add_conflict(w, &other);
+    }
+}
+
 static void find_conflict(tw_window_run *run, size_t at)
 {
     tw_window *w = run->window;
@@ -170,6 +101,10 @@ static void find_conflict(tw_window_run *run, size_t at)
             entry.side = TW_SIDE_AT_MOST;
         }
         add_conflict(w, &entry);
+    }
+    for (size_t i = 0, count = w->conflict_count; i < count && run->stop == TW_OK; i++) {
+        const tw_window_conflict entry = w->conflict[i];
+        find_opponent(run, &entry);
     }
 }
 
@@ -282,7 +217,7 @@ typedef struct mover {
 
 static double moved_f(mover *m, double by)
 {
-    move_support(m->run, &m->home, m->support, m->kind, by);
+    tw_window_move(m->run, &m->home, m->support, m->kind == TW_RELAX_SUPPORT_STATION, by);
     return lowest_f(m->run, m->near_N, &m->pull_N);
 }
 
@@ -333,7 +268,7 @@ static void relax_support(tw_window_run *run, size_t support, tw_relax_kind kind
         const tw_window_relax entry = {kind, TW_NONE, support, by, to, m.pull_N};
         w->relax[w->relax_count++] = entry;
     }
-    move_support(run, &m.home, support, kind, 0.0);
+    tw_window_move(run, &m.home, support, 0, 0.0);
 }
 
 /* The supports beside the places where the limits in conflict are worst. */

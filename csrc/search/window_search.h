@@ -5,7 +5,9 @@
 #include "trial.h"
 #include "window.h"
 
-enum { TW_WINDOW_WORKING_MOST = 24 }; /* rows that one call of the optimiser sees */
+enum { TW_WINDOW_WORKING_MOST = 24 };     /* rows that one call of the optimiser sees */
+#define TW_WINDOW_UNSETTLED 1000.0        /* utilisation of a row that cannot be settled at a pull */
+#define TW_WINDOW_HOLDS (1.0 + 1e-9)      /* utilisation that counts as held */
 
 typedef struct tw_window_run {
     tw_project project;    /* the user's, with `supports` in the place of its own, so that a support can be moved */
@@ -30,6 +32,12 @@ double tw_window_worst(const tw_window_run *run, const double *u, size_t *row);
 /* String to a pull and judge every row into u [row_count]; returns f. A row that cannot be settled counts as 1000. */
 double tw_window_try(tw_window_run *run, double pull_N, double *u);
 
+/* Keep the first reason to end the search. */
+void tw_window_latch(tw_window_run *run, tw_status status);
+
+/* String to a pull and judge one row. */
+double tw_window_row_at(tw_window_run *run, size_t row, double pull_N);
+
 /* Judge one row at the pull strung last. */
 double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict);
 
@@ -43,8 +51,15 @@ size_t tw_window_intervals(tw_window_run *run, double *interval, size_t most);
 /* Pull between low and high with the smallest f over [pull (1 - tolerance), pull (1 + tolerance)]; that f. */
 double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double tolerance, double *pull_N);
 
+/* Pull between low and high with the greatest f; that f. */
+double tw_window_peak(tw_window_run *run, double low_N, double high_N, double *pull_N);
+
 /* Boundary between a pull where the masked rows hold and one where they do not: the last pull that holds. */
 double tw_window_boundary(tw_window_run *run, double holds_N, double fails_N);
+
+/* Put a support at its home plus a move along the route (station 1) or upwards; one that is given by height follows the
+ * ground. */
+void tw_window_move(tw_window_run *run, const tw_support *home, size_t support, int station, double by);
 
 void tw_window_prices(tw_window_run *run);
 void tw_window_explain_shut(tw_window_run *run);

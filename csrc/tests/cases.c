@@ -201,6 +201,55 @@ tw_trial *case_trial(const tw_case *c, double pull_N)
     return NULL;
 }
 
+double case_utilisation(const tw_case *c, double pull_N)
+{
+    const tw_project *p = &c->project;
+    tw_trial *trial = case_trial(c, pull_N);
+    double worst = trial ? 0.0 : 1000.0;
+    for (size_t i = 0; trial && i < p->limit_count * p->condition_count; i++) {
+        tw_verdict v;
+        if (p->limit_applies[i]) {
+            tw_status status = tw_trial_judge(trial, i / p->condition_count, i % p->condition_count, &c->options, &v);
+            double u = status != TW_OK ? 1000.0 : v.judged ? v.utilisation : 0.0;
+            worst = fmax(worst, isfinite(u) ? u : 1000.0);
+        }
+    }
+    tw_trial_free(trial);
+    return worst;
+}
+
+double case_edge(const tw_case *c, double holds_N, double fails_N)
+{
+    for (int i = 0; i < 45; i++) {
+        double middle = 0.5 * (holds_N + fails_N);
+        *(case_utilisation(c, middle) <= 1.0 ? &holds_N : &fails_N) = middle;
+    }
+    return holds_N;
+}
+
+size_t case_stretches(const tw_case *c, double low_N, double high_N, int points, double *edges, size_t most)
+{
+    size_t count = 0;
+    double before = low_N;
+    int inside = case_utilisation(c, low_N) <= 1.0;
+    edges[0] = low_N;
+    for (int k = 1; k <= points && count < most; k++) {
+        double pull = low_N * pow(high_N / low_N, (double)k / points);
+        int holds = case_utilisation(c, pull) <= 1.0;
+        if (holds && !inside) {
+            edges[2 * count] = case_edge(c, pull, before);
+        } else if (!holds && inside) {
+            edges[2 * count++ + 1] = case_edge(c, before, pull);
+        }
+        inside = holds;
+        before = pull;
+    }
+    if (inside && count < most) {
+        edges[2 * count++ + 1] = high_N;
+    }
+    return count;
+}
+
 double case_complementary(tw_section *section, const double *pull)
 {
     const double zero[3] = {0.0, 0.0, 0.0};

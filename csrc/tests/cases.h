@@ -54,6 +54,16 @@ tw_section *case_hung(const tw_case *c, size_t condition);
 /* A trial strung to a pull (NaN: by the rule); NULL when that fails. */
 tw_trial *case_trial(const tw_case *c, double pull_N);
 
+/* Worst utilisation at a pull, from a cold start: every limit in every condition it applies to; 1000 where one cannot be
+ * settled. No part of any search. */
+double case_utilisation(const tw_case *c, double pull_N);
+
+/* The last pull that holds, between one that does and one that does not. */
+double case_edge(const tw_case *c, double holds_N, double fails_N);
+
+/* Open stretches between two pulls by that many points and bisection: their number, edges [2 most] ascending. */
+size_t case_stretches(const tw_case *c, double low_N, double high_N, int points, double *edges, size_t most);
+
 /* D of the section's loads at any pulls R [3 spans], by the definition of section.h. Leaves the pieces hung there. */
 double case_complementary(tw_section *section, const double *pull);
 

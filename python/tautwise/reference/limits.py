@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -11,7 +11,7 @@ import numpy as np
 
 from .quadrature import Array, golden
 from .section import Settled
-from .states import span_state, support_state
+from .states import horizontal_tension, sag_of, slope_max, support_state, tension_max
 
 SPAN_KINDS = {"clearance", "tension", "sag", "catenary_constant", "slope"}
 
@@ -79,18 +79,18 @@ def judge_span(
     if rule["kind"] == "clearance":
         clearance = least_clearance(problem, rule, settled, span)
         return [] if clearance is None else [least(clearance, rule["least"], 1.0)]
-    state = span_state(settled, span)
+    hung = settled.spans[span]
     if rule["kind"] == "tension":
         share = number(rule, "share")
         allowed = rule["most"] if share is None else share * problem["line"]["breaking_strength_N"]
-        return [most(state["tension_max_N"], allowed)]
+        return [most(tension_max(hung), allowed)]
     if rule["kind"] == "sag":
-        bounds = number(rule, "most"), number(rule, "least")
-        upper = [] if bounds[0] is None else [most(state["sag_m"], bounds[0])]
-        return upper + ([] if bounds[1] is None else [least(state["sag_m"], bounds[1], 1.0)])
+        sag, bounds = sag_of(settled, span), (number(rule, "most"), number(rule, "least"))
+        upper = [] if bounds[0] is None else [most(sag, bounds[0])]
+        return upper + ([] if bounds[1] is None else [least(sag, bounds[1], 1.0)])
     if rule["kind"] == "catenary_constant":
-        return [most(state["horizontal_tension_N"] / problem["line"]["weight_N_per_m"], rule["most"])]
-    return [most(state["slope_max"], rule["most"])]
+        return [most(horizontal_tension(settled, span) / problem["line"]["weight_N_per_m"], rule["most"])]
+    return [most(slope_max(hung), rule["most"])]
 
 
 def judge_support(
@@ -124,8 +124,8 @@ def least_clearance(
 ) -> float | None:
     """Least vertical clearance of a span over the ground or a crossing's top between the rule's stations, m.
 
-    Dense samples of the line, those that lie over the stretch, the stretch's own bounds and the profile's points; then
-    golden section around the lowest. None where the span does not pass there.
+    Dense samples of the line, the stretch's own bounds and the profile's points; then golden section on both sides
+    of the lowest. None where the span does not pass there.
     """
     top = top_of(problem, rule)
     if top is None:
@@ -138,24 +138,25 @@ def least_clearance(
         place = start + hung.position_at(s)
         return float(place[2]) - float(np.interp(place[0], stations, elevations))
 
-    def station(s: float) -> float:
-        return float(start[0] + hung.position_at(s)[0])
-
     samples = np.linspace(0.0, hung.length_m, 401)
-    passed = np.array([station(float(s)) for s in samples])
+    passed = start[0] + hung.positions_at(samples)[:, 0]
     edges = [x for x in [low, high, *stations] if low <= x <= high]
-    cuts = {0.0, hung.length_m, *(s for x in edges for s in crossings_of(station, samples, passed, x))}
-    inside = sorted({*cuts, *(float(s) for s, x in zip(samples, passed, strict=True) if low <= x <= high)})
-    inside = [s for s in inside if low - 1e-9 <= station(s) <= high + 1e-9]
-    if not inside:
+    cuts = [
+        s
+        for x in edges
+        for s in crossings_of(lambda s: start[0] + hung.position_at(s)[0], samples, passed, x)
+    ]
+    places = np.unique(np.concatenate([samples, cuts]))
+    found = start + hung.positions_at(places)
+    inside = (found[:, 0] >= low - 1e-9) & (found[:, 0] <= high + 1e-9)
+    if not inside.any():
         return None
-    heights = [clearance(s) for s in inside]
-    best = min(heights)
-    for at in np.argsort(heights)[:3]:
-        for other in (at - 1, at + 1):
-            if 0 <= other < len(inside):
-                near, far = sorted((inside[at], inside[other]))
-                best = min(best, -golden(lambda s: -clearance(s), near, far)[1])
+    heights = np.where(inside, found[:, 2] - np.interp(found[:, 0], stations, elevations), np.inf)
+    at = int(np.argmin(heights))
+    best = float(heights[at])
+    for near, far in ((at - 1, at), (at, at + 1)):
+        if near >= 0 and far < len(places) and inside[near] and inside[far]:
+            best = min(best, -golden(lambda s: -clearance(s), float(places[near]), float(places[far]), 40)[1])
     return best
 
 
@@ -175,7 +176,7 @@ def bounds_of(rule: Mapping[str, Any], stations: Array) -> tuple[float, float]:
     return first, float(stations[-1]) if high is None else min(high, float(stations[-1]))
 
 
-def crossings_of(station: Any, samples: Array, passed: Array, x: float) -> list[float]:
+def crossings_of(station: Callable[[float], float], samples: Array, passed: Array, x: float) -> list[float]:
     """Natural lengths at which the line passes a station, by bisection between samples."""
     found = []
     for i in np.flatnonzero((passed[:-1] - x) * (passed[1:] - x) <= 0.0):

@@ -100,6 +100,19 @@ class Hung:
                 total = total + displacement(self.material, tension, piece.load, within)
         return total
 
+    def positions_at(self, places: Array) -> Array:
+        """The same for many natural lengths in ascending order; shape (n, 3)."""
+        found = np.zeros((len(places), 3))
+        base = np.zeros(3)
+        for start, tension, piece in self.starts():
+            edges = np.array(panels(tension, piece.load, piece.length_m))
+            here = (places > start) & (places <= start + piece.length_m)
+            within = np.unique(np.concatenate([edges, places[here] - start]))
+            moved = displacements(self.material, tension, piece.load, within)
+            found[here] = base + moved[np.searchsorted(within, places[here] - start)]
+            base = base + moved[-1]
+        return found
+
     def closing(self, chord: Array) -> Array:
         """How far the span's end misses its place, m: the gradient of -D."""
         return self.position_at(self.length_m) - chord
@@ -256,7 +269,7 @@ def first_pull(material: Material, pieces: Sequence[Piece], chord: Array) -> Arr
     along = chord / np.linalg.norm(chord)
     length = sum(piece.length_m for piece in pieces)
     taut = material.stiffness_N * max(0.0, float(np.linalg.norm(chord)) / length - 1.0 - material.strain)
-    sizes = [float(np.linalg.norm(total)) * 10.0 ** (power / 4) for power in range(-24, 17)] + [
+    sizes = [float(np.linalg.norm(total)) * 10.0**power for power in range(-6, 5)] + [
         taut,
         1.1 * taut,
     ]

@@ -46,6 +46,24 @@ def total_load(hung: Hung) -> Array:
     return np.asarray(hung.pull - hung.end_tension())
 
 
+def tension_max(hung: Hung) -> float:
+    """Greatest tension of a span, N: |t| is convex along a piece, so it sits at one of the piece's ends."""
+    starts = [tension for _, tension, _ in hung.starts()]
+    ends = [tension - piece.load * piece.length_m for _, tension, piece in hung.starts()]
+    return max(float(np.linalg.norm(tension)) for tension in starts + ends)
+
+
+def sag_of(settled: Settled, span: int) -> float:
+    """Greatest vertical distance from the chord down to the line, m."""
+    return max(0.0, settled.spans[span].extreme(below_chord(chord_of(settled, span)))[0])
+
+
+def horizontal_tension(settled: Settled, span: int) -> float:
+    """Tension along the plan direction of the span, N."""
+    chord = chord_of(settled, span)
+    return float(settled.spans[span].pull[:2] @ chord[:2]) / math.hypot(chord[0], chord[1])
+
+
 def slope_max(hung: Hung) -> float:
     """Greatest |dz| over plan distance along the span: samples of each piece, then golden section."""
 
@@ -99,11 +117,9 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
     run = math.hypot(chord[0], chord[1])
     along = np.array([chord[0], chord[1], 0.0]) / run
     left = np.array([-along[1], along[0], 0.0])
-    sag, sag_at = hung.extreme(below_chord(chord))
+    sag_at = hung.extreme(below_chord(chord))[1]
     low, low_at = hung.extreme(-UP)
-    horizontal = float(hung.pull @ along)
-    tensions = [hung.pull, hung.end_tension(), *(tension for _, tension, _ in hung.starts())]
-    tensions += [tension - piece.load * piece.length_m for _, tension, piece in hung.starts()]
+    horizontal = horizontal_tension(settled, span)
     return {
         "span_m": run,
         "rise_m": float(chord[2]),
@@ -112,8 +128,8 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
         "horizontal_tension_N": horizontal,
         "tension_from_N": float(np.linalg.norm(hung.pull)),
         "tension_to_N": float(np.linalg.norm(hung.end_tension())),
-        "tension_max_N": max(float(np.linalg.norm(tension)) for tension in tensions),
-        "sag_m": max(0.0, sag),
+        "tension_max_N": tension_max(hung),
+        "sag_m": sag_of(settled, span),
         "sag_station_m": float((start + hung.position_at(sag_at))[0]),
         "slant_sag_m": max(0.0, hung.extreme(along_load(chord, total_load(hung)))[0]),
         "blowout_m": max(0.0, hung.extreme(left)[0], hung.extreme(-left)[0]),

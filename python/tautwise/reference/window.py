@@ -14,7 +14,7 @@ from .quadrature import golden
 def intervals(
     worst: Callable[[float], float], low_N: float, high_N: float, points: int = 200
 ) -> list[tuple[float, float]]:
-    """Every stretch of pulls between two at which the worst utilisation is at most 1, edges to 1e-12.
+    """Every stretch of pulls between two at which the worst utilisation is at most 1, edges to 1e-10.
 
     Pulls are scanned evenly on a logarithmic scale; around each least value of the scan golden section looks for a
     window that hides between its points.
@@ -51,7 +51,7 @@ def edge(worst: Callable[[float], float], holds_N: float, fails_N: float) -> flo
     >>> round(edge(lambda pull: pull / 2.0, 1.0, 3.0), 9)
     2.0
     """
-    while abs(fails_N / holds_N - 1.0) > 1e-12:
+    while abs(fails_N / holds_N - 1.0) > 1e-10:
         middle = math.sqrt(holds_N * fails_N)
         if worst(middle) <= 1.0:
             holds_N = middle
