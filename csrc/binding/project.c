@@ -7,6 +7,7 @@
 #include "answer.h"
 #include "fields.h"
 #include "module.h"
+#include "places.h"
 #include "problem.h"
 #include "report.h"
 #include "run.h"
@@ -267,7 +268,10 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     if (!trial) {
         return PyErr_NoMemory();
     }
-    tw_status status = tw_trial_string(trial, pull);
+    tw_status status;
+    Py_BEGIN_ALLOW_THREADS
+    status = tw_trial_string(trial, pull);
+    Py_END_ALLOW_THREADS
     PyObject *list = status == TW_OK ? PyList_New(0) : raise_status(self, status);
     for (size_t i = 0; list && i < project->limit_count; i++) {
         for (size_t c = 0; list && c < project->condition_count; c++) {
@@ -281,77 +285,17 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     return list;
 }
 
-/* Arrays length_m (n), position_m (n, 3), tension_N (n) to be filled. */
-typedef struct places {
-    PyObject *length, *position, *tension;
-    double *s, *r, *t;
-} places;
-
-static int places_create(npy_intp count, places *out)
-{
-    npy_intp shape[2] = {count, 3};
-    out->length = PyArray_SimpleNew(1, &count, NPY_DOUBLE);
-    out->position = PyArray_SimpleNew(2, shape, NPY_DOUBLE);
-    out->tension = PyArray_SimpleNew(1, &count, NPY_DOUBLE);
-    if (!out->length || !out->position || !out->tension) {
-        return -1;
-    }
-    out->s = PyArray_DATA((PyArrayObject *)out->length);
-    out->r = PyArray_DATA((PyArrayObject *)out->position);
-    out->t = PyArray_DATA((PyArrayObject *)out->tension);
-    return 0;
-}
-
-static PyObject *places_dict(places *in, int failed)
-{
-    if (failed) {
-        Py_XDECREF(in->length);
-        Py_XDECREF(in->position);
-        Py_XDECREF(in->tension);
-        return NULL;
-    }
-    return Py_BuildValue("{s:N,s:N,s:N}", "length_m", in->length, "position_m", in->position, "tension_N", in->tension);
-}
-
-static void place_at(const tw_section *section, double s, places *out, size_t i)
-{
-    double tension[3];
-    out->s[i] = s;
-    tw_section_at(section, s, out->r + 3 * i, tension);
-    out->t[i] = sqrt(tension[0] * tension[0] + tension[1] * tension[1] + tension[2] * tension[2]);
-}
-
-/* Points evenly along the natural line, `points` a span and the end. */
-static void shape_points(const tw_section *section, size_t points, places *out)
-{
-    double passed = 0.0;
-    size_t i = 0;
-    for (size_t k = 0; k < section->span_count; k++) {
-        for (size_t p = 0; p < points; p++) {
-            place_at(section, passed + section->length_m[k] * (double)p / (double)points, out, i++);
-        }
-        passed += section->length_m[k];
-    }
-    place_at(section, passed, out, i);
-}
-
-static void station_points(const tw_section *section, const double *stations, size_t count, places *out)
-{
-    for (size_t i = 0; i < count; i++) {
-        double s;
-        if (tw_section_at_station(section, stations[i], &s) == TW_OK) {
-            place_at(section, s, out, i);
-        } else {
-            out->s[i] = out->t[i] = out->r[3 * i] = out->r[3 * i + 1] = out->r[3 * i + 2] = NAN;
-        }
-    }
-}
-
-static tw_status solve_exact(tw_trial *trial, double pull, size_t condition, tw_options *options,
+static tw_status solve_exact(tw_trial *trial, double pull, size_t condition, const tw_options *options,
                              const tw_section **section)
 {
-    tw_status status = tw_trial_string(trial, pull);
-    return status == TW_OK ? tw_trial_section(trial, condition, options, section) : status;
+    tw_status status;
+    Py_BEGIN_ALLOW_THREADS
+    status = tw_trial_string(trial, pull);
+    if (status == TW_OK) {
+        status = tw_trial_section(trial, condition, options, section);
+    }
+    Py_END_ALLOW_THREADS
+    return status;
 }
 
 static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywords)
@@ -360,8 +304,7 @@ static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywo
     Py_ssize_t condition, points = 200;
     double pull;
     tw_options options;
-    const tw_section *section;
-    places out = {0};
+    const tw_section *section = NULL;
     if (!PyArg_ParseTuple(args, "n|n:shape", &condition, &points) || condition_index(self, condition) < 0
         || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
@@ -375,15 +318,9 @@ static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywo
         return PyErr_NoMemory();
     }
     tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-    int failed = 1;
-    if (status != TW_OK) {
-        raise_status(self, status);
-    } else if (places_create((npy_intp)section->span_count * points + 1, &out) == 0) {
-        shape_points(section, (size_t)points, &out);
-        failed = 0;
-    }
+    PyObject *result = status == TW_OK ? tw_places_along(section, (size_t)points) : raise_status(self, status);
     tw_trial_free(trial);
-    return places_dict(&out, failed);
+    return result;
 }
 
 static PyObject *project_at(PyObject *object, PyObject *args, PyObject *keywords)
@@ -393,31 +330,27 @@ static PyObject *project_at(PyObject *object, PyObject *args, PyObject *keywords
     PyObject *given;
     double pull;
     tw_options options;
-    const tw_section *section;
-    places out = {0};
+    const tw_section *section = NULL;
     if (!PyArg_ParseTuple(args, "nO:at", &condition, &given) || condition_index(self, condition) < 0
         || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
     PyArrayObject *stations = (PyArrayObject *)PyArray_FROM_OTF(given, NPY_DOUBLE, NPY_ARRAY_IN_ARRAY);
     tw_trial *trial = stations ? tw_trial_create(&self->problem.project) : NULL;
-    int failed = 1;
+    PyObject *result = NULL;
     if (stations && !trial) {
         PyErr_NoMemory();
     } else if (stations && PyArray_NDIM(stations) != 1) {
         PyErr_SetString(PyExc_ValueError, "stations: expected a one-dimensional array");
     } else if (stations) {
         tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-        if (status != TW_OK) {
-            raise_status(self, status);
-        } else if (places_create(PyArray_DIM(stations, 0), &out) == 0) {
-            station_points(section, PyArray_DATA(stations), (size_t)PyArray_DIM(stations, 0), &out);
-            failed = 0;
-        }
+        result = status == TW_OK
+                     ? tw_places_at(section, PyArray_DATA(stations), (size_t)PyArray_DIM(stations, 0))
+                     : raise_status(self, status);
     }
     tw_trial_free(trial);
     Py_XDECREF(stations);
-    return places_dict(&out, failed);
+    return result;
 }
 
 /* Puts what was found so far on the pending KeyboardInterrupt, as .best; other exceptions pass as they are. */
