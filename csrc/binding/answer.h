@@ -2,7 +2,7 @@
 #ifndef TW_ANSWER_H
 #define TW_ANSWER_H
 
-#include "python.h"
+#include "python_api.h"
 
 #include "line.h"
 #include "window.h"

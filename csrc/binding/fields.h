@@ -3,7 +3,7 @@
 #ifndef TW_FIELDS_H
 #define TW_FIELDS_H
 
-#include "python.h"
+#include "python_api.h"
 
 #include "line.h"
 

@@ -1,5 +1,5 @@
 /* kernel: the array functions settle_spans and natural_length, as gufuncs over scalar core slots. */
-#include "python.h"
+#include "python_api.h"
 
 #include <math.h>
 #include <numpy/arrayobject.h>

@@ -1,6 +1,6 @@
 /* module: tautwise._core, multi-phase initialisation. */
 #define TW_IMPORTS_NUMPY
-#include "python.h"
+#include "python_api.h"
 
 #include <numpy/arrayobject.h>
 #include <numpy/ufuncobject.h>

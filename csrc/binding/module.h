@@ -2,7 +2,7 @@
 #ifndef TW_MODULE_H
 #define TW_MODULE_H
 
-#include "python.h"
+#include "python_api.h"
 
 typedef struct module_state {
     PyObject *range_error; /* RangeError(ValueError): .path, .expected */

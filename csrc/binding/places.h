@@ -2,7 +2,7 @@
 #ifndef TW_PLACES_H
 #define TW_PLACES_H
 
-#include "python.h"
+#include "python_api.h"
 
 #include "section.h"
 

@@ -2,7 +2,7 @@
 #ifndef TW_PROBLEM_H
 #define TW_PROBLEM_H
 
-#include "python.h"
+#include "python_api.h"
 
 #include "line.h"
 

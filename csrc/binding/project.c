@@ -1,5 +1,5 @@
 /* project: the heap type Project, an immutable deep copy of a problem with the calls that run on it. */
-#include "python.h"
+#include "python_api.h"
 
 #include <math.h>
 #include <numpy/arrayobject.h>

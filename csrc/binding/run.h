@@ -2,7 +2,7 @@
 #ifndef TW_RUN_H
 #define TW_RUN_H
 
-#include "python.h"
+#include "python_api.h"
 
 #include "line.h"
 

@@ -1,6 +1,6 @@
-/* python: the one way in to Python.h and NumPy, with the API level stated once. */
-#ifndef TW_PYTHON_H
-#define TW_PYTHON_H
+/* python_api: the one way in to Python.h and NumPy, with the API level stated once. */
+#ifndef TW_PYTHON_API_H
+#define TW_PYTHON_API_H
 
 #define PY_SSIZE_T_CLEAN
 #include <Python.h>
