@@ -223,29 +223,76 @@ static tw_status check_conditions(const tw_project *p, tw_fault *fault)
     return TW_OK;
 }
 
+/* A share is of the breaking strength, or of the capacity of every support looked at. */
+static tw_status check_share(const tw_project *p, size_t i, tw_fault *fault)
+{
+    const tw_limit *limit = &p->limits[i];
+    if (limit->kind == TW_LIMIT_TENSION) {
+        return !isnan(p->line.breaking_strength_N)
+                   ? TW_OK
+                   : fail(fault, "limits", i, "share", "a breaking strength for the share to be of");
+    }
+    if (limit->kind != TW_LIMIT_SUPPORT_LOAD || limit->direction == TW_DIRECTION_RESULTANT) {
+        return fail(fault, "limits", i, "share", "no share, but of a tension or of a support's capacity in a direction");
+    }
+    for (size_t j = 0; j < p->support_count; j++) {
+        if (p->limit_covers[i * p->support_count + j] && isnan(tw_line_capacity(&p->supports[j], limit->direction))) {
+            return fail(fault, "limits", i, "share", "a capacity of every support that the limit looks at");
+        }
+    }
+    return TW_OK;
+}
+
+static tw_status check_clearance(const tw_project *p, size_t i, tw_fault *fault)
+{
+    const tw_limit *limit = &p->limits[i];
+    if (limit->crossing != TW_NONE && limit->crossing >= p->crossing_count) {
+        return fail(fault, "limits", i, "crossing", "a crossing that exists");
+    }
+    if (limit->crossing == TW_NONE && p->ground_count == 0) {
+        return fail(fault, "limits", i, "crossing", "a ground profile to keep clear of");
+    }
+    if (limit->from_m >= limit->to_m) {
+        return fail(fault, "limits", i, "to_m", "a station beyond from");
+    }
+    return TW_OK;
+}
+
 static tw_status check_limit(const tw_project *p, size_t i, tw_fault *fault)
 {
     const tw_limit *limit = &p->limits[i];
     int most = !isnan(limit->most), least = !isnan(limit->least), share = !isnan(limit->share);
-    int by_least = limit->kind == TW_LIMIT_CLEARANCE || limit->kind == TW_LIMIT_UPLIFT;
-    if (by_least && (!least || most)) {
-        return fail(fault, "limits", i, "least", "a least value, and no most");
+    if (limit->kind == TW_LIMIT_CLEARANCE || limit->kind == TW_LIMIT_UPLIFT) {
+        if (!least || most || share) {
+            return fail(fault, "limits", i, "least", "a least value, and neither most nor share");
+        }
+        return limit->kind == TW_LIMIT_CLEARANCE ? check_clearance(p, i, fault) : TW_OK;
     }
     if (limit->kind == TW_LIMIT_SAG) {
-        return most || least ? TW_OK : fail(fault, "limits", i, "most", "a most or a least value");
+        return (most || least) && !share ? TW_OK : fail(fault, "limits", i, "most", "a most or a least value, no share");
     }
-    if (!by_least && most == share) {
-        return fail(fault, "limits", i, "most", "either a most value or a share");
+    if (least || most == share) {
+        return fail(fault, "limits", i, "most", "either a most value or a share, and no least");
     }
-    if (limit->kind == TW_LIMIT_TENSION && share && isnan(p->line.breaking_strength_N)) {
-        return fail(fault, "limits", i, "share", "a breaking strength for the share to be of");
+    if (limit->kind == TW_LIMIT_CATENARY_CONSTANT && !(p->line.weight_N_per_m > 0.0)) {
+        return fail(fault, "line", TW_NONE, "weight_N_per_m", "a weight above 0 for a catenary constant");
     }
-    if (limit->kind == TW_LIMIT_CLEARANCE) {
-        if (limit->crossing != TW_NONE && limit->crossing >= p->crossing_count) {
-            return fail(fault, "limits", i, "crossing", "a crossing that exists");
-        }
-        if (limit->crossing == TW_NONE && p->ground_count == 0) {
-            return fail(fault, "limits", i, "crossing", "a ground profile to keep clear of");
+    return share ? check_share(p, i, fault) : TW_OK;
+}
+
+static tw_status check_stringing_temperature(const tw_project *p, tw_fault *fault)
+{
+    double temperature = p->stringing.temperature_degC;
+    return temperature >= -273.15 && temperature <= 2000.0
+               ? TW_OK
+               : fail(fault, "stringing", TW_NONE, "temperature_degC", "a temperature from -273.15 to 2000 degC");
+}
+
+static tw_status check_marks(const tw_project *p, tw_fault *fault)
+{
+    for (size_t i = 0; i < p->mark_count; i++) {
+        if (p->marks[i].place == TW_PLACE_WHOLE) {
+            return fail(fault, "marks", i, "place", "a station or a natural length");
         }
     }
     return TW_OK;
@@ -254,9 +301,6 @@ static tw_status check_limit(const tw_project *p, size_t i, tw_fault *fault)
 static tw_status check_stringing(const tw_project *p, tw_fault *fault)
 {
     const tw_stringing *rule = &p->stringing;
-    if (!(rule->temperature_degC >= -273.15 && rule->temperature_degC <= 2000.0)) {
-        return fail(fault, "stringing", TW_NONE, "temperature_degC", "a temperature from -273.15 to 2000 degC");
-    }
     if (!(rule->tolerance >= 0.0 && rule->tolerance < 0.9)) {
         return fail(fault, "stringing", TW_NONE, "tolerance", "a tolerance from 0 to 0.9");
     }
@@ -302,7 +346,13 @@ tw_status tw_check_project(const tw_project *project, tw_fault *fault)
         status = check_ground(project, fault);
     }
     if (status == TW_OK) {
+        status = check_stringing_temperature(project, fault);
+    }
+    if (status == TW_OK) {
         status = check_conditions(project, fault);
+    }
+    if (status == TW_OK) {
+        status = check_marks(project, fault);
     }
     for (size_t k = 0; status == TW_OK && k < project->crossing_count; k++) {
         if (!(project->crossings[k].from_m < project->crossings[k].to_m)) {

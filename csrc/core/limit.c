@@ -105,18 +105,6 @@ static void judge_span(const tw_project *project, const tw_limit *limit, const t
     }
 }
 
-static double capacity(const tw_support *support, tw_direction direction)
-{
-    switch (direction) {
-    case TW_DIRECTION_ALONG: return support->capacity_along_N;
-    case TW_DIRECTION_ACROSS: return support->capacity_across_N;
-    case TW_DIRECTION_DOWN: return support->capacity_down_N;
-    case TW_DIRECTION_UP: return support->capacity_up_N;
-    case TW_DIRECTION_RESULTANT: break;
-    }
-    return (double)NAN;
-}
-
 static double component(const tw_support_state *state, tw_direction direction)
 {
     switch (direction) {
@@ -151,7 +139,7 @@ static void judge_support(const tw_project *project, const tw_limit *limit, cons
     } else if (limit->kind == TW_LIMIT_UPLIFT) {
         offer_least(place, state.down_N, limit->least, weight_share(section, support));
     } else {
-        double most = isnan(limit->share) ? limit->most : limit->share * capacity(at, limit->direction);
+        double most = isnan(limit->share) ? limit->most : limit->share * tw_line_capacity(at, limit->direction);
         if (!isnan(most)) {
             offer_most(place, component(&state, limit->direction), most);
         }

@@ -1,5 +1,7 @@
 #include "line.h"
 
+#include <math.h>
+
 tw_options tw_options_default(void)
 {
     tw_options options = {
@@ -17,4 +19,16 @@ tw_options tw_options_default(void)
         .poll_data = NULL,
     };
     return options;
+}
+
+double tw_line_capacity(const tw_support *support, tw_direction direction)
+{
+    switch (direction) {
+    case TW_DIRECTION_ALONG: return support->capacity_along_N;
+    case TW_DIRECTION_ACROSS: return support->capacity_across_N;
+    case TW_DIRECTION_DOWN: return support->capacity_down_N;
+    case TW_DIRECTION_UP: return support->capacity_up_N;
+    case TW_DIRECTION_RESULTANT: break;
+    }
+    return (double)NAN;
 }

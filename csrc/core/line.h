@@ -182,6 +182,9 @@ typedef struct tw_options {
 
 tw_options tw_options_default(void);
 
+/* Capacity of a support in a direction, N; NaN where none is given, and for the resultant. */
+double tw_line_capacity(const tw_support *support, tw_direction direction);
+
 /* One span in one condition. Tensions are magnitudes unless "horizontal". */
 typedef struct tw_span_state {
     double span_m;                /* plan distance between the clamps */

@@ -109,6 +109,32 @@ static tw_status place_length(tw_place place, double at_m, double whole, double 
     return TW_ERROR_PLACE;
 }
 
+/* A place within a thousand-millionth of a span of a clamp, or of a place of an earlier load, is that place to the last
+ * digit: from here on places are compared exactly, so that each load acts once. */
+static double snapped(const tw_section *section, size_t load, double s)
+{
+    double at = 0.0;
+    double near = 0.0;
+    for (size_t j = 0; j <= section->span_count; j++) {
+        double behind = j > 0 ? section->length_m[j - 1] : INFINITY;
+        double ahead = j < section->span_count ? section->length_m[j] : INFINITY;
+        if (fabs(s - at) <= 1e-9 * fmin(behind, ahead)) {
+            return at;
+        }
+        near = at < s ? 1e-9 * ahead : near;
+        at += j < section->span_count ? ahead : 0.0;
+    }
+    for (size_t i = 0; i < load; i++) {
+        if (fabs(s - section->load_from_m[i]) <= near) {
+            return section->load_from_m[i];
+        }
+        if (fabs(s - section->load_to_m[i]) <= near) {
+            return section->load_to_m[i];
+        }
+    }
+    return s;
+}
+
 static tw_status place_loads(tw_section *section, const tw_load *loads, size_t count, const tw_section *strung)
 {
     double total = 0.0;
@@ -125,6 +151,8 @@ static tw_status place_loads(tw_section *section, const tw_load *loads, size_t c
         if (status != TW_OK) {
             return status;
         }
+        section->load_from_m[i] = snapped(section, i, section->load_from_m[i]);
+        section->load_to_m[i] = snapped(section, i, section->load_to_m[i]);
         section->load_length_m[i] = load->is_point ? section->load_from_m[i] : (double)NAN;
     }
     return TW_OK;
@@ -134,18 +162,18 @@ static tw_status place_loads(tw_section *section, const tw_load *loads, size_t c
 static size_t cut_span(tw_section *section, size_t load_count, double s0, double length)
 {
     size_t count = 0;
-    double snap = 1e-9 * length;
     for (size_t i = 0; i < load_count; i++) {
-        const double ends[2] = {section->load_from_m[i] - s0, section->load_to_m[i] - s0};
+        const double places[2] = {section->load_from_m[i], section->load_to_m[i]};
+        const double ends[2] = {places[0] - s0, places[1] - s0};
         for (int e = 0; e < 2; e++) {
             size_t k = count;
-            if (ends[e] <= snap || ends[e] >= length - snap) {
+            if (places[e] <= s0 || places[e] >= s0 + length) {
                 continue;
             }
             while (k > 0 && section->cut_m[k - 1] > ends[e]) {
                 k--;
             }
-            if ((k > 0 && ends[e] - section->cut_m[k - 1] <= snap) || (k < count && section->cut_m[k] - ends[e] <= snap)) {
+            if (k > 0 && ends[e] == section->cut_m[k - 1]) {
                 continue;
             }
             memmove(&section->cut_m[k + 1], &section->cut_m[k], (count - k) * sizeof(double));
@@ -158,14 +186,14 @@ static size_t cut_span(tw_section *section, size_t load_count, double s0, double
 
 /* Uniform loads that cover a piece, and the point loads at its end. */
 static void load_piece(const tw_section *section, const tw_load *loads, size_t load_count, const double u[2], double from,
-                       double to, double snap, int last, tw_piece *piece)
+                       double to, double s0, int last, tw_piece *piece)
 {
     double vector[3];
-    double middle = 0.5 * (from + to);
+    double middle = s0 + 0.5 * (from + to);
     for (size_t i = 0; i < load_count; i++) {
         into_route(loads[i].frame, u, loads[i].vector, vector);
         if (loads[i].is_point) {
-            if (!last && fabs(section->load_from_m[i] - to) <= snap) {
+            if (!last && section->load_from_m[i] - s0 == to) {
                 tw_axpy(piece->force, 1.0, vector, piece->force);
             }
         } else if (section->load_from_m[i] < middle && middle < section->load_to_m[i]) {
@@ -189,7 +217,7 @@ static void load_span(tw_section *section, size_t span, const double basic[3], c
         memset(piece, 0, sizeof *piece);
         piece->length_m = to - from;
         tw_copy(vector, piece->load);
-        load_piece(section, loads, load_count, u, s0 + from, s0 + to, 1e-9 * length, c == cuts, piece);
+        load_piece(section, loads, load_count, u, from, to, s0, c == cuts, piece);
         from = to;
     }
 }
@@ -202,13 +230,12 @@ static void load_clamps(tw_section *section, const tw_load *loads, size_t load_c
         const tw_support *support = &section->project->supports[j];
         double *g = section->clamp_load + 3 * j;
         size_t span = j < section->span_count ? j : j - 1;
-        double snap = 1e-9 * section->length_m[span];
         double u[2], vector[3];
         plan_direction(section, span, u);
         g[0] = g[1] = 0.0;
         g[2] = support->hold == TW_HOLD_HANGER ? -0.5 * support->hanger_weight_N : 0.0;
         for (size_t i = 0; i < load_count; i++) {
-            if (loads[i].is_point && fabs(section->load_from_m[i] - s) <= snap) {
+            if (loads[i].is_point && section->load_from_m[i] == s) {
                 into_route(loads[i].frame, u, loads[i].vector, vector);
                 tw_axpy(g, 1.0, vector, g);
             }

@@ -65,9 +65,9 @@ static tw_status lengths_between_clamps(strung *line, double pull_N)
     return TW_OK;
 }
 
-/* Where posts lean and the route turns, the clamps follow their hold forces; a hanger that the line would lift is held
- * down plumb, as the rule says. Returns the largest move. */
-static double follow_holds(strung *line)
+/* Where posts lean and the route turns, the clamps follow their hold forces, by a share of the way; a hanger that the line
+ * would lift is held down plumb, as the rule says. Returns the largest move. */
+static double follow_holds(strung *line, double share)
 {
     double weight = line->project->line.weight_N_per_m;
     double moved = 0.0;
@@ -87,10 +87,9 @@ static double follow_holds(strung *line)
             F[2] = 1.0;
         }
         tw_hold_swing(support, F, 0.0, swing);
-        for (int i = 0; i < 3; i++) {
-            moved = fmax(moved, fabs(swing[i] - line->swing[3 * j + (size_t)i]));
-        }
-        tw_copy(swing, line->swing + 3 * j);
+        tw_axpy(swing, -1.0, line->swing + 3 * j, swing);
+        moved = fmax(moved, tw_norm(swing));
+        tw_axpy(line->swing + 3 * j, share, swing, line->swing + 3 * j);
     }
     return moved;
 }
@@ -98,9 +97,9 @@ static double follow_holds(strung *line)
 static tw_status string_to(strung *line, double pull_N)
 {
     hang_plumb(line);
-    for (int i = 0; i < 100; i++) {
+    for (int i = 0; i < 400; i++) {
         tw_status status = lengths_between_clamps(line, pull_N);
-        if (status != TW_OK || follow_holds(line) < 1e-11) {
+        if (status != TW_OK || follow_holds(line, i < 20 ? 1.0 : 0.6) < 1e-11) {
             return status;
         }
     }
@@ -241,6 +240,19 @@ void tw_stringing_range(const tw_project *project, double *low_N, double *high_N
     }
 }
 
+/* The pull at which a support's tension is least: on a steep span far below that of a level one. */
+static double least_tension_pull(strung *line, double low)
+{
+    double at_low, lower;
+    for (int i = 0; i < 60; i++) {
+        if (measure(line, low, &at_low) != TW_OK || measure(line, 0.7 * low, &lower) != TW_OK || lower <= at_low) {
+            break;
+        }
+        low *= 0.7;
+    }
+    return low;
+}
+
 /* A support's tension falls with the pull until the line is about 1.5 spans deep; only the taut branch is meant. */
 static tw_status lengths_by_rule(strung *line, double *pull_N)
 {
@@ -250,7 +262,7 @@ static tw_status lengths_by_rule(strung *line, double *pull_N)
     if (project->stringing.rule == TW_STRING_TENSION) {
         high = project->stringing.value;
         low = fmin(0.42 * project->line.weight_N_per_m * longest_span(project), 0.9 * high);
-        low = fmax(low, 1e-6 * high);
+        low = least_tension_pull(line, fmax(low, 1e-6 * high));
     } else {
         low *= 0.3;
         high = fmax(high, 0.3 * project->line.stiffness_N);

@@ -108,13 +108,14 @@ tw_status tw_uniform_settle(const tw_uniform *span, double length, double *h, do
         double slope = step[0] * error[0] + step[1] * error[1];
         double factor = *h + step[0] > 0.0 ? 1.0 : -0.9 * *h / step[0];
         double h0 = *h, v0 = *v;
+        double moved = fabs(step[0]) / h0 + fabs(step[1]) / hypot(h0, v0);
         for (int cut = 0; cut < 60; cut++, factor *= 0.5) {
             *h = h0 + factor * step[0];
             *v = v0 + factor * step[1];
             hang(span, length, *h, *v, end, f);
             error[0] = end[0] - span->span;
             error[1] = end[1] - span->drop;
-            if (step[0] * error[0] + step[1] * error[1] <= 0.9 * fabs(slope) + DBL_MIN) {
+            if (moved < 1e-9 || step[0] * error[0] + step[1] * error[1] <= 0.9 * fabs(slope) + DBL_MIN) {
                 break;
             }
         }
@@ -122,9 +123,8 @@ tw_status tw_uniform_settle(const tw_uniform *span, double length, double *h, do
         if (!isfinite(size)) {
             return TW_NOT_FINITE;
         }
-        double moved = fabs(step[0]) / *h + fabs(step[1]) / size;
         double closing = fabs(error[0]) + fabs(error[1]);
-        if (factor == 1.0 && moved < 1e-9) {
+        if (moved < 1e-9) {
             return closing <= 1e-9 * (span->span + fabs(span->drop) + length) ? TW_OK : TW_NOT_SETTLED;
         }
     }
@@ -224,7 +224,9 @@ tw_status tw_plain_span_settle(const tw_plain_span *span, tw_plain_state *state)
         pull[i] = h * p[i] + v * e[i];
     }
     plain_state(span, pull, state);
-    return TW_OK;
+    double all = state->horizontal_tension_N + state->tension_from_N + state->tension_to_N + state->sag_m
+                 + state->slant_sag_m + state->line_length_m;
+    return isfinite(all) ? TW_OK : TW_NOT_FINITE;
 }
 
 tw_status tw_plain_span_length(const tw_plain_span *span, double horizontal_tension_N, double *natural_length_m)

@@ -10,7 +10,7 @@
 /* Minimise objective(x) subject to constraints(x) <= 0 and low <= x <= high. */
 typedef struct tw_optimise_problem {
     size_t variables;
-    size_t constraints;
+    size_t constraints;     /* up to 64 */
     size_t evaluations_most;
     double x_tolerance;     /* absolute, on every variable */
     const double *low;      /* [variables] */

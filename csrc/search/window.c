@@ -181,13 +181,18 @@ static tw_status choose(tw_window_run *run)
 static tw_status verify_pull(tw_window_run *run, double pull_N)
 {
     tw_window *w = run->window;
+    tw_options options = *run->options;
     tw_status status = tw_trial_string(run->trial, pull_N);
     for (size_t c = 0; status == TW_OK && c < run->project.condition_count; c++) {
         const tw_section *section;
         tw_settled settled = {0};
-        status = tw_trial_section(run->trial, c, run->options, &section);
+        options.seconds_most = run->deadline - tw_clock_now(); /* what is left of the whole search's time */
+        status = tw_clock_check(&options, run->deadline);
         if (status == TW_OK) {
-            status = tw_settle(section, run->options, &settled);
+            status = tw_trial_section(run->trial, c, &options, &section);
+        }
+        if (status == TW_OK) {
+            status = tw_settle(section, &options, &settled);
             w->gap_relative = isnan(w->gap_relative) ? settled.gap_relative : fmax(w->gap_relative, settled.gap_relative);
         }
     }

@@ -1,6 +1,6 @@
 /* Every allocation fails in turn: the call says so, leaves nothing behind, and the next one is right to the last byte. */
 #include "alloc_count.h"
-#include "check.h"
+#include "expect.h"
 #include "fixture.h"
 #include "settle.h"
 #include "stringing.h"

@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-#include "check.h"
+#include "expect.h"
 
 enum { BLOCKS = 5, N = TW_BLOCKTRI_SIZE * BLOCKS };
 

@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 
 /* A project with something in every table, all of it in range. */
 static void make_full(tw_case *c)

@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-#include "check.h"
+#include "expect.h"
 
 enum { MOST = 9, ORDER = 3 * MOST };
 

@@ -2,7 +2,7 @@
 #include "hold.h"
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 #include "vector.h"
 
 static tw_case CASE;

@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 #include "ground.h"
 
 /* The route with a capacity everywhere, flat ground and a crossing; hung in the iced condition. */
@@ -60,6 +60,37 @@ static void test_tension_is_the_greatest_of_all_spans(void)
     case_limit(&c, TW_LIMIT_TENSION, NAN, NAN)->share = 0.5;
     v = judge(&c, s);
     check_most(&v, greatest, 60e3);
+    tw_section_free(s);
+}
+
+/* The greatest tension is at the upper support, whichever that is. */
+static void test_tension_is_greatest_at_the_upper_end(void)
+{
+    for (int up = 0; up < 2; up++) {
+        tw_case c;
+        case_level(&c, 200.0);
+        c.supports[up].elevation_m = 40.0;
+        c.lengths_m[0] = 205.0;
+        case_point(&c, TW_PLACE_LENGTH, 100.0, 0.0, 0.0, -10.0);
+        tw_section *s = case_hung(&c, 0);
+        case_limit(&c, TW_LIMIT_TENSION, NAN, 50e3);
+        CHECK_NEAR(judge(&c, s).station_m, c.supports[up].station_m, 1e-9);
+        tw_section_free(s);
+    }
+}
+
+/* A metre of sag to spare counts as all of it. */
+static void test_least_sag_of_nothing(void)
+{
+    tw_case c;
+    tw_span_state state;
+    case_level(&c, 30.0);
+    c.lengths_m[0] = 30.01;
+    tw_section *s = case_hung(&c, 0);
+    tw_section_span_state(s, 0, &state);
+    case_limit(&c, TW_LIMIT_SAG, 0.0, NAN);
+    CHECK(state.sag_m < 1.0);
+    CHECK_REL(judge(&c, s).utilisation, 1.0 - state.sag_m, 1e-14);
     tw_section_free(s);
 }
 
@@ -231,6 +262,9 @@ static void test_only_what_is_covered_is_judged(void)
     }
     c.covers[0] = 16u; /* no span starts at the last support */
     tw_verdict v = judge(&c, s);
+    case_limit(&c, TW_LIMIT_SAG, NAN, 30.0);
+    c.covers[1] = 8u;
+    CHECK(judge(&c, s).span == 3); /* each limit has its own */
     CHECK(v.judged == 0 && v.span == TW_NONE && v.support == TW_NONE && isnan(v.station_m));
     tw_section_free(s);
 }
@@ -267,6 +301,8 @@ static void test_utilisation_of_least_zero(void)
 int main(void)
 {
     test_tension_is_the_greatest_of_all_spans();
+    test_tension_is_greatest_at_the_upper_end();
+    test_least_sag_of_nothing();
     test_sag_catenary_constant_and_slope();
     test_support_load_in_every_direction();
     test_share_is_of_each_supports_own_capacity();

@@ -2,7 +2,7 @@
 #include "line.h"
 
 #include "../core/check.h"
-#include "check.h"
+#include "expect.h"
 
 static void test_defaults_are_in_range(void)
 {

@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 
 static const double INCH = 0.0254, LBF_PER_FOOT = 14.593903, PSF = 47.880259, LB_PER_FT3 = 16.018463;
 static const double PI = 3.14159265358979323846;

@@ -1,7 +1,7 @@
 /* The line's stored energy and its Legendre transform: derivatives, convexity, and the inequality of Young and Fenchel. */
 #include "material.h"
 
-#include "check.h"
+#include "expect.h"
 
 static const tw_line LINE = {.stiffness_N = 34.7e6, .expansion_per_K = 18.9e-6};
 static const double TEMPERATURES[] = {-60.0, 15.0, 120.0};

@@ -1,7 +1,7 @@
 /* NLopt's SLSQP behind the plain interface: known optima, limits kept, and every way to be stopped or refused. */
 #include "optimise.h"
 
-#include "check.h"
+#include "expect.h"
 
 typedef struct bench {
     size_t asked, stop_after;

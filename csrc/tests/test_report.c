@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 #include "vector.h"
 
 typedef struct report {
@@ -50,6 +50,25 @@ static void test_every_condition_comes_with_its_proof(void)
     tw_trial_free(trial);
 }
 
+/* d . chord = 0 and d . q/|q| = 1: the measure of the distance from the chord along the load. */
+static void slant_measure(const tw_section *s, size_t span, double d[3])
+{
+    const double *a = s->clamp + 3 * span;
+    double chord[3], q[3] = {0.0, 0.0, 0.0};
+    for (size_t p = s->piece_first[span]; p < s->piece_first[span + 1]; p++) {
+        tw_axpy(q, s->pieces[p].length_m, s->pieces[p].load, q);
+        tw_axpy(q, 1.0, s->pieces[p].force, q);
+    }
+    tw_copy(a + 3, chord);
+    tw_axpy(chord, -1.0, a, chord);
+    tw_copy(q, d);
+    tw_axpy(d, -tw_dot(q, chord) / tw_dot(chord, chord), chord, d);
+    double size = tw_norm(q) / tw_dot(d, d);
+    for (int i = 0; i < 3; i++) {
+        d[i] *= size;
+    }
+}
+
 /* The line seen at `SAMPLES` places of one span, in the frame of its clamps. */
 enum { SAMPLES = 4000 };
 static void check_span(const tw_section *s, size_t span, const tw_span_state *state)
@@ -57,6 +76,8 @@ static void check_span(const tw_section *s, size_t span, const tw_span_state *st
     const double *a = s->clamp + 3 * span, *b = a + 3;
     double run_m = hypot(b[0] - a[0], b[1] - a[1]), ux = (b[0] - a[0]) / run_m, uy = (b[1] - a[1]) / run_m;
     double sag = 0.0, blow = 0.0, low = INFINITY, slope = 0.0, tension = 0.0, length = 0.0, before = 0.0, last[3];
+    double slant = 0.0, measure[3];
+    slant_measure(s, span, measure);
     for (size_t k = 0; k < span; k++) {
         before += s->length_m[k];
     }
@@ -70,6 +91,7 @@ static void check_span(const tw_section *s, size_t span, const tw_span_state *st
         low = fmin(low, r[2]);
         slope = fmax(slope, fabs(t[2]) / hypot(t[0], t[1]));
         tension = fmax(tension, tw_norm(t));
+        slant = fmax(slant, tw_dot(measure, r) - tw_dot(measure, a));
         if (i > 0) {
             tw_axpy(r, -1.0, last, d);
             length += tw_norm(d);
@@ -79,6 +101,7 @@ static void check_span(const tw_section *s, size_t span, const tw_span_state *st
     CHECK_REL(state->span_m, run_m, 1e-13);
     CHECK_NEAR(state->rise_m, b[2] - a[2], 1e-12);
     CHECK_NEAR(state->sag_m, sag, 1e-4);
+    CHECK_NEAR(state->slant_sag_m, slant, 1e-4);
     CHECK_NEAR(state->blowout_m, blow, 1e-4);
     CHECK_NEAR(state->low_elevation_m, low, 1e-4);
     CHECK_NEAR(state->slope_max, slope, 1e-3);
@@ -193,9 +216,22 @@ static void test_what_fails_says_so_in_the_result(void)
         CHECK(run(trial, 0, &c.options, &r) == TW_OK);
         tw_trial_free(trial);
     }
-    c.marks[1].at_m = 5000.0;
+}
+
+static void test_a_mark_off_the_line_is_refused(void)
+{
+    tw_case c;
+    report r;
+    const double off[] = {5000.0, -1.0};
+    make(&c);
     tw_trial *trial = case_trial(&c, NAN);
-    CHECK(run(trial, 0, &c.options, &r) == TW_ERROR_PLACE && r.out.status == TW_ERROR_PLACE);
+    for (int i = 0; i < 4; i++) {
+        double good = c.marks[i / 2].at_m;
+        c.marks[i / 2].at_m = off[i % 2];
+        CHECK(run(trial, 0, &c.options, &r) == TW_ERROR_PLACE && r.out.status == TW_ERROR_PLACE);
+        c.marks[i / 2].at_m = good;
+    }
+    CHECK(run(trial, 0, &c.options, &r) == TW_OK);
     tw_trial_free(trial);
 }
 
@@ -207,5 +243,6 @@ int main(void)
     test_marks_and_point_loads_are_places_on_the_line();
     test_small_deflection_sag_stands_beside_the_exact_one();
     test_what_fails_says_so_in_the_result();
+    test_a_mark_off_the_line_is_refused();
     return check_end("test_report");
 }

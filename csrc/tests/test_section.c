@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 #include "hold.h"
 #include "vector.h"
 
@@ -184,6 +184,7 @@ static void test_split_at_a_free_node_changes_nothing(void)
     tw_section *a = case_hung(&c, 0), *b = case_hung(&split, 0);
     CHECK(a->piece_count == 4 && b->piece_count == 10);
     CHECK_REL(a->energy_lower_J, b->energy_lower_J, 1e-12);
+    CHECK_REL(tw_section_stored(a), tw_section_stored(b), 1e-11);
     for (size_t i = 0; i < 12; i++) {
         CHECK_NEAR(a->pull[i], b->pull[i], 1e-12 * tw_norm(a->pull));
     }

@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-#include "check.h"
+#include "expect.h"
 #include "clock.h"
 #include "fixture.h"
 

@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-#include "check.h"
+#include "expect.h"
 #include "vector.h"
 
 static const tw_material STEEL = {34.7e6, 4e-4};

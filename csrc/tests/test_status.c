@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-#include "check.h"
+#include "expect.h"
 
 typedef struct entry {
     tw_status status;

@@ -2,7 +2,7 @@
 #include "trial.h"
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 
 static void make(tw_case *c)
 {

@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-#include "check.h"
+#include "expect.h"
 
 static tw_plain_span span_of(double span, double rise, double length)
 {

@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "cases.h"
-#include "check.h"
+#include "expect.h"
 #include "ground.h"
 
 /* 300 m over flat ground 25 m below, hot and iced: clearance 12 m at the hottest, 60 kN when iced. */
@@ -198,13 +198,13 @@ static double make_peak(tw_case *c)
 static void test_a_gap_is_no_part_of_a_window(void)
 {
     const double shares[] = {0.9, 0.999, 0.9999, 0.999999};
-    const size_t scans[] = {8, 20, 24, 40};
+    const size_t scans[] = {8, 20, 40};
     tw_case peak;
     double pull = make_peak(&peak);
-    for (int i = 0; i < 16; i++) {
+    for (int i = 0; i < 12; i++) {
         tw_case c = peak;
-        c.limits[0].most *= shares[i / 4];
-        c.options.scan_points = scans[i % 4];
+        c.limits[0].most *= shares[i / 3];
+        c.options.scan_points = scans[i % 3];
         case_ready(&c);
         tw_window *w = search(&c);
         CHECK(w->interval_count == 2);
@@ -421,13 +421,17 @@ static void test_a_lying_optimiser_changes_nothing(void)
     for (int i = 0; i < 4; i++) {
         tw_case c;
         make_span(&c);
+        c.options.verify = 0;
         check_same(&c, liars[i], 1e-8);
         c.limits[1].most = 18e3;
-        c.options.verify = 0;
         check_same(&c, liars[i], 1e-8);
-        make_route(&c);
-        c.options.verify = 0;
-        check_same(&c, liars[i], 1e-8);
+        if (i % 2 == 1) {
+            make_route(&c);
+            c.project.condition_count = 2;
+            c.options.verify = 0;
+            case_ready(&c);
+            check_same(&c, liars[i], 1e-8);
+        }
     }
 }
 
@@ -466,11 +470,12 @@ static void check_stopped(const tw_case *c, const tw_window *w)
 static void test_cancelled_after_any_number_of_calls(int shut)
 {
     int tried = 0, finished = 0;
-    for (long granted = 0; !finished && granted < 1000000; granted += 1 + (shut ? 2 * granted : granted / 2)) {
+    for (long granted = 0; !finished && granted < 1000000; granted += granted < 6 ? 1 : granted) {
         tw_case c;
         long calls = granted;
         make_span(&c);
         c.limits[1].most = shut ? 18e3 : 60e3;
+        c.options.elements_per_span = 16;
         c.options.poll = count_down;
         c.options.poll_data = &calls;
         tw_window *w = search(&c);

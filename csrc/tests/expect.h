@@ -1,6 +1,6 @@
-/* check: what a test program needs and no more. Counts, prints each failure, ends with one line and an exit status. */
-#ifndef TW_TESTS_CHECK_H
-#define TW_TESTS_CHECK_H
+/* expect: what a test program needs and no more. Counts, prints each failure, ends with one line and an exit status. */
+#ifndef TW_EXPECT_H
+#define TW_EXPECT_H
 
 #include <math.h>
 #include <stdio.h>
