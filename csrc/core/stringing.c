@@ -14,6 +14,7 @@ typedef struct strung {
     double *swing;    /* [3 (span_count + 1)] */
     double *length_m; /* [span_count] */
     double *pull;     /* [3 span_count] tension vector at each span's start */
+    double *lifted;   /* [span_count + 1] 1: the line would lift this hanger; kept once found, or it could flip for ever */
 } strung;
 
 static strung strung_on(const tw_project *project, double *length_m, double *work)
@@ -21,6 +22,7 @@ static strung strung_on(const tw_project *project, double *length_m, double *wor
     strung line = {.project = project, .span_count = project->support_count - 1, .length_m = length_m};
     line.swing = work;
     line.pull = work + 3 * project->support_count;
+    line.lifted = work + 6 * project->support_count;
     return line;
 }
 
@@ -28,6 +30,7 @@ static void hang_plumb(strung *line)
 {
     for (size_t j = 0; j <= line->span_count; j++) {
         const tw_support *support = &line->project->supports[j];
+        line->lifted[j] = 0.0;
         line->swing[3 * j] = line->swing[3 * j + 1] = 0.0;
         line->swing[3 * j + 2] = support->hold == TW_HOLD_HANGER ? -support->hanger_length_m : 0.0;
     }
@@ -82,7 +85,8 @@ static double follow_holds(strung *line, double share)
         if (j < line->span_count) {
             tw_axpy(F, -1.0, line->pull + 3 * j, F);
         }
-        if (support->hold == TW_HOLD_HANGER && F[2] <= 0.0) {
+        line->lifted[j] = line->lifted[j] > 0.0 || F[2] <= 0.0 ? 1.0 : 0.0;
+        if (support->hold == TW_HOLD_HANGER && line->lifted[j] > 0.0) {
             F[0] = F[1] = 0.0;
             F[2] = 1.0;
         }
@@ -94,12 +98,15 @@ static double follow_holds(strung *line, double share)
     return moved;
 }
 
+/* Fixed point of the clamps under their own hold forces; straight routes are there at once, sharp bends want shorter steps,
+ * and the last of those are taken as they stand within 1e-8 m. */
 static tw_status string_to(strung *line, double pull_N)
 {
     hang_plumb(line);
-    for (int i = 0; i < 400; i++) {
+    for (int i = 0; i < 600; i++) {
+        double share = i < 20 ? 1.0 : i < 120 ? 0.6 : 0.25;
         tw_status status = lengths_between_clamps(line, pull_N);
-        if (status != TW_OK || follow_holds(line, i < 20 ? 1.0 : 0.6) < 1e-11) {
+        if (status != TW_OK || follow_holds(line, share) < (i < 300 ? 1e-11 : 1e-8)) {
             return status;
         }
     }

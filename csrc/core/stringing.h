@@ -9,7 +9,7 @@
 #include "line.h"
 
 /* Scratch that both functions below ask for, in doubles. */
-#define TW_STRINGING_WORK(project) (6 * (project)->support_count)
+#define TW_STRINGING_WORK(project) (7 * (project)->support_count)
 
 /* Natural length of each span, length_m [support_count - 1], for a given pull. */
 tw_status tw_stringing_at_pull(const tw_project *project, double pull_N, double *length_m, double *work);

@@ -221,6 +221,18 @@ static void test_limits(void)
     REFUSED(c.project.line.breaking_strength_N = NAN, "limits", 1, "share");
     REFUSED(c.limits[0].crossing = 1, "limits", 0, "crossing");
     REFUSED(c.project.ground_count = 0, "limits", 0, "crossing");
+    REFUSED((c.limits[0].from_m = 300.0, c.limits[0].to_m = 300.0), "limits", 0, "to_m");
+    REFUSED(c.limits[0].share = 0.5, "limits", 0, "least");
+    REFUSED(c.limits[1].least = 1.0, "limits", 1, "most");
+    REFUSED((c.limits[2].most = NAN, c.limits[2].share = 0.5), "limits", 2, "share"); /* a support without capacity */
+    REFUSED((c.limits[2].most = NAN, c.limits[2].share = 0.5, c.limits[2].direction = TW_DIRECTION_RESULTANT), "limits", 2,
+            "share");
+    REFUSED(c.limits[4].share = 0.5, "limits", 4, "most");
+    REFUSED((c.limits[2].kind = TW_LIMIT_SLOPE, c.limits[2].most = NAN, c.limits[2].share = 0.5), "limits", 2, "share");
+    REFUSED((c.limits[2].kind = TW_LIMIT_CATENARY_CONSTANT, c.project.line.weight_N_per_m = 0.0), "line", TW_NONE,
+            "weight_N_per_m");
+    REFUSED(c.marks[0].place = TW_PLACE_WHOLE, "marks", 0, "place");
+    REFUSED(c.project.stringing.temperature_degC = INFINITY, "stringing", TW_NONE, "temperature_degC");
 }
 
 static void test_stringing(void)
