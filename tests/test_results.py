@@ -131,7 +131,7 @@ def test_other_json_is_refused(text, words):
         VetReport.from_json(text)
 
 
-# --- keys of the contract
+# --- result keys
 
 
 def test_settle_document(project):
@@ -443,7 +443,7 @@ def test_start_file_loads_and_is_open(tmp_path):
 
 
 def test_kernel_against_published_oracles():
-    # checks.md I(a), I(c): own 30-digit oracles, span 300 m level.
+    # Own 30-digit oracles I(a), I(c), span 300 m level.
     states = tw.settle_spans(300.0, 0.0, [300.8, 299.5], 34.7e6, 15.97)
     assert states.horizontal_tension == pytest.approx([17368.8076566, 65609.3448867], rel=1e-11)
     assert states.sag == pytest.approx([10.3551736026, 2.73350164376], rel=1e-10)
@@ -467,3 +467,25 @@ def test_kernel_counts_what_failed():
     assert "1 settled, 2 not" in repr(states)
     with pytest.warns(RuntimeWarning, match="1 of 1 span "):
         assert np.isnan(tw.natural_length(300.0, 0.0, -1.0, 34.7e6, 15.97))
+
+
+# --- texts from elsewhere are inert
+
+
+def test_control_characters_never_leave_a_table_or_a_document(project):
+    bad = "\N{ESCAPE}[31m\x9b\u202e<b>"
+    row = dataclasses.replace(project.vet().limits[0], id=bad, place=bad)
+    report = VetReport.of([dataclasses.replace(project.vet().files[0], limits=(row,), file=bad)])
+    for text in (repr(report), report._repr_html_(), report.to_json(), report.to_json(indent=2)):
+        assert text.replace("\n", "").isprintable()
+    assert "<b>" not in report._repr_html_()
+    assert VetReport.from_json(report.to_json()) == report
+    assert VetReport.from_json(report.to_json(indent=2)) == report
+
+
+def test_specified_pull_carries_both_edges(window):
+    best = window.specify
+    edges = window.to_dict()["specify"]["edges"]
+    assert [edge["horizontal_tension_N"] for edge in edges] == [best.least_pull_N, best.most_pull_N]
+    keys = {"limit", "condition", "place", "value", "allowed", "unit", "utilisation"}
+    assert all(keys <= set(edge) for edge in edges)

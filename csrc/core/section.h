@@ -68,7 +68,7 @@ void tw_section_at(const tw_section *section, double s, double position[3], doub
 /* Sums of a hung section, J: stretch energy and the potential of all loads (-work), datum elevation 0. */
 double tw_section_stored(const tw_section *section);
 
-/* What the result keys of the contract ask for. */
+/* What the result keys ask for. */
 void tw_section_span_state(const tw_section *section, size_t span, tw_span_state *state);
 void tw_section_support_state(const tw_section *section, size_t support, tw_support_state *state);
 

@@ -3,7 +3,7 @@
  * A piece is a stretch of natural length l under a uniform load q per natural metre, a point force at its end.
  * With the tension vector t(s) = t0 - q s (it points along the line, towards growing s):
  *     r(l) - r(0) = int_0^l t/|t| W*'(|t|) ds                         closed form on a linear line
- *     D           = t(S).r1 - R.r0 - int W*(|t|) ds                   (blueprint section 2)
+ *     D           = t(S).r1 - R.r0 - int W*(|t|) ds
  * All closed forms below are written without cancellation from slack-deep to bar-tight lines: with q = |q| e,
  * t = a e + b, b normal to e, h = |b|, T = |t|, x = |q| l / (T0 + T1):
  *     int ds/T   = (l / (T0 + T1)) 2 atanh(x)/x

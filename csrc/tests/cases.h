@@ -27,7 +27,7 @@ typedef struct tw_case {
     unsigned char covers_table[CASE_LIMITS * CASE_SUPPORTS];
 } tw_case;
 
-/* 15.97 N/m and EA 34.7e6 N of checks.md I, 18.9e-6 per kelvin, 20 mm, strung to 20 kN at 15 degC; no support yet. */
+/* 15.97 N/m and EA 34.7e6 N of the own oracles I, 18.9e-6 per kelvin, 20 mm, strung to 20 kN at 15 degC; no support yet. */
 void case_begin(tw_case *c);
 void case_ready(tw_case *c);
 

@@ -177,7 +177,7 @@ static double middle_sag(const tw_energy *energy, const double *x)
     return -z;
 }
 
-/* checks.md I(a), OWN: sag 10.3551736026 m. Errors as in section 2 of the blueprint: fourth order. */
+/* Own 30-digit oracle I(a): sag 10.3551736026 m. Errors of fourth order. */
 static void test_order(void)
 {
     const size_t counts[3] = {4, 8, 16};
@@ -196,7 +196,7 @@ static void test_order(void)
     tw_section_free(section);
 }
 
-/* checks.md I(a), OWN: stretch energy, work of gravity and their sum. */
+/* Own 30-digit oracle I(a): stretch energy, work of gravity and their sum. */
 static void test_bound(void)
 {
     fixture f;

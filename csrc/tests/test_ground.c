@@ -184,7 +184,7 @@ static void test_each_span_is_looked_at_by_itself(void)
     tw_section_free(s);
 }
 
-/* checks.md I(a) (OWN): the lowest point is 10.3551736026 m below the supports, at mid-span. */
+/* Own 30-digit oracle I(a): the lowest point is 10.3551736026 m below the supports, at mid-span. */
 static void test_published_sag_over_flat_ground(void)
 {
     tw_case c;

@@ -21,7 +21,7 @@ static tw_condition condition_of(double ice_m, double ice_density, double pressu
     return condition;
 }
 
-/* California PUC General Order 95, Appendix C, tables 18 and 23 (checks.md A, SEEN): diameter in, bare, heavy vertical,
+/* California PUC General Order 95, Appendix C, tables 18 and 23 (read in the source): diameter in, bare, heavy vertical,
  * heavy horizontal, heavy resultant, light horizontal, light resultant, lb/ft. One unit of the last digit. */
 static void test_general_order_95(void)
 {
@@ -47,7 +47,7 @@ static void test_general_order_95(void)
     }
 }
 
-/* checks.md D1 (SEEN): 795 kcmil 26/7, 2.094 lb/ft iced, 2.509 with 4 psf and the constant 0.30; swing without it. */
+/* Read in the source (D1): 795 kcmil 26/7, 2.094 lb/ft iced, 2.509 with 4 psf and the constant 0.30; swing without it. */
 static void test_a_constant_scales_the_resultant_and_keeps_its_direction(void)
 {
     const tw_line line = {.diameter_m = 1.108 * INCH, .weight_N_per_m = 1.094 * LBF_PER_FOOT};
@@ -71,7 +71,7 @@ static void test_ice_is_an_annulus(void)
     CHECK(tw_load_ice(0.0, t, density) > 0.0);
 }
 
-/* checks.md G4 (SEEN): 27.972 m/s gives 479.63 Pa and 15.6 m/s gives 149.18 Pa at 0.613 v^2. */
+/* Read in the source (G4): 27.972 m/s gives 479.63 Pa and 15.6 m/s gives 149.18 Pa at 0.613 v^2. */
 static void test_wind_pressure(void)
 {
     CHECK_NEAR(tw_load_wind_pressure(1.226, 27.972), 479.63, 0.02);

@@ -169,7 +169,7 @@ static void test_marks_and_point_loads_are_places_on_the_line(void)
     tw_trial_free(trial);
 }
 
-/* checks.md I(a): sag 10.3551736026 m; the taut string with w per metre of span: w L^2 / (8 H), and P L / (4 H). */
+/* Own 30-digit oracle I(a): sag 10.3551736026 m; the taut string with w per metre of span: w L^2 / (8 H), and P L / (4 H). */
 static void test_small_deflection_sag_stands_beside_the_exact_one(void)
 {
     tw_case c;

@@ -77,7 +77,7 @@ static void test_complementary_energy_is_concave_and_greatest_at_rest(void)
     tw_section_free(s);
 }
 
-/* checks.md, three spans 250/400/300 m level (OWN): the lengths at which pulleys bring 18229.95 N everywhere. Between
+/* Own 30-digit oracle, three spans 250/400/300 m level: the lengths at which pulleys bring 18229.95 N everywhere. Between
  * anchors each span has the horizontal tension and sag given there. */
 static void test_three_published_spans(void)
 {
@@ -104,7 +104,7 @@ static void test_three_published_spans(void)
     tw_section_free(s);
 }
 
-/* checks.md I(a) (OWN): stretch energy 1315.88514729 J, total -31815.3228054 J. */
+/* Own 30-digit oracle I(a): stretch energy 1315.88514729 J, total -31815.3228054 J. */
 static void test_published_energies(void)
 {
     tw_case c;
@@ -116,7 +116,7 @@ static void test_published_energies(void)
     tw_section_free(s);
 }
 
-/* checks.md F12 (SEEN): weightless cable, 400/600/400 N two metres apart: H 1600 N, end tensions 1627.88 and 1941.65 N. */
+/* Read in the source (F12): weightless cable, 400/600/400 N two metres apart: H 1600 N, end tensions 1627.88 and 1941.65 N. */
 static void test_published_point_loads(void)
 {
     /* A (0, 0), then 0, 2, 4, 6, 8: with H 1600 the kinks lie at z -0.375 .. ; V_A = 300 down the line. */

@@ -38,7 +38,7 @@ static double largest_tension(const tw_section *section)
     return tw_span_tension_max(section->pieces, section->piece_count);
 }
 
-/* checks.md I(a), OWN. */
+/* Own 30-digit oracle I(a). */
 static void test_sagging(void)
 {
     fixture f;
@@ -59,7 +59,7 @@ static void test_sagging(void)
     tw_section_free(section);
 }
 
-/* checks.md I(c), OWN: shorter than its span. */
+/* Own 30-digit oracle I(c): shorter than its span. */
 static void test_taut(void)
 {
     fixture f;
@@ -72,7 +72,7 @@ static void test_taut(void)
     tw_section_free(section);
 }
 
-/* checks.md, wind in three dimensions a), OWN. */
+/* Own 30-digit oracle, wind in three dimensions. */
 static void test_wind(void)
 {
     fixture f;
@@ -88,7 +88,7 @@ static void test_wind(void)
     tw_section_free(section);
 }
 
-/* checks.md I4, OWN: a lifeline with a point load in the middle. */
+/* Own 30-digit oracle I4: a lifeline with a point load in the middle. */
 static void test_lifeline(void)
 {
     const double force[3] = {1000.0, 6000.0, 10000.0};

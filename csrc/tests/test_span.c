@@ -80,7 +80,7 @@ static void test_displacement_and_energies_are_their_integrals(void)
     }
 }
 
-/* Irvine, Cable Structures (1981), ch. 1 (checks.md H5, MEM). */
+/* Irvine, Cable Structures (1981), ch. 1 (from memory). */
 static void test_elastic_catenary(void)
 {
     const tw_material cold = {34.7e6, 0.0};

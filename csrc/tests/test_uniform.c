@@ -19,7 +19,7 @@ static tw_plain_state settled(const tw_plain_span *span)
     return state;
 }
 
-/* checks.md I(a), I(c), I(f), wind a): OWN, 12 digits. */
+/* Own 30-digit oracles I(a), I(c), I(f), wind a). */
 static void test_long_oracles(void)
 {
     tw_plain_span span = span_of(300.0, 0.0, 300.8);
@@ -45,7 +45,7 @@ static void test_long_oracles(void)
     CHECK_NEAR(s.slant_sag_m, hypot(8.42791045671, 6.33280685539), 1e-9);
 }
 
-/* checks.md I5 (OWN): heat from -40 to 85 K, 18.9e-6 per kelvin. There the stretch is (1 + e0)(1 + T/EA), here
+/* Own 30-digit oracle I5: heat from -40 to 85 K, 18.9e-6 per kelvin. There the stretch is (1 + e0)(1 + T/EA), here
  * 1 + e0 + T/EA: the same with EA/(1 + e0). */
 static void test_change_of_temperature(void)
 {
@@ -63,7 +63,7 @@ static void test_change_of_temperature(void)
     }
 }
 
-/* Goenen, Electric Power Transmission System Engineering, 2nd ed., Ex. 13.1 (checks.md F3, SEEN), feet and pounds. */
+/* Goenen, Electric Power Transmission System Engineering, 2nd ed., Ex. 13.1 (read in the source), feet and pounds. */
 static void test_textbook_catenary(void)
 {
     const double w = 4122.0 / 5280.0, c = 1600.0;
@@ -76,7 +76,7 @@ static void test_textbook_catenary(void)
     CHECK_NEAR(s.horizontal_tension_N, 1249.0909, 1e-3);
 }
 
-/* sinh and tanh of a level inextensible catenary, for lines up to 30 times as long as their span (checks.md H1: u where
+/* sinh and tanh of a level inextensible catenary, for lines up to 30 times as long as their span (oracle H1: u where
  * the largest tension is least). */
 static void test_slack_lines_are_catenaries(void)
 {
