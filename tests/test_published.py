@@ -8,6 +8,7 @@ import core_cases as cases
 import numpy as np
 import pytest
 
+import tautwise
 from tautwise import _core
 from tautwise.reference import loads
 
@@ -661,3 +662,94 @@ def test_three_spans_of_the_pulley_oracle_one_by_one():
     assert [row["horizontal_tension_N"] for row in spans] == pytest.approx(horizontal, rel=3e-9)
     sags = [6.88888103116, 17.8363161315, 9.95133397143]
     assert [row["sag_m"] for row in spans] == pytest.approx(sags, rel=3e-9)
+
+
+# --- The same through project files in US units
+
+COPPER_FILE = """
+format = "tautwise 1"
+title = "Number 0 copper, 300 ft"
+[line]
+diameter = "0.368 in"
+area = "0.0829 in^2"
+weight = "0.3258 lbf/ft"
+modulus = "17.0e6 psi"
+expansion = "9.4e-6 / degF"
+breaking_strength = "3953 lbf"
+[[support]]
+name = "A"
+station = "0 ft"
+elevation = "30 ft"
+hold = "anchor"
+[[support]]
+name = "B"
+station = "300 ft"
+elevation = "30 ft"
+hold = "anchor"
+[stringing]
+temperature = "0 degF"
+natural_length = ["{length} ft"]
+[[condition]]
+name = "heavy"
+temperature = "0 degF"
+ice = {{ thickness = "0.5 in", density = "57 lb/ft^3" }}
+wind = {{ pressure = "6 lbf/ft^2" }}
+[[condition]]
+name = "60"
+temperature = "60 degF"
+[[condition]]
+name = "80"
+temperature = "80 degF"
+"""
+
+DRAKE_FILE = """
+format = "tautwise 1"
+title = "795 kcmil 26/7, 700 ft"
+[line]
+diameter = "1.108 in"
+area = "0.7264 in^2"
+weight = "1.094 lbf/ft"
+modulus = "10.755e6 psi"
+expansion = "1.0503e-5 / degF"
+breaking_strength = "31500 lbf"
+[[support]]
+name = "A"
+station = "0 ft"
+elevation = "100 ft"
+hold = "anchor"
+[[support]]
+name = "B"
+station = "700 ft"
+elevation = "100 ft"
+hold = "anchor"
+[stringing]
+temperature = "{temperature} degF"
+horizontal_tension = "{pull} lbf"
+[[condition]]
+name = "bare"
+temperature = "{temperature} degF"
+"""
+
+
+def loaded(folder, text):
+    file = folder / "line.taut.toml"
+    file.write_text(text)
+    return tautwise.load(file)
+
+
+def test_a1_and_a2_through_a_project_file(tmp_path, copper_at_60):
+    length = copper_at_60["stringing"]["lengths_m"][0] / FOOT
+    project = loaded(tmp_path, COPPER_FILE.format(length=f"{length:.9f}"))
+    heavy, warm, warmer = (project.settle(name).spans[0] for name in ("heavy", "60", "80"))
+    assert heavy.tension_to_N / POUND == pytest.approx(1976.5, rel=1e-6)
+    assert warm.sag_m / FOOT == pytest.approx(5.30, abs=0.05)
+    assert warmer.sag_m / FOOT == pytest.approx(5.78, abs=0.04)
+    assert warm.sag_m == pytest.approx(only_span(copper_at_60, 1)["sag_m"], rel=1e-8)
+
+
+@pytest.mark.parametrize(("temperature", "sag", "tension"), [row for row in D2 if isinstance(row[0], int)])
+def test_d2_through_a_project_file(tmp_path, temperature, sag, tension):
+    """H from the listed mean of H and T: T = H + w sag. The load is that per natural foot, 0.03 to 0.1 % more."""
+    pull = tension - 0.5 * 1.094 * sag
+    project = loaded(tmp_path, DRAKE_FILE.format(temperature=temperature, pull=f"{pull:.6f}"))
+    assert project.settle("bare").spans[0].sag_m / FOOT == pytest.approx(sag, rel=1.6e-3)

@@ -109,20 +109,22 @@ static double slant_sag(const tw_section *section, const tw_piece *pieces, size_
     return fmax(0.0, tw_span_extreme(&section->material, pieces, count, direction, frame->start, &at));
 }
 
-/* Taut string: deflection M(x)/H with the loads per natural metre taken per metre of span; its greatest. */
-static double small_deflection_sag(const tw_piece *pieces, size_t count, double natural, double span, double H)
+/* Taut string along the chord: deflection M(x)/H, a metre of line taken for a metre of chord; its greatest. Of a uniform
+ * load w L c / (8 H) on a span L with chord c, which on a level span is w L^2 / (8 H). */
+static double small_deflection_sag(const tw_piece *pieces, size_t count, double natural, double span, double chord, double H)
 {
     double scale = span / natural;
+    double slant = chord / span;
     double support = 0.0, x = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
-        support += -pieces[p].load[2] * l * (span - x - 0.5 * l) - pieces[p].force[2] * (span - x - l);
+        support += -pieces[p].load[2] * slant * l * (span - x - 0.5 * l) - pieces[p].force[2] * (span - x - l);
         x += l;
     }
     double shear = support / span, moment = 0.0, most = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
-        double q = -pieces[p].load[2];
+        double q = -pieces[p].load[2] * slant;
         double top = q > 0.0 ? shear / q : -1.0;
         if (top > 0.0 && top < l) {
             most = fmax(most, moment + 0.5 * shear * top);
@@ -187,8 +189,8 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     tw_piece_position(material, piece, at, position);
     state->low_station_m = position[0];
     state->low_elevation_m = position[2];
-    state->small_deflection_sag_m =
-        small_deflection_sag(pieces, count, section->length_m[span], frame.span, state->horizontal_tension_N);
+    state->small_deflection_sag_m = small_deflection_sag(pieces, count, section->length_m[span], frame.span,
+                                                         hypot(frame.span, frame.rise), state->horizontal_tension_N);
 }
 
 void tw_section_support_state(const tw_section *section, size_t support, tw_support_state *state)

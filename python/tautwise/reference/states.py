@@ -81,17 +81,17 @@ def slope_max(hung: Hung) -> float:
     return most
 
 
-def small_deflection_sag(hung: Hung, span_m: float, horizontal_N: float) -> float:
+def small_deflection_sag(hung: Hung, span_m: float, rise_m: float, horizontal_N: float) -> float:
     """Greatest sag of a taut string of constant tension under the same loads, m.
 
-    Each piece's load is spread over its share of the span. v(x) = 1/H int G(x, y) q(y) dy with Green's function
+    The load per natural metre is taken per metre of chord. v(x) = 1/H int G(x, y) q(y) dy with Green's function
     G = min(x, y) (L - max(x, y)) / L of -v'' = q/H.
     """
-    scale = span_m / hung.length_m
+    scale, slant = span_m / hung.length_m, math.hypot(span_m, rise_m) / span_m
     distributed, points, x = [], [], 0.0
     for piece in hung.pieces:
         length = piece.length_m * scale
-        distributed.append((x, x + length, -float(piece.load[2]) / scale))
+        distributed.append((x, x + length, -float(piece.load[2]) * slant))
         points.append((x + length, -float(piece.force[2])))
         x += length
 
@@ -136,7 +136,7 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
         "low_station_m": float((start + hung.position_at(low_at))[0]),
         "low_elevation_m": float(start[2]) - low,
         "slope_max": slope_max(hung),
-        "small_deflection_sag_m": small_deflection_sag(hung, run, horizontal),
+        "small_deflection_sag_m": small_deflection_sag(hung, run, float(chord[2]), horizontal),
     }
 
 
