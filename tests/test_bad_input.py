@@ -210,7 +210,7 @@ CASES = {
     "elevation and height": ('height = "18 m"', 'height = "18 m"\nelevation = "20 m"', 0, "support.Middle.height",
                              "elevation and height are given at once", "exactly one", ""),
     "same name": ('name = "Middle"', 'name = "West mast"', 0, 'support."West mast".name', 'another support "West mast"',
-                  "one of its own", ""),
+                  "a name of its own", ""),
     "name of control characters": ('name = "Middle"', 'name = "M\\u001b[31m"', 0, "name", "cannot be printed", "a name",
                                    'name = "West mast"'),
     "crossing backwards": ('to = "180 m"', 'to = "110 m"', 0, "crossing.channel.to", "does not lie beyond from",
@@ -454,3 +454,117 @@ def test_no_damaged_file_breaks_the_reader(tmp_path_factory, data):
         load(file)
     except InputError as error:
         assert all(fault.problem and fault.line is not None for fault in error.faults)
+
+
+# --- a slip is told once
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "words"),
+    [
+        ("breaking_strength", "breaking_strenght", 'unknown key; did you mean "breaking_strength"?'),
+        ("expansion", "expantion", 'unknown key; did you mean "expansion"?'),
+        ("diameter", "diametre", 'unknown key; did you mean "diameter"?'),
+        ("area =", "aera =", 'unknown key; did you mean "area"?'),
+        ("weight", "wieght", 'unknown key; did you mean "weight"?'),
+        ('name = "West mast"', 'nam = "West mast"', 'unknown key; did you mean "name"?'),
+        ('station = "150 m"', 'staton = "150 m"', 'unknown key; did you mean "station"?'),
+        ('length = "1.8 m"', 'lenght = "1.8 m"', 'unknown key; did you mean "length"?'),
+        ('top = "4.5 m"', 'tpo = "4.5 m"', 'unknown key; did you mean "top"?'),
+        ("[[crossing]]", "[[crosing]]", 'unknown key; did you mean "crossing"?'),
+        ("[line]", "[lin]", 'unknown key; did you mean "line"?'),
+        ("pressure =", "presure =", 'unknown key; did you mean "pressure"?'),
+        ('at = "75 m" } ]', 'att = "75 m" } ]', 'unknown key; did you mean "at"?'),
+        ('kind = "clearance"', 'kin = "clearance"', 'unknown key; did you mean "kind"?'),
+        ("points =", "point =", 'unknown key; did you mean "points"?'),
+    ],
+)
+def test_a_misspelt_key_has_no_follow_ups(tmp_path, old, new, words):
+    text, number = changed(old, new)
+    (fault,) = refused(tmp_path, text)[1].faults
+    assert (fault.problem, fault.line) == (words, number)
+
+
+def test_values_under_a_misspelt_table_are_checked_with_their_lines(tmp_path):
+    text, number = changed("[[crossing]]", "[[crosing]]")
+    first, second = refused(tmp_path, text.replace('top = "4.5 m"', 'top = "4.5"'))[1].faults
+    assert (first.problem, first.line) == ('unknown key; did you mean "crossing"?', number)
+    assert (second.problem, second.line) == ("a number without a unit", number + 4)
+
+
+def test_a_misspelt_key_beside_the_right_one_hides_nothing(tmp_path):
+    text, _ = changed('weight = "11.9 N/m"', 'weight = "11.9"\nwieght = "11.9 N/m"')
+    assert [fault.problem for fault in refused(tmp_path, text)[1].faults] == [
+        "a number without a unit",
+        'unknown key; did you mean "weight"?',
+    ]
+
+
+def test_a_name_that_stands_twice_says_where_the_other_is(tmp_path):
+    first = changed('name = "hot"', "")[1]
+    text, _ = changed('name = "ice and wind"', 'name = "hot"')
+    file, error = refused(tmp_path, text.replace(', "ice and wind"]', "]"))
+    (fault,) = error.faults
+    assert fault.problem == f'there is another condition "hot", at {file}:{first}'
+
+
+# --- texts from files are inert
+
+RED = "\N{ESCAPE}[31m"
+
+
+def test_faults_print_no_control_characters():
+    text = str(Fault(f"{RED}.toml", 3, f"line.{RED}", f"x{RED}", f"y{RED}", f"z\x9b{RED}\u202e"))
+    assert text.isprintable()
+    assert "\\x1b[31m.toml:3: " in text
+
+
+@pytest.mark.parametrize(
+    "slip",
+    [
+        ('name = "West mast"', 'name = "\\u001b[31mWest"'),
+        ('name = "West mast"', 'name = "\\u202eWest"'),
+        ('"24 m"', '"\\u001b[31m24 m"'),
+        ('"24 m"', '"24 \\u009b31m"'),
+        ("hold =", '"\\u001b[31m" = 3\nhold ='),
+        ('over = "channel"', 'over = "\\u001b[31mchannel"'),
+        ('title = "Inlet"', 'title = "\\u0007"'),
+        ("[ground]", 'include = "\\u001b[31m.toml"\n[ground]'),
+        ("[[mark]]", '["\\u001b[31m"]\nx = 1\n[[mark]]'),
+        ('kind = "clearance"', 'kind = "\\u001b[31m"'),
+    ],
+)
+def test_nothing_from_a_file_reaches_the_terminal_raw(tmp_path, slip):
+    faults = refused(tmp_path, changed(*slip)[0])[1].faults
+    assert faults
+    assert all(str(fault).isprintable() for fault in faults)
+
+
+# --- words that an engineer can act on
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "problems"),
+    [
+        ('hold = "post"\nstiffness_along = "250 kN/m"', 'hold = "hanger"', ["the last support is a hanger"]),
+        ('title = "Inlet"', 'title = "Inlet', ["a text in quotes that does not end on its line"]),
+    ],
+)
+def test_one_slip_is_one_message(tmp_path, old, new, problems):
+    faults = refused(tmp_path, changed(old, new)[0])[1].faults
+    found = [fault.problem for fault in faults]
+    assert len(found) == len(problems), found
+    assert all(words in problem for words, problem in zip(problems, found, strict=True))
+
+
+def test_a_line_far_too_short_says_how_far_it_would_stretch(tmp_path):
+    file = tmp_path / "x.taut.toml"
+    file.write_text(changed('horizontal_tension = "20 kN"', 'natural_length = "200 m"')[0])
+    with pytest.raises(InputError, match=r"stringing\.natural_length: .*stretch by 50 %.*hold to hold.*150\.\d+ m"):
+        load(file).settle("hot")
+
+
+def test_a_missing_capacity_says_what_to_add(tmp_path):
+    limit = 'kind = "support_load"\nsupports = ["Middle"]\ndirection = "down"\nshare = 0.5\n#'
+    (fault,) = refused(tmp_path, changed('kind = "clearance"\nover = "channel"\nleast', limit)[0])[1].faults
+    assert 'capacity = { down = "30 kN" }' in fault.example

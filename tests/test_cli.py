@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import re
 import stat
 import subprocess
 import sys
@@ -318,6 +319,164 @@ def test_help_imports_nothing_heavy():
     code = (
         "import sys; from tautwise import cli; cli.run(['--help']); "
         "print({'numpy', 'pydantic', 'pint', 'tautwise._core'} & set(sys.modules), file=sys.stderr)"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert done.stderr.strip() == "set()"
+
+
+# --- several files, and lines that are hardly lines
+
+
+LOOSE = GOOD.replace('horizontal_tension = "20 kN"', 'horizontal_tension = "1 N"')
+
+
+def test_one_line_that_does_not_settle_stops_no_other(folder, run):
+    (folder / "a_loose.taut.toml").write_text(LOOSE)
+    code, out, err = run("vet", "a_loose.taut.toml", "good.taut.toml", "--json")
+    assert code == 3
+    loose, good = json.loads(out)["files"]
+    assert (loose["holds"], good["holds"]) == (False, True)
+    assert {limit["status"] for limit in loose["limits"]} == {"undecided"}
+    assert len(loose["limits"]) == 4
+    assert "a_loose.taut.toml" in loose["limits"][0]["reason"]
+    assert "good.taut.toml" not in err
+    code, out, err = run("vet", "a_loose.taut.toml", "good.taut.toml")
+    assert code == 3
+    assert "UNDECIDED" in out
+    assert out.count("leaves the line nearly slack") == 1
+    assert out.startswith("1 of 2 files with limits that could not be judged\n")
+    assert "finite range" not in out + err
+    assert re.search(r"^a_loose\.taut\.toml: .*leaves the line nearly slack", err, re.MULTILINE)
+    assert run("vet", ".")[0] == 1
+    assert run("vet", "a_loose.taut.toml", "failing.taut.toml")[0] == 1
+
+
+def test_bad_input_that_settling_finds_comes_from_every_file(folder, run):
+    for name in "ab":
+        text = GOOD.replace('at = "150 m"', 'at_length = "500 m"')
+        (folder / f"{name}.taut.toml").write_text(text)
+    code, out, err = run("settle", "a.taut.toml", "good.taut.toml", "b.taut.toml")
+    assert (code, out) == (2, "")
+    assert [line.partition(":")[0] for line in err.splitlines()] == ["a.taut.toml", "b.taut.toml"]
+
+
+@pytest.mark.parametrize("command", ["settle", "window"])
+def test_other_commands_go_on_as_well(folder, run, command, monkeypatch):
+    (folder / "a.taut.toml").write_text(LOOSE)
+    if command == "window":
+        whole = solve.window
+        options = {"a.taut.toml": {"seconds_most": 1e-9}}
+        monkeypatch.setattr(solve, "window", lambda project: whole(project, **options.get(project.source, {})))
+    code, out, err = run(command, "a.taut.toml", "good.taut.toml", "--json")
+    assert code == 3
+    assert [document["format"] for document in json.loads(out)] == [f"tautwise-{command} 1"]
+    assert re.search(r"^a\.taut\.toml: ", err, re.MULTILINE)
+
+
+@pytest.mark.parametrize("pull", ["0.001 N", "1 N"])
+@pytest.mark.parametrize("command", ["settle", "vet"])
+def test_a_pull_that_leaves_the_line_slack_is_explained(folder, run, command, pull):
+    code, _, err = run(command, "good.taut.toml", "--pull", pull)
+    assert code == 3
+    (line,) = err.splitlines()
+    assert re.match(r'good\.taut\.toml: (the line as strung, bare|condition "hot"): ', line)
+    assert f"a pull of {pull} leaves the line nearly slack" in line
+    asked = re.search(r'try "([^"]+)" or more', line)[1]
+    assert run("settle", "good.taut.toml", "--pull", asked)[0] == 0
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "key", "words"),
+    [
+        ('\nat = "150 m"', '\nat_length = "500 m"', "at_length", "500 m lies beyond the end of the line"),
+        ("# load = [ {", 'load = [ { force = "1 kN", at_length = "400 m" } ] # {', "at_length", "400 m lies beyond"),
+        (
+            "# load = [ {",
+            'load = [ { per_length = "9 N/m", from_length = "9 m", to_length = "301 m" } ] # {',
+            "to_length",
+            "301 m lies beyond",
+        ),
+        ('\nat = "150 m"', '\nat = "301 m"', "at", "301 m is not on the line, which runs from 0 m to 300 m"),
+    ],
+)
+@pytest.mark.parametrize("command", ["settle", "vet"])
+def test_places_off_the_line_are_faults_at_their_keys(folder, run, command, old, new, key, words):
+    assert old in GOOD
+    text = GOOD.replace(old, new)
+    (folder / "off.taut.toml").write_text(text)
+    code, out, err = run(command, "off.taut.toml")
+    assert (code, out) == (2, "")
+    line = text[: text.index(new.strip())].count("\n") + 1
+    assert err.startswith(f"off.taut.toml:{line}: ")
+    assert f".{key}: " in err
+    assert words in err
+    if "length" in key:
+        assert re.search(r"natural length.* 300\.131 m", err)
+
+
+def test_window_names_a_load_off_the_line_too(folder, run):
+    load = 'load = [ { force = "1 kN", at_length = "400 m" } ] # {'
+    (folder / "off.taut.toml").write_text(GOOD.replace("# load = [ {", load))
+    code, out, err = run("window", "off.taut.toml")
+    assert (code, out) == (2, "")
+    assert re.match(r"off\.taut\.toml:\d+: condition\.\"ice and wind\"\.load\[0\]\.at_length: 400 m", err)
+
+
+def test_a_line_above_its_strength_is_a_warning_everywhere(folder, run):
+    code, out, err = run("settle", "good.taut.toml", "--pull", "200 kN")
+    assert code == 0
+    assert "Above its breaking strength of 190.00 kN: cold" in out
+    assert "warning: good.taut.toml: the line is above its breaking strength in 'cold': 211.62 of 190.00 kN" in err
+    _, out, _ = run("settle", "good.taut.toml", "--pull", "200 kN", "--json")
+    warnings = json.loads(out)["warnings"]
+    assert len(warnings) == 2
+    assert "above its breaking strength in 'cold'" in warnings[0]
+    _, out, err = run("settle", "good.taut.toml", "--json")
+    assert (json.loads(out)["warnings"], err) == ([], "")
+
+
+def test_stopped_window_says_what_to_do(folder, run, monkeypatch):
+    project = tw.load("good.taut.toml")
+    with pytest.raises(tw.NotSettledError, match=r"good\.taut\.toml: .*project\.window\(seconds_most=600\)"):
+        project.window(seconds_most=1e-9)
+    found = solve.core_of(project).window() | {"status": "evaluation_limit", "status_text": "stopped"}
+
+    class Stopped:
+        def window(self):
+            return found
+
+    monkeypatch.setattr(solve, "core_of", lambda project: Stopped())
+    with pytest.raises(tw.NotSettledError, match=r"good\.taut\.toml: .*project\.window\(evaluations_most=10000\)"):
+        project.window()
+
+
+# --- what files and names may hold
+
+
+def test_file_names_are_inert(folder, run):
+    name = "\N{ESCAPE}[31mred.taut.toml"
+    (folder / name).write_text(GOOD)
+    (folder / f"x{name}").write_text(GOOD.replace('"16 mm"', '"16"'))
+    for arguments in (("settle", name), ("window", name), ("vet", "."), ("vet", f"x{name}"), ("vet", name, "--json")):
+        _, out, err = run(*arguments)
+        assert "\N{ESCAPE}" not in out + err
+    assert "\\x1b[31mred" in run("vet", f"x{name}")[2]
+
+
+def test_names_that_are_no_text_are_shown_all_the_same(folder):
+    name = b"odd\xff.taut.toml"
+    (folder / os.fsdecode(name)).write_text(GOOD)
+    for options in ((), ("--json",)):
+        command = [sys.executable, "-m", "tautwise", "vet", name, *options]
+        done = subprocess.run(command, capture_output=True, check=False)
+        assert (done.returncode, done.stderr) == (0, b"")
+        assert b"odd\\udcff" in done.stdout
+
+
+def test_package_and_help_import_nothing_heavy():
+    code = (
+        "import sys, tautwise; from tautwise import cli; cli.run(['settle', '--help']); cli.run(['--help']); "
+        "print({'numpy', 'pydantic', 'pint', 'jinja2', 'tautwise._core'} & set(sys.modules), file=sys.stderr)"
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stderr.strip() == "set()"

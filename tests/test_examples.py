@@ -16,7 +16,9 @@ from refresh_expected import COMMANDS, ENDING, EXAMPLES, example_names, expected
 from tautwise import _core
 
 NUMBER = re.compile(r"(?<![\w.])[+-]?\d+(?:\.\d+)?(?:e[+-]?\d+)?(?![\w])")
-PROOF = re.compile(r"(.*energies enclose the exact one, )(\S+)( of it apart \(\d+ elements, )(\d+) evaluations?\)\.")
+PROOF = re.compile(
+    r"(.*energies enclose the exact one, )(?:less than )?(\S+)( of it apart \(\d+ elements, )(\d+) evaluations?\)\."
+)
 GAP_MOST = 1e-6
 EVALUATIONS_MOST = 40
 OPEN = [name for name in example_names() if name != "shut_window"]

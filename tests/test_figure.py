@@ -169,3 +169,18 @@ def test_shape_is_dense_and_ends_at_the_supports(project):
     assert shape["position_m"].shape == (51, 3)
     assert np.all(np.diff(shape["length_m"]) > 0)
     assert shape["position_m"][-1] == pytest.approx((300, 0, 23))
+
+
+def test_names_are_texts_and_no_formulas(project):
+    supports = [
+        {"name": "$\\frac$", "station": "0 m", "height": "18 m"},
+        {"name": "A $_x$ 5 $", "station": "300 m", "height": "16 m"},
+    ]
+    named = make(support=supports, limit=[{"id": "$x^2$", "kind": "clearance", "least": "5 m"}])
+    assert drawn(plot_line([named.settle("hot")]))
+    assert drawn(named.window().plot())
+    odd = make(conditions=[{"name": "hot $\\frac$ $", "temperature": "60 degC"}])
+    ax = plot_line([odd.settle()])
+    assert drawn(ax)
+    labels = [text.get_text() for text in (ax.figure.legends or [ax.get_legend()])[0].get_texts()]
+    assert "hot $\\frac$ $" in [label.replace("\\$", "$") for label in labels]

@@ -231,7 +231,7 @@ def test_no_file_folder_and_pipe(tmp_path):
         ("a = 1\na = 2\n", 3, "", "second time", ""),
         ("[a]\n[a]\n", 3, "", "stands twice", ""),
         ("[line\n", 2, "", "this is not TOML", ""),
-        ('a = "x\n', 2, "a", "this is not TOML", ""),
+        ('a = "x\n', 2, "a", "does not end on its line", ""),
     ],
 )
 def test_syntax_faults(tmp_path, text, line, path, problem, example):

@@ -489,3 +489,15 @@ def test_specified_pull_carries_both_edges(window):
     assert [edge["horizontal_tension_N"] for edge in edges] == [best.least_pull_N, best.most_pull_N]
     keys = {"limit", "condition", "place", "value", "allowed", "unit", "utilisation"}
     assert all(keys <= set(edge) for edge in edges)
+
+
+def test_a_mark_off_a_leaning_end_says_where_the_line_runs():
+    supports = [
+        {"name": "A", "station": "0 m", "height": "18 m", "hold": "post", "stiffness_along": "60 kN/m"},
+        {"name": "B", "station": "300 m", "height": "16 m"},
+    ]
+    project = make(support=supports, mark=[{"name": "end", "at": "0 m"}])
+    with pytest.raises(
+        tw.InputError, match=r"^mark\.end\.at: 0 m is not on the line, which runs from 0\.333.* m to 300"
+    ):
+        project.settle("hot")

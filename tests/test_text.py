@@ -11,10 +11,11 @@ from hypothesis import strategies as st
 from test_results import make
 
 from tautwise import solve
-from tautwise.columns import Column, Table, force_column, length_column, text_column, width
+from tautwise.columns import Column, Table, cut, force_column, forces_text, length_column, text_column, width
 from tautwise.results import VetReport
-from tautwise.text import Ink, rounded, settle_text
+from tautwise.text import Ink, condition_text, settle_text
 from tautwise.text_limits import best_so_far, vet_text, window_text
+from tautwise.words import condition_words
 
 PLAIN = Ink(False)
 
@@ -67,7 +68,7 @@ def test_html_is_escaped():
 
 @given(st.floats(1e-3, 1e6), st.integers(0, 4), st.booleans())
 def test_rounding_stays_on_the_safe_side(value, decimals, up):
-    text = rounded(value, decimals, up=up)
+    text = cut(value, decimals, up=up)
     slip = 1e-6 * 10.0**-decimals + 1e-15 * value
     assert (float(text) >= value - slip) if up else (float(text) <= value + slip)
     assert abs(float(text) - value) <= 10.0**-decimals * (1 + 1e-6) + 1e-9 * value
@@ -89,7 +90,7 @@ def test_conditions_come_with_the_highest_tension_first(project):
 
 def test_exact_sag_stands_beside_the_small_deflection_one(project):
     lines = settle_text(solve.settle_report(project), project, PLAIN)
-    head, units, row = table_below(lines, "span ")
+    head, units, row = table_below(lines, "between ")
     for word in ("sag", "small-deflection", "off by"):
         assert word in head
     assert "%" in units
@@ -231,3 +232,151 @@ def test_accents_change_nothing_but_accents(narrow):
     for accented, plain in pairs:
         assert "\033[" in "".join(accented)
         assert [re.sub(r"\033\[[\d;]*m", "", line) for line in accented] == plain
+
+
+# --- exact words and digits
+
+
+def test_both_edges_of_the_specified_pull_are_shown(window, project):
+    text = "\n".join(window_text(window, project, PLAIN))
+    best = window.specify
+    least, most = best.edges
+    assert (least.horizontal_tension_N, most.horizontal_tension_N) == (best.least_pull_N, best.most_pull_N)
+    assert max(least.utilisation, most.utilisation) == pytest.approx(best.worst_utilisation)
+    for edge in best.edges:
+        judged = {row.id: row for row in project.vet(pull=edge.horizontal_tension_N).limits}
+        assert judged[edge.limit].utilisation == pytest.approx(edge.utilisation, abs=1e-6)
+        assert re.search(
+            rf"^    at {edge.horizontal_tension_N / 1e3:.2f} kN  {edge.limit} {100 * edge.utilisation:.1f} % "
+            rf"\({edge.condition}, ",
+            text,
+            re.MULTILINE,
+        )
+
+
+def test_an_exact_pull_has_one_edge():
+    exact = make(stringing={"temperature": "15 degC"})
+    text = "\n".join(window_text(exact.window(), exact, PLAIN))
+    assert re.search(r"^  Most used: \S+ [\d.]+ % \(", text, re.MULTILINE)
+
+
+def test_numbers_of_a_line_share_their_decimals():
+    assert forces_text(10e3, 9.6e3, 10.4e3) == (["10.000", "9.600", "10.400"], "kN")
+    assert forces_text(238.0, 85e3) == (["0.238", "85.000"], "kN")
+    assert forces_text(20e3, 19.4e3) == (["20.00", "19.40"], "kN")
+    assert forces_text(20.0) == (["20.0"], "N")
+
+
+def test_specified_pull_and_its_range_share_their_decimals(window, project):
+    text = "\n".join(window_text(window, project, PLAIN))
+    assert re.search(r"^Specify \d+\.\d\d kN \+/- 3 % \(\d+\.\d\d to \d+\.\d\d kN\), bare line at", text, re.MULTILINE)
+
+
+def test_ends_show_value_and_what_is_allowed(window, project):
+    head, _, low, high = table_below(window_text(window, project, PLAIN), "end ")
+    assert head.split() == ["end", "pull", "governed", "by", "value", "allowed", "unit", "condition", "at"]
+    assert low.split()[3:6] == ["6.500", "6.500", "m"]
+    assert high.split()[3:6] == ["95.00", "95.00", "kN"]
+
+
+def test_conflict_is_rounded_to_the_safe_side(narrow):
+    shut = narrow.window()
+    rows = table_below(window_text(shut, narrow, PLAIN), "limit ")[1:]
+    for row, each in zip(rows, shut.conflict, strict=True):
+        number = 1e3 * float(re.search(r"at (?:least|most) ([\d.]+) kN", row)[1])
+        assert (number >= each.needs_N) if each.side == "at least" else (number <= each.needs_N)
+    assert len({row.split()[-2].partition(".")[2].__len__() for row in rows}) == 1
+
+
+def test_relaxations_begin_with_the_supports(narrow):
+    shut = narrow.window()
+    kinds = [each.support is None for each in shut.relax]
+    assert kinds == sorted(kinds)
+    assert True in kinds
+    lines = window_text(shut, narrow, PLAIN)
+    assert any(line.startswith("Choose one") for line in lines)
+    assert "change the height of " in lines[-3]
+
+
+def test_changes_come_in_the_unit_of_the_file_too():
+    supports = [
+        {"name": "West", "station": "0 ft", "height": "59 ft"},
+        {"name": "East", "station": "300 m", "height": "16 m"},
+    ]
+    feet = make(least="46 ft", share="15 %", support=supports)
+    shut = feet.window()
+    written = {each.change.partition(" (")[0]: each.written for each in shut.relax}
+    height = next(each for each in shut.relax if each.change == "height of West")
+    number, unit = height.written.split()
+    assert unit == "ft"
+    assert 0.0 <= float(number) * 0.3048 - height.to < 0.001
+    assert written["height of East"].endswith(" m")
+    assert re.fullmatch(r"[\d.]+ ft", written["allowed value of clearance"])
+    assert re.fullmatch(r"[\d.]+ %", written["allowed value of strength"])
+    head, _, *rows = table_below(window_text(shut, feet, PLAIN), "change ")
+    assert "in the file" in head
+    assert any(height.written in row for row in rows)
+    moved = [supports[0] | {"height": height.written}, supports[1]]
+    assert make(least="46 ft", share="15 %", support=moved).window().open
+
+
+def test_prices_too_small_to_matter_are_left_out(window, project):
+    small = dataclasses.replace(window.prices[1], pull_N_per_m=0.004 * window.low.horizontal_tension_N)
+    large = dataclasses.replace(small, pull_N_per_m=-0.006 * window.low.horizontal_tension_N)
+    lines = window_text(dataclasses.replace(window, prices=(small, large)), project, PLAIN)
+    assert any("until another limit takes over" in line for line in lines)
+    assert len(table_below(lines[8:], "end ")) == 3
+
+
+def test_spans_have_their_own_words(project):
+    head, _, row = table_below(settle_text(solve.settle_report(project), project, PLAIN), "between ")
+    assert head.split()[:6] == ["between", "span", "natural", "length", "horizontal", "tension"]
+    span = project.settle("ice and wind").spans[0]
+    assert f"{span.natural_length_m:.3f}" in row
+    assert not any(" pull " in line for line in settle_text(solve.settle_report(project), project, PLAIN)[6:-6])
+
+
+@pytest.mark.parametrize(
+    ("gap", "words"), [(-6e-15, "less than 1e-14 of it"), (-2e-9, "2.0e-09 of it"), (0.0, "less than 1e-14 of it")]
+)
+def test_the_proof_states_a_magnitude(project, gap, words):
+    found = dataclasses.replace(project.settle("hot"), gap_relative=gap)
+    assert words in condition_text(found, project, PLAIN)[-1]
+
+
+def test_every_row_is_counted(project):
+    report = solve.vet(project, every=True)
+    lines = vet_text(report, [project], PLAIN)
+    assert any(line.startswith("HOLDS: 2 limits kept in all 4 rows, at a pull of 20.00 kN") for line in lines)
+    assert any(line.startswith("Governing: ") for line in lines)
+    poor = make(least="13.73 m")
+    lines = vet_text(solve.vet(poor, every=True), [poor], PLAIN)
+    assert any(line.startswith("FAILS: 1 of 2 limits not kept (1 of 4 rows), at a pull of") for line in lines)
+
+
+def test_tension_at_a_support_names_it(project):
+    row = next(row for row in project.vet().limits if row.id == "strength")
+    assert row.place == "West to East, at West"
+    clearance = next(row for row in project.vet().limits if row.id == "clearance")
+    assert re.fullmatch(r"West to East, station \d+\.\d m", clearance.place)
+
+
+@pytest.mark.parametrize(
+    ("load", "words"),
+    [
+        ({"force": "2 kN", "at_length": "75 m"}, "2 kN at 75 m along the line"),
+        ({"name": "arrest", "force": "6 kN", "at": "75 m", "direction": "across"}, "arrest: 6 kN across at 75 m"),
+        ({"per_length": "30 N/m", "from": "10 m", "to": "60 m"}, "30 N/m from 10 m to 60 m"),
+        ({"per_length": "5 N/m", "direction": "up"}, "5 N/m up on the whole line"),
+        ({"force": "500 N", "at": "75 m", "direction": [0, 3, -4]}, "500 N along (0, 0.6, -0.8) at 75 m"),
+    ],
+)
+def test_loads_are_named_with_size_and_place(load, words):
+    project = make(conditions=[{"name": "x", "temperature": "15 degC", "load": [load]}])
+    assert condition_words(project.conditions[0]) == f"15 degC, {words}"
+
+
+def test_many_loads_are_counted():
+    loads = [{"force": "500 N", "at": f"{place} m"} for place in range(10, 110, 10)]
+    project = make(conditions=[{"name": "x", "temperature": "15 degC", "load": loads}])
+    assert condition_words(project.conditions[0]).endswith("500 N at 30 m, and 7 more loads")

@@ -5,19 +5,19 @@ A table that fails does not hide what is wrong elsewhere: rules between tables l
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import Any, TypeVar
 
 from pydantic import ValidationError
 
 from tautwise.errors import Fault, InputError
-from tautwise.faults import example_of, faults_of, keys_of, unknown_key
+from tautwise.faults import NOT_YET, example_of, faults_of, keys_of, slips_of, unknown_key
 from tautwise.keylines import Path as KeyPath
 from tautwise.limits import LIMITS, BaseLimit
 from tautwise.profile import Ground, csv_ground, point_ground
 from tautwise.reader import ARRAYS, Document
-from tautwise.strict import Refused, described, did_you_mean, shown
+from tautwise.strict import Refused, described, did_you_mean, nearest, shown
 from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support, Table
 from tautwise.units import quantity
 
@@ -45,10 +45,19 @@ class Checked:
     marks: list[Mark | None] = field(default_factory=list)
     limits: list[BaseLimit | None] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
+    misspelt: set[KeyPath] = field(default_factory=set)
 
     def fault(self, path: KeyPath, problem: str, expected: str = "", example: str = "") -> None:
-        """Note a fault at a key path."""
-        self.faults.append(self.document.fault(path, problem, expected, example))
+        """Note a fault at a key path, unless the key was misspelt and has its fault."""
+        if not any(path[: len(one)] == one for one in self.misspelt):
+            self.faults.append(self.document.fault(path, problem, expected, example))
+
+    def slip(self, path: KeyPath, guess: str, known: Iterable[str]) -> None:
+        """Note a misspelt key, and go on as if it were the right one, so that it is told once and has no follow-ups."""
+        self.faults.append(unknown_key(self.document, path, known))
+        self.document.rename(path, guess)
+        if len(path) > 1:
+            self.misspelt.add((*path[:-1], guess))
 
     def raw(self, *path: str | int) -> dict[str, Any]:
         """The table at a path as it was written; empty where there is none."""
@@ -118,6 +127,8 @@ def exactly_one(checked: Checked, path: KeyPath, model: type[Table], keys: Seque
     if not given:
         checked.fault(path, f"{options} is missing", "exactly one of them", example_of(model, keys[0]))
         return None
+    if any((*path, key) in checked.misspelt for key in given):
+        return given[0]
     if len(given) > 1:
         problem = f"{' and '.join(given)} are given at once"
         checked.fault((*path, given[-1]), problem, f"exactly one of {options}")
@@ -142,8 +153,12 @@ def known_names(checked: Checked, path: KeyPath, array: str) -> None:
 
 
 def _top_keys(checked: Checked) -> None:
-    for key in checked.document.tables:
-        if key not in TOP_KEYS:
+    tables = checked.document.tables
+    for key in [key for key in tables if key not in TOP_KEYS]:
+        guess = None if key in NOT_YET else nearest(key, TOP_KEYS)
+        if guess and guess not in tables:
+            checked.slip((key,), guess, TOP_KEYS)
+        else:
             checked.faults.append(unknown_key(checked.document, (key,), TOP_KEYS))
 
 
@@ -151,8 +166,21 @@ def _table(checked: Checked, path: KeyPath, model: type[T], raw: Any) -> T | Non
     try:
         return model.model_validate(raw)
     except ValidationError as error:
-        checked.faults.extend(faults_of(error, model, checked.document, path))
+        if _slips(checked, path, model, error):
+            return _table(checked, path, model, raw)
+        checked.faults.extend(faults_of(error, model, checked.document, path, checked.misspelt))
         return None
+
+
+def _slips(checked: Checked, at: KeyPath, model: type[Table], error: ValidationError) -> bool:
+    """Note the misspelt keys of a table whose right ones are missing; whether there were any."""
+    found = False
+    for path, guess in slips_of(error, model):
+        table = checked.raw(*at, *path[:-1])
+        if guess not in table:
+            checked.slip((*at, *path), guess, (guess,))
+            found = True
+    return found
 
 
 def _required(checked: Checked, key: str, model: type[T], example: str) -> T | None:
@@ -221,6 +249,11 @@ def _limit(checked: Checked, number: int) -> BaseLimit | None:
     raw = checked.document.tables["limit"][number]
     if not _is_table(checked, path, raw):
         return None
+    if "kind" not in raw:
+        known = {key for model in LIMITS.values() for key in keys_of(model)}
+        slip = next((key for key in raw if key not in known and nearest(key, known) == "kind"), None)
+        if slip is not None:
+            checked.slip((*path, slip), "kind", ("kind",))
     kind = raw.get("kind")
     kinds = ", ".join(LIMITS)
     if kind is None:
@@ -238,9 +271,13 @@ def _limit(checked: Checked, number: int) -> BaseLimit | None:
 def _unique_names(checked: Checked) -> None:
     for key in ARRAYS:
         label = "id" if key == "limit" else "name"
-        seen: set[str] = set()
+        seen: dict[str, int] = {}
         for number, name in enumerate(checked.names(key, label)):
-            if name is not None and name in seen:
-                problem = f'there is another {key} "{shown(name)}"'
-                checked.fault((key, number, label), problem, "one of its own")
-            seen.add(name or "")
+            if name is None:
+                continue
+            if name in seen:
+                file, line = checked.document.where((key, seen[name], label))
+                place = f", at {file}:{line}" if file else ""
+                problem = f'there is another {key} "{shown(name)}"{place}'
+                checked.fault((key, number, label), problem, f"{'an' if label == 'id' else 'a'} {label} of its own")
+            seen.setdefault(name, number)

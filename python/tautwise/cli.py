@@ -9,19 +9,22 @@ from __future__ import annotations
 
 import os
 import sys
-from collections.abc import Iterable, Sequence
-from typing import TYPE_CHECKING, Any
+from collections.abc import Callable, Iterable, Sequence
+from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
+
+from tautwise.files import ENDING, there_already, unfolded, write_whole
+from tautwise.strict import inert
 
 if TYPE_CHECKING:
     from tautwise.model import Project
     from tautwise.records import Record
-    from tautwise.results import SettleReport
     from tautwise.text import Ink
 
+T = TypeVar("T")
+
 DONE, FAILS, BAD_INPUT, FAILED = 0, 1, 2, 3
-ENDING = ".taut.toml"
 
 
 class Careful(click.Command):
@@ -90,12 +93,12 @@ def start(file: str, force: bool, as_json: bool) -> int:
         _print(start_text())
         return DONE
     if os.path.lexists(file) and not force:
-        _tell([_there_already(file)])
+        _tell([there_already(file)])
         return BAD_INPUT
     try:
-        _write_whole(file, start_text(), force=force)
+        write_whole(file, start_text(), force=force)
     except FileExistsError:
-        _tell([_there_already(file)])
+        _tell([there_already(file)])
         return BAD_INPUT
     except OSError as error:
         _tell([f"{file}: cannot be written: {error.strerror}"])
@@ -122,26 +125,19 @@ def settle(files: Sequence[str], pull: str | None, as_json: bool) -> int:
 
     With several files, --json prints a list of documents.
     """
-    projects = _loaded(files)
     from tautwise.solve import settle_report
 
-    reports = [settle_report(project, pull=pull) for project in projects]
+    done, failed = _each(_loaded(files), lambda project: settle_report(project, pull=pull))
     if as_json:
-        _print_documents(reports)
+        _print_documents([report for _, report in done], many=len(files) > 1)
     else:
         from tautwise.text import settle_text
 
-        _print_texts(
-            settle_text(report, project, _ink(), pull) for report, project in zip(reports, projects, strict=True)
-        )
-    for project, report in zip(projects, reports, strict=True):
-        _tell(f"warning: {project.source}: {text}" for text in _loops(report))
-    failed = [
-        f"{project.source}: condition {each.name!r} is not settled: {each.status_text}"
-        for report, project in zip(reports, projects, strict=True)
-        for each in report.conditions
-        if not each.settled
-    ]
+        _print_texts(settle_text(report, project, _ink(), pull) for project, report in done)
+    for project, report in done:
+        _tell(f"warning: {text}" for text in report.warnings[len(project.warnings) :])
+        head = f"{project.source}: " if project.source else ""
+        failed += [head + each.unsettled_text() for each in report.conditions if not each.settled]
     _tell(failed)
     return FAILED if failed else DONE
 
@@ -161,14 +157,17 @@ def window(files: Sequence[str], as_json: bool) -> int:
     for project in projects:
         if not project.limits:
             _tell([f"warning: {project.source}: no [[limit]], so every pull is in the window"])
-    windows = [search(project) for project in projects]
+    done, failed = _each(projects, lambda project: search(project))
     if as_json:
-        _print_documents(windows)
+        _print_documents([found for _, found in done], many=len(files) > 1)
     else:
         from tautwise.text_limits import window_text
 
-        _print_texts(window_text(found, project, _ink()) for found, project in zip(windows, projects, strict=True))
-    return DONE if all(found.open for found in windows) else FAILS
+        _print_texts(window_text(found, project, _ink()) for project, found in done)
+    _tell(failed)
+    if not all(found.open for _, found in done):
+        return FAILS
+    return FAILED if failed else DONE
 
 
 @commands.command()
@@ -181,12 +180,24 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
 
     In a folder, every file that ends in .taut.toml is checked.
     """
-    projects = _loaded(_unfolded(files))
+    projects = _loaded(unfolded(files))
+    from tautwise.errors import NotSettledError
+    from tautwise.findings import slack_finding
     from tautwise.results import VetReport
+    from tautwise.solve import undecided
     from tautwise.solve import vet as check
 
-    reports = [check(project, pull=pull, every=every) for project in projects]
-    report = VetReport.of((file for each in reports for file in each.files), reports[0].program)
+    def judged(project: Project) -> VetReport:
+        try:
+            report = check(project, pull=pull, every=every)
+        except NotSettledError as error:
+            _tell([str(error)])
+            return undecided(project, str(error), pull=pull)
+        _tell(f"warning: {text}" for text in slack_finding(project, report.files[0].pull_N))
+        return report
+
+    done, _ = _each(projects, judged)
+    report = VetReport.of((file for _, each in done for file in each.files), done[0][1].program)
     for project in projects:
         if not project.limits:
             _tell([f"warning: {project.source}: no [[limit]], so there is nothing to vet"])
@@ -195,7 +206,7 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
     else:
         from tautwise.text_limits import vet_text
 
-        _print_texts([vet_text(report, projects, _ink(), every=every)])
+        _print_texts([vet_text(report, projects, _ink())])
     if report.holds:
         return DONE
     return FAILS if any(limit.status == "fails" for limit in report.limits) else FAILED
@@ -267,36 +278,27 @@ def _loaded(files: Iterable[str]) -> list[Project]:
     for project in projects:
         _tell(f"warning: {warning}" for warning in project.warnings)
     if faults:
-        raise InputError(faults)
+        raise InputError(dict.fromkeys(faults))
     return projects
 
 
-def _loops(report: SettleReport) -> list[str]:
-    """Spans that hang deeper than they are long, which is hardly meant."""
-    return [
-        f"{span.name} hangs {span.sag_m:.4g} m deep over {span.span_m:.4g} m in {each.name!r}; is the line this long?"
-        for each in report.conditions
-        for span in each.spans
-        if span.sag_m > span.span_m
-    ]
+def _each(projects: Iterable[Project], work: Callable[[Project], T]) -> tuple[list[tuple[Project, T]], list[str]]:
+    """What `work` makes of each project, and why the others could not be settled; bad input of all in one error."""
+    from tautwise.errors import Fault, InputError, NotSettledError
 
-
-def _unfolded(files: Iterable[str]) -> list[str]:
-    """Files, and the project files in and below folders, in order of name."""
-    from pathlib import Path
-
-    from tautwise.errors import Fault, InputError
-
-    found: list[str] = []
-    for file in files:
-        if not os.path.isdir(file):
-            found.append(file)
-            continue
-        inside = sorted(str(path) for path in Path(file).rglob(f"*{ENDING}") if path.is_file())
-        if not inside:
-            raise InputError([Fault(file, None, "", f"no file in this folder ends in {ENDING}")])
-        found += inside
-    return list(dict.fromkeys(found))
+    done: list[tuple[Project, T]] = []
+    failed: list[str] = []
+    faults: list[Fault] = []
+    for project in projects:
+        try:
+            done.append((project, work(project)))
+        except InputError as error:
+            faults += error.faults
+        except NotSettledError as error:
+            failed.append(str(error))
+    if faults:
+        raise InputError(dict.fromkeys(faults))
+    return done, failed
 
 
 def _ink() -> Ink:
@@ -310,7 +312,8 @@ def _ink() -> Ink:
 def _tell(lines: Iterable[str]) -> None:
     """Print to stderr, a line each."""
     for line in lines:
-        click.echo(line, err=True)
+        for part in line.splitlines():
+            click.echo(inert(part), err=True)
 
 
 def _print(text: str) -> None:
@@ -323,52 +326,17 @@ def _print_texts(texts: Iterable[list[str]]) -> None:
     _print("\n".join(joined(lines) for lines in texts))
 
 
-def _print_documents(records: Sequence[Record]) -> None:
+def _print_documents(records: Sequence[Record], *, many: bool = False) -> None:
+    """One document, or a list of them where several files were given; nothing where there is no answer."""
     documents = [record.to_dict() for record in records]
-    _print_json(documents[0] if len(documents) == 1 else documents)
+    if many or documents:
+        _print_json(documents if many else documents[0])
 
 
 def _print_json(document: Any) -> None:
     from tautwise.records import readable_json
 
     _print(readable_json(document) + "\n")
-
-
-def _there_already(file: str) -> str:
-    return f"{file}: the file is there already; --force overwrites it"
-
-
-def _write_whole(file: str, text: str, *, force: bool) -> None:
-    """Write a file whole or not at all: to a temporary name beside it, synced, then put in place."""
-    import tempfile
-
-    folder = os.path.dirname(file) or "."
-    with tempfile.NamedTemporaryFile(
-        "w", encoding="utf-8", newline="\n", dir=folder, prefix=".tautwise-", delete=False
-    ) as stream:
-        try:
-            stream.write(text)
-            stream.flush()
-            os.fsync(stream.fileno())
-            os.chmod(stream.name, 0o666 & ~_umask())
-            _put_in_place(stream.name, file, force=force)
-        except BaseException:
-            os.unlink(stream.name)
-            raise
-
-
-def _put_in_place(temporary: str, file: str, *, force: bool) -> None:
-    if force:
-        os.replace(temporary, file)
-        return
-    os.link(temporary, file)  # unlike a rename, never over a file that has appeared meanwhile
-    os.unlink(temporary)
-
-
-def _umask() -> int:
-    mask = os.umask(0o077)
-    os.umask(mask)
-    return mask
 
 
 def _silence_stdout() -> None:

@@ -11,9 +11,12 @@
 from __future__ import annotations
 
 import html
+import math
 import unicodedata
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+
+from tautwise.strict import inert
 
 NOTHING = "-"
 
@@ -35,7 +38,7 @@ class Column:
         if value is None:
             return NOTHING
         if isinstance(value, str) or self.decimals is None:
-            return str(value)
+            return inert(str(value))
         text = f"{value / self.divisor:.{self.decimals}f}"
         return text.removeprefix("-") if float(text) == 0.0 else text
 
@@ -61,7 +64,7 @@ class Table:
         """The same as an HTML table that needs no style sheet; every text is escaped."""
         heads = "".join(self._cell("th", n, _head_html(column)) for n, column in enumerate(self.columns))
         rows = "".join(f"<tr>{self._row_html(row)}</tr>" for row in self._cells())
-        title = f'<caption style="text-align:left">{html.escape(caption)}</caption>' if caption else ""
+        title = f'<caption style="text-align:left">{html.escape(inert(caption))}</caption>' if caption else ""
         return f'<table style="{_TABLE_STYLE}">{title}<thead><tr>{heads}</tr></thead><tbody>{rows}</tbody></table>'
 
     def _cells(self) -> list[tuple[str, ...]]:
@@ -123,6 +126,39 @@ def force_text(value: float) -> str:
     """
     column = force_column("", [value])
     return f"{column.shown(value)} {column.unit}"
+
+
+def forces_text(*values: float) -> tuple[list[str], str]:
+    """Forces of one sentence: all in the unit of the largest, with the decimals that the smallest needs.
+
+    >>> forces_text(10e3, 9.6e3, 10.4e3)
+    (['10.000', '9.600', '10.400'], 'kN')
+    """
+    unit, divisor, decimals = force_format(values)
+    return [f"{value / divisor:.{decimals}f}" for value in values], unit
+
+
+def force_format(values: Iterable[float | None]) -> tuple[str, float, int]:
+    """Unit, what N is divided by, and decimals, for forces that are read side by side.
+
+    >>> force_format([238.0, 85e3]), force_format([20.0])
+    (('kN', 1000.0, 3), ('N', 1.0, 1))
+    """
+    sizes = [abs(value) for value in values if value]
+    if max(sizes, default=0.0) < 1e3:
+        return "N", 1.0, 1
+    return "kN", 1e3, 3 if min(sizes) < 1e4 else 2
+
+
+def cut(value: float, decimals: int, *, up: bool) -> str:
+    """A number cut to decimals towards the safe side, so that what is printed still holds.
+
+    >>> cut(14.2041, 2, up=True), cut(22.8799, 2, up=False)
+    ('14.21', '22.87')
+    """
+    scale = 10.0**decimals
+    whole = (math.ceil if up else math.floor)(round(value * scale, 6)) / scale
+    return f"{whole:.{decimals}f}"
 
 
 def plural(count: int, word: str) -> str:

@@ -13,6 +13,8 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass
 
+from tautwise.strict import inert
+
 
 class TautwiseError(Exception):
     """Base of all errors that Tautwise raises on purpose."""
@@ -50,7 +52,7 @@ class Fault:
             text += f"; expected {self.expected}"
         if self.example:
             text += f", for example {self.example}" if self.expected else f"; for example {self.example}"
-        return text
+        return inert(text)
 
 
 class InputError(TautwiseError, ValueError):

@@ -22,10 +22,14 @@ NOT_YET = {
 }
 
 
-def faults_of(error: ValidationError, model: type[BaseModel], document: Document, at: KeyPath) -> Iterator[Fault]:
-    """The faults behind a validation error of the table at path `at`."""
+def faults_of(
+    error: ValidationError, model: type[BaseModel], document: Document, at: KeyPath, hidden: Iterable[KeyPath] = ()
+) -> Iterator[Fault]:
+    """The faults behind a validation error of the table at path `at`, those at or below `hidden` paths left out."""
     for item in error.errors(include_url=False, include_input=True):
         path = item["loc"]
+        if any((*at, *path)[: len(one)] == one for one in hidden):
+            continue
         kind, context = item["type"], item.get("ctx", {})
         if kind == "extra_forbidden":
             yield unknown_key(document, (*at, *path), keys_of(_model_at(model, path[:-1]) or model))
@@ -38,6 +42,16 @@ def faults_of(error: ValidationError, model: type[BaseModel], document: Document
             yield document.fault((*at, *path), "missing", words, _example(path, example))
         else:
             yield _shape_fault(document, (*at, *path), kind, item["input"])
+
+
+def slips_of(error: ValidationError, model: type[BaseModel]) -> Iterator[tuple[KeyPath, str]]:
+    """The unknown keys behind a validation error that are near a known one: path in the table, and the known key."""
+    for item in error.errors(include_url=False, include_input=False):
+        path = item["loc"]
+        if item["type"] == "extra_forbidden" and path[-1] not in NOT_YET:
+            guess = nearest(str(path[-1]), keys_of(_model_at(model, path[:-1]) or model))
+            if guess:
+                yield path, guess
 
 
 def unknown_key(document: Document, path: KeyPath, known: Iterable[str]) -> Fault:

@@ -28,6 +28,7 @@ from tautwise.figure_style import (
     axes_or_new,
     columns_of_legend,
     margins,
+    plain,
 )
 from tautwise.figure_window import plot_window
 from tautwise.places import Scenery
@@ -86,7 +87,15 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
     if chord:
         _draw_chords(ax, shapes[0][0])
     for (line, position), colour, style in zip(shapes, cycle(CURVES), cycle(STYLES)):
-        ax.plot(position[:, 0], position[:, 2], color=colour, linestyle=style, linewidth=1.8, label=line.name, zorder=5)
+        ax.plot(
+            position[:, 0],
+            position[:, 2],
+            color=colour,
+            linestyle=style,
+            linewidth=1.8,
+            label=plain(line.name),
+            zorder=5,
+        )
     tightest = tightest_of(scenery, shapes)
     if tightest:
         _draw_tightest(ax, tightest)
@@ -188,8 +197,8 @@ def _draw_crossings(ax: Any, scenery: Scenery) -> None:
             label = None if ASKED in known else ASKED
             ax.plot([left, left, right, right], [top, top + needs, top + needs, top], label=label, **dotted)
         low = min(top, float(ground.min()))
-        ax.annotate(name, ((left + right) / 2, low), xytext=(0, -4), textcoords="offset points", ha="center", va="top",
-                    fontsize=8, color=INK, zorder=6)  # fmt: skip
+        ax.annotate(plain(name), ((left + right) / 2, low), xytext=(0, -4), textcoords="offset points", ha="center",
+                    va="top", fontsize=8, color=INK, zorder=6)  # fmt: skip
 
 
 def _ground_between(scenery: Scenery, left: float, right: float, top: float) -> tuple[Any, Any]:
@@ -211,7 +220,7 @@ def _draw_supports(ax: Any, scenery: Scenery, line: Equilibrium) -> None:
         if hold == "hanger":
             ax.plot([station, x], [elevation, z], color=INK, linewidth=1.2, zorder=6)
         ax.plot([x], [z], marker=symbols[hold], color=INK, markerfacecolor="white", markersize=5, zorder=7)
-        ax.annotate(name, (station, max(elevation, z)), xytext=(0, 7), textcoords="offset points", ha="center",
+        ax.annotate(plain(name), (station, max(elevation, z)), xytext=(0, 7), textcoords="offset points", ha="center",
                     fontsize=8, color=INK, zorder=7)  # fmt: skip
 
 
@@ -230,7 +239,7 @@ def _draw_tightest(ax: Any, found: Tightest) -> None:
                 va="center", fontsize=8, color=CLEAR, bbox=box, zorder=9)  # fmt: skip
     needs = f" ({found.needs_m:.4g} m asked for)" if found.needs_m else ""
     words = f"Tightest clearance: {height:.2f} m{needs}, station {x:.1f} m, {found.condition}"
-    ax.set_title(words, loc="left", fontsize=9, color=CLEAR)
+    ax.set_title(plain(words), loc="left", fontsize=9, color=CLEAR)
 
 
 def _legend_labels(lines: Sequence[Equilibrium]) -> list[str]:

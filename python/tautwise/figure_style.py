@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from tautwise.errors import TautwiseError
+from tautwise.strict import inert
 
 CURVES = ("#1b4f8a", "#c8601a", "#12807a", "#7d3c86", "#8a7400", "#4b5560")
 STYLES = ("-", "--", "-.", (0, (5, 1, 1, 1, 1, 1)), (0, (2, 1)), (0, (9, 2)))
@@ -29,6 +30,15 @@ def axes_or_new(ax: Any, size: tuple[float, float]) -> Any:
             "pictures need Matplotlib, which is not installed: pip install 'tautwise[figures]'"
         ) from None
     return plt.subplots(figsize=size)[1]
+
+
+def plain(text: str) -> str:
+    """A name as Matplotlib shows it letter by letter: between two dollar signs it would read a formula.
+
+    >>> plain("$x^2$").replace(chr(92), "|")
+    '|$x^2|$'
+    """
+    return inert(text).replace("$", "\\$")
 
 
 def columns_of_legend(ax: Any, labels: list[str]) -> int:

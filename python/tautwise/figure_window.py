@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from tautwise.figure_style import CLEAR, CURVES, FAINT, INK, axes_or_new
+from tautwise.figure_style import CLEAR, CURVES, FAINT, INK, axes_or_new, plain
 from tautwise.results_window import PullWindow
 
 CLOSE_ENOUGH = 2e-4
@@ -189,7 +189,7 @@ def _draw_end(ax: Any, number: int, end: float, by: str, side: str) -> None:
     outside = room > 0.1 + len(by) * 0.6 * END_POINTS / 72.0
     to_left = outside == (side == "left")
     box = {"facecolor": "white", "edgecolor": "none", "alpha": 0.75, "pad": 0.8} if outside else None
-    ax.annotate(by, (end, number), xytext=(-5 if to_left else 5, 0), textcoords="offset points", va="center",
+    ax.annotate(plain(by), (end, number), xytext=(-5 if to_left else 5, 0), textcoords="offset points", va="center",
                 ha="right" if to_left else "left", fontsize=END_POINTS, color=CLEAR if outside else "white", bbox=box,
                 zorder=6)  # fmt: skip
 
@@ -207,11 +207,11 @@ def _draw_specified(ax: Any, window: PullWindow, rows: int, divisor: float) -> N
 
 
 def _label(ax: Any, window: PullWindow, names: list[str], unit: str) -> None:
-    ax.set_yticks(range(len(names)), names)
+    ax.set_yticks(range(len(names)), [plain(name) for name in names])
     ax.tick_params(axis="y", length=0)
     ax.set_xlabel(f"pull (horizontal tension, bare, at {window.temperature_degC:.4g} degC), {unit}")
     state = "open where shaded" if window.open else "shut: no pull keeps every limit"
-    ax.set_title(f"{window.project or 'Pretension window'}: {state}", loc="left", fontsize=10, pad=20,
+    ax.set_title(plain(f"{window.project or 'Pretension window'}: {state}"), loc="left", fontsize=10, pad=20,
                  color=INK if window.open else CLEAR)  # fmt: skip
     for side in ("top", "right", "left"):
         ax.spines[side].set_visible(False)

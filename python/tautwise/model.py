@@ -130,6 +130,16 @@ class Project(BaseModel):
         """A fault that the core found (path such as ``supports[2].hanger_length_m``), at the key in the file."""
         return self._document.fault(file_path(self, path), problem, expected)
 
+    def core_raw(self, path: str) -> Any:
+        """What the file holds under the key that a path of the core means; None where there is none."""
+        value: Any = self._document.tables
+        for part in file_path(self, path):
+            try:
+                value = value[part]
+            except (KeyError, IndexError, TypeError):
+                return None
+        return value
+
     def settle(self, condition: str | None = None, pull: float | str | None = None) -> Equilibrium:
         """The equilibrium in one condition, for the given stringing.
 

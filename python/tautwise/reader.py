@@ -19,7 +19,7 @@ from typing import Any
 from tautwise.errors import Fault, InputError
 from tautwise.keylines import Path as KeyPath
 from tautwise.keylines import TooMuch, scan
-from tautwise.strict import described, shown
+from tautwise.strict import described, nearest, shown
 
 FORMAT = "tautwise 1"
 FILE_BYTES_MOST = 1_000_000
@@ -88,6 +88,22 @@ class Document:
         """
         file, line = self.where(path)
         return Fault(file, line, shown_path(path, self.tables), problem, expected, example)
+
+    def rename(self, path: KeyPath, key: str) -> None:
+        """Go on as if a key had another name; its lines stay known.
+
+        >>> document = Document({"line": {"wieght": "1 N/m"}}, "a.toml", index={("line", "wieght"): ("a.toml", 2)})
+        >>> document.rename(("line", "wieght"), "weight")
+        >>> document.tables, document.where(("line", "weight"))
+        ({'line': {'weight': '1 N/m'}}, ('a.toml', 2))
+        """
+        table: Any = self.tables
+        for part in path[:-1]:
+            table = table[part]
+        table[key] = table.pop(path[-1])
+        length = len(path)
+        for old in [known for known in self.index if known[:length] == path]:
+            self.index[(*path[:-1], key, *old[length:])] = self.index[old]
 
 
 def read_project(path: str | os.PathLike[str]) -> Document:
@@ -270,6 +286,8 @@ def _syntax_fault(message: str, text: str, name: str, lines: dict[KeyPath, int])
     if bare and "quote" not in words:
         quantity = shown(bare[1].strip())
         return Fault(name, number, key, f"{quantity} without quotes", "a text in quotes", f'"{quantity}"')
+    if words.startswith("Illegal character '\\n'"):
+        return Fault(name, number, key, "a text in quotes that does not end on its line")
     twice = next((meaning for begin, meaning in _TWICE.items() if words.startswith(begin)), None)
     if twice:
         return Fault(name, number, key, twice)
@@ -281,6 +299,8 @@ def _format_faults(document: Document, is_main: bool) -> list[Fault]:
     if given == FORMAT or (given is None and not is_main):
         return []
     wanted = ("the format of the file", f'format = "{FORMAT}"')
+    if given is None and any(nearest(key, ("format",)) for key in document.tables):
+        return []  # reported as the unknown key that it is
     if given is None and document.tables:
         return [document.fault(("format",), "missing", *wanted)]
     if given is None:

@@ -53,7 +53,7 @@ class Record:
         """
         data = self.to_dict()
         if indent is None:
-            return json.dumps(data, ensure_ascii=False, allow_nan=False)
+            return _json(data)
         return readable_json(data, indent)
 
     @classmethod
@@ -106,12 +106,22 @@ def _written(value: Any, indent: int, line: str) -> str:
     parts = value.values() if isinstance(value, dict) else value
     plain = not isinstance(value, dict | list) or not any(isinstance(part, dict | list) for part in parts)
     if not isinstance(value, dict | list) or not value or (plain and isinstance(value, list)):
-        return json.dumps(value, ensure_ascii=False, allow_nan=False)
+        return _json(value)
     below = line + " " * indent
     if isinstance(value, list):
         return "[" + ",".join(below + _written(part, indent, below) for part in value) + line + "]"
-    rows = (f"{json.dumps(name, ensure_ascii=False)}: {_written(part, indent, below)}" for name, part in value.items())
+    rows = (f"{_json(name)}: {_written(part, indent, below)}" for name, part in value.items())
     return "{" + ",".join(below + row for row in rows) + line + "}"
+
+
+def _json(value: Any) -> str:
+    """JSON on one line, in which nothing is left that a terminal might obey."""
+    text = json.dumps(value, ensure_ascii=False, allow_nan=False)
+    return text if text.isprintable() else "".join(map(_escaped, text))
+
+
+def _escaped(char: str) -> str:
+    return char if char.isprintable() else json.dumps(char)[1:-1]
 
 
 def _refuse_constant(text: str) -> float:

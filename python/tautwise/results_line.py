@@ -193,6 +193,10 @@ class Equilibrium(Record):
         """Greatest sag of all spans."""
         return max((span.sag_m for span in self.spans), default=None)
 
+    def unsettled_text(self) -> str:
+        """That this condition is not settled, and why, in one line."""
+        return f'condition "{self.name}" is not settled: {self.status_text}'
+
     def require_settled(self) -> Equilibrium:
         """The same line.
 
@@ -201,7 +205,7 @@ class Equilibrium(Record):
         NotSettledError: it is not settled.
         """
         if not self.settled:
-            raise NotSettledError(f'condition "{self.name}" is not settled: {self.status_text}', self.status)
+            raise NotSettledError(self.unsettled_text(), self.status)
         return self
 
     def at(self, station: ArrayLike) -> Places:
@@ -263,7 +267,8 @@ class Equilibrium(Record):
 class SettleReport(Record):
     """All conditions of a project, settled for one stringing; the document of ``settle --json``.
 
-    `program` and `nlopt` are the versions in use, `input_sha256` the hash of the project file.
+    `program` and `nlopt` are the versions in use, `input_sha256` the hash of the project file; `warnings` say what is
+    hardly meant, first in the input, then in what came out.
     """
 
     FORMAT: ClassVar[str] = "tautwise-settle 1"
@@ -275,6 +280,7 @@ class SettleReport(Record):
     caution: str
     stringing: StrungState
     conditions: tuple[Equilibrium, ...]
+    warnings: tuple[str, ...] = ()
 
     @property
     def settled(self) -> bool:
@@ -308,11 +314,11 @@ class SettleReport(Record):
 
 
 def span_table(spans: Sequence[SpanState]) -> Table:
-    """The spans with their pulls and sags, along the line."""
+    """The spans with their tensions and sags, along the line."""
     columns = (
-        text_column("span"),
-        length_column("length", [span.span_m for span in spans]),
-        force_column("pull", [span.horizontal_tension_N for span in spans]),
+        text_column("between"),
+        length_column("span", [span.span_m for span in spans]),
+        force_column("horizontal", [span.horizontal_tension_N for span in spans]),
         force_column("tension", [span.tension_max_N for span in spans]),
         length_column("sag", [span.sag_m for span in spans]),
     )

@@ -27,7 +27,7 @@ class LimitState(Record):
     condition, place: where it is worst; `station_m` if it is a point.
     value, allowed, margin: in `unit` ("m", "N", "deg", or "1" for a slope); margin is what is to spare.
     utilisation: share of the limit that is used; it holds while <= 1.
-    side: "least" or "most", which side of `allowed` is right.
+    side: "least" or "most", which side of `allowed` is right. reason: why it is undecided.
     """
 
     id: str
@@ -44,6 +44,7 @@ class LimitState(Record):
     station_m: float | None = None
     side: str | None = None
     why: str | None = None
+    reason: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -123,11 +124,22 @@ def limit_table(limits: Iterable[LimitState]) -> Table:
 
 
 def _row(limit: LimitState) -> tuple[float | str | None, ...]:
-    unit, divisor, decimals = human_unit(limit.unit, limit.allowed)
-    numbers = [_shown(value, divisor, decimals) for value in (limit.value, limit.allowed, limit.margin)]
+    numbers = shown_values(limit.unit, limit.allowed, limit.value, limit.allowed, limit.margin)
     used = None if limit.utilisation is None else 100.0 * limit.utilisation
-    return (limit.id, limit.status.upper() if limit.status == FAILS else limit.status, used, *numbers, unit,
+    return (limit.id, limit.status.upper() if limit.status == FAILS else limit.status, used, *numbers,
             limit.condition, limit.place)  # fmt: skip
+
+
+def shown_values(unit: str | None, allowed: float | None, *values: float | None) -> tuple[str | None, ...]:
+    """Values of a limit and their unit, all as the allowed one asks for.
+
+    >>> shown_values("N", 72e3, 45.67e3, 72e3)
+    ('45.67', '72.00', 'kN')
+    """
+    if unit is None:
+        return (*(None for _ in values), None)
+    name, divisor, decimals = human_unit(unit, allowed)
+    return (*(_shown(value, divisor, decimals) for value in values), name)
 
 
 def human_unit(unit: str, allowed: float | None) -> tuple[str, float, int]:

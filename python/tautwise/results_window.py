@@ -5,16 +5,17 @@ Pulls are horizontal tensions at installation (bare line at the stringing temper
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any, ClassVar, Protocol
 
-from tautwise.columns import Table, force_column, force_text, number_column, text_column
+from tautwise.columns import Table, cut, force_column, force_format, force_text, number_column, text_column
 from tautwise.errors import ShutWindowError
 from tautwise.records import Record
 
 OPEN_ENDED = "none"
-LEAST_PRICE_SHOWN_N_PER_M = 1.0
+AT_LEAST = "at least"
+LEAST_PRICE_SHOWN = 0.005  # of the end's pull for each metre
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,7 +41,8 @@ class WindowEnd(Record):
 class PullToSpecify(Record):
     """The pull whose worst utilisation over its tolerance is smallest.
 
-    `least_pull_N` and `most_pull_N` are what the crew may leave it at; `limit` in `condition` at `place` is used most.
+    `least_pull_N` and `most_pull_N` are what the crew may leave it at, `edges` what is used most at each of them;
+    `limit` in `condition` at `place` is the worse of the two.
     """
 
     horizontal_tension_N: float
@@ -53,6 +55,7 @@ class PullToSpecify(Record):
     limit: str | None
     condition: str | None
     place: str | None
+    edges: tuple[WindowEnd, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,6 +95,7 @@ class Relaxation(Record):
     change: what to change, in words. by, unit: how far. to: the value after it, in the same unit.
     pull_N: a pull that then satisfies every limit. limit, support: the one that is meant.
     where: file and line to change, None where there is none.
+    written: the value after it in the unit that the file uses for this key, rounded to the safe side.
     """
 
     change: str
@@ -102,6 +106,7 @@ class Relaxation(Record):
     limit: str | None
     support: str | None
     where: str | None
+    written: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -215,26 +220,33 @@ def conflict_text(conflict: tuple[Conflict, ...]) -> str:
     >>> conflict_text((low, Conflict("strength", "ice", 18000.0, "at most")))
     'clearance (hot) needs at least 21.00 kN, strength (ice) at most 18.00 kN'
     """
-    parts = [f"{each.limit} ({each.condition}) {need_text(each)}" for each in conflict]
+    texts = need_texts(conflict)
+    parts = [f"{each.limit} ({each.condition}) {text}" for each, text in zip(conflict, texts, strict=True)]
     return ", ".join(parts).replace(") at ", ") needs at ", 1) or "no single limit to blame was found"
 
 
-def need_text(conflict: Conflict) -> str:
-    """What one of the conflicting limits needs."""
-    if conflict.side == "never" or conflict.needs_N is None:
-        return "holds at no pull"
-    return f"{conflict.side} {force_text(conflict.needs_N)}"
+def need_texts(conflict: tuple[Conflict, ...], beside_N: Iterable[float | None] = ()) -> list[str]:
+    """What each of the conflicting limits needs, rounded so that it still holds, in the digits of forces beside it."""
+    unit, divisor, decimals = force_format([*(each.needs_N for each in conflict), *beside_N])
+    return [
+        "holds at no pull"
+        if each.side == "never" or each.needs_N is None
+        else f"{each.side} {cut(each.needs_N / divisor, decimals, up=each.side == AT_LEAST)} {unit}"
+        for each in conflict
+    ]
 
 
-def conflict_table(conflict: tuple[Conflict, ...]) -> Table:
-    """The limits that exclude one another."""
+def conflict_table(conflict: tuple[Conflict, ...], beside_N: Iterable[float | None] = ()) -> Table:
+    """The limits that exclude one another; `beside_N` are forces shown beside it, in the same digits."""
     columns = (text_column("limit"), text_column("condition"), text_column("needs a pull of"))
-    return Table(columns, tuple((each.limit, each.condition, need_text(each)) for each in conflict))
+    rows = zip(conflict, need_texts(conflict, beside_N), strict=True)
+    return Table(columns, tuple((each.limit, each.condition, text) for each, text in rows))
 
 
-def price_table(prices: tuple[Price, ...]) -> Table:
+def price_table(window: PullWindow) -> Table:
     """What moves the ends of a window: how far for each metre of a support, strongest first."""
-    listed = [price for price in prices if abs(price.pull_N_per_m or 0.0) >= LEAST_PRICE_SHOWN_N_PER_M]
+    pulls = {"low": window.low, "high": window.high}
+    listed = [price for price in window.prices if _matters(price, pulls.get(price.end))]
     listed.sort(key=lambda price: (price.end != "low", -abs(price.pull_N_per_m or 0.0)))
     columns = (
         text_column("end"),
@@ -252,3 +264,7 @@ def price_table(prices: tuple[Price, ...]) -> Table:
         for price in listed
     )
     return Table(columns, tuple(rows))
+
+
+def _matters(price: Price, end: WindowEnd | None) -> bool:
+    return end is not None and abs(price.pull_N_per_m or 0.0) >= LEAST_PRICE_SHOWN * end.horizontal_tension_N

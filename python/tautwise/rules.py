@@ -65,7 +65,7 @@ def place_rules(checked: Checked) -> None:
         if crossing.to_m <= crossing.from_m:
             problem = f"{crossing.to_m:g} m does not lie beyond from, {crossing.from_m:g} m"
             checked.fault(("crossing", number, "to"), problem, "a station beyond from")
-        elif route and (crossing.to_m < route[0] or crossing.from_m > route[1]):
+        elif route and route[0] < route[1] and (crossing.to_m < route[0] or crossing.from_m > route[1]):
             problem = f"the crossing lies off the route, which runs from {route[0]:g} m to {route[1]:g} m"
             checked.fault(("crossing", number), problem)
     _ground_rule(checked, route)
@@ -128,7 +128,8 @@ def _hold_rules(checked: Checked, number: int) -> None:
         if raw.get(key) is not None and hold != owner:
             article = "an" if hold == "anchor" else "a"
             checked.fault((*path, key), f"{article} {hold} has no {key}; {what} belongs to a {owner}")
-    if hold == "hanger" and raw.get("length") is None:
+    at_an_end = number in (0, checked.count("support") - 1)  # no place for a hanger, with or without a length
+    if hold == "hanger" and raw.get("length") is None and not at_an_end:
         checked.fault((*path, "length"), "missing", "the length of the hanger", 'length = "1.8 m"')
 
 

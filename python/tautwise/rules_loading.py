@@ -179,7 +179,9 @@ def _capacity_rules(checked: Checked, path: KeyPath, limit: SupportLoadLimit) ->
     for number, name in enumerate(limit.supports or ()):
         if name in {support.name for support in supports} - able:
             problem = f'support "{shown(name)}" gives no capacity {limit.direction}'
-            checked.fault((*path, "supports", number), problem)
+            example = f'capacity = {{ {limit.direction} = "30 kN" }}'
+            expected = "a capacity there, or most here instead of share"
+            checked.fault((*path, "supports", number), problem, expected, example)
 
 
 def _swing_rules(checked: Checked, path: KeyPath, limit: SwingLimit) -> None:

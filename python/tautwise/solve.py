@@ -8,29 +8,31 @@ from __future__ import annotations
 
 import math
 import os
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
-from itertools import pairwise
 from typing import TYPE_CHECKING, Any, NoReturn
-
-import numpy as np
 
 from tautwise import _core
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
-from tautwise.limits import GROUND, ClearanceLimit
-from tautwise.places import Scenery
+from tautwise.findings import findings_of
+from tautwise.origins import Judge, LineOrigin
+from tautwise.outcomes import AS_STRUNG, chords_m, explained, refuse_slack
 from tautwise.records import finite
 from tautwise.results import (
     CAUTION,
     Equilibrium,
     FileVerdict,
+    LimitState,
     PullWindow,
     SettleReport,
     StrungState,
     VetReport,
 )
+from tautwise.results_vet import HOLDS
 from tautwise.solve_limits import limit_states, window_of
 from tautwise.solve_line import conditions_of, equilibrium_of
+from tautwise.solve_places import LENGTHS, OFF_THE_LINE, beyond_faults, off_faults, places_of
+from tautwise.solve_relax import relaxations_of
 from tautwise.strict import Refused
 from tautwise.units import quantity
 
@@ -57,20 +59,26 @@ def settle(project: Project, condition: str | None = None, *, pull: Pull = None,
     index = _condition_index(project, condition)
     newtons = pull_of(project, pull)
     core = core_of(project)
+    require_places(project, core, newtons)
     found = _settled(project, core, index, newtons, options)
-    return found.require_settled()
+    if not found.settled:
+        head = f"{project.source}: " if project.source else ""
+        raise NotSettledError(head + found.unsettled_text(), found.status)
+    return found
 
 
 def settle_all(project: Project, *, pull: Pull = None, **options: Any) -> tuple[Equilibrium, ...]:
     """The equilibrium in every condition, in the order of the file; one that does not settle says so in its status."""
     newtons = pull_of(project, pull)
     core = core_of(project)
+    require_places(project, core, newtons)
     return tuple(_settled(project, core, index, newtons, options) for index in range(len(project.conditions)))
 
 
 def settle_report(project: Project, *, pull: Pull = None, **options: Any) -> SettleReport:
     """Every condition and the line as strung: the document of ``settle --json``."""
     conditions = settle_all(project, pull=pull, **options)
+    findings = findings_of(project, conditions, None if pull is None else pull_of(project, pull))
     return SettleReport(
         program=program(),
         nlopt=_core.NLOPT_VERSION,
@@ -79,13 +87,14 @@ def settle_report(project: Project, *, pull: Pull = None, **options: Any) -> Set
         caution=CAUTION,
         stringing=strung(project, pull=pull),
         conditions=conditions,
+        warnings=(*project.warnings, *findings),
     )
 
 
 def strung(project: Project, *, pull: Pull = None) -> StrungState:
     """The line as strung: the pull and the natural length of each span."""
     newtons = pull_of(project, pull)
-    with _errors_of(project, newtons):
+    with errors_of(project, newtons, AS_STRUNG):
         found = core_of(project).string(pull=newtons)
     return StrungState(
         project.stringing.temperature_degC,
@@ -108,15 +117,15 @@ def window(project: Project, **options: Any) -> PullWindow:
     SearchCancelled: Ctrl-C; its `best` is what had been found, or None.
     """
     core = core_of(project)
-    with _errors_of(project):
+    with errors_of(project):
         try:
             found = core.window(**options)
         except KeyboardInterrupt as stop:
             raise SearchCancelled("the search was cancelled", _best(project, getattr(stop, "best", None))) from None
     if found["status"] not in ("ok", "shut") or (found["open"] and not found["verified"] and options.get("verify", 1)):
-        name = f"{project.source}: " if project.source else ""
-        raise NotSettledError(f"{name}the window could not be decided: {found['status_text']}", found["status"])
-    return window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core))
+        raise _undecided(project, found)
+    relax = relaxations_of(project, found["relax"])
+    return window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core), relax)
 
 
 def vet(project: Project, *, pull: Pull = None, every: bool = False) -> VetReport:
@@ -128,16 +137,21 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False) -> VetRepor
     """
     newtons = pull_of(project, pull)
     core = core_of(project)
-    with _errors_of(project, newtons):
+    require_places(project, core, newtons)
+    with errors_of(project, newtons, AS_STRUNG):
         rows = core.judge(pull=newtons)
     if newtons is None and any(row["reason"] == "slack" for row in rows):
-        _refuse_slack(project, "slack", _core.STATUS["slack"])
-    limits = limit_states(project, rows, every=every)
-    name = project.source or project.title
-    holds = all(limit.status == "holds" for limit in limits)
-    strung_at = strung(project, pull=pull).horizontal_tension_N
-    file = FileVerdict(os.fspath(name), holds, limits, project.title, project.input_sha256, strung_at)
-    return VetReport.of([file], program())
+        refuse_slack(project, "slack", _core.STATUS["slack"])
+    if any(row["reason"] == OFF_THE_LINE for row in rows):
+        refuse_places(project, newtons)
+    limits = limit_states(project, rows, every=every, reason=_reasons(project, newtons))
+    return _verdict(project, limits, strung(project, pull=pull).horizontal_tension_N)
+
+
+def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
+    """The report of a project whose line could not be settled at all: every limit undecided, for one reason."""
+    given = project.stringing.horizontal_tension_N if pull is None else pull_of(project, pull)
+    return _verdict(project, limit_states(project, (), every=False, reason=lambda row: reason), given)
 
 
 def core_of(project: Project) -> _core.Project:
@@ -147,7 +161,7 @@ def core_of(project: Project) -> _core.Project:
     ------
     InputError: a number is outside its range; the fault names the key of the project file.
     """
-    with _errors_of(project):
+    with errors_of(project):
         return _core.Project(project.to_core())
 
 
@@ -164,7 +178,7 @@ def pull_of(project: Project, pull: Pull) -> float | None:
         if _has_stringing(project):
             return None
         problem = "no stringing rule, so there is no line to settle"
-        expected = "horizontal_tension, tension, sag or natural_length, or a pull with the call"
+        expected = "horizontal_tension, tension, sag or natural_length, or a pull given with the command or the call"
         fault = project.core_fault("stringing", problem, expected)
         raise InputError([Fault(fault.file, fault.line, fault.path, problem, expected, 'horizontal_tension = "20 kN"')])
     try:
@@ -176,128 +190,107 @@ def pull_of(project: Project, pull: Pull) -> float | None:
     return newtons
 
 
-class LineOrigin:
-    """What a settled line remembers of where it came from, so that places on it can be looked up later."""
-
-    __slots__ = ("_core", "condition", "project", "pull")
-
-    def __init__(self, project: Project, condition: int, pull: float | None, core: _core.Project | None = None) -> None:
-        self.project = project
-        self.condition = condition
-        self.pull = pull
-        self._core = core
-
-    def __reduce__(self) -> tuple[Callable[..., LineOrigin], tuple[Any, ...]]:
-        return (LineOrigin, (self.project, self.condition, self.pull))
-
-    def at(self, stations: Any) -> dict[str, Any]:
-        """Length, position, tension and clearance of the line at stations."""
-        asked = np.ascontiguousarray(stations, dtype=np.float64)
-        with _errors_of(self.project):
-            found = self._problem().at(self.condition, asked, pull=self.pull)
-        return {**found, "clearance_m": np.asarray(found["position_m"])[:, 2] - self._ground(asked)}
-
-    def shape(self, points: int) -> dict[str, Any]:
-        """Length, position and tension along the line, `points` for each span."""
-        with _errors_of(self.project):
-            return self._problem().shape(self.condition, points, pull=self.pull)
-
-    def scenery(self) -> Scenery:
-        """What stands around the line."""
-        return scenery_of(self.project)
-
-    def _problem(self) -> _core.Project:
-        if self._core is None:
-            self._core = core_of(self.project)
-        return self._core
-
-    def _ground(self, stations: Any) -> Any:
-        ground = self.project.ground
-        if ground is None:
-            return np.full(stations.shape, math.nan)
-        return np.interp(stations, ground.stations_m, ground.elevations_m, left=math.nan, right=math.nan)
+@contextmanager
+def errors_of(project: Project, pull: float | None = None, where: str = "") -> Iterator[None]:
+    """The core's errors as ours; `where` says what was being settled, as in 'condition "hot"' or `AS_STRUNG`."""
+    try:
+        yield
+    except _core.RangeError as error:
+        path, expected = getattr(error, "path", ""), getattr(error, "expected", "")
+        problem = "outside its range" if path else str(error)
+        raise InputError([project.core_fault(path, problem, expected)]) from None
+    except _core.SettleError as error:
+        status = getattr(error, "status", "not_settled")
+        if status == OFF_THE_LINE:
+            refuse_places(project, pull)
+        if pull is None:
+            refuse_slack(project, status, str(error))
+        words = explained(project, status, str(error), pull, _core.DEFAULTS)
+        raise NotSettledError(": ".join(filter(None, (project.source, where, words))), status) from None
 
 
-class Judge:
-    """What a window remembers, so that a limit can be looked up at any pull later."""
+def require_places(project: Project, core: _core.Project, pull: float | None) -> None:
+    """Refuse lengths along the line that lie beyond its end, as strung to `pull` (None: by the project's rule).
 
-    __slots__ = ("_core", "project")
-
-    def __init__(self, project: Project, core: _core.Project | None = None) -> None:
-        self.project = project
-        self._core = core
-
-    def __reduce__(self) -> tuple[Callable[..., Judge], tuple[Any, ...]]:
-        return (Judge, (self.project,))
-
-    def judge(self, pull_N: float) -> dict[tuple[str, str], float]:
-        """Utilisation of each limit (id) in each condition (name) at a pull; infinite where there is no line."""
-        if self._core is None:
-            self._core = core_of(self.project)
-        limits, conditions = self.project.limits, self.project.conditions
-        try:
-            rows = self._core.judge(pull=pull_N)
-        except _core.SettleError:
-            return {}
-        return {
-            (limits[row["limit"]].id, conditions[row["condition"]].name): math.inf
-            if row["status"] == "undecided"
-            else row["utilisation"]
-            for row in rows
-        }
+    Raises
+    ------
+    InputError: one fault for each of them.
+    """
+    if not any(places_of(project, LENGTHS)):
+        return
+    with errors_of(project, pull, AS_STRUNG):
+        total = math.fsum(core.string(pull=pull)["lengths_m"])
+    faults = beyond_faults(project, total, "its natural length as strung")
+    if faults:
+        raise InputError(faults)
 
 
-def scenery_of(project: Project) -> Scenery:
-    """Ground, crossings and supports of a project, with the clearances that its limits ask for."""
-    limits = [limit for limit in project.limits if isinstance(limit, ClearanceLimit)]
-    ends = project.supports[0].station_m, project.supports[-1].station_m
-    needed = {limit.over: 0.0 for limit in limits}
-    for limit in limits:
-        needed[limit.over] = max(needed[limit.over], limit.least)
-    ground = project.ground
-    return Scenery(
-        ground=tuple(zip(ground.stations_m, ground.elevations_m, strict=True)) if ground else (),
-        crossings=tuple((c.name, c.from_m, c.to_m, c.top_m, needed.get(c.name, 0.0)) for c in project.crossings),
-        supports=tuple((s.name, s.station_m, project.elevation_m(s), s.hold) for s in project.supports),
-        ground_clearances=tuple(
-            (
-                ends[0] if limit.from_m is None else limit.from_m,
-                ends[1] if limit.to_m is None else limit.to_m,
-                limit.least,
-            )
-            for limit in limits
-            if limit.over == GROUND
-        ),
-    )
+def refuse_places(project: Project, pull: float | None) -> NoReturn:
+    """Raise for what the core found to be off the line, at the keys that are meant.
+
+    Raises
+    ------
+    InputError: always.
+    """
+    if pull is not None or _has_stringing(project):
+        require_places(project, core_of(project), pull)
+        faults = off_faults(project, *_strung_range(project, pull))
+    else:
+        faults = beyond_faults(project, math.fsum(chords_m(project)), "about its length")
+    words = _core.STATUS[OFF_THE_LINE]
+    raise InputError(faults or [Fault(project.source, None, "", words, "marks and loads that lie on the line")])
+
+
+def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
+    """First and last station, m, of the line as strung, bare: posts lean."""
+    bare = {"temperature_degC": project.stringing.temperature_degC}
+    problem = {**project.to_core(), "conditions": [bare], "marks": [], "limits": []}
+    with errors_of(project, pull, AS_STRUNG):
+        supports = _core.Project(problem).settle(0, pull=pull)["supports"]
+    if not supports:
+        return -math.inf, math.inf
+    return float(supports[0]["position_m"][0]), float(supports[-1]["position_m"][0])
+
+
+def _verdict(project: Project, limits: tuple[LimitState, ...], pull: float | None) -> VetReport:
+    holds = all(limit.status == HOLDS for limit in limits)
+    name = os.fspath(project.source or project.title)
+    return VetReport.of([FileVerdict(name, holds, limits, project.title, project.input_sha256, pull)], program())
+
+
+def _reasons(project: Project, pull: float | None) -> Callable[[Mapping[str, Any] | None], str | None]:
+    """Why a judged row is undecided, in words."""
+
+    def reason(row: Mapping[str, Any] | None) -> str | None:
+        if row is None:
+            return "nothing of the line is under this limit"
+        name = row["reason"]
+        return explained(project, name, _core.STATUS[name], pull, _core.DEFAULTS) if name else None
+
+    return reason
+
+
+def _undecided(project: Project, found: Mapping[str, Any]) -> NotSettledError:
+    status = found["status"] if found["status"] in _core.STATUS else "not_settled"
+    text = found["status_text"] if status not in ("ok", "shut") else "its ends could not be verified"
+    words = explained(project, status, text, math.inf, _core.DEFAULTS, "window")
+    name = f"{project.source}: " if project.source else ""
+    return NotSettledError(f"{name}the window could not be decided: {words}", status)
 
 
 def _settled(
     project: Project, core: _core.Project, index: int, pull: float | None, options: dict[str, Any]
 ) -> Equilibrium:
-    with _errors_of(project, pull):
+    name = project.conditions[index].name
+    with errors_of(project, pull, f'condition "{name}"'):
         found = core.settle(index, pull=pull, **options)
+    status, text = found["status"], found["status_text"]
+    if status == OFF_THE_LINE:
+        refuse_places(project, pull)
     if pull is None:
-        _refuse_slack(project, found["status"], found["status_text"], project.conditions[index].name)
+        refuse_slack(project, status, text, name)
+    found = {**found, "status_text": explained(project, status, text, pull, _core.DEFAULTS)}
     return equilibrium_of(project, index, found, LineOrigin(project, index, pull, core))
-
-
-def _refuse_slack(project: Project, status: str, text: str, condition: str = "") -> None:
-    """Lengths that leave a line slack, and a rule that none meets, are inputs at fault, not failed searches."""
-    given = project.stringing.natural_length_m is not None
-    where = f' in condition "{condition}"' if condition else ""
-    if status == "slack" and given:
-        chords = [f"{math.hypot(*parts):.3f} m" for parts in _chords(project)]
-        listed = ", ".join(chords[:4]) + (", ..." if len(chords) > 4 else "")
-        expected = f"natural lengths that put the line under load, or shorter ones (hold to hold: {listed})"
-        raise InputError([project.core_fault("stringing.natural_length", f"{text}{where}", expected)])
-    if status == "out_of_reach":
-        key = "stringing.natural_length" if given else "stringing"
-        raise InputError([project.core_fault(key, text, "a rule that the line can meet")])
-
-
-def _chords(project: Project) -> list[tuple[float, float, float]]:
-    points = [(s.station_m, s.offset_m, project.elevation_m(s)) for s in project.supports]
-    return [(b[0] - a[0], b[1] - a[1], b[2] - a[2]) for a, b in pairwise(points)]
 
 
 def _has_stringing(project: Project) -> bool:
@@ -319,23 +312,3 @@ def _best(project: Project, found: dict[str, Any] | None) -> PullWindow | None:
         return None if found is None else window_of(project, found, program(), _core.NLOPT_VERSION)
     except (KeyError, TypeError):
         return None
-
-
-@contextmanager
-def _errors_of(project: Project, pull: float | None = None) -> Iterator[None]:
-    """The core's errors as ours."""
-    try:
-        yield
-    except _core.RangeError as error:
-        _raise_range(project, error)
-    except _core.SettleError as error:
-        status = getattr(error, "status", "not_settled")
-        if pull is None:
-            _refuse_slack(project, status, str(error))
-        raise NotSettledError(str(error), status) from None
-
-
-def _raise_range(project: Project, error: Any) -> NoReturn:
-    path, expected = getattr(error, "path", ""), getattr(error, "expected", "")
-    problem = "outside its range" if path else str(error)
-    raise InputError([project.core_fault(path, problem, expected)]) from None

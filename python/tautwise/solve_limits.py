@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
-from tautwise.columns import force_text
+from tautwise.columns import forces_text
 from tautwise.records import finite
 from tautwise.results_line import CAUTION
 from tautwise.results_vet import HOLDS, UNDECIDED, LimitState, worst_first
@@ -35,6 +35,7 @@ UNITS = {
     "catenary_constant": "m",
     "slope": "1",
 }
+POST_LEANS_MOST = 0.02  # of the span
 Row = Mapping[str, Any]
 
 
@@ -43,18 +44,30 @@ def kind_of(limit: BaseLimit) -> str:
     return str(getattr(limit, "kind", ""))
 
 
-def limit_states(project: Project, rows: Sequence[Row], *, every: bool) -> tuple[LimitState, ...]:
-    """The judged limits, worst first: one row for each limit, or one for each limit and condition."""
+def limit_states(
+    project: Project, rows: Sequence[Row], *, every: bool, reason: Callable[[Row | None], str | None] = lambda row: None
+) -> tuple[LimitState, ...]:
+    """The judged limits, worst first: one row for each limit, or one for each limit and condition.
+
+    `reason` says why a row is undecided; it is asked with None for a limit that has no row.
+    """
     states: list[LimitState] = []
     for index, limit in enumerate(project.limits):
-        own = [_limit_state(project, limit, row) for row in rows if row["limit"] == index]
-        own = own or [_unjudged(limit)]
+        own = [_limit_state(project, limit, row, reason) for row in rows if row["limit"] == index]
+        own = own or [_unjudged(limit, reason(None))]
         states += own if every else worst_first(own)[:1]
     return worst_first(states)
 
 
-def window_of(project: Project, found: Row, program: str, nlopt: str, origin: WindowOrigin | None = None) -> PullWindow:
-    """The record of a searched window."""
+def window_of(
+    project: Project,
+    found: Row,
+    program: str,
+    nlopt: str,
+    origin: WindowOrigin | None = None,
+    relax: tuple[Relaxation, ...] = (),
+) -> PullWindow:
+    """The record of a searched window; `relax` for one that is shut."""
     is_open = bool(found["open"])
     low, high = found["range_N"]
     return PullWindow(
@@ -66,7 +79,7 @@ def window_of(project: Project, found: Row, program: str, nlopt: str, origin: Wi
         specify=_specify(project, found["specify"]) if found["status"] != "shut" else None,
         prices=tuple(_price(project, row) for row in found["prices"]) if is_open else (),
         conflict=() if is_open else tuple(_conflict(project, row) for row in found["conflict"]),
-        relax=() if is_open else tuple(_relaxation(project, row) for row in found["relax"]),
+        relax=() if is_open else relax,
         temperature_degC=project.stringing.temperature_degC,
         intervals=tuple((float(a), float(b)) for a, b in found["intervals"]),
         searched_N=(float(low), float(high)),
@@ -92,7 +105,21 @@ def place_of(project: Project, row: Row) -> str | None:
         return None
     span = f"{names[row['span']]} to {names[row['span'] + 1]}"
     station = finite(row.get("station_m"))
-    return span if station is None else f"{span}, station {station:.1f} m"
+    if station is None:
+        return span
+    held = _held_at(project, row, station) if _unit(project, row)[0] == "tension" else None
+    return f"{span}, station {station:.1f} m" if held is None else f"{span}, at {held}"
+
+
+def _held_at(project: Project, row: Row, station: float) -> str | None:
+    """The support at whose clamp a station is; hangers swing and posts lean by less than this allows."""
+    ends = project.supports[row["span"]], project.supports[row["span"] + 1]
+    span = ends[1].station_m - ends[0].station_m
+    reach = {"anchor": 1e-6 * span, "post": POST_LEANS_MOST * span}
+    for support in ends:
+        if abs(station - support.station_m) <= reach.get(support.hold, support.hanger_length_m or 0.0):
+            return support.name
+    return None
 
 
 def in_shown_unit(kind: str, value: float | None) -> float | None:
@@ -101,7 +128,9 @@ def in_shown_unit(kind: str, value: float | None) -> float | None:
     return math.degrees(number) if number is not None and kind == "swing" else number
 
 
-def _limit_state(project: Project, limit: BaseLimit, row: Row) -> LimitState:
+def _limit_state(
+    project: Project, limit: BaseLimit, row: Row, reason: Callable[[Row | None], str | None]
+) -> LimitState:
     kind = kind_of(limit)
     judged = row["status"] != UNDECIDED
     value, allowed, margin = (in_shown_unit(kind, row[name]) for name in ("value", "allowed", "margin"))
@@ -120,13 +149,15 @@ def _limit_state(project: Project, limit: BaseLimit, row: Row) -> LimitState:
         station_m=finite(row.get("station_m")) if judged else None,
         side=_side(limit, row),
         why=limit.why,
+        reason=None if judged else reason(row) or reason(None),
     )
 
 
-def _unjudged(limit: BaseLimit) -> LimitState:
+def _unjudged(limit: BaseLimit, reason: str | None) -> LimitState:
     kind = kind_of(limit)
     nothing: dict[str, Any] = dict.fromkeys(("condition", "place", "value", "allowed", "utilisation", "margin"))
-    return LimitState(limit.id, kind, UNDECIDED, unit=UNITS[kind], clause=limit.clause, why=limit.why, **nothing)
+    nothing |= {"clause": limit.clause, "why": limit.why, "reason": reason}
+    return LimitState(limit.id, kind, UNDECIDED, unit=UNITS[kind], **nothing)
 
 
 def _side(limit: BaseLimit, row: Row) -> str:
@@ -189,11 +220,13 @@ def _specify(project: Project, row: Row | None) -> PullToSpecify | None:
         limit=limit,
         condition=condition,
         place=place,
+        edges=tuple(end for edge in row.get("edges", ()) if (end := _end(project, edge)) is not None),
     )
 
 
 def _reason(row: Row, used: float, limit: str | None, condition: str | None) -> str:
-    band = f"{force_text(row['least_pull_N'])} to {force_text(row['most_pull_N'])}"
+    (least, most), unit = forces_text(row["least_pull_N"], row["most_pull_N"])
+    band = f"{least} to {most} {unit}"
     if limit is None:
         return f"anywhere from {band}, no limit bounds it"
     worst = f"{100 * used:.1f} % of {limit} in {condition}"
@@ -220,50 +253,6 @@ def _price(project: Project, row: Row) -> Price:
 def _conflict(project: Project, row: Row) -> Conflict:
     limit, condition = _names(project, row)
     return Conflict(limit, condition, finite(row.get("needs_N")), str(row["side"]))
-
-
-def _relaxation(project: Project, row: Row) -> Relaxation:
-    kind, unit = _unit(project, row) if row["kind"] == "allowance" else ("", "m")
-    limit, support = row.get("limit"), row.get("support")
-    by, to = float(row["by"]), finite(row.get("to"))
-    if row["kind"] == "allowance":
-        change, key = _allowance_change(project, row["limit"], by, to)
-    else:
-        change, key, to = _support_change(project, row["kind"], row["support"], by, to)
-    fault = project.core_fault(key, "")
-    return Relaxation(
-        change=change,
-        by=in_shown_unit(kind, by) or 0.0,
-        unit=unit,
-        to=in_shown_unit(kind, to),
-        pull_N=finite(row.get("pull_N")),
-        limit=None if limit is None else project.limits[limit].id,
-        support=None if support is None else project.supports[support].name,
-        where=None if fault.file is None else f"{fault.file}:{fault.line}",
-    )
-
-
-def _allowance_change(project: Project, index: int, by: float, to: float | None) -> tuple[str, str]:
-    """Words and place of a changed allowance; a share is given too where the file asks for one."""
-    limit = project.limits[index]
-    key = next((name for name in ("least", "share", "most") if getattr(limit, name, None) is not None), "least")
-    share = getattr(limit, "share", None)
-    words = f"allowed value of {limit.id}"
-    if share is not None and to is not None and to != by:
-        words += f" (share = {math.ceil(1e4 * share * to / (to - by)) / 1e4:g})"
-    return words, f"limits[{index}].{key}"
-
-
-def _support_change(
-    project: Project, kind: str, index: int, by: float, to: float | None
-) -> tuple[str, str, float | None]:
-    """Words and place of a moved support; its new value is that of the key the file holds."""
-    support = project.supports[index]
-    if kind == "support_station":
-        return f"station of {support.name}", f"supports[{index}].station", to
-    if support.height_m is not None:
-        return f"height of {support.name}", f"supports[{index}].height", support.height_m + by
-    return f"elevation of {support.name}", f"supports[{index}].elevation", to
 
 
 def _curves(project: Project, curves: Row) -> tuple[UtilisationCurve, ...]:

@@ -121,8 +121,18 @@ def shown(text: str, most: int = SHOWN_LENGTH_MOST) -> str:
     >>> shown("x" * 100)[-3:]
     '...'
     """
-    cut = text if len(text) <= most else text[: most - 3] + "..."
-    return "".join(char if char.isprintable() else ascii(char)[1:-1] for char in cut)
+    return inert(text if len(text) <= most else text[: most - 3] + "...")
+
+
+def inert(text: str) -> str:
+    """Text with every character that a terminal might obey written out: control, format, line ends, lone surrogates.
+
+    >>> inert("red" + chr(27) + "[31m" + chr(0x202E))
+    'red\\\\x1b[31m\\\\u202e'
+    """
+    if text.isprintable():
+        return text
+    return "".join(char if char.isprintable() else ascii(char)[1:-1] for char in text)
 
 
 def described(value: object) -> str:
@@ -147,14 +157,15 @@ def described(value: object) -> str:
 def nearest(word: str, known: Iterable[str]) -> str | None:
     """The known word that `word` was most likely meant to be, or None.
 
-    >>> nearest("elevaton", ["station", "elevation"])
-    'elevation'
+    >>> nearest("elevaton", ["station", "elevation"]), nearest("tpo", ["to", "top"])
+    ('elevation', 'top')
     """
     words = list(known)
     folded = {other.casefold(): other for other in words}
     if word.casefold() in folded:
         return folded[word.casefold()]
-    found = difflib.get_close_matches(word[:200], words, n=1, cutoff=0.6)
+    swapped = [other for other in words if sorted(other) == sorted(word)]
+    found = swapped or difflib.get_close_matches(word[:200], words, n=1, cutoff=0.6)
     return found[0] if found else None
 
 

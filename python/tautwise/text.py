@@ -13,11 +13,12 @@ from typing import TYPE_CHECKING
 from tautwise.columns import Table, force_column, force_text, length_column, number_column, plural, text_column
 from tautwise.results_line import Equilibrium, SettleReport, SupportState
 from tautwise.strict import shown
+from tautwise.words import condition_words
 
 if TYPE_CHECKING:
     from tautwise.model import Project
-    from tautwise.tables import Condition
 
+GAP_IN_ROUNDING = 1e-14  # below it the two energies differ by rounding alone
 BLOWN_M = 5e-4  # blow-out below half a millimetre is not worth a column
 
 Row = tuple[float | str | None, ...]
@@ -101,33 +102,6 @@ def condition_text(found: Equilibrium, project: Project, ink: Ink) -> list[str]:
     return [*lines, "", f"  {_bracket_words(found)}"]
 
 
-def condition_words(condition: Condition) -> str:
-    """Temperature and loads of a condition, in short."""
-    words = [f"{condition.temperature_degC:.4g} degC"]
-    if condition.ice and condition.ice.thickness_m:
-        words.append(f"{1e3 * condition.ice.thickness_m:.4g} mm of ice")
-    if condition.wind and condition.wind.pressure_Pa:
-        words.append(f"wind of {condition.wind.pressure_Pa:.4g} Pa")
-    if condition.wind and condition.wind.speed_m_per_s:
-        words.append(f"wind of {condition.wind.speed_m_per_s:.4g} m/s")
-    if condition.resultant_addition_N_per_m:
-        words.append(f"{condition.resultant_addition_N_per_m:.4g} N/m added to the resultant")
-    if condition.loads:
-        words.append(plural(len(condition.loads), "load"))
-    return ", ".join(words)
-
-
-def rounded(value: float, decimals: int, *, up: bool) -> str:
-    """A number cut to decimals towards the safe side, so that what is printed still holds.
-
-    >>> rounded(14.2041, 2, up=True), rounded(22.8799, 2, up=False)
-    ('14.21', '22.87')
-    """
-    scale = 10.0**decimals
-    cut = (math.ceil if up else math.floor)(round(value * scale, 6)) / scale
-    return f"{cut:.{decimals}f}"
-
-
 def _strung_lines(report: SettleReport, project: Project) -> list[str]:
     strung = report.stringing
     pull = "to its natural lengths"
@@ -159,7 +133,15 @@ def _summary(ranked: Sequence[Equilibrium], project: Project, ink: Ink) -> list[
     if strength is None:
         del columns[3]
         rows = [(*row[:3], *row[4:]) for row in rows]
-    return [ink.strong("Conditions, highest tension first"), *Table(tuple(columns), tuple(rows)).lines()]
+    lines = [ink.strong("Conditions, highest tension first"), *Table(tuple(columns), tuple(rows)).lines()]
+    return [*lines, *_broken_lines(ranked, strength, ink)]
+
+
+def _broken_lines(ranked: Sequence[Equilibrium], strength: float | None, ink: Ink) -> list[str]:
+    broken = [each.name for each in ranked if strength is not None and (each.tension_max_N or 0.0) > strength]
+    if strength is None or not broken:
+        return []
+    return [ink.alarm(f"  Above its breaking strength of {force_text(strength)}: {', '.join(broken)}.")]
 
 
 def _deepest(found: Equilibrium) -> str | None:
@@ -170,9 +152,10 @@ def _span_lines(found: Equilibrium) -> list[str]:
     spans = found.spans
     blown = max(span.blowout_m for span in spans) >= BLOWN_M
     columns = [
-        text_column("span"),
-        length_column("length", [span.span_m for span in spans]),
-        force_column("pull", [span.horizontal_tension_N for span in spans]),
+        text_column("between"),
+        length_column("span", [span.span_m for span in spans]),
+        number_column("natural length", "m", 3),
+        force_column("horizontal", [span.horizontal_tension_N for span in spans]),
         force_column("tension", [span.tension_max_N for span in spans]),
         length_column("sag", [span.sag_m for span in spans]),
         length_column("small-deflection", [span.small_deflection_sag_m for span in spans]),
@@ -183,15 +166,15 @@ def _span_lines(found: Equilibrium) -> list[str]:
     ]
     rows: list[Row] = [
         (
-            s.name, s.span_m, s.horizontal_tension_N, s.tension_max_N, s.sag_m, s.small_deflection_sag_m,
-            s.small_deflection_off_percent, s.blowout_m,
+            s.name, s.span_m, s.natural_length_m, s.horizontal_tension_N, s.tension_max_N, s.sag_m,
+            s.small_deflection_sag_m, s.small_deflection_off_percent, s.blowout_m,
             s.low_point.station_m if s.low_point else None, s.low_point.elevation_m if s.low_point else None,
         )
         for s in spans
     ]  # fmt: skip
     if not blown:
-        del columns[7]
-        rows = [(*row[:7], *row[8:]) for row in rows]
+        del columns[8]
+        rows = [(*row[:8], *row[9:]) for row in rows]
     return Table(tuple(columns), tuple(rows)).lines()
 
 
@@ -229,7 +212,9 @@ def _bracket_words(found: Equilibrium) -> str:
     work = f"{found.elements} elements, {plural(found.evaluations, 'evaluation')}"
     if found.gap_relative is None:
         return work
-    return f"Proof: two energies enclose the exact one, {found.gap_relative:.1e} of it apart ({work})."
+    gap = abs(found.gap_relative)
+    apart = f"{gap:.1e}" if gap >= GAP_IN_ROUNDING else f"less than {GAP_IN_ROUNDING:.0e}"
+    return f"Proof: two energies enclose the exact one, {apart} of it apart ({work})."
 
 
 def joined(lines: Iterable[str]) -> str:

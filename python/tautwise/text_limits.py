@@ -6,10 +6,39 @@ import math
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from tautwise.columns import Column, Table, force_column, force_text, number_column, plural, text_column
-from tautwise.results_vet import FAILS, HOLDS, FileVerdict, LimitState, VetReport, human_unit, limit_table
-from tautwise.results_window import OPEN_ENDED, PullWindow, Relaxation, conflict_table, price_table
-from tautwise.text import Ink, caution, heading, next_steps, quoted, rounded
+from tautwise.columns import (
+    Column,
+    Table,
+    cut,
+    force_format,
+    force_text,
+    forces_text,
+    number_column,
+    plural,
+    text_column,
+)
+from tautwise.results_vet import (
+    FAILS,
+    HOLDS,
+    UNDECIDED,
+    FileVerdict,
+    LimitState,
+    VetReport,
+    human_unit,
+    limit_table,
+    shown_values,
+)
+from tautwise.results_window import (
+    AT_LEAST,
+    OPEN_ENDED,
+    PullToSpecify,
+    PullWindow,
+    Relaxation,
+    WindowEnd,
+    conflict_table,
+    price_table,
+)
+from tautwise.text import Ink, caution, heading, next_steps, quoted
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -21,14 +50,14 @@ def window_text(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     return [*heading(project, ink), *body, *caution(window.caution, ink)]
 
 
-def vet_text(report: VetReport, projects: Sequence[Project], ink: Ink, *, every: bool = False) -> list[str]:
+def vet_text(report: VetReport, projects: Sequence[Project], ink: Ink) -> list[str]:
     """Every limit, worst first, file by file; of several files the ones that fail come first."""
     pairs = sorted(zip(report.files, projects, strict=True), key=lambda pair: (pair[0].holds, -_worst_use(pair[0])))
     lines: list[str] = []
     if len(pairs) > 1:
         lines += [_files_head(report, ink), *_file_table([file for file, _ in pairs]).lines(), ""]
     for file, project in pairs:
-        lines += [*heading(project, ink), *_verdict_lines(file, ink, every=every), ""]
+        lines += [*heading(project, ink), *_verdict_lines(file, ink), ""]
     failing = [project for file, project in pairs if not file.holds]
     meant = quoted((failing or list(projects))[0].source or "FILE") if projects else "FILE"
     aim = "find the pulls that keep every limit" if failing else "see how far the pull may move"
@@ -48,13 +77,14 @@ def _open_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [_open_head(window, ink), "", *_end_table(window).lines(), *_second_looks(window)]
     if window.specify:
         lines += ["", *_specify_lines(window, ink)]
-    prices = price_table(window.prices)
+    prices = price_table(window)
     if prices.rows:
-        lines += ["", ink.strong("What moves the ends, pull for each metre"), *prices.lines()]
+        head = "What moves the ends, pull for each metre, until another limit takes over"
+        lines += ["", ink.strong(head), *prices.lines()]
     file = quoted(project.source or "FILE")
     if _is_open_ended(window):
         return [*lines, *next_steps([("add the limit that is missing, then", f"tautwise window {file}")], ink)]
-    pull = f'"{window.specify.horizontal_tension_N / 1e3:.4g} kN"' if window.specify else '"... kN"'
+    pull = f'"{_specified(window.specify)[0]}"' if window.specify else '"... kN"'
     steps = [
         ("judge every limit at this pull", f"tautwise vet {file} --pull {pull}"),
         ("see the line hang at this pull", f"tautwise settle {file} --pull {pull}"),
@@ -76,25 +106,29 @@ def _open_head(window: PullWindow, ink: Ink) -> str:
 
 
 def _stretch(low: float, high: float) -> str:
-    unit, divisor, decimals = human_unit("N", high)
-    return f"{rounded(low / divisor, decimals, up=True)} to {rounded(high / divisor, decimals, up=False)} {unit}"
+    unit, divisor, decimals = force_format([low, high])
+    return f"{cut(low / divisor, decimals, up=True)} to {cut(high / divisor, decimals, up=False)} {unit}"
 
 
 def _end_table(window: PullWindow) -> Table:
     ends = [(name, end) for name, end in (("lowest", window.low), ("highest", window.high)) if end]
-    unit, divisor, decimals = human_unit("N", max((end.horizontal_tension_N for _, end in ends), default=0.0))
+    unit, divisor, decimals = force_format(end.horizontal_tension_N for _, end in ends)
     columns = (
         text_column("end"),
         Column("pull", unit, 1.0, decimals),
         text_column("governed by"),
+        Column("value", decimals=0),
+        Column("allowed", decimals=0),
+        text_column("unit"),
         text_column("condition"),
         text_column("at"),
     )
     rows = tuple(
         (
             name,
-            rounded(end.horizontal_tension_N / divisor, decimals, up=name == "lowest"),
+            cut(end.horizontal_tension_N / divisor, decimals, up=name == "lowest"),
             end.limit or OPEN_ENDED,
+            *shown_values(end.unit, end.allowed, end.value, end.allowed),
             end.condition,
             end.place,
         )
@@ -127,16 +161,9 @@ def _specify_lines(window: PullWindow, ink: Ink) -> list[str]:
     best = window.specify
     if best is None:
         return []
-    band = "exactly"
-    if best.tolerance_percent:
-        band = f"+/- {best.tolerance_percent:g} % ({force_text(best.least_pull_N)} to {force_text(best.most_pull_N)})"
+    pull, band = _specified(best)
     word = "Of the pulls tried, the limits are used least at" if _is_open_ended(window) else "Specify"
-    head = f"{word} {force_text(best.horizontal_tension_N)} {band}, bare line at {best.temperature_degC:.4g} degC"
-    lines = [ink.strong(head)]
-    if best.limit:
-        place = f", {best.place}" if best.place else ""
-        use = f"{100.0 * best.worst_utilisation:.1f} %"
-        lines.append(f"  Most used over that range: {best.limit}, {use} ({best.condition}{place}).")
+    lines = [ink.strong(f"{word} {pull} {band}, bare line at {best.temperature_degC:.4g} degC"), *_edge_lines(best)]
     if _is_open_ended(window):
         lines.append(ink.alarm("  Specify none before the open-ended side has its limit."))
     if best.worst_utilisation > 1.0:
@@ -144,14 +171,41 @@ def _specify_lines(window: PullWindow, ink: Ink) -> list[str]:
     return lines
 
 
+def _specified(best: PullToSpecify) -> tuple[str, str]:
+    """The pull and the range that its tolerance leaves, with the same decimals."""
+    (pull, least, most), unit = forces_text(best.horizontal_tension_N, best.least_pull_N, best.most_pull_N)
+    if not best.tolerance_percent:
+        return f"{pull} {unit}", "exactly"
+    return f"{pull} {unit}", f"+/- {best.tolerance_percent:g} % ({least} to {most} {unit})"
+
+
+def _edge_lines(best: PullToSpecify) -> list[str]:
+    """What is used most at either edge of the range."""
+    edges = [edge for edge in best.edges if edge.limit and edge.utilisation is not None]
+    if not edges:
+        return []
+    if not best.tolerance_percent:
+        return [f"  Most used: {_edge_words(edges[0])}"]
+    pulls, unit = forces_text(*(edge.horizontal_tension_N for edge in edges))
+    rows = (f"    at {pull} {unit}  {_edge_words(edge)}" for pull, edge in zip(pulls, edges, strict=True))
+    return ["  Most used over that range:", *rows]
+
+
+def _edge_words(edge: WindowEnd) -> str:
+    place = f", {edge.place}" if edge.place else ""
+    return f"{edge.limit} {100.0 * (edge.utilisation or 0.0):.1f} % ({edge.condition}{place})"
+
+
 def _shut_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     low, high = window.searched_N
-    tried = f"from {force_text(low)} to {force_text(high)}"
+    (least, most), unit = forces_text(low, high)
+    tried = f"from {least} to {most} {unit}"
     lines = [
         ink.alarm("SHUT: no pull keeps every limit") + f" (tried {tried}, bare at {window.temperature_degC:.4g} degC)"
     ]
     if window.conflict:
-        lines += ["", ink.strong("These exclude one another"), *conflict_table(window.conflict).lines()]
+        table = conflict_table(window.conflict, [each.pull_N for each in window.relax])
+        lines += ["", ink.strong("These exclude one another"), *table.lines()]
     file = quoted(project.source or "FILE")
     if not window.relax:
         lines += ["", "No single change of a limit or a support was found that opens it."]
@@ -159,7 +213,8 @@ def _shut_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
             *lines,
             *next_steps([("see each limit at some pull", f'tautwise vet {file} --pull "{_between(window)}"')], ink),
         ]
-    lines += ["", ink.strong("Each of these changes alone opens it, if only just"), *_relax_table(window.relax).lines()]
+    head = "Choose one: each of these changes alone opens it, if only just"
+    lines += ["", ink.strong(head), *_relax_table(window).lines()]
     first = window.relax[0]
     place = f", {first.where}" if first.where else ""
     return [*lines, *next_steps([(f"change the {first.change}{place}, then", f"tautwise window {file}")], ink)]
@@ -171,35 +226,53 @@ def _between(window: PullWindow) -> str:
     return f"{math.exp(math.fsum(map(math.log, needs)) / len(needs)) / 1e3:.3g} kN"
 
 
-def _relax_table(relax: Sequence[Relaxation]) -> Table:
-    columns = (
+def _relax_table(window: PullWindow) -> Table:
+    relax = window.relax
+    unit, divisor, decimals = force_format(
+        [*(each.pull_N for each in relax), *(each.needs_N for each in window.conflict)]
+    )
+    columns = [
         text_column("change"),
         Column("by", decimals=0),
         Column("to", decimals=0),
         text_column("unit"),
-        force_column("then a pull of", [each.pull_N for each in relax]),
+        text_column("in the file"),
+        Column("then a pull near", unit, divisor, decimals),
         text_column("where"),
-    )
-    return Table(columns, tuple(_relax_row(each) for each in relax))
+    ]
+    rows = [_relax_row(each, _near(window, each, divisor, decimals)) for each in relax]
+    if all(row[4] is None or str(row[4]).rpartition(" ")[2] in (row[3], "%") or " " not in str(row[4]) for row in rows):
+        del columns[4]
+        rows = [(*row[:4], *row[5:]) for row in rows]
+    return Table(tuple(columns), tuple(rows))
 
 
-def _relax_row(each: Relaxation) -> tuple[float | str | None, ...]:
+def _relax_row(each: Relaxation, pull: str | None) -> tuple[float | str | None, ...]:
     unit, divisor, decimals = human_unit(each.unit, max(abs(each.to or 0.0), abs(each.by)))
     decimals = max(decimals, 3)
     up = each.by > 0.0
-    by = rounded(each.by / divisor, decimals, up=up)
-    to = None if each.to is None else rounded(each.to / divisor, decimals, up=up)
-    return (each.change, f"+{by}" if up else by, to, unit, each.pull_N, each.where)
+    by = cut(each.by / divisor, decimals, up=up)
+    to = None if each.to is None else cut(each.to / divisor, decimals, up=up)
+    return (each.change, f"+{by}" if up else by, to, unit, each.written, pull, each.where)
 
 
-def _verdict_lines(file: FileVerdict, ink: Ink, *, every: bool) -> list[str]:
+def _near(window: PullWindow, each: Relaxation, divisor: float, decimals: int) -> str | None:
+    """The pull after a change; where a limit is eased, the other one bounds it, and decides how it is rounded."""
+    if each.pull_N is None:
+        return None
+    others = [one for one in window.conflict if one.limit != each.limit and one.needs_N is not None]
+    if each.limit is None or not others:
+        return f"{each.pull_N / divisor:.{decimals}f}"
+    bound = min(others, key=lambda one: abs((one.needs_N or 0.0) - (each.pull_N or 0.0)))
+    return cut(each.pull_N / divisor, decimals, up=bound.side == AT_LEAST)
+
+
+def _verdict_lines(file: FileVerdict, ink: Ink) -> list[str]:
     lines = [_verdict_head(file, ink)]
     if not file.limits:
         return lines
     lines += ["", *(_accented(line, ink) for line in limit_table(file.limits).lines())]
-    if not every:
-        lines += ["", *_governing_lines(file.limits[0])]
-    return lines
+    return [*lines, "", *_governing_lines(file.limits)]
 
 
 def _accented(line: str, ink: Ink) -> str:
@@ -208,30 +281,44 @@ def _accented(line: str, ink: Ink) -> str:
 
 
 def _verdict_head(file: FileVerdict, ink: Ink) -> str:
-    pull = "" if file.pull_N is None else f" at a pull of {force_text(file.pull_N)}"
+    pull = "" if file.pull_N is None else f"at a pull of {force_text(file.pull_N)}"
     if not file.limits:
-        return ink.strong(f"No limit to judge{pull}: add [[limit]] tables")
-    wrong = sum(limit.status != HOLDS for limit in file.limits)
-    count = plural(len(file.limits), "limit")
-    if not wrong:
-        return ink.strong(f"HOLDS: {count} kept{pull}")
-    word = "FAILS" if any(limit.status == FAILS for limit in file.limits) else "UNDECIDED"
-    return ink.alarm(f"{word}: {wrong} of {count} not kept{pull}")
+        return ink.strong(f"No limit to judge {pull}".rstrip() + ": add [[limit]] tables")
+    limits = {limit.id for limit in file.limits}
+    count, rows = plural(len(limits), "limit"), len(file.limits)
+    if file.holds:
+        every = f" in all {rows} rows," if rows > len(limits) else ""
+        return ink.strong(f"HOLDS: {count} kept{every} {pull}".rstrip(", "))
+    failing = [limit.id for limit in file.limits if limit.status == FAILS]
+    if not failing:
+        unjudged = {limit.id for limit in file.limits if limit.status != HOLDS}
+        return ink.alarm(f"UNDECIDED: {len(unjudged)} of {count} could not be judged {pull}".rstrip())
+    every = f" ({len(failing)} of {rows} rows)," if rows > len(limits) else ""
+    return ink.alarm(f"FAILS: {len(set(failing))} of {count} not kept{every} {pull}".rstrip(", "))
 
 
-def _governing_lines(worst: LimitState) -> list[str]:
-    place = f", {worst.place}" if worst.place else ""
-    used = "" if worst.utilisation is None else f", {100.0 * worst.utilisation:.1f} % used"
-    lines = [f"Governing: {worst.id} in {worst.condition or 'no condition'}{place}{used}."]
-    notes = (("Where it stands", worst.clause), ("Why", worst.why))
-    return [*lines, *(f"  {head}: {' '.join(text.split())}" for head, text in notes if text)]
+def _governing_lines(limits: Sequence[LimitState]) -> list[str]:
+    worst = limits[0]
+    lines = []
+    if worst.status != UNDECIDED:
+        place = f", {worst.place}" if worst.place else ""
+        used = "" if worst.utilisation is None else f", {100.0 * worst.utilisation:.1f} % used"
+        lines = [f"Governing: {worst.id} in {worst.condition or 'no condition'}{place}{used}."]
+        notes = (("Where it stands", worst.clause), ("Why", worst.why))
+        lines += [f"  {head}: {' '.join(text.split())}" for head, text in notes if text]
+    reasons = dict.fromkeys(limit.reason for limit in limits if limit.status == UNDECIDED and limit.reason)
+    return [*lines, *(f"Undecided: {reason}" for reason in reasons)]
 
 
 def _files_head(report: VetReport, ink: Ink) -> str:
-    failing = sum(not file.holds for file in report.files)
+    failing = sum(any(limit.status == FAILS for limit in file.limits) for file in report.files)
+    unjudged = sum(not file.holds for file in report.files) - failing
     count = plural(len(report.files), "file")
     if failing:
-        return ink.alarm(f"{failing} of {count} with limits that do not hold")
+        more = f", {unjudged} with limits that could not be judged" if unjudged else ""
+        return ink.alarm(f"{failing} of {count} with limits that do not hold{more}")
+    if unjudged:
+        return ink.alarm(f"{unjudged} of {count} with limits that could not be judged")
     return ink.strong(f"{count}, every limit holds")
 
 
@@ -248,7 +335,9 @@ def _file_table(files: Sequence[FileVerdict]) -> Table:
         worst = file.limits[0] if file.limits else None
         word = "holds" if file.holds else (worst.status.upper() if worst else "")
         used = None if worst is None or worst.utilisation is None else 100.0 * worst.utilisation
-        rows.append((file.file, word, used, worst.id if worst else None, worst.condition if worst else None))
+        governs = worst if worst and worst.status != UNDECIDED else None
+        names = (governs.id, governs.condition) if governs else (None, None)
+        rows.append((file.file, word, used, *names))
     return Table(columns, tuple(rows))
 
 

@@ -161,7 +161,7 @@ def read_unit(text: str) -> Unit:
 def _from_text(text: str, wanted: Dimension) -> float:
     if len(text) > QUANTITY_LENGTH_MOST:
         raise Refused(f"a text of {len(text)} characters where {wanted.words} is needed")
-    number_text, unit_text = _number_and_unit(text.strip())
+    number_text, unit_text = number_and_unit(text.strip())
     number = exact_number(number_text)
     if not unit_text:
         if wanted.unit == "1":
@@ -177,7 +177,12 @@ def _from_text(text: str, wanted: Dimension) -> float:
     return nearest_double(_celsius(number, unit.single))
 
 
-def _number_and_unit(text: str) -> tuple[str, str]:
+def number_and_unit(text: str) -> tuple[str, str]:
+    """The number and the unit of a quantity, as written.
+
+    >>> number_and_unit("12.5 kN")
+    ('12.5', 'kN')
+    """
     if not text:
         raise Refused("an empty text")
     if re.match(r"[+-]?(?:nan|inf|infinity)\b", text, re.IGNORECASE):

@@ -1,0 +1,46 @@
+"""What a settled line shows that is hardly meant: above its strength, a loop, nearly slack."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+from tautwise.columns import forces_text
+from tautwise.outcomes import slack_words
+
+if TYPE_CHECKING:
+    from tautwise.model import Project
+    from tautwise.results import Equilibrium
+
+
+def findings_of(project: Project, conditions: Sequence[Equilibrium], pull: float | None) -> tuple[str, ...]:
+    """One line for each thing that is hardly meant, with the file's name in front; `pull` in N as it was asked for."""
+    loops = [text for each in conditions for text in _loops(each)]
+    slack = slack_words(project, pull)
+    found = [*_broken(project, conditions), *loops, *([slack] if slack else [])]
+    head = f"{project.source}: " if project.source else ""
+    return tuple(head + text for text in found)
+
+
+def slack_finding(project: Project, pull: float | None) -> tuple[str, ...]:
+    """That a pull in N leaves the line nearly slack, where it does."""
+    return tuple(text for text in findings_of(project, (), pull))
+
+
+def _broken(project: Project, conditions: Sequence[Equilibrium]) -> list[str]:
+    strength = project.line.breaking_strength_N
+    found = []
+    for each in conditions:
+        if strength is not None and (each.tension_max_N or 0.0) > strength:
+            (tension, allowed), unit = forces_text(each.tension_max_N or 0.0, strength)
+            found.append(f"the line is above its breaking strength in {each.name!r}: {tension} of {allowed} {unit}")
+    return found
+
+
+def _loops(line: Equilibrium) -> list[str]:
+    """Spans that hang deeper than they are long."""
+    return [
+        f"{span.name} hangs {span.sag_m:.4g} m deep over {span.span_m:.4g} m in {line.name!r}; is the line this long?"
+        for span in line.spans
+        if span.sag_m > span.span_m
+    ]
