@@ -13,7 +13,7 @@ static const double link_excess_most = 1e-9;
 static const double gap_below_most = 1e-9; /* a bracket turned over by more than this and rounding is no bracket */
 static const double rounding_of_strain = 16.0 * DBL_EPSILON;
 static const double worth_refining = 0.9; /* a finer mesh that leaves more of the gap than this did not help */
-enum { HALVINGS_MOST = 40, STALL_EVALUATIONS = 12, STALL_STEPS = 3, STALL_MESHES = 8 };
+enum { GAIN_ROUNDINGS = 16, HALVINGS_MOST = 40, STALL_EVALUATIONS = 12, STALL_STEPS = 3, STALL_MESHES = 8 };
 
 /* One mesh at work. */
 typedef struct settle_run {
@@ -34,6 +34,7 @@ typedef struct settle_run {
     double start_J;           /* of the optimiser */
     double mark_J;            /* best when it last gained one per cent of all that it has gained */
     size_t since_mark;        /* evaluations */
+    int at_rounding;          /* what is left to gain, |g_y|^2 / 2, is rounding of the energy */
     double gap_least;         /* relative, of all meshes so far; infinity at first */
     size_t gap_stalls;        /* meshes in a row that did not lower it */
     tw_status stop;           /* why the optimiser was stopped; TW_OK: it was not */
@@ -130,6 +131,23 @@ static void mark_progress(settle_run *run)
     }
 }
 
+static int whitened_finished(void *data)
+{
+    const settle_run *run = data;
+    return run->stop != TW_OK || run->at_rounding || run->since_mark >= STALL_EVALUATIONS
+           || is_balanced(run, &run->state);
+}
+
+/* In whitened variables the Hessian is the identity: a step along -g_y gains |g_y|^2 / 2. */
+static double gain_left(const settle_run *run, const double *gradient)
+{
+    double square = 0.0;
+    for (size_t i = 0; i < run->count; i++) {
+        square += gradient[i] * gradient[i];
+    }
+    return 0.5 * square;
+}
+
 /* The whitened objective: y -> x = L^-T y and back, g_y = L^-1 g_x. */
 static double whitened_objective(void *data, const double *y, double *gradient)
 {
@@ -138,7 +156,7 @@ static double whitened_objective(void *data, const double *y, double *gradient)
     if (!is_interrupted(run) && run->out->evaluations >= run->options->evaluations_most) {
         run->stop = TW_EVALUATION_LIMIT;
     }
-    if (run->stop != TW_OK) {
+    if (whitened_finished(run)) { /* NLopt comes back a few times after it was told to stop */
         memset(gradient, 0, bytes);
         return HUGE_VAL;
     }
@@ -152,17 +170,12 @@ static double whitened_objective(void *data, const double *y, double *gradient)
         return HUGE_VAL;
     }
     tw_blocktri_forward(run->matrix, gradient);
+    run->at_rounding = gain_left(run, gradient) <= GAIN_ROUNDINGS * DBL_EPSILON * fabs(state.potential_J);
     if (state.potential_J < run->state.potential_J || is_balanced(run, &state)) {
         keep_trial(run, &state);
     }
     mark_progress(run);
     return state.potential_J;
-}
-
-static int whitened_finished(void *data)
-{
-    const settle_run *run = data;
-    return run->stop != TW_OK || run->since_mark >= STALL_EVALUATIONS || is_balanced(run, &run->state);
 }
 
 /* Optimiser from the exact line's shape. Its own claims are not used: whitened_objective kept the best point. */
@@ -183,6 +196,7 @@ static tw_status minimise(settle_run *run)
     memset(run->step, 0, run->count * sizeof(double));
     run->start_J = run->mark_J = run->state.potential_J;
     run->since_mark = 0;
+    run->at_rounding = 0;
     status = run->optimiser(&problem, run->step);
     return status < 0 ? status : TW_OK;
 }
@@ -343,7 +357,7 @@ static int is_too_coarse(settle_run *run, size_t per_span)
 {
     tw_energy_parts parts = tw_energy_bound(run->energy, run->best);
     double gap = relative_gap(run->section, &parts);
-    return gap > 2.0 * run->options->gap_relative && may_refine(run, per_span, gap);
+    return gap > 1.01 * run->options->gap_relative && may_refine(run, per_span, gap);
 }
 
 /* One mesh from opening to closing; 1 when a finer one is to follow. Once there is a result, an interruption leaves it. */
