@@ -188,7 +188,9 @@ int tw_fields_read(PyObject *dict, field_table table, key_list others, void *out
         if (value == Py_None) {
             number = NAN;
         } else if (value) {
+            Py_INCREF(value); /* its __float__ may change the dict */
             number = PyFloat_AsDouble(value);
+            Py_DECREF(value);
             if (number == -1.0 && PyErr_Occurred()) {
                 return -1;
             }

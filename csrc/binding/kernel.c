@@ -1,6 +1,7 @@
 /* kernel: the array functions settle_spans and natural_length, as gufuncs over scalar core slots. */
 #include "python_api.h"
 
+#include <fenv.h>
 #include <math.h>
 #include <numpy/arrayobject.h>
 #include <numpy/ufuncobject.h>
@@ -53,6 +54,7 @@ static void settle_loop(char **args, const npy_intp *dimensions, const npy_intp 
         }
         output_status(args, steps, INPUTS + SETTLE_OUTPUTS - 1, i, status);
     }
+    feclearexcept(FE_ALL_EXCEPT); /* the items' statuses say it, not a warning */
 }
 
 static void length_loop(char **args, const npy_intp *dimensions, const npy_intp *steps, void *NPY_UNUSED(data))
@@ -64,6 +66,7 @@ static void length_loop(char **args, const npy_intp *dimensions, const npy_intp 
         output(args, steps, INPUTS, i, status == TW_OK ? length : (double)NAN);
         output_status(args, steps, INPUTS + 1, i, status);
     }
+    feclearexcept(FE_ALL_EXCEPT);
 }
 
 static PyUFuncGenericFunction settle_loops[] = {settle_loop};

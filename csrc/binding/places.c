@@ -76,7 +76,9 @@ PyObject *tw_places_along(const tw_section *section, size_t points)
     places out = {0};
     int failed = places_create((npy_intp)(section->span_count * points + 1), &out) < 0;
     if (!failed) {
+        Py_BEGIN_ALLOW_THREADS
         shape_points(section, points, &out);
+        Py_END_ALLOW_THREADS
     }
     return places_dict(&out, failed);
 }
@@ -86,7 +88,9 @@ PyObject *tw_places_at(const tw_section *section, const double *stations, size_t
     places out = {0};
     int failed = places_create((npy_intp)count, &out) < 0;
     if (!failed) {
+        Py_BEGIN_ALLOW_THREADS
         station_points(section, stations, count, &out);
+        Py_END_ALLOW_THREADS
     }
     return places_dict(&out, failed);
 }

@@ -39,25 +39,28 @@ void tw_problem_free(problem *in)
     memset(in, 0, sizeof *in);
 }
 
-/* dict[key] as a list or tuple (NULL and count 0 where missing), or -1 and raises. */
+/* dict[key] as an owned tuple (NULL and count 0 where missing), so that what it holds stays while numbers are taken out of
+ * it; -1 and raises. */
 static int rows_of(PyObject *dict, const char *key, PyObject **rows, size_t *count)
 {
-    *rows = tw_fields_get(dict, key);
+    PyObject *given = tw_fields_get(dict, key);
+    *rows = NULL;
     *count = 0;
-    if (!*rows) {
+    if (!given) {
         return 0;
     }
-    if (!PyList_Check(*rows) && !PyTuple_Check(*rows)) {
+    if (!PyList_Check(given) && !PyTuple_Check(given)) {
         PyErr_Format(PyExc_TypeError, "%s: expected a list", key);
         return -1;
     }
-    *count = (size_t)PySequence_Fast_GET_SIZE(*rows);
-    return 0;
+    *rows = PySequence_Tuple(given);
+    *count = *rows ? (size_t)PyTuple_GET_SIZE(*rows) : 0;
+    return *rows ? 0 : -1;
 }
 
 static PyObject *row_at(PyObject *rows, size_t index)
 {
-    return PySequence_Fast_GET_ITEM(rows, (Py_ssize_t)index);
+    return PyTuple_GET_ITEM(rows, (Py_ssize_t)index);
 }
 
 /* Zeroed room for count rows, at least one. */
@@ -83,23 +86,41 @@ static int read_index(PyObject *dict, const char *key, size_t *index)
     return 0;
 }
 
-static int read_supports(PyObject *dict, problem *out)
+/* Reads one row of a table into the problem. */
+typedef int (*row_reader)(PyObject *row, size_t index, problem *out);
+
+/* dict[key] into zeroed room, row by row; the array and its count are set before the first row is read. */
+static int read_table(PyObject *dict, const char *key, size_t size, void **array, size_t *count, row_reader read,
+                      problem *out)
 {
     PyObject *rows;
-    size_t count;
-    if (rows_of(dict, "supports", &rows, &count) < 0 || !(out->supports = room(count, sizeof(tw_support)))) {
+    int result = rows_of(dict, key, &rows, count);
+    if (result == 0) {
+        *array = room(*count, size);
+        result = *array ? 0 : -1;
+    }
+    for (size_t i = 0; result == 0 && i < *count; i++) {
+        result = read(row_at(rows, i), i, out);
+    }
+    Py_XDECREF(rows);
+    return result;
+}
+
+static int read_support(PyObject *row, size_t index, problem *out)
+{
+    if (tw_fields_read(row, tw_support_table, support_keys, &out->supports[index]) < 0) {
         return -1;
     }
-    for (size_t j = 0; j < count; j++) {
-        PyObject *row = row_at(rows, j);
-        if (tw_fields_read(row, tw_support_table, support_keys, &out->supports[j]) < 0) {
-            return -1;
-        }
-        int hold = tw_fields_choice(row, "hold", hold_names, TW_HOLD_ANCHOR);
-        if (hold < 0) {
-            return -1;
-        }
-        out->supports[j].hold = (tw_hold)hold;
+    int hold = tw_fields_choice(row, "hold", hold_names, TW_HOLD_ANCHOR);
+    out->supports[index].hold = hold < 0 ? TW_HOLD_ANCHOR : (tw_hold)hold;
+    return hold < 0 ? -1 : 0;
+}
+
+static int read_supports(PyObject *dict, problem *out)
+{
+    size_t count;
+    if (read_table(dict, "supports", sizeof(tw_support), (void **)&out->supports, &count, read_support, out) < 0) {
+        return -1;
     }
     out->project.supports = out->supports;
     out->project.support_count = count;
@@ -124,14 +145,12 @@ static int read_ground(PyObject *dict, problem *out)
 {
     static const char *const keys[] = {"station_m", "elevation_m", NULL};
     static const field_table none = {NULL, 0};
-    PyObject *ground = tw_fields_get(dict, "ground");
+    PyObject *ground = Py_XNewRef(tw_fields_get(dict, "ground"));
     if (!ground) {
         return 0;
     }
-    if (tw_fields_read(ground, none, keys, NULL) < 0) {
-        return -1;
-    }
-    PyArrayObject *station = vector_of(ground, "station_m");
+    int known = tw_fields_read(ground, none, keys, NULL) == 0;
+    PyArrayObject *station = known ? vector_of(ground, "station_m") : NULL;
     PyArrayObject *elevation = station ? vector_of(ground, "elevation_m") : NULL;
     int result = -1;
     if (elevation) {
@@ -149,24 +168,41 @@ static int read_ground(PyObject *dict, problem *out)
     }
     Py_XDECREF(station);
     Py_XDECREF(elevation);
+    Py_DECREF(ground);
     return result;
+}
+
+static int read_crossing(PyObject *row, size_t index, problem *out)
+{
+    return tw_fields_read(row, tw_crossing_table, NULL, &out->crossings[index]);
 }
 
 static int read_crossings(PyObject *dict, problem *out)
 {
-    PyObject *rows;
     size_t count;
-    if (rows_of(dict, "crossings", &rows, &count) < 0 || !(out->crossings = room(count, sizeof(tw_crossing)))) {
+    if (read_table(dict, "crossings", sizeof(tw_crossing), (void **)&out->crossings, &count, read_crossing, out) < 0) {
         return -1;
-    }
-    for (size_t k = 0; k < count; k++) {
-        if (tw_fields_read(row_at(rows, k), tw_crossing_table, NULL, &out->crossings[k]) < 0) {
-            return -1;
-        }
     }
     out->project.crossings = out->crossings;
     out->project.crossing_count = count;
     return 0;
+}
+
+/* dict["vector"]: three numbers. */
+static int read_vector(PyObject *row, double vector[3])
+{
+    PyObject *given = tw_fields_get(row, "vector");
+    PyObject *numbers = given ? PySequence_Tuple(given) : NULL;
+    int result = numbers && PyTuple_GET_SIZE(numbers) == 3 ? 0 : -1;
+    for (int i = 0; result == 0 && i < 3; i++) {
+        vector[i] = PyFloat_AsDouble(PyTuple_GET_ITEM(numbers, i));
+        result = PyErr_Occurred() ? -1 : 0;
+    }
+    Py_XDECREF(numbers);
+    if (result < 0 && !PyErr_Occurred()) {
+        PyErr_SetString(PyExc_ValueError, "vector: expected three numbers");
+    }
+    return result;
 }
 
 static int read_load(PyObject *row, tw_load *load)
@@ -178,85 +214,73 @@ static int read_load(PyObject *row, tw_load *load)
     int frame = tw_fields_choice(row, "frame", frame_names, TW_FRAME_SPAN);
     PyObject *point = tw_fields_get(row, "is_point");
     int is_point = point ? PyObject_IsTrue(point) : 0;
-    PyObject *vector = tw_fields_get(row, "vector");
     if (place < 0 || frame < 0 || is_point < 0) {
         return -1;
     }
     load->place = (tw_place)place;
     load->frame = (tw_frame)frame;
     load->is_point = is_point;
-    return vector && PyArg_ParseTuple(vector, "ddd;vector takes three numbers", &load->vector[0], &load->vector[1],
-                                      &load->vector[2])
-               ? 0
-               : (PyErr_Occurred() ? -1 : (PyErr_SetString(PyExc_ValueError, "a load needs a vector"), -1));
+    return read_vector(row, load->vector);
 }
 
-static int count_loads(PyObject *conditions, size_t count, size_t *total)
+/* The loads of a condition go behind those already read. */
+static int read_loads(PyObject *row, tw_condition *condition, problem *out)
 {
-    *total = 0;
-    for (size_t c = 0; c < count; c++) {
-        PyObject *rows;
-        size_t loads;
-        PyObject *row = row_at(conditions, c);
-        if (!PyDict_Check(row)) {
-            PyErr_SetString(PyExc_TypeError, "conditions: expected dicts");
-            return -1;
-        }
-        if (rows_of(row, "loads", &rows, &loads) < 0) {
-            return -1;
-        }
-        *total += loads;
+    PyObject *rows;
+    size_t count, before = out->project.load_count;
+    int result = rows_of(row, "loads", &rows, &count);
+    condition->load_first = before;
+    condition->load_count = count;
+    if (result == 0 && count > 0) {
+        tw_load *grown = PyMem_Realloc(out->loads, (before + count) * sizeof(tw_load));
+        result = grown ? 0 : (PyErr_NoMemory(), -1);
+        out->loads = grown ? grown : out->loads;
     }
-    return 0;
+    for (size_t i = 0; result == 0 && i < count; i++) {
+        tw_load load = {0};
+        result = read_load(row_at(rows, i), &load);
+        out->loads[before + i] = load;
+        out->project.load_count += result == 0;
+    }
+    Py_XDECREF(rows);
+    return result;
+}
+
+static int read_condition(PyObject *row, size_t index, problem *out)
+{
+    if (tw_fields_read(row, tw_condition_table, condition_keys, &out->conditions[index]) < 0) {
+        return -1;
+    }
+    return read_loads(row, &out->conditions[index], out);
 }
 
 static int read_conditions(PyObject *dict, problem *out)
 {
-    PyObject *rows, *load_rows;
-    size_t count, total, loads, next = 0;
-    if (rows_of(dict, "conditions", &rows, &count) < 0 || count_loads(rows, count, &total) < 0
-        || !(out->conditions = room(count, sizeof(tw_condition))) || !(out->loads = room(total, sizeof(tw_load)))) {
+    size_t count;
+    if (read_table(dict, "conditions", sizeof(tw_condition), (void **)&out->conditions, &count, read_condition, out) < 0) {
         return -1;
-    }
-    for (size_t c = 0; c < count; c++) {
-        PyObject *row = row_at(rows, c);
-        tw_condition *condition = &out->conditions[c];
-        if (tw_fields_read(row, tw_condition_table, condition_keys, condition) < 0
-            || rows_of(row, "loads", &load_rows, &loads) < 0) {
-            return -1;
-        }
-        condition->load_first = next;
-        condition->load_count = loads;
-        for (size_t i = 0; i < loads; i++) {
-            if (read_load(row_at(load_rows, i), &out->loads[next++]) < 0) {
-                return -1;
-            }
-        }
     }
     out->project.conditions = out->conditions;
     out->project.condition_count = count;
     out->project.loads = out->loads;
-    out->project.load_count = total;
     return 0;
+}
+
+static int read_mark(PyObject *row, size_t index, problem *out)
+{
+    if (tw_fields_read(row, tw_mark_table, mark_keys, &out->marks[index]) < 0) {
+        return -1;
+    }
+    int place = tw_fields_choice(row, "place", place_names, TW_PLACE_STATION);
+    out->marks[index].place = place < 0 ? TW_PLACE_STATION : (tw_place)place;
+    return place < 0 ? -1 : 0;
 }
 
 static int read_marks(PyObject *dict, problem *out)
 {
-    PyObject *rows;
     size_t count;
-    if (rows_of(dict, "marks", &rows, &count) < 0 || !(out->marks = room(count, sizeof(tw_mark)))) {
+    if (read_table(dict, "marks", sizeof(tw_mark), (void **)&out->marks, &count, read_mark, out) < 0) {
         return -1;
-    }
-    for (size_t i = 0; i < count; i++) {
-        PyObject *row = row_at(rows, i);
-        if (tw_fields_read(row, tw_mark_table, mark_keys, &out->marks[i]) < 0) {
-            return -1;
-        }
-        int place = tw_fields_choice(row, "place", place_names, TW_PLACE_STATION);
-        if (place < 0) {
-            return -1;
-        }
-        out->marks[i].place = (tw_place)place;
     }
     out->project.marks = out->marks;
     out->project.mark_count = count;
@@ -268,27 +292,21 @@ static int read_flags(PyObject *row, const char *key, unsigned char *flags, size
 {
     PyObject *list;
     size_t given;
-    if (rows_of(row, key, &list, &given) < 0) {
-        return -1;
-    }
-    if (!list) {
-        memset(flags, 1, count);
-        return 0;
-    }
-    if (given != count) {
+    int result = rows_of(row, key, &list, &given);
+    if (result == 0 && list && given != count) {
         PyErr_Format(PyExc_ValueError, "%s: expected %zu entries, not %zu", key, count, given);
-        return -1;
+        result = -1;
     }
-    for (size_t i = 0; i < count; i++) {
-        int truth = PyObject_IsTrue(row_at(list, i));
-        if (truth < 0) {
-            return -1;
-        }
-        flags[i] = (unsigned char)truth;
+    for (size_t i = 0; result == 0 && i < count; i++) {
+        int truth = list ? PyObject_IsTrue(row_at(list, i)) : 1;
+        result = truth < 0 ? -1 : 0;
+        flags[i] = (unsigned char)(truth > 0);
     }
-    return 0;
+    Py_XDECREF(list);
+    return result;
 }
 
+/* The tables of truths grow with the limits, row by row. */
 static int read_limit(PyObject *row, size_t index, problem *out)
 {
     tw_limit *limit = &out->limits[index];
@@ -303,6 +321,14 @@ static int read_limit(PyObject *row, size_t index, problem *out)
     }
     limit->kind = (tw_limit_kind)kind;
     limit->direction = (tw_direction)direction;
+    unsigned char *applies = PyMem_Realloc(out->applies, (index + 1) * conditions + 1);
+    out->applies = applies ? applies : out->applies;
+    unsigned char *covers = PyMem_Realloc(out->covers, (index + 1) * supports + 1);
+    out->covers = covers ? covers : out->covers;
+    if (!applies || !covers) {
+        PyErr_NoMemory();
+        return -1;
+    }
     if (read_flags(row, "applies", out->applies + index * conditions, conditions) < 0) {
         return -1;
     }
@@ -311,17 +337,9 @@ static int read_limit(PyObject *row, size_t index, problem *out)
 
 static int read_limits(PyObject *dict, problem *out)
 {
-    PyObject *rows;
     size_t count;
-    if (rows_of(dict, "limits", &rows, &count) < 0 || !(out->limits = room(count, sizeof(tw_limit)))
-        || !(out->applies = room(count * out->project.condition_count, 1))
-        || !(out->covers = room(count * out->project.support_count, 1))) {
+    if (read_table(dict, "limits", sizeof(tw_limit), (void **)&out->limits, &count, read_limit, out) < 0) {
         return -1;
-    }
-    for (size_t i = 0; i < count; i++) {
-        if (read_limit(row_at(rows, i), i, out) < 0) {
-            return -1;
-        }
     }
     out->project.limits = out->limits;
     out->project.limit_count = count;
@@ -348,14 +366,9 @@ static int read_lengths(PyObject *row, problem *out)
     return out->lengths ? 0 : -1;
 }
 
-static int read_stringing(PyObject *dict, problem *out)
+static int read_rule(PyObject *row, problem *out)
 {
-    PyObject *row = tw_fields_get(dict, "stringing");
     tw_stringing *stringing = &out->project.stringing;
-    if (!row) {
-        PyErr_SetString(PyExc_ValueError, "stringing is missing");
-        return -1;
-    }
     if (tw_fields_read(row, tw_stringing_table, stringing_keys, stringing) < 0
         || read_index(row, "index", &stringing->index) < 0) {
         return -1;
@@ -366,6 +379,24 @@ static int read_stringing(PyObject *dict, problem *out)
     }
     stringing->rule = (tw_stringing_rule)rule;
     return rule == TW_STRING_SPAN_LENGTHS ? read_lengths(row, out) : 0;
+}
+
+static int read_line(PyObject *row, problem *out)
+{
+    return tw_fields_read(row, tw_line_table, NULL, &out->project.line);
+}
+
+/* dict[key], held while it is read; -1 and raises, also where it is missing. */
+static int read_part(PyObject *dict, const char *key, int (*read)(PyObject *, problem *), problem *out)
+{
+    PyObject *part = Py_XNewRef(tw_fields_get(dict, key));
+    if (!part) {
+        PyErr_Format(PyExc_ValueError, "%s is missing", key);
+        return -1;
+    }
+    int result = read(part, out);
+    Py_DECREF(part);
+    return result;
 }
 
 static int set_text(PyObject *object, const char *name, PyObject *text)
@@ -398,12 +429,7 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
     if (tw_fields_read(dict, none, problem_keys, NULL) < 0) {
         return -1;
     }
-    PyObject *line = tw_fields_get(dict, "line");
-    if (!line) {
-        PyErr_SetString(PyExc_ValueError, "line is missing");
-        return -1;
-    }
-    if (tw_fields_read(line, tw_line_table, NULL, &out->project.line) < 0 || read_supports(dict, out) < 0) {
+    if (read_part(dict, "line", read_line, out) < 0 || read_supports(dict, out) < 0) {
         return -1;
     }
     if (out->project.support_count < 2) {
@@ -411,7 +437,8 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
         return -1;
     }
     if (read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
-        || read_marks(dict, out) < 0 || read_limits(dict, out) < 0 || read_stringing(dict, out) < 0) {
+        || read_marks(dict, out) < 0 || read_limits(dict, out) < 0
+        || read_part(dict, "stringing", read_rule, out) < 0) {
         return -1;
     }
     if (tw_check_project(&out->project, &fault) != TW_OK) {

@@ -70,7 +70,7 @@ static void project_dealloc(PyObject *object)
     Py_DECREF(type);
 }
 
-/* Takes the argument `name` out of a copy of the keywords; the rest are options. 0, or -1 and raises. */
+/* Takes `pull` out of a copy of the keywords; the rest are options. 0, or -1 and raises. */
 static int split_keywords(project_object *self, PyObject *keywords, double *pull, tw_options *options)
 {
     PyObject *rest = keywords ? PyDict_Copy(keywords) : PyDict_New();
@@ -160,15 +160,25 @@ static PyObject *project_string(PyObject *object, PyObject *args, PyObject *keyw
     return result;
 }
 
+/* Rows of plain doubles, all NaN: what is not reported is no number. */
+static void *nan_rows(size_t count, size_t size)
+{
+    double *rows = PyMem_Calloc(count + 1, size);
+    for (size_t i = 0; rows && i < count * size / sizeof(double); i++) {
+        rows[i] = NAN;
+    }
+    return rows;
+}
+
 /* Room for everything a settled condition reports. */
 static int settled_room(const tw_project *project, size_t condition, tw_settled *out)
 {
     *out = (tw_settled){.status = TW_NOT_SETTLED, .energy_J = NAN, .energy_lower_J = NAN, .gap_J = NAN,
                         .gap_relative = NAN, .residual_N = NAN, .closing_m = NAN};
-    out->spans = PyMem_Calloc(project->support_count - 1, sizeof(tw_span_state));
-    out->supports = PyMem_Calloc(project->support_count, sizeof(tw_support_state));
-    out->marks = PyMem_Calloc(project->mark_count + 1, sizeof(tw_mark_state));
-    out->loads = PyMem_Calloc(project->conditions[condition].load_count + 1, sizeof(tw_mark_state));
+    out->spans = nan_rows(project->support_count - 1, sizeof(tw_span_state));
+    out->supports = nan_rows(project->support_count, sizeof(tw_support_state));
+    out->marks = nan_rows(project->mark_count, sizeof(tw_mark_state));
+    out->loads = nan_rows(project->conditions[condition].load_count, sizeof(tw_mark_state));
     return out->spans && out->supports && out->marks && out->loads;
 }
 
@@ -378,6 +388,10 @@ static PyObject *project_window(PyObject *object, PyObject *args, PyObject *keyw
     run_state run;
     PyObject *result = NULL;
     if (!PyArg_ParseTuple(args, ":window") || split_keywords(self, keywords, &pull, &options) < 0) {
+        return NULL;
+    }
+    if (!isnan(pull)) {
+        PyErr_SetString(PyExc_TypeError, "window: it searches the pull, and takes none");
         return NULL;
     }
     tw_window *window = tw_window_create(&self->problem.project, &options);

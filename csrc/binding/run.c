@@ -65,6 +65,10 @@ static int take_whole(const char *name, PyObject *value, tw_options *options)
     for (size_t i = 0; i < sizeof whole_options / sizeof whole_options[0]; i++) {
         if (strcmp(whole_options[i].name, name) == 0) {
             size_t number = PyLong_AsSize_t(value);
+            if (PyErr_Occurred() && PyErr_ExceptionMatches(PyExc_OverflowError)) {
+                PyErr_Clear();
+                number = 0; /* out of every range: the check says so */
+            }
             memcpy((char *)options + whole_options[i].offset, &number, sizeof number);
             return PyErr_Occurred() ? -1 : 1;
         }

@@ -198,7 +198,17 @@ static tw_status check_ground(const tw_project *p, tw_fault *fault)
             return fail(fault, "ground", k, "elevation_m", "an elevation within 20 km");
         }
     }
-    return p->ground_count == 1 ? fail(fault, "ground", 0, "station_m", "at least two points, or none") : TW_OK;
+    if (p->ground_count == 1) {
+        return fail(fault, "ground", 0, "station_m", "at least two points, or none");
+    }
+    size_t last = p->ground_count - 1;
+    if (p->ground_count > 0 && !(p->ground_station_m[0] <= p->supports[0].station_m)) {
+        return fail(fault, "ground", 0, "station_m", "a profile that begins at or before the first support");
+    }
+    if (p->ground_count > 0 && !(p->ground_station_m[last] >= p->supports[p->support_count - 1].station_m)) {
+        return fail(fault, "ground", last, "station_m", "a profile that ends at or beyond the last support");
+    }
+    return TW_OK;
 }
 
 static tw_status check_conditions(const tw_project *p, tw_fault *fault)

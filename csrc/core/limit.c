@@ -3,6 +3,7 @@
 #include <math.h>
 
 #include "ground.h"
+#include "vector.h"
 
 double tw_limit_utilisation_most(double value, double most)
 {
@@ -54,9 +55,12 @@ static double tension_station(const tw_section *section, size_t span, double mos
     for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
         const tw_piece *piece = &section->pieces[p];
         double t[3];
-        tw_piece_tension(piece, 0.0, t);
-        if (hypot(hypot(t[0], t[1]), t[2]) >= most * (1.0 - 1e-12)) {
+        if (tw_norm(piece->tension) >= most * (1.0 - 1e-12)) {
             return piece->start[0];
+        }
+        tw_piece_tension(piece, piece->length_m, t);
+        if (tw_norm(t) >= most * (1.0 - 1e-12) && p + 1 < section->piece_first[span + 1]) {
+            return piece[1].start[0];
         }
     }
     return section->clamp[3 * (span + 1)];
@@ -126,6 +130,22 @@ static double weight_share(const tw_section *section, size_t support)
     return share > 0.0 ? share : 1.0;
 }
 
+/* A hanger that is slack, or whose clamp stands no lower than its support, is lifted, whatever force is left: judged by
+ * how far the clamp has risen from plumb, in hanger lengths. */
+static int judge_lifted(const tw_section *section, size_t support, const tw_limit *limit, double down_N, tw_verdict *place)
+{
+    const tw_support *at = &section->project->supports[support];
+    const double *c = section->clamp + 3 * support;
+    double x = c[0] - at->station_m, y = c[1] - at->offset_m, z = c[2] - at->elevation_m;
+    double length = at->hanger_length_m;
+    if (at->hold != TW_HOLD_HANGER || (z < 0.0 && sqrt(x * x + y * y + z * z) >= length * (1.0 - 1e-6))) {
+        return 0;
+    }
+    double value = fmin(down_N, 0.0);
+    offer(place, value, limit->least, value - limit->least, 1.0 + fmax((z + length) / length, 1e-6));
+    return 1;
+}
+
 static void judge_support(const tw_project *project, const tw_limit *limit, const tw_section *section,
                           const tw_section *bare, size_t support, tw_verdict *place)
 {
@@ -137,7 +157,9 @@ static void judge_support(const tw_project *project, const tw_limit *limit, cons
             offer_most(place, state.swing_rad, limit->most);
         }
     } else if (limit->kind == TW_LIMIT_UPLIFT) {
-        offer_least(place, state.down_N, limit->least, weight_share(section, support));
+        if (!judge_lifted(section, support, limit, state.down_N, place)) {
+            offer_least(place, state.down_N, limit->least, weight_share(section, support));
+        }
     } else {
         double most = isnan(limit->share) ? limit->most : limit->share * tw_line_capacity(at, limit->direction);
         if (!isnan(most)) {
@@ -172,7 +194,7 @@ tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_sect
             place.span = k;
             judge_span(project, rule, section, k, &place);
         }
-        if (place.judged && (!worst.judged || place.utilisation > worst.utilisation)) {
+        if (place.judged && (!worst.judged || !(place.utilisation <= worst.utilisation))) {
             worst = place;
         }
     }

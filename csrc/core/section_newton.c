@@ -8,6 +8,7 @@
 #include "hold.h"
 #include "vector.h"
 
+static const double NEAR_REST = 1e-8; /* closing error over the longest chord */
 static const double CUT_SHORT = 0.02; /* share of a Newton step below which a hanger's kink is suspected */
 
 tw_section_scratch tw_section_carve(const tw_section *section)
@@ -137,9 +138,10 @@ static double slope_along(const tw_section_scratch *s)
     return slope;
 }
 
-/* Go along the step until the slope of -D there is no steeper upwards than it went down at the start: -D is convex, so
- * a slope still downwards never overshoots. Returns the closing error, or infinity, and the share of the step taken. */
-static double advance(tw_section *section, const tw_section_scratch *s, double *share)
+/* Go along the step until the slope of -D there turns upwards by no more than a share of how it went down at the start:
+ * -D is convex, so such a point lies lower. Close to rest, where rounding decides the slope's sign, most of it is allowed.
+ * Returns the closing error, or infinity, and the share of the step taken. */
+static double advance(tw_section *section, const tw_section_scratch *s, double upwards, double *share)
 {
     double slope = fabs(slope_along(s));
     *share = 1.0;
@@ -151,7 +153,7 @@ static double advance(tw_section *section, const tw_section_scratch *s, double *
             tw_axpy(s->before + 3 * r, *share, s->step + 3 * r, section->pull + 3 * section->run_first[r]);
         }
         double worst = close_up(section, s);
-        if (isfinite(worst) && slope_along(s) <= 0.9 * slope + DBL_MIN) {
+        if (isfinite(worst) && slope_along(s) <= upwards * slope + DBL_MIN) {
             return worst;
         }
     }
@@ -172,7 +174,7 @@ tw_status tw_section_iterate(tw_section *section, const tw_options *options, tw_
         if (section->steps - first >= how->steps || !isfinite(worst) || !newton_step(section, s)) {
             return TW_NOT_SETTLED;
         }
-        worst = advance(section, s, &share);
+        worst = advance(section, s, worst > NEAR_REST * how->scale ? 0.1 : 0.9, &share);
         section->steps++;
         section->closing_m = worst;
         if (!isfinite(worst) || (!how->patient && share < CUT_SHORT)) {

@@ -199,6 +199,17 @@ static tw_status iterate_slack(tw_section *section, const tw_options *options, t
     return TW_NOT_SETTLED;
 }
 
+/* The hangers that the rounded-off kinks leave well inside their reach are slack: once more with those. */
+static tw_status iterate_hardened(tw_section *section, const tw_options *options, tw_section_scratch *s, double scale)
+{
+    for (size_t j = 1; j < section->span_count; j++) {
+        double reach = tw_norm(s->swing + 3 * j);
+        section->slack[j] = is_hanger(section, j) && reach < section->project->supports[j].hanger_length_m * (1.0 - 1e-4);
+    }
+    section->soft_N = 0.0;
+    return iterate_slack(section, options, s, scale);
+}
+
 /* The last resort: follow the rounded-off kinks of l |F| down to next to nothing. */
 static tw_status iterate_softened(tw_section *section, const tw_options *options, tw_section_scratch *s, double scale)
 {
@@ -209,6 +220,7 @@ static tw_status iterate_softened(tw_section *section, const tw_options *options
     for (double soft = 0.1; status == TW_OK && soft > SOFTEST; soft *= 0.1) {
         section->soft_N = soft * largest;
         status = tw_section_iterate(section, options, s, &how);
+        largest = fmin(largest, largest_pull(section));
     }
     return status;
 }
@@ -230,6 +242,17 @@ static tw_status iterate_cold(tw_section *section, const tw_options *options, tw
     return status == TW_OK ? iterate_slack(section, options, s, scale) : status;
 }
 
+/* Softened, then hardened; what the hardening cannot settle stays softened. */
+static tw_status iterate_around_kinks(tw_section *section, const tw_options *options, tw_section_scratch *s, double scale)
+{
+    tw_status status = iterate_softened(section, options, s, scale);
+    if (status != TW_OK) {
+        return status;
+    }
+    status = iterate_hardened(section, options, s, scale);
+    return status == TW_NOT_SETTLED ? iterate_softened(section, options, s, scale) : status;
+}
+
 tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm)
 {
     tw_section_scratch s = tw_section_carve(section);
@@ -241,7 +264,7 @@ tw_status tw_section_solve(tw_section *section, const tw_options *options, int w
         status = iterate_cold(section, options, &s, scale);
     }
     if (status == TW_NOT_SETTLED && has_hanger(section)) {
-        status = iterate_softened(section, options, &s, scale);
+        status = iterate_around_kinks(section, options, &s, scale);
     }
     if (status == TW_OK || status == TW_CANCELLED) {
         finish(section, &s);

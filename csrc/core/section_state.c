@@ -45,7 +45,7 @@ static int passes(const tw_material *material, const tw_piece *piece, double s0,
     double slack = 1e-9 * (1.0 + fabs(station_m));
     tw_piece_position(material, piece, s0, a);
     tw_piece_position(material, piece, s1, b);
-    if (station_m < fmin(a[0], b[0]) - slack || station_m > fmax(a[0], b[0]) + slack) {
+    if (!(station_m >= fmin(a[0], b[0]) - slack && station_m <= fmax(a[0], b[0]) + slack && isfinite(station_m))) {
         return 0;
     }
     *s = tw_piece_at_station(material, piece, s0, s1, a[0], b[0], station_m);
@@ -203,7 +203,9 @@ void tw_section_support_state(const tw_section *section, size_t support, tw_supp
     state->down_N = F[2] + (hangs ? 0.5 * at->hanger_weight_N : 0.0);
     state->resultant_N = sqrt(F[0] * F[0] + F[1] * F[1] + state->down_N * state->down_N);
     tw_copy(section->clamp + 3 * support, state->position_m);
-    state->swing_rad = hangs ? atan2(hypot(F[0], F[1]), F[2]) : (double)NAN;
+    const double *c = state->position_m;
+    double aside = hypot(c[0] - at->station_m, c[1] - at->offset_m);
+    state->swing_rad = hangs ? atan2(aside, at->elevation_m - c[2]) : (double)NAN;
 }
 
 double tw_section_stored(const tw_section *section)

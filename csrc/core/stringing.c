@@ -102,13 +102,19 @@ static double follow_holds(strung *line, double share)
  * and the last of those are taken as they stand within 1e-8 m. */
 static tw_status string_to(strung *line, double pull_N)
 {
+    double share = 1.0, before = INFINITY;
     hang_plumb(line);
     for (int i = 0; i < 600; i++) {
-        double share = i < 20 ? 1.0 : i < 120 ? 0.6 : 0.25;
         tw_status status = lengths_between_clamps(line, pull_N);
-        if (status != TW_OK || follow_holds(line, share) < (i < 300 ? 1e-11 : 1e-8)) {
+        if (status != TW_OK) {
             return status;
         }
+        double moved = follow_holds(line, share);
+        if (moved < (i < 300 ? 1e-11 : 1e-8)) {
+            return TW_OK;
+        }
+        share = moved > 0.9 * before ? fmax(0.1, 0.7 * share) : share;
+        before = moved;
     }
     return TW_NOT_SETTLED;
 }

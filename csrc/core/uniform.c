@@ -115,7 +115,7 @@ tw_status tw_uniform_settle(const tw_uniform *span, double length, double *h, do
             hang(span, length, *h, *v, end, f);
             error[0] = end[0] - span->span;
             error[1] = end[1] - span->drop;
-            if (moved < 1e-9 || step[0] * error[0] + step[1] * error[1] <= 0.9 * fabs(slope) + DBL_MIN) {
+            if (moved < 1e-9 || step[0] * error[0] + step[1] * error[1] <= 0.1 * fabs(slope) + DBL_MIN) {
                 break;
             }
         }
@@ -129,6 +129,15 @@ tw_status tw_uniform_settle(const tw_uniform *span, double length, double *h, do
         }
     }
     return TW_NOT_SETTLED;
+}
+
+/* What was found has to reach the far end, whatever the steps were like. */
+static int closes(const tw_uniform *span, double length, double h, double v)
+{
+    double end[2], f[3];
+    hang(span, length, h, v, end, f);
+    double error = fabs(end[0] - span->span) + fabs(end[1] - span->drop);
+    return error <= 1e-9 * (span->span + fabs(span->drop)) + 1e-14 * length;
 }
 
 /* Newton in (length, v); d end / d length is the stretched direction at the end. */
@@ -160,7 +169,7 @@ tw_status tw_uniform_length(const tw_uniform *span, double h, double *length, do
             return TW_NOT_FINITE;
         }
         if (fabs(grow) < 1e-9 * *length && fabs(lift) < 1e-9 * hypot(h, *v)) {
-            return TW_OK;
+            return closes(span, *length, h, *v) ? TW_OK : TW_NOT_SETTLED;
         }
     }
     return TW_NOT_SETTLED;

@@ -48,6 +48,7 @@ tw_window *tw_window_create(const tw_project *project, const tw_options *options
         return NULL;
     }
     window->row_count = rows;
+    window->curve_capacity = pulls;
     window->interval_N = tw_calloc(2 * pulls, sizeof(double));
     window->conflict = tw_calloc(2 * room, sizeof *window->conflict);
     window->relax = tw_calloc(project->limit_count + 2 * TW_WINDOW_RELAX_SUPPORTS_MOST, sizeof *window->relax);
@@ -83,8 +84,11 @@ static void run_free(tw_window_run *run)
 {
     tw_trial_free(run->trial);
     tw_free(run->supports);
+    tw_free(run->limits);
     tw_free(run->u);
     tw_free(run->masked);
+    tw_free(run->judged);
+    tw_free(run->astray);
 }
 
 static tw_status run_create(const tw_project *project, const tw_options *options, tw_optimiser optimiser,
@@ -95,18 +99,25 @@ static tw_status run_create(const tw_project *project, const tw_options *options
     run->options = options;
     run->optimiser = optimiser;
     run->window = window;
-    run->curve_capacity = curve_capacity(options);
+    run->curve_capacity = window->curve_capacity;
     run->best_f = INFINITY;
     run->best_pull_N = NAN;
     run->deadline = tw_clock_deadline(options->seconds_most);
     run->supports = tw_calloc(project->support_count, sizeof *run->supports);
+    run->limits = tw_calloc(project->limit_count + 1, sizeof *run->limits);
     run->u = tw_calloc(window->row_count + 1, sizeof(double));
     run->masked = tw_calloc(window->row_count + 1, 1);
-    if (!run->supports || !run->u || !run->masked) {
+    run->judged = tw_calloc(window->row_count + 1, 1);
+    run->astray = tw_calloc(window->row_count + 1, 1);
+    if (!run->supports || !run->limits || !run->u || !run->masked || !run->judged || !run->astray) {
         goto fail;
     }
     memcpy(run->supports, project->supports, project->support_count * sizeof *run->supports);
+    for (size_t i = 0; i < project->limit_count; i++) {
+        run->limits[i] = project->limits[i];
+    }
     run->project.supports = run->supports;
+    run->project.limits = run->limits;
     run->trial = tw_trial_create(&run->project);
     if (!run->trial) {
         goto fail;
@@ -244,14 +255,16 @@ static void best_so_far(tw_window_run *run)
 static tw_status search(tw_window_run *run)
 {
     tw_window *w = run->window;
-    tw_window_scan(run);
+    tw_status scanned = tw_window_scan(run);
+    if (scanned != TW_OK) {
+        return scanned;
+    }
     w->interval_count = tw_window_intervals(run, w->interval_N, run->curve_capacity);
     if (run->stop != TW_OK) {
         return run->stop;
     }
     if (w->interval_count == 0) {
-        tw_window_explain_shut(run);
-        return run->stop == TW_OK ? TW_SHUT : run->stop;
+        return tw_window_explain_shut(run);
     }
     tw_status status = choose(run);
     if (status == TW_OK) {

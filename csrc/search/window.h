@@ -8,7 +8,7 @@
  *     ends      in each cell where f crosses 1: SLSQP, min +-H with u <= 1 on the rows that change there; then the
  *               crossing is bracketed to rounding without the optimiser, and every row is judged again at the end found
  *     specify   min over H of max f on [H (1 - tol), H (1 + tol)]
- * For a shut window: the rows that exclude one another, and single changes that open it, each proven by a new scan.
+ * For a shut window: the rows that exclude one another, and single changes that open it, each judged anew on every row.
  */
 #ifndef TW_WINDOW_H
 #define TW_WINDOW_H
@@ -82,6 +82,7 @@ typedef struct tw_window {
     size_t row_count;
     size_t *row_limit;      /* [row_count] */
     size_t *row_condition;  /* [row_count] */
+    size_t curve_capacity;  /* room for pulls, from the options given to create; the scan stops there */
     size_t curve_count;     /* pulls looked at */
     double *curve_pull_N;   /* [curve_count], ascending */
     double *curve;          /* [curve_count][row_count] utilisation */

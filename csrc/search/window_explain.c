@@ -124,6 +124,22 @@ static double limit_at(tw_window_run *run, size_t limit, double pull_N, tw_verdi
     return most;
 }
 
+/* 1: with this limit's allowance changed by a factor, every row holds at the pull. */
+static int opens(tw_window_run *run, size_t limit, int least, double factor, double pull_N)
+{
+    tw_limit *changed = &run->limits[limit];
+    const tw_limit home = *changed;
+    changed->least *= least ? factor : 1.0;
+    changed->most *= least ? 1.0 : factor;
+    changed->share *= least ? 1.0 : factor;
+    int moved = run->moved;
+    run->moved = 1; /* no pull of the user's own project */
+    double f = tw_window_try(run, pull_N, run->u);
+    *changed = home;
+    run->moved = moved;
+    return f <= 1.0;
+}
+
 /* The least allowance of one limit at which the others leave it a pull. */
 static void relax_allowance(tw_window_run *run, size_t limit)
 {
@@ -154,7 +170,7 @@ static void relax_allowance(tw_window_run *run, size_t limit)
     }
     int least = verdict.value < verdict.allowed;
     double to = verdict.value * (least ? 1.0 - OPENER : 1.0 + OPENER);
-    if (to > 0.0) {
+    if (to > 0.0 && opens(run, limit, least, to / verdict.allowed, at)) {
         const tw_window_relax entry = {TW_RELAX_ALLOWANCE, limit, TW_NONE, to - verdict.allowed, to, at};
         w->relax[w->relax_count++] = entry;
     }
@@ -294,13 +310,14 @@ static size_t concerned(tw_window_run *run, double pull_N, size_t *supports)
     return count;
 }
 
-void tw_window_explain_shut(tw_window_run *run)
+tw_status tw_window_explain_shut(tw_window_run *run)
 {
     tw_window *w = run->window;
     size_t at = best_of_curve(run);
     size_t supports[TW_WINDOW_RELAX_SUPPORTS_MOST];
     double pull = w->curve_pull_N[at];
     find_conflict(run, at);
+    tw_status known = run->stop;
     for (size_t i = 0; i < w->conflict_count && run->stop == TW_OK; i++) {
         size_t seen = 0;
         while (seen < i && w->conflict[seen].limit != w->conflict[i].limit) {
@@ -316,4 +333,5 @@ void tw_window_explain_shut(tw_window_run *run)
         relax_support(run, supports[k], TW_RELAX_SUPPORT_STATION, pull);
     }
     w->interval_count = 0;
+    return known != TW_OK ? known : run->stop == TW_OK || run->stop == TW_DEADLINE ? TW_SHUT : run->stop;
 }

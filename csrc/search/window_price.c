@@ -7,11 +7,15 @@
 static const double MOVE_M = 1e-3;        /* central differences of a support's place */
 static const double PULL_STEP = 1e-5;     /* and of the pull, relative */
 
+/* Margin of a row at a pull; NaN where it cannot be judged. */
 static double margin_at(tw_window_run *run, size_t row, double pull_N)
 {
     tw_verdict verdict;
-    tw_trial_string(run->trial, pull_N);
-    tw_window_row(run, row, &verdict);
+    tw_status status = tw_trial_string(run->trial, pull_N);
+    tw_window_latch(run, status);
+    if (status != TW_OK || tw_window_row(run, row, &verdict) >= TW_WINDOW_UNSETTLED || !verdict.judged) {
+        return NAN;
+    }
     return verdict.margin;
 }
 
@@ -57,7 +61,9 @@ static void price_support(tw_window_run *run, tw_window_price price, size_t row,
     tw_window_move(run, &home, price.support, station, -MOVE_M);
     double down = margin_at(run, row, pull_N);
     tw_window_move(run, &home, price.support, station, 0.0);
-    price.margin_per_unit = (up - down) / (2.0 * MOVE_M);
+    double here = margin_at(run, row, pull_N);
+    price.margin_per_unit = isnan(up) ? (here - down) / MOVE_M : isnan(down) ? (up - here) / MOVE_M
+                                                                              : (up - down) / (2.0 * MOVE_M);
     price.pull_per_unit = -price.margin_per_unit / per_pull;
     add_price(run->window, &price);
 }

@@ -106,8 +106,27 @@ static int add_to_view(view *v, size_t row, double factor)
     return 1;
 }
 
-/* f over the tolerance: judged at both of its ends on every row (f is unimodal between the islands of the scan).
- * Adds each end's worst row to the view and counts those that were new. */
+static double curve_f(const tw_window_run *run, size_t k)
+{
+    return tw_window_worst(run, run->window->curve + k * run->window->row_count, NULL);
+}
+
+/* The curve's point with the lowest f between two pulls; TW_NONE where it has none there. */
+static size_t best_of_curve(const tw_window_run *run, double low_N, double high_N)
+{
+    const tw_window *w = run->window;
+    size_t best = TW_NONE;
+    for (size_t k = 0; k < w->curve_count; k++) {
+        int inside = w->curve_pull_N[k] >= low_N && w->curve_pull_N[k] <= high_N;
+        if (inside && (best == TW_NONE || curve_f(run, k) < curve_f(run, best))) {
+            best = k;
+        }
+    }
+    return best;
+}
+
+/* f over the tolerance: judged at both of its ends on every row, and known at the curve's points between them. Adds each
+ * end's worst row to the view and counts those that were new. */
 static double judge_tolerance(tw_window_run *run, double pull_N, double tolerance, view *v, int *added)
 {
     const double factors[2] = {1.0 - tolerance, 1.0 + tolerance};
@@ -118,6 +137,12 @@ static double judge_tolerance(tw_window_run *run, double pull_N, double toleranc
         worst = fmax(worst, tw_window_worst(run, run->u, &row));
         if (v) {
             *added += add_to_view(v, row, factors[i]);
+        }
+    }
+    for (size_t k = 0; tolerance > 0.0 && k < run->window->curve_count && !run->moved; k++) {
+        double at = run->window->curve_pull_N[k];
+        if (at > pull_N * factors[0] && at < pull_N * factors[1]) {
+            worst = fmax(worst, curve_f(run, k));
         }
     }
     return worst;
@@ -194,7 +219,8 @@ double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double
     view v = {.run = run, .low = low_N, .ratio = log(high_N / low_N), .epigraph = 1};
     int added = 1;
     double best = INFINITY;
-    double start = 0.5;
+    size_t k = best_of_curve(run, low_N, high_N);
+    double start = k == TW_NONE || run->moved ? 0.5 : log(run->window->curve_pull_N[k] / low_N) / v.ratio;
     *pull_N = low_N;
     if (!(v.ratio > 0.0)) {
         return judge_tolerance(run, low_N, tolerance, NULL, NULL);
@@ -211,9 +237,13 @@ double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double
         }
         start = z;
     }
-    if (not_lowest(&v, low_N, high_N, *pull_N, best)) {
+    int beaten = k != TW_NONE && !run->moved && curve_f(run, k) < best - 1e-9;
+    if (beaten || not_lowest(&v, low_N, high_N, *pull_N, best)) {
+        const double *curve = run->window->curve_pull_N;
         double other;
-        double f = golden(run, low_N, high_N, tolerance, 1.0, &other);
+        double from = beaten && k > 0 ? fmax(low_N, curve[k - 1]) : low_N;
+        double to = beaten && k + 1 < run->window->curve_count ? fmin(high_N, curve[k + 1]) : high_N;
+        double f = golden(run, from, to, tolerance, 1.0, &other);
         if (f < best) {
             best = f;
             *pull_N = other;

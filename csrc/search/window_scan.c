@@ -24,11 +24,10 @@ double tw_window_worst(const tw_window_run *run, const double *u, size_t *row)
     return worst;
 }
 
-/* A support that was moved past a load's station only spoils that move. */
+/* A place off the line spoils one pull, or one move of a support, not the search. */
 void tw_window_latch(tw_window_run *run, tw_status status)
 {
-    int spoiled = run->moved && status == TW_ERROR_PLACE;
-    if (run->stop == TW_OK && !spoiled && (status < 0 || status == TW_CANCELLED || status == TW_DEADLINE)) {
+    if (run->stop == TW_OK && status != TW_ERROR_PLACE && (status < 0 || status == TW_CANCELLED || status == TW_DEADLINE)) {
         run->stop = status;
     }
 }
@@ -47,20 +46,22 @@ static int string_to(tw_window_run *run, double pull_N)
 
 double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict)
 {
-    tw_verdict own = {.span = TW_NONE, .support = TW_NONE, .station_m = (double)NAN};
+    tw_verdict own = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN};
     tw_status status = run->stop;
     if (status == TW_OK) {
         status = tw_trial_judge(run->trial, run->window->row_limit[row], run->window->row_condition[row], run->options,
                                 &own);
         tw_window_latch(run, status);
+        run->judged[row] |= status == TW_OK && own.judged;
+        run->astray[row] |= !run->moved && status == TW_ERROR_PLACE;
     }
     if (verdict) {
         *verdict = own;
     }
-    if (status != TW_OK || !isfinite(own.utilisation)) {
-        return TW_WINDOW_UNSETTLED;
+    if (status == TW_OK && !own.judged) {
+        return 0.0;
     }
-    return own.judged ? fmin(own.utilisation, TW_WINDOW_UNSETTLED) : 0.0;
+    return status == TW_OK && isfinite(own.utilisation) ? fmin(own.utilisation, TW_WINDOW_UNSETTLED) : TW_WINDOW_UNSETTLED;
 }
 
 double tw_window_try(tw_window_run *run, double pull_N, double *u)
@@ -126,7 +127,8 @@ static void look_for_bump(tw_window_run *run, size_t k)
 {
     const double *pull = run->window->curve_pull_N;
     double at;
-    if (tw_window_peak(run, pull[k - 1], pull[k + 1], &at) > 1.0) {
+    size_t last = run->window->curve_count - 1;
+    if (tw_window_peak(run, pull[k > 0 ? k - 1 : 0], pull[k < last ? k + 1 : last], &at) > 1.0) {
         add_to_curve(run, at);
     }
 }
@@ -141,14 +143,14 @@ static void look_between(tw_window_run *run)
         double right = k + 1 < w->curve_count ? curve_f(run, k + 1) : INFINITY;
         if (f > 1.0 && f <= left && f < right) {
             look_for_dip(run, k);
-        } else if (f <= 1.0 && f > NEAR_EDGE && f >= left && f > right && isfinite(left) && isfinite(right)) {
+        } else if (f <= 1.0 && f > NEAR_EDGE && (k == 0 || f >= left) && (k + 1 == w->curve_count || f > right)) {
             look_for_bump(run, k);
         }
         k += w->curve_count - before;
     }
 }
 
-void tw_window_scan(tw_window_run *run)
+tw_status tw_window_scan(tw_window_run *run)
 {
     tw_window *w = run->window;
     size_t points = run->options->scan_points;
@@ -157,7 +159,16 @@ void tw_window_scan(tw_window_run *run)
         double share = (double)k / (double)(points - 1);
         add_to_curve(run, w->range_low_N * pow(w->range_high_N / w->range_low_N, share));
     }
+    for (size_t r = 0; r < w->row_count && run->stop == TW_OK; r++) {
+        if (!run->judged[r] && run->astray[r]) {
+            return TW_ERROR_PLACE;
+        }
+        if (!run->judged[r] && w->curve[r] == 0.0) {
+            return TW_UNDECIDED;
+        }
+    }
     look_between(run);
+    return run->stop;
 }
 
 size_t tw_window_intervals(tw_window_run *run, double *interval, size_t most)

@@ -12,6 +12,7 @@ enum { TW_WINDOW_WORKING_MOST = 24 };     /* rows that one call of the optimiser
 typedef struct tw_window_run {
     tw_project project;    /* the user's, with `supports` in the place of its own, so that a support can be moved */
     tw_support *supports;  /* owned */
+    tw_limit *limits;      /* owned copy, so that an allowance can be changed */
     const tw_options *options;
     tw_optimiser optimiser;
     tw_window *window;
@@ -21,6 +22,8 @@ typedef struct tw_window_run {
     size_t curve_capacity;
     double *u;             /* [row_count] scratch; owned */
     unsigned char *masked; /* [row_count] 1: left out of f; owned */
+    unsigned char *judged; /* [row_count] 1: a verdict was seen; owned */
+    unsigned char *astray; /* [row_count] 1: a place of its condition was off the line at some pull; owned */
     double best_pull_N;    /* lowest f of the user's own project so far */
     double best_f;
     int moved;             /* a support is moved: pulls tried now are not the user's */
@@ -41,8 +44,9 @@ double tw_window_row_at(tw_window_run *run, size_t row, double pull_N);
 /* Judge one row at the pull strung last. */
 double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict);
 
-/* Scan the range into window->curve, then look between its points for islands. */
-void tw_window_scan(tw_window_run *run);
+/* Scan the range into window->curve, then look between its points for islands. TW_ERROR_PLACE: a place is off the line at
+ * every pull; TW_UNDECIDED: a row has nothing to judge at any. */
+tw_status tw_window_scan(tw_window_run *run);
 
 /* Open stretches of pulls on the scanned curve, masked rows left out; ends bracketed to rounding.
  * interval [2 most]; returns their number. */
@@ -62,6 +66,7 @@ double tw_window_boundary(tw_window_run *run, double holds_N, double fails_N);
 void tw_window_move(tw_window_run *run, const tw_support *home, size_t support, int station, double by);
 
 void tw_window_prices(tw_window_run *run);
-void tw_window_explain_shut(tw_window_run *run);
+/* TW_SHUT, also where time runs out once the conflict is known; or why not. */
+tw_status tw_window_explain_shut(tw_window_run *run);
 
 #endif

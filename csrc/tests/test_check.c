@@ -12,7 +12,7 @@ static void make_full(tw_case *c)
     case_route(c);
     c->project.line.breaking_strength_N = 120e3;
     for (int k = 0; k < 4; k++) {
-        case_ground(c, 400.0 * k, 10.0 + k);
+        case_ground(c, 500.0 * k, 10.0 + k);
     }
     c->project.crossing_count = 1;
     c->crossings[0] = (tw_crossing){500.0, 510.0, 20.0};
@@ -189,6 +189,8 @@ static void test_holds(void)
 static void test_ground(void)
 {
     REFUSED(c.project.ground_count = 1, "ground", 0, "station_m");
+    REFUSED(c.ground_station_m[0] = c.supports[0].station_m + 1.0, "ground", 0, "station_m");
+    REFUSED(c.project.ground_count = 2, "ground", 1, "station_m");
     REFUSED(c.ground_station_m[2] = c.ground_station_m[1], "ground", 2, "station_m");
     REFUSED(c.ground_station_m[0] = NAN, "ground", 0, "station_m");
     REFUSED(c.ground_station_m[3] = INFINITY, "ground", 3, "station_m");
@@ -272,7 +274,7 @@ static void expect_option(const tw_options *options, const char *field)
 static void test_options(void)
 {
     OPTION_REFUSED(elements_per_span, 0, "elements_per_span");
-    OPTION_REFUSED(elements_most, 63, "elements_per_span");
+    OPTION_REFUSED(elements_most, 31, "elements_per_span");
     OPTION_REFUSED(elements_most, (1u << 24) + 1u, "elements_most");
     OPTION_REFUSED(evaluations_most, 0, "elements_most");
     OPTION_REFUSED(newton_most, 0, "elements_most");
