@@ -7,7 +7,7 @@
 #include "uniform.h"
 #include "vector.h"
 
-enum { IMPATIENT_STEPS = 30 };
+enum { IMPATIENT_STEPS = 30, WARM_ROUNDS = 6 };
 static const double CARRIES_NOTHING = 1e-3; /* force of a hanger over the largest tension */
 static const double CARRIES_LITTLE = 0.1;
 static const double SOFTEST = 2e-9; /* the last rounding of a slack hanger, over the largest tension */
@@ -178,12 +178,13 @@ static size_t tighten(tw_section *section, const tw_section_scratch *s)
     return count;
 }
 
-/* Active set over slack hangers. */
-static tw_status iterate_slack(tw_section *section, const tw_options *options, tw_section_scratch *s, double scale)
+/* Active set over slack hangers, changed at most so many times. */
+static tw_status iterate_slack(tw_section *section, const tw_options *options, tw_section_scratch *s, double scale,
+                               size_t rounds)
 {
     tw_section_patience how = {scale, options->newton_most < IMPATIENT_STEPS ? options->newton_most : IMPATIENT_STEPS, 0};
     tw_status status = TW_NOT_SETTLED;
-    for (size_t round = 0; round < 4 * section->span_count + 4; round++) {
+    for (size_t round = 0; round < rounds; round++) {
         status = tw_section_iterate(section, options, s, &how);
         if (status == TW_OK) {
             if (tighten(section, s) == 0) {
@@ -207,7 +208,7 @@ static tw_status iterate_hardened(tw_section *section, const tw_options *options
         section->slack[j] = is_hanger(section, j) && reach < section->project->supports[j].hanger_length_m * (1.0 - 1e-4);
     }
     section->soft_N = 0.0;
-    return iterate_slack(section, options, s, scale);
+    return iterate_slack(section, options, s, scale, WARM_ROUNDS);
 }
 
 /* The last resort: follow the rounded-off kinks of l |F| down to next to nothing. */
@@ -239,7 +240,7 @@ static tw_status iterate_cold(tw_section *section, const tw_options *options, tw
 {
     memset(section->slack, 0, section->span_count + 1);
     tw_status status = start_pulls(section);
-    return status == TW_OK ? iterate_slack(section, options, s, scale) : status;
+    return status == TW_OK ? iterate_slack(section, options, s, scale, 4 * section->span_count + 4) : status;
 }
 
 /* Softened, then hardened; what the hardening cannot settle stays softened. */
@@ -259,7 +260,7 @@ tw_status tw_section_solve(tw_section *section, const tw_options *options, int w
     double scale = longest_chord(section);
     section->steps = 0;
     section->soft_N = 0.0;
-    tw_status status = warm ? iterate_slack(section, options, &s, scale) : TW_NOT_SETTLED;
+    tw_status status = warm ? iterate_slack(section, options, &s, scale, WARM_ROUNDS) : TW_NOT_SETTLED;
     if (status == TW_NOT_SETTLED) {
         status = iterate_cold(section, options, &s, scale);
     }

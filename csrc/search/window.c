@@ -108,7 +108,7 @@ static tw_status run_create(const tw_project *project, const tw_options *options
     run->u = tw_calloc(window->row_count + 1, sizeof(double));
     run->masked = tw_calloc(window->row_count + 1, 1);
     run->judged = tw_calloc(window->row_count + 1, 1);
-    run->astray = tw_calloc(window->row_count + 1, 1);
+    run->astray = tw_calloc(window->row_count + 1, sizeof(size_t));
     if (!run->supports || !run->limits || !run->u || !run->masked || !run->judged || !run->astray) {
         goto fail;
     }

@@ -216,33 +216,29 @@ static void first_rows(view *v, double low_N, double high_N, double tolerance)
 
 double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double tolerance, double *pull_N)
 {
+    const tw_window *w = run->window;
     view v = {.run = run, .low = low_N, .ratio = log(high_N / low_N), .epigraph = 1};
+    size_t k = run->moved ? TW_NONE : best_of_curve(run, low_N, high_N);
     int added = 1;
-    double best = INFINITY;
-    size_t k = best_of_curve(run, low_N, high_N);
-    double start = k == TW_NONE || run->moved ? 0.5 : log(run->window->curve_pull_N[k] / low_N) / v.ratio;
-    *pull_N = low_N;
+    *pull_N = k == TW_NONE ? sqrt(low_N * high_N) : w->curve_pull_N[k];
     if (!(v.ratio > 0.0)) {
-        return judge_tolerance(run, low_N, tolerance, NULL, NULL);
+        return judge_tolerance(run, *pull_N = low_N, tolerance, NULL, NULL);
     }
     first_rows(&v, low_N, high_N, tolerance);
+    double best = judge_tolerance(run, *pull_N, tolerance, &v, &added);
     for (int round = 0; round < 8 && added > 0 && run->stop == TW_OK; round++) {
-        double z = call_optimiser(&v, start);
-        double pull = view_pull(&v, z);
+        double pull = view_pull(&v, call_optimiser(&v, log(*pull_N / low_N) / v.ratio));
         added = 0;
         double f = judge_tolerance(run, pull, tolerance, &v, &added);
         if (f < best) {
             best = f;
             *pull_N = pull;
         }
-        start = z;
     }
-    int beaten = k != TW_NONE && !run->moved && curve_f(run, k) < best - 1e-9;
-    if (beaten || not_lowest(&v, low_N, high_N, *pull_N, best)) {
-        const double *curve = run->window->curve_pull_N;
+    if (not_lowest(&v, low_N, high_N, *pull_N, best)) {
         double other;
-        double from = beaten && k > 0 ? fmax(low_N, curve[k - 1]) : low_N;
-        double to = beaten && k + 1 < run->window->curve_count ? fmin(high_N, curve[k + 1]) : high_N;
+        double from = k != TW_NONE && k > 0 ? fmax(low_N, w->curve_pull_N[k - 1]) : low_N;
+        double to = k != TW_NONE && k + 1 < w->curve_count ? fmin(high_N, w->curve_pull_N[k + 1]) : high_N;
         double f = golden(run, from, to, tolerance, 1.0, &other);
         if (f < best) {
             best = f;

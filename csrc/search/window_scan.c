@@ -53,7 +53,7 @@ double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict)
                                 &own);
         tw_window_latch(run, status);
         run->judged[row] |= status == TW_OK && own.judged;
-        run->astray[row] |= !run->moved && status == TW_ERROR_PLACE;
+        run->astray[row] += !run->moved && status == TW_ERROR_PLACE;
     }
     if (verdict) {
         *verdict = own;
@@ -160,7 +160,7 @@ tw_status tw_window_scan(tw_window_run *run)
         add_to_curve(run, w->range_low_N * pow(w->range_high_N / w->range_low_N, share));
     }
     for (size_t r = 0; r < w->row_count && run->stop == TW_OK; r++) {
-        if (!run->judged[r] && run->astray[r]) {
+        if (2 * run->astray[r] > w->curve_count) {
             return TW_ERROR_PLACE;
         }
         if (!run->judged[r] && w->curve[r] == 0.0) {

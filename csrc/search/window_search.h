@@ -23,7 +23,7 @@ typedef struct tw_window_run {
     double *u;             /* [row_count] scratch; owned */
     unsigned char *masked; /* [row_count] 1: left out of f; owned */
     unsigned char *judged; /* [row_count] 1: a verdict was seen; owned */
-    unsigned char *astray; /* [row_count] 1: a place of its condition was off the line at some pull; owned */
+    size_t *astray;        /* [row_count] pulls at which a place of its condition was off the line; owned */
     double best_pull_N;    /* lowest f of the user's own project so far */
     double best_f;
     int moved;             /* a support is moved: pulls tried now are not the user's */
@@ -45,7 +45,7 @@ double tw_window_row_at(tw_window_run *run, size_t row, double pull_N);
 double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict);
 
 /* Scan the range into window->curve, then look between its points for islands. TW_ERROR_PLACE: a place is off the line at
- * every pull; TW_UNDECIDED: a row has nothing to judge at any. */
+ * most pulls; TW_UNDECIDED: a row has nothing to judge at any. */
 tw_status tw_window_scan(tw_window_run *run);
 
 /* Open stretches of pulls on the scanned curve, masked rows left out; ends bracketed to rounding.
