@@ -222,6 +222,12 @@ def moved_end(project: tw.Project, support: str, key: str, by: float, end: str) 
     problem = project.to_core()
     index = [each.name for each in project.supports].index(support)
     problem["supports"][index][key] += by
+    if problem["ground"]:  # level beyond its ends, so that the last support may move outwards
+        station, elevation = problem["ground"]["station_m"], problem["ground"]["elevation_m"]
+        problem["ground"] = {
+            "station_m": [station[0] - 1.0, *station, station[-1] + 1.0],
+            "elevation_m": [elevation[0], *elevation, elevation[-1]],
+        }
     return _core.Project(problem).window()[end]["pull_N"]
 
 

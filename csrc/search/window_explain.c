@@ -137,7 +137,7 @@ static int opens(tw_window_run *run, size_t limit, int least, double factor, dou
     double f = tw_window_try(run, pull_N, run->u);
     *changed = home;
     run->moved = moved;
-    return f <= 1.0;
+    return f <= TW_WINDOW_HOLDS;
 }
 
 /* The least allowance of one limit at which the others leave it a pull. */
