@@ -14,7 +14,7 @@ typedef tw_status (*call)(const fixture *f, double *answer);
 
 static tw_status section_call(const fixture *f, double *answer)
 {
-    double lengths_m[SPANS], pull_N, work[6 * (SPANS + 1)];
+    double lengths_m[SPANS], pull_N, work[7 * (SPANS + 1)];
     tw_section *strung = tw_section_create(&f->project);
     tw_section *section = tw_section_create(&f->project);
     tw_status status = strung && section ? TW_OK : TW_ERROR_MEMORY;
