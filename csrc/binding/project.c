@@ -5,6 +5,7 @@
 #include <numpy/arrayobject.h>
 
 #include "answer.h"
+#include "check.h"
 #include "fields.h"
 #include "module.h"
 #include "places.h"
@@ -76,13 +77,14 @@ static int split_keywords(project_object *self, PyObject *keywords, double *pull
     PyObject *rest = keywords ? PyDict_Copy(keywords) : PyDict_New();
     PyObject *value = rest ? PyDict_GetItemString(rest, "pull") : NULL;
     int result = rest ? 0 : -1;
+    tw_fault fault;
     *pull = NAN;
     if (value) {
         *pull = value == Py_None ? (double)NAN : PyFloat_AsDouble(value);
         if (PyErr_Occurred() || PyDict_DelItemString(rest, "pull") < 0) {
             result = -1;
-        } else if (value != Py_None && !(*pull > 0.0 && *pull <= 1e12)) {
-            tw_problem_raise("stringing", TW_NONE, "pull", "a pull above 0, up to 1e12 N", self->range_error);
+        } else if (value != Py_None && tw_check_pull(&self->problem.project, *pull, &fault) != TW_OK) {
+            tw_problem_raise("stringing", TW_NONE, "pull", fault.expected, self->range_error);
             result = -1;
         }
     }

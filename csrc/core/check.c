@@ -308,6 +308,14 @@ static tw_status check_marks(const tw_project *p, tw_fault *fault)
     return TW_OK;
 }
 
+tw_status tw_check_pull(const tw_project *project, double pull_N, tw_fault *fault)
+{
+    memset(fault, 0, sizeof *fault);
+    return pull_N > 0.0 && pull_N <= project->line.stiffness_N
+               ? TW_OK
+               : fail(fault, "stringing", TW_NONE, "value", "a tension above 0 and no more than the stiffness EA");
+}
+
 static tw_status check_stringing(const tw_project *p, tw_fault *fault)
 {
     const tw_stringing *rule = &p->stringing;
@@ -327,13 +335,13 @@ static tw_status check_stringing(const tw_project *p, tw_fault *fault)
         if (rule->index >= p->support_count) {
             return fail(fault, "stringing", TW_NONE, "index", "a support that exists");
         }
-        break;
+        return tw_check_pull(p, rule->value, fault);
     case TW_STRING_SAG:
         if (rule->index + 1 >= p->support_count) {
             return fail(fault, "stringing", TW_NONE, "index", "a span that exists");
         }
         break;
-    case TW_STRING_PULL:
+    case TW_STRING_PULL: return tw_check_pull(p, rule->value, fault);
     case TW_STRING_TOTAL_LENGTH: break;
     }
     return rule->value > 0.0 && rule->value <= 1e12 ? TW_OK

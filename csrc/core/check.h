@@ -12,7 +12,9 @@ typedef struct tw_fault {
     char expected[72];
 } tw_fault;
 
-/* TW_OK, or TW_ERROR_RANGE with the fault filled. */
+/* TW_OK, or TW_ERROR_RANGE with the fault filled. A pull is above 0 and no more than EA. */
+tw_status tw_check_pull(const tw_project *project, double pull_N, tw_fault *fault);
+
 tw_status tw_check_project(const tw_project *project, tw_fault *fault);
 tw_status tw_check_options(const tw_options *options, tw_fault *fault);
 
