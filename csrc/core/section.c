@@ -35,6 +35,7 @@ tw_section *tw_section_create(const tw_project *project)
     section->slack = tw_calloc(spans + 1, 1);
     section->run_first = tw_calloc(spans + 1, sizeof *section->run_first);
     section->length_m = tw_calloc(spans, sizeof(double));
+    section->start_m = tw_calloc(spans + 1, sizeof(double));
     section->pull = tw_calloc(3 * spans, sizeof(double));
     section->clamp = tw_calloc(3 * (spans + 1), sizeof(double));
     section->clamp_load = tw_calloc(3 * (spans + 1), sizeof(double));
@@ -44,7 +45,7 @@ tw_section *tw_section_create(const tw_project *project)
     section->load_to_m = tw_calloc(loads + 1, sizeof(double));
     section->work = tw_calloc(TW_SECTION_WORK_PER_SPAN * spans + 3, sizeof(double));
     if (!section->pieces || !section->piece_first || !section->cut_m || !section->slack
-        || !section->run_first || !section->length_m || !section->pull
+        || !section->run_first || !section->start_m || !section->length_m || !section->pull
         || !section->clamp || !section->clamp_load || !section->hold_force || !section->load_length_m
         || !section->load_from_m || !section->load_to_m || !section->work) {
         tw_section_free(section);
@@ -64,6 +65,7 @@ void tw_section_free(tw_section *section)
     tw_free(section->slack);
     tw_free(section->run_first);
     tw_free(section->length_m);
+    tw_free(section->start_m);
     tw_free(section->pull);
     tw_free(section->clamp);
     tw_free(section->clamp_load);
@@ -269,9 +271,11 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
     section->piece_count = 0;
     for (size_t k = 0; k < section->span_count; k++) {
         section->piece_first[k] = section->piece_count;
+        section->start_m[k] = s0;
         load_span(section, k, basic, loads, load_count, s0);
         s0 += section->length_m[k];
     }
+    section->start_m[section->span_count] = s0;
     section->piece_first[section->span_count] = section->piece_count;
     load_clamps(section, loads, load_count);
     return TW_OK;

@@ -28,6 +28,7 @@ typedef struct tw_section {
     tw_piece *pieces;        /* in order along the line; owned */
     size_t *piece_first;     /* [span_count + 1]: pieces of span k are piece_first[k] ... piece_first[k+1] - 1; owned */
     double *length_m;        /* [span_count] natural length of each span; owned */
+    double *start_m;         /* [span_count + 1] natural length from the first support to each; owned */
     double *pull;            /* [3 span_count] tension vector at each span's start; owned */
     double *clamp;           /* [3 (span_count + 1)] where the line is held; owned */
     double *clamp_load;      /* [3 (span_count + 1)] G_j: load that acts at the clamp itself; owned */

@@ -4,15 +4,26 @@
 #include "section.h"
 #include "vector.h"
 
+/* Last index k below count with at[k * step] <= value; 0 where there is none. */
+static size_t last_below(const double *at, size_t step, size_t count, double value)
+{
+    size_t low = 0, high = count;
+    while (high - low > 1) {
+        size_t middle = low + (high - low) / 2;
+        if (at[middle * step] <= value) {
+            low = middle;
+        } else {
+            high = middle;
+        }
+    }
+    return low;
+}
+
 void tw_section_locate(const tw_section *section, double s, size_t *span, double *within)
 {
-    size_t k = 0;
-    while (k + 1 < section->span_count && s > section->length_m[k]) {
-        s -= section->length_m[k];
-        k++;
-    }
+    size_t k = last_below(section->start_m, 1, section->span_count, s);
     *span = k;
-    *within = fmin(fmax(s, 0.0), section->length_m[k]);
+    *within = fmin(fmax(s - section->start_m[k], 0.0), section->length_m[k]);
 }
 
 static const tw_piece *piece_within(const tw_section *section, size_t span, double *s)
@@ -52,10 +63,11 @@ static int passes(const tw_material *material, const tw_piece *piece, double s0,
     return 1;
 }
 
-tw_status tw_section_at_station(const tw_section *section, double station_m, double *s)
+/* First place of the spans from, ..., to - 1 that passes a station. */
+static tw_status spans_at_station(const tw_section *section, size_t from, size_t to, double station_m, double *s)
 {
-    double passed = 0.0;
-    for (size_t p = 0; p < section->piece_count; p++) {
+    double passed = section->start_m[from];
+    for (size_t p = section->piece_first[from]; p < section->piece_first[to]; p++) {
         const tw_piece *piece = &section->pieces[p];
         double turn, at;
         int turns = tw_piece_turns(piece, &turn);
@@ -67,6 +79,15 @@ tw_status tw_section_at_station(const tw_section *section, double station_m, dou
         passed += piece->length_m;
     }
     return TW_ERROR_PLACE;
+}
+
+/* The span between whose clamps the station lies and its neighbours first; a line blown past them is looked through. */
+tw_status tw_section_at_station(const tw_section *section, double station_m, double *s)
+{
+    size_t n = section->span_count;
+    size_t k = last_below(section->clamp, 3, n, station_m);
+    tw_status status = spans_at_station(section, k > 0 ? k - 1 : 0, k + 2 < n ? k + 2 : n, station_m, s);
+    return status == TW_OK ? status : spans_at_station(section, 0, n, station_m, s);
 }
 
 /* A span's own frame between its present clamps. */
