@@ -4,6 +4,7 @@
 
 #include "window_search.h"
 
+static const double JUMP = 1e-6;        /* excess that a smooth row cannot have this close to its edge */
 static const double LOG_STEP = 1e-6;    /* forward differences in log(pull): candidates are polished without them */
 
 /* The optimiser's view: rows as functions of z in [0, 1], pull = low (high/low)^z, seen at pull * factor. */
@@ -258,9 +259,12 @@ static double excess(view *v, double z)
     return worst;
 }
 
-/* Shrinks a bracket with excess(low) <= 0 < excess(high) to rounding (Illinois rule, halved every third step). */
+/* Shrinks a bracket with excess(low) <= 0 < excess(high) to rounding (Illinois rule, halved every third step). Where the
+ * excess jumps there, as when a hanger lifts off, the last place that holds is taken a little before: at the jump itself
+ * rounding decides. */
 static double last_that_holds(view *v, double low, double high, double at_low, double at_high)
 {
+    double beyond = at_high;
     int side = 0;
     for (int i = 0; i < 80 && high - low > 1e-13 && v->run->stop == TW_OK; i++) {
         double z = low + (high - low) * (at_low < at_high ? -at_low / (at_high - at_low) : 0.5);
@@ -272,16 +276,16 @@ static double last_that_holds(view *v, double low, double high, double at_low, d
             at_high *= side < 0 ? 0.5 : 1.0;
             side = -1;
             if (value > -1e-13) {
-                break;
+                return low;
             }
         } else {
             high = z;
-            at_high = value;
+            at_high = beyond = value;
             at_low *= side > 0 ? 0.5 : 1.0;
             side = 1;
         }
     }
-    return low;
+    return beyond > JUMP ? fmax(0.0, low - 1e-7) : low;
 }
 
 /* Narrows the bracket around what the optimiser gave, and believes it only as far as the signs agree. */
