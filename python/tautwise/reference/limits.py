@@ -102,6 +102,10 @@ def judge_support(
     if rule["kind"] == "swing":
         return [most(support_state(bare, support)["swing_rad"], rule["most"])] if at.hold == "hanger" else []
     if rule["kind"] == "uplift":
+        risen = lift(settled, support)
+        if risen is not None:
+            down = min(state["down_N"], 0.0)
+            return [Verdict(down, rule["least"], down - rule["least"], 1.0 + max(risen, 1e-6))]
         beside = [span.length_m for k, span in enumerate(settled.spans) if k in (support - 1, support)]
         return [least(state["down_N"], rule["least"], 0.5 * sum(beside) * problem["line"]["weight_N_per_m"])]
     direction = rule.get("direction", "resultant")
@@ -117,6 +121,20 @@ def judge_support(
         capacity = number(problem["supports"][support], f"capacity_{direction}_N")
         allowed = None if capacity is None else share * capacity
     return [] if allowed is None else [most(loads[direction], allowed)]
+
+
+def lift(settled: Settled, support: int) -> float | None:
+    """How far a hanger's clamp has risen from plumb, in hanger lengths; None where the hanger carries from below.
+
+    It is lifted when it is slack, its clamp nearer than its length, or when its clamp is no lower than its support.
+    """
+    at = settled.section.supports[support]
+    if at.hold != "hanger":
+        return None
+    link = settled.clamps[support] - at.place
+    if link[2] < 0.0 and float(np.linalg.norm(link)) >= at.hanger_length_m * (1.0 - 1e-6):
+        return None
+    return float(link[2]) / at.hanger_length_m + 1.0
 
 
 def least_clearance(
