@@ -184,3 +184,16 @@ def test_names_are_texts_and_no_formulas(project):
     assert drawn(ax)
     labels = [text.get_text() for text in (ax.figure.legends or [ax.get_legend()])[0].get_texts()]
     assert "hot $\\frac$ $" in [label.replace("\\$", "$") for label in labels]
+
+
+def test_the_picture_of_a_line_is_titled_and_red_only_where_a_clearance_fails(project):
+    from matplotlib.colors import to_rgba
+
+    from tautwise.figure_style import CLEAR
+
+    for pull, fails in (("25 kN", False), ("5 kN", True)):
+        ax = plot_line(project.settle_all(pull=pull))
+        assert project.title in [text.get_text() for text in ax.texts]
+        items = [*ax.texts, *ax.lines, ax.title, ax._left_title]
+        colours = {to_rgba(item.get_color()) for item in items}
+        assert (to_rgba(CLEAR) in colours) == fails

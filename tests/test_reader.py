@@ -14,6 +14,7 @@ from hypothesis import strategies as st
 
 from tautwise.errors import Fault, InputError
 from tautwise.keylines import KEY_LENGTH_MOST, NESTING_MOST, KeyLines, TooMuch, scan
+from tautwise.model import load
 from tautwise.profile import csv_ground
 from tautwise.reader import Document, read_project
 
@@ -210,9 +211,8 @@ def test_a_file_that_is_too_large(tmp_path):
 def test_files_that_are_no_project(tmp_path, data, line, problem):
     file = tmp_path / "x.toml"
     file.write_bytes(data)
-    (fault,) = faults_of(read_project, file)
+    fault, *_ = [each for each in faults_of(load, file) if problem in each.problem]
     assert (fault.file, fault.line) == (str(file), line)
-    assert problem in fault.problem
 
 
 def test_no_file_folder_and_pipe(tmp_path):
@@ -296,7 +296,7 @@ def test_includes_that_are_refused(tmp_path, include, problem):
     (tmp_path / "outside.toml").write_text("x = 1\n")
     (folder / "link.toml").symlink_to(tmp_path / "outside.toml")
     main = write(folder, main=f'format = "tautwise 1"\ninclude = {include}\n', leaf="[line]\n")
-    (fault,) = faults_of(read_project, main)
+    fault, *_ = faults_of(load, main)
     assert (fault.file, fault.line) == (str(main), 2)
     assert problem in fault.problem
     assert fault.example == 'include = "loads.toml"'
@@ -307,9 +307,9 @@ def test_a_circle_of_includes(tmp_path):
         tmp_path,
         main='format = "tautwise 1"\ninclude = "a.toml"\n',
         a='include = "b.toml"\n',
-        b='x = 1\ninclude = "a.toml"\n',
+        b='\ninclude = "a.toml"\n',
     )
-    (fault,) = faults_of(read_project, main)
+    (fault,) = faults_of(load, main)
     assert (fault.file, fault.line) == (str(tmp_path / "b.toml"), 2)
     assert "circle" in fault.problem
 
@@ -318,13 +318,13 @@ def test_a_chain_of_includes_ends(tmp_path):
     for number in range(40):
         write(tmp_path, **{f"f{number}": f'include = "f{number + 1}.toml"\n'})
     main = write(tmp_path, main='format = "tautwise 1"\ninclude = "f0.toml"\n')
-    (fault,) = faults_of(read_project, main)
+    (fault,) = faults_of(load, main)
     assert "too many included files" in fault.problem
 
 
 def test_a_fault_in_an_included_file_names_it(tmp_path):
     main = write(tmp_path, main='format = "tautwise 1"\ninclude = "a.toml"\n', a="x = 1\ny = = 2\n")
-    (fault,) = faults_of(read_project, main)
+    (fault,) = faults_of(load, main)
     assert (fault.file, fault.line) == (str(tmp_path / "a.toml"), 2)
 
 
@@ -414,3 +414,51 @@ def test_no_text_breaks_the_profile_reader(tmp_path_factory, text):
 def test_elevation_between_the_points(tmp_path):
     profile, _ = ground(tmp_path, "station_m,elevation_m\n0,0\n10,5\n20,0\n")
     assert [profile.elevation(station) for station in (0.0, 4.0, 10.0, 15.0, 20.0)] == [0.0, 2.0, 5.0, 2.5, 0.0]
+
+
+def test_faults_of_includes_hide_no_others(tmp_path):
+    main = write(
+        tmp_path,
+        main='format = "tautwise1"\ninclude = ["none.toml", "bad.toml", "good.toml"]\n[line]\nwieght = "1 N/m"\n',
+        bad="x = = 1\n",
+        good='include = "gone.toml"\n[stringing]\ntemperature = "x"\n',
+    )
+    problems = [(os.path.basename(fault.file), fault.problem) for fault in faults_of(load, main)]
+    for file, words in [
+        ("main.toml", '"tautwise1" is a format that this version does not read'),
+        ("main.toml", 'there is no file "none.toml"'),
+        ("bad.toml", "not TOML"),
+        ("good.toml", 'there is no file "gone.toml"'),
+        ("good.toml", '"x"'),
+        ("main.toml", "unknown key"),
+    ]:
+        assert [problem for name, problem in problems if name == file and words in problem], (file, words, problems)
+
+
+def test_a_missing_format_is_told_beside_a_missing_include(tmp_path):
+    main = write(tmp_path, main='include = "none.toml"\n[line]\nweight = "1 N/m"\n')
+    assert [fault.path for fault in faults_of(load, main)] == ["format", "include"]
+
+
+def test_a_newer_format_is_read_no_further(tmp_path):
+    main = write(tmp_path, main='format = "tautwise 2"\n[line]\nwieght = "1 N/m"\n')
+    (fault,) = faults_of(load, main)
+    assert "does not read" in fault.problem
+
+
+@pytest.mark.parametrize("name", ["a\\u0000b", "a\\u001b[31m.toml"])
+def test_an_include_that_cannot_be_printed(tmp_path, name):
+    main = write(tmp_path, main=f'format = "tautwise 1"\ninclude = "{name}"\n')
+    (fault,) = [each for each in faults_of(load, main) if each.path == "include"]
+    assert "cannot be printed" in fault.problem
+    assert fault.example == 'include = "loads.toml"'
+
+
+def test_includes_that_are_no_files(tmp_path):
+    (tmp_path / "folder").mkdir()
+    os.mkfifo(tmp_path / "pipe")
+    main = write(tmp_path, main='format = "tautwise 1"\ninclude = ["folder", "pipe"]\n')
+    faults = [each for each in faults_of(load, main) if each.path.startswith("include")]
+    assert [(each.path, each.line) for each in faults] == [("include[0]", 2), ("include[1]", 2)]
+    assert all("is not a file" in each.problem for each in faults)
+    assert all(each.example == 'include = "loads.toml"' for each in faults)

@@ -83,16 +83,18 @@ TAUTWISE = [each for each in shown() if each.command.startswith("tautwise ")]
 
 
 @pytest.fixture
-def faulty(tmp_path, monkeypatch):
-    """The README's project file with the two slips that it shows the messages of."""
-    text = blocks("toml")[0].replace("tolerance =", "tolerence =").replace('weight = "7.55 N/m"', 'weight = "7.55 kN"')
+def written(tmp_path):
+    """The README's project file, and the same with the two slips that it shows the messages of."""
+    text = blocks("toml")[0]
+    (tmp_path / "yard.taut.toml").write_text(text, encoding="utf-8")
+    text = text.replace("tolerance =", "tolerence =").replace('weight = "7.55 N/m"', 'weight = "7.55 kN"')
     (tmp_path / "faulty.taut.toml").write_text(text, encoding="utf-8")
     return tmp_path
 
 
 @pytest.mark.parametrize("each", TAUTWISE, ids=lambda each: each.command)
-def test_commands_print_what_is_shown(each, faulty, monkeypatch, capsys):
-    monkeypatch.chdir(faulty if "faulty" in each.command else each.folder)
+def test_commands_print_what_is_shown(each, written, monkeypatch, capsys):
+    monkeypatch.chdir(written if re.search("faulty|yard", each.command) else each.folder)
     cli.run(shlex.split(each.command)[1:])
     output = capsys.readouterr()
     real = (output.err + output.out).rstrip("\n")

@@ -248,7 +248,7 @@ void tw_stringing_range(const tw_project *project, double *low_N, double *high_N
         }
     }
     *high_N = high > *low_N ? high : fmax(0.02 * project->line.stiffness_N, 10.0 * *low_N);
-    *low_N = fmax(*low_N, 1e-6 * *high_N); /* a line that weighs next to nothing */
+    *low_N = fmax(*low_N, 1e-12 * *high_N); /* a line that weighs next to nothing */
 }
 
 /* The pull at which a support's tension is least: on a steep span far below that of a level one. */

@@ -114,6 +114,9 @@ def read_tables(document: Document) -> Checked:
     checked.marks = _array(checked, "mark", Mark)
     checked.limits = [_limit(checked, number) for number in _numbers(checked, "limit")]
     _unique_names(checked)
+    if document.incomplete:
+        there = [fault for fault in checked.faults if fault.problem != "missing" or fault in document.faults]
+        checked.faults = there
     return checked
 
 
@@ -146,8 +149,11 @@ def at_most_one(checked: Checked, path: KeyPath, model: type[Table], keys: Seque
 def known_names(checked: Checked, path: KeyPath, array: str) -> None:
     """A fault for each name in the list at a path that no table of an array bears."""
     there = checked.names(array)
-    for number, name in enumerate(checked.listed(*path)):
-        if name not in there:
+    listed = checked.listed(*path)
+    for number, name in enumerate(listed):
+        if name in listed[:number]:
+            checked.fault((*path, number), f'"{shown(name)}" stands here twice')
+        elif name not in there:
             known = [other for other in there if other]
             checked.fault((*path, number), f'there is no {array} "{shown(name)}"; {did_you_mean(name, known)}')
 
@@ -186,7 +192,8 @@ def _slips(checked: Checked, at: KeyPath, model: type[Table], error: ValidationE
 def _required(checked: Checked, key: str, model: type[T], example: str) -> T | None:
     raw = checked.document.tables.get(key)
     if raw is None:
-        checked.fault((), f"the table [{key}] is missing", f"[{key}] with its keys", example)
+        if not checked.document.incomplete:
+            checked.fault((), f"the table [{key}] is missing", f"[{key}] with its keys", example)
         return None
     return _table(checked, (key,), model, raw) if _is_table(checked, (key,), raw) else None
 
@@ -251,7 +258,7 @@ def _limit(checked: Checked, number: int) -> BaseLimit | None:
         return None
     if "kind" not in raw:
         known = {key for model in LIMITS.values() for key in keys_of(model)}
-        slip = next((key for key in raw if key not in known and nearest(key, known) == "kind"), None)
+        slip = next((key for key in raw if key not in known and nearest(str(key), known) == "kind"), None)
         if slip is not None:
             checked.slip((*path, slip), "kind", ("kind",))
     kind = raw.get("kind")

@@ -10,11 +10,12 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Callable, Iterable, Sequence
+from contextlib import suppress
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
 
-from tautwise.files import ENDING, there_already, unfolded, write_whole
+from tautwise.files import ENDING, not_to_be_written, there_already, unfolded, write_whole
 from tautwise.strict import inert
 
 if TYPE_CHECKING:
@@ -25,6 +26,10 @@ if TYPE_CHECKING:
 T = TypeVar("T")
 
 DONE, FAILS, BAD_INPUT, FAILED = 0, 1, 2, 3
+
+
+class NoOutput(Exception):
+    """What a command prints cannot be written."""
 
 
 class Careful(click.Command):
@@ -92,8 +97,8 @@ def start(file: str, force: bool, as_json: bool) -> int:
     if file == "-":
         _print(start_text())
         return DONE
-    if os.path.lexists(file) and not force:
-        _tell([there_already(file)])
+    if refusal := not_to_be_written(file, force=force):
+        _tell([refusal])
         return BAD_INPUT
     try:
         write_whole(file, start_text(), force=force)
@@ -229,6 +234,9 @@ def main(arguments: Sequence[str] | None = None) -> None:
     ----------
     arguments: as after the program's name; None takes those of the process.
     """
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="backslashreplace")  # a locale of few letters must not end a command
     sys.exit(run(arguments))
 
 
@@ -236,17 +244,24 @@ def run(arguments: Sequence[str] | None = None) -> int:
     """Run the command line; the exit code."""
     try:
         code = commands.main(arguments, prog_name="tautwise", standalone_mode=False)
-        sys.stdout.flush()
-        return int(code or DONE)
+        return _flushed(int(code or DONE))
     except click.exceptions.Exit as stop:
-        return stop.exit_code
+        try:
+            return _flushed(stop.exit_code)
+        except NoOutput as error:
+            return _unwritten(error)
+    except SystemExit:  # how click leaves where the reader of a help text has closed the pipe
+        _silence_stdout()
+        return DONE
+    except NoOutput as error:
+        return _unwritten(error)
+    except OSError as error:  # from the printing of a help text; everything else has its own message
+        return _unwritten(NoOutput(error.strerror or error))
     except click.ClickException as error:
         error.show()
         return BAD_INPUT
     except (click.Abort, KeyboardInterrupt):
         _tell(["cancelled"])
-    except BrokenPipeError:
-        _silence_stdout()
     except MemoryError:
         _tell(["out of memory"])
     except Exception as error:
@@ -306,18 +321,39 @@ def _ink() -> Ink:
     from tautwise.text import Ink
 
     plain = os.environ.get("NO_COLOR") or os.environ.get("TERM") == "dumb"
-    return Ink(sys.stdout.isatty() and not plain)
+    return Ink(sys.stdout is not None and sys.stdout.isatty() and not plain)
 
 
 def _tell(lines: Iterable[str]) -> None:
-    """Print to stderr, a line each."""
-    for line in lines:
-        for part in line.splitlines():
-            click.echo(inert(part), err=True)
+    """Print to stderr, a line each; nobody is left to tell where that is closed."""
+    with suppress(OSError, ValueError):
+        for line in lines:
+            for part in line.splitlines():
+                click.echo(inert(part), err=True)
 
 
 def _print(text: str) -> None:
-    sys.stdout.write(text)
+    """Print to stdout; a reader who has closed the pipe has seen enough, and the exit code stays what it is."""
+    if sys.stdout is None:
+        raise NoOutput("there is no standard output")
+    try:
+        sys.stdout.write(text)
+    except BrokenPipeError:
+        _silence_stdout()
+    except OSError as error:
+        raise NoOutput(error.strerror) from None
+
+
+def _flushed(code: int) -> int:
+    """An exit code, once everything printed has gone out."""
+    try:
+        if sys.stdout is not None:
+            sys.stdout.flush()
+    except BrokenPipeError:
+        _silence_stdout()
+    except OSError as error:
+        raise NoOutput(error.strerror) from None
+    return code
 
 
 def _print_texts(texts: Iterable[list[str]]) -> None:
@@ -339,8 +375,16 @@ def _print_json(document: Any) -> None:
     _print(readable_json(document) + "\n")
 
 
+def _unwritten(error: NoOutput) -> int:
+    _silence_stdout()
+    _tell([f"the output cannot be written: {error}"])
+    return FAILED
+
+
 def _silence_stdout() -> None:
     """Let the exit not stumble over what cannot be written any more."""
+    if sys.stdout is None:
+        return
     try:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
     except (OSError, ValueError):

@@ -49,7 +49,7 @@ class Fault:
         head = ": ".join(part for part in (place, self.path) if part)
         text = f"{head}: {self.problem}" if head else self.problem
         if self.expected:
-            text += f"; expected {self.expected}"
+            text += f"{'' if text.endswith('?') else ';'} expected {self.expected}"
         if self.example:
             text += f", for example {self.example}" if self.expected else f"; for example {self.example}"
         return inert(text)

@@ -9,7 +9,7 @@ from pydantic import BaseModel, ValidationError
 from pydantic.fields import FieldInfo
 
 from tautwise.errors import Fault
-from tautwise.fields import Kind
+from tautwise.fields import NAME_EXAMPLE, Kind
 from tautwise.keylines import Path as KeyPath
 from tautwise.limits import LIMITS
 from tautwise.reader import Document
@@ -20,6 +20,22 @@ NOT_YET = {
     "arrange": "arranging supports is not available in this version",
     "sweep": "sweeps are not available in this version",
 }
+
+TABLES = {
+    "ice": '{ thickness = "15 mm", density = "900 kg/m^3" }',
+    "wind": '{ pressure = "400 Pa" }',
+    "capacity": '{ along = "90 kN" }',
+    "tension": '{ support = "West mast", value = "20 kN" }',
+    "sag": '{ from = "West mast", to = "East mast", value = "6.7 m" }',
+    "load": '{ force = "2 kN", at = "75 m" }',
+}
+LISTS = {
+    "load": f"[ {TABLES['load']} ]",
+    "conditions": '["hot"]',
+    "supports": '["West mast"]',
+    "spans": '["West mast"]',
+}
+NAMES = {"condition": "hot", "conditions": "hot", "crossing": "channel", "mark": "marker ball", "load": "trolley"}
 
 
 def faults_of(
@@ -34,12 +50,12 @@ def faults_of(
         if kind == "extra_forbidden":
             yield unknown_key(document, (*at, *path), keys_of(_model_at(model, path[:-1]) or model))
         elif kind == "tautwise":
-            example = _example(path, context["example"])
+            example = _example((*at, *path), context["example"])
             yield document.fault((*at, *path), context["problem"], context["expected"], example)
         elif kind == "missing":
             field = _field_at(model, path)
             words, example = _expectation(field)
-            yield document.fault((*at, *path), "missing", words, _example(path, example))
+            yield document.fault((*at, *path), "missing", words, _example((*at, *path), example))
         else:
             yield _shape_fault(document, (*at, *path), kind, item["input"])
 
@@ -89,6 +105,9 @@ def example_of(model: type[BaseModel], key: str) -> str:
 
 
 def _example(path: KeyPath, value: str) -> str:
+    if value == NAME_EXAMPLE:
+        tables = [part for part in path if isinstance(part, str) and part in NAMES]
+        value = f'"{NAMES[tables[-1]]}"' if tables else value
     if not value or not path or not isinstance(path[-1], str):
         return value
     key = path[-1]
@@ -96,11 +115,28 @@ def _example(path: KeyPath, value: str) -> str:
 
 
 def _shape_fault(document: Document, path: KeyPath, kind: str, value: Any) -> Fault:
-    if kind in {"too_short", "too_long"}:
-        return document.fault(path, "an empty list" if kind == "too_short" else "too long a list")
-    wanted = "a list" if kind.startswith(("tuple", "list")) else "a table"
-    example = '["...", "..."]' if wanted == "a list" else "{ ... }"
-    return document.fault(path, f"{described(value)} where {wanted} is needed", wanted, _example(path, example))
+    key = next((part for part in reversed(path) if isinstance(part, str)), "")
+    if kind == "invalid_key":
+        return document.fault(path[:-1], f"the key {shown(str(path[-1]))} is no text", "the keys of a project file")
+    if kind == "too_short":
+        return document.fault(path, "an empty list", "one name or more", _example(path, LISTS.get(key, "")))
+    if kind.startswith(("tuple", "list")):
+        words = f"{described(value)} where a list is needed"
+        return document.fault(path, words, "a list", _example(path, LISTS.get(key, "")))
+    words, example = f"{described(value)} where a table is needed", TABLES.get(key, "")
+    if path == ("stringing", "tension") and isinstance(value, str):
+        words += '; did you mean "horizontal_tension"?'
+        example = _tension_example(document, value)
+    return document.fault(path, words, "a table", _example(path, example))
+
+
+def _tension_example(document: Document, value: str) -> str:
+    """The tension at the first support, as it would be written."""
+    supports = document.tables.get("support")
+    first = supports[0] if isinstance(supports, list | tuple) and supports else None
+    name = first.get("name") if isinstance(first, dict) else None
+    where = name if isinstance(name, str) else "West mast"
+    return f'{{ support = "{shown(where)}", value = "{shown(value)}" }}'
 
 
 def _field_at(model: type[BaseModel], path: KeyPath) -> FieldInfo | None:

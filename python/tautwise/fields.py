@@ -20,6 +20,7 @@ from tautwise.units import DIMENSIONS, quantity, read_unit
 LABEL_LENGTH_MOST = 80
 PROSE_LENGTH_MOST = 2000
 LENGTHS_MOST = 2000
+NAME_EXAMPLE = '"West mast"'
 
 
 class Kind:
@@ -71,7 +72,7 @@ class Measure(Kind):
     def words(self) -> str:  # type: ignore[override]
         """What is expected, bounds included."""
         bounds = [
-            f"above {self.above:g}" if self.above is not None else "",
+            f"above {self._bound_words(self.above)}" if self.above is not None else "",
             f"of {self._bound_words(self.least)} or more" if self.least is not None else "",
             "and" if self.most is not None and (self.above is not None or self.least is not None) else "",
             f"at most {self._bound_words(self.most)}" if self.most is not None else "",
@@ -116,7 +117,9 @@ class Measure(Kind):
         return "negative" if 0.0 in (self.above, self.least) else "too small"
 
     def _bound_words(self, bound: float) -> str:
-        return f"{math.degrees(bound):g} deg" if self.unit == "rad" else f"{bound:g}"
+        if self.unit == "rad":
+            return f"{math.degrees(bound):g} deg"
+        return f"{bound:g}" if not bound or self.unit == "1" else f"{bound:g} {self.unit}"
 
 
 @dataclass(frozen=True)
@@ -333,5 +336,5 @@ SwingAngle = Annotated[float, Measure("rad", "35 deg", above=0.0, most=math.pi /
 Drag = Annotated[float, Measure("1", "1.0", least=0.0)]
 Share = Annotated[float, Measure("1", "50 %", above=0.0, most=1.0)]
 Tolerance = Annotated[float, Measure("1", "3 %", least=0.0, most=0.5)]
-Name = Annotated[str, Words("a name", "West mast")]
+Name = Annotated[str, Words("a name", NAME_EXAMPLE.strip('"'))]
 Prose = Annotated[str, Words("a text", "...", prose=True)]

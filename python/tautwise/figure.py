@@ -99,6 +99,7 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
     tightest = tightest_of(scenery, shapes)
     if tightest:
         _draw_tightest(ax, tightest)
+    _draw_title(ax, scenery.title)
     _draw_legend(ax, own=own)
     return ax
 
@@ -182,7 +183,7 @@ def _draw_ground(ax: Any, scenery: Scenery) -> None:
         inside = np.unique(np.concatenate([[left, right], x[(x > left) & (x < right)]]))
         level = np.interp(inside, x, z) + needs
         label = ASKED if number == 0 else None
-        ax.plot(inside, level, color=CLEAR, linewidth=1.0, linestyle=":", zorder=3, label=label)
+        ax.plot(inside, level, color=INK, linewidth=1.0, linestyle=":", zorder=3, label=label)
 
 
 def _draw_crossings(ax: Any, scenery: Scenery) -> None:
@@ -193,7 +194,7 @@ def _draw_crossings(ax: Any, scenery: Scenery) -> None:
         ax.plot([left, right], [top, top], **edge)
         if needs > 0.0:
             known = ax.get_legend_handles_labels()[1]
-            dotted = {"color": CLEAR, "linewidth": 1.0, "linestyle": ":", "zorder": 3}
+            dotted = {"color": INK, "linewidth": 1.0, "linestyle": ":", "zorder": 3}
             label = None if ASKED in known else ASKED
             ax.plot([left, left, right, right], [top, top + needs, top + needs, top], label=label, **dotted)
         low = min(top, float(ground.min()))
@@ -231,15 +232,22 @@ def _draw_chords(ax: Any, line: Equilibrium) -> None:
 
 def _draw_tightest(ax: Any, found: Tightest) -> None:
     height = found.line_m - found.below_m
-    arrow = {"arrowstyle": "<->", "color": CLEAR, "linewidth": 1.3, "shrinkA": 0, "shrinkB": 0}
+    colour = CLEAR if found.margin_m < 0.0 else INK
+    arrow = {"arrowstyle": "<->", "color": colour, "linewidth": 1.3, "shrinkA": 0, "shrinkB": 0}
     x = found.station_m
     ax.annotate("", (x, found.below_m), xytext=(x, found.line_m), arrowprops=arrow, zorder=8)
     box = {"facecolor": "white", "edgecolor": "none", "alpha": 0.8, "pad": 0.8}
     ax.annotate(f"{height:.2f} m", (x, found.below_m + 0.45 * height), xytext=(5, 0), textcoords="offset points",
-                va="center", fontsize=8, color=CLEAR, bbox=box, zorder=9)  # fmt: skip
+                va="center", fontsize=8, color=colour, bbox=box, zorder=9)  # fmt: skip
     needs = f" ({found.needs_m:.4g} m asked for)" if found.needs_m else ""
     words = f"Tightest clearance: {height:.2f} m{needs}, station {x:.1f} m, {found.condition}"
-    ax.set_title(plain(words), loc="left", fontsize=9, color=CLEAR)
+    ax.set_title(plain(words), loc="left", fontsize=9, color=colour)
+
+
+def _draw_title(ax: Any, title: str) -> None:
+    if title:
+        ax.annotate(plain(title), (0.0, 1.0), xycoords="axes fraction", xytext=(0, 22), textcoords="offset points",
+                    fontsize=11, fontweight="bold", color=INK, annotation_clip=False)  # fmt: skip
 
 
 def _legend_labels(lines: Sequence[Equilibrium]) -> list[str]:

@@ -57,6 +57,6 @@ def margins(ax: Any, labels: list[str]) -> dict[str, float]:
     return {
         "left": 0.95 / wide,
         "right": 1.0 - 0.15 / wide,
-        "top": 1.0 - 0.35 / high,
+        "top": 1.0 - 0.6 / high,
         "bottom": (0.65 + 0.2 * rows) / high,
     }

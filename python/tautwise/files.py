@@ -31,6 +31,21 @@ def there_already(file: str) -> str:
     return f"{file}: the file is there already; --force overwrites it"
 
 
+def not_to_be_written(file: str, *, force: bool) -> str:
+    """Why a file is not written; empty where nothing speaks against it.
+
+    >>> not_to_be_written("", force=True)
+    'a file name is missing; for example line.taut.toml'
+    """
+    if not file:
+        return f"a file name is missing; for example line{ENDING}"
+    if not os.path.lexists(file):
+        return ""
+    if not os.path.isfile(file):
+        return f"{file}: this is not a regular file, and stays as it is"
+    return "" if force else there_already(file)
+
+
 def write_whole(file: str, text: str, *, force: bool) -> None:
     """Write a file whole or not at all: to a temporary name beside it, synced, then put in place."""
     import tempfile

@@ -13,6 +13,9 @@ if TYPE_CHECKING:
     from tautwise.results import Equilibrium
 
 
+DEEP_SAG_SHARE = 0.25  # of the span
+
+
 def findings_of(project: Project, conditions: Sequence[Equilibrium], pull: float | None) -> tuple[str, ...]:
     """One line for each thing that is hardly meant, with the file's name in front; `pull` in N as it was asked for."""
     loops = [text for each in conditions for text in _loops(each)]
@@ -38,9 +41,9 @@ def _broken(project: Project, conditions: Sequence[Equilibrium]) -> list[str]:
 
 
 def _loops(line: Equilibrium) -> list[str]:
-    """Spans that hang deeper than they are long."""
+    """Spans that hang deeper than any line that is tensioned."""
     return [
         f"{span.name} hangs {span.sag_m:.4g} m deep over {span.span_m:.4g} m in {line.name!r}; is the line this long?"
         for span in line.spans
-        if span.sag_m > span.span_m
+        if span.sag_m > DEEP_SAG_SHARE * span.span_m
     ]

@@ -48,6 +48,10 @@ class SpanStates:
     line_length: Floats
     status: NDArray[np.int32]
 
+    def __post_init__(self) -> None:
+        for name in self.__slots__:
+            getattr(self, name).setflags(write=False)
+
     @property
     def settled(self) -> NDArray[np.bool_]:
         """Where the status is 0."""
@@ -92,6 +96,14 @@ def settle_spans(
     weight, across: load per natural metre, down and horizontally across, N/m.
     strain: expansion plus creep (e0).
 
+    Returns
+    -------
+    The states, in arrays that cannot be written to.
+
+    Raises
+    ------
+    InputError: an argument is a masked array.
+
     Warns
     -----
     SpanWarning: how many items are not settled, and why.
@@ -106,6 +118,10 @@ def settle_spans(
     """
     from tautwise import _core
 
+    _refuse_masked(
+        span=span, rise=rise, natural_length=natural_length, stiffness=stiffness, weight=weight, across=across,
+        strain=strain,
+    )  # fmt: skip
     answer = SpanStates(*_core.settle_spans(span, rise, natural_length, stiffness, weight, across, strain))
     _warn(answer.status)
     return answer
@@ -137,6 +153,10 @@ def natural_length(
     """
     from tautwise import _core
 
+    _refuse_masked(
+        span=span, rise=rise, horizontal_tension=horizontal_tension, stiffness=stiffness, weight=weight, across=across,
+        strain=strain,
+    )  # fmt: skip
     length, status = _core.natural_length(span, rise, horizontal_tension, stiffness, weight, across, strain)
     _warn(status)
     return length  # type: ignore[no-any-return]
@@ -158,6 +178,18 @@ def _status_names() -> tuple[tuple[int, str], ...]:
     outcomes = [name for name in _core.STATUS if not name.startswith("error_")]
     errors = [name for name in _core.STATUS if name.startswith("error_")]
     return (*enumerate(outcomes), *((-number, name) for number, name in enumerate(errors, start=1)))
+
+
+def _refuse_masked(**arguments: Any) -> None:
+    """A mask would be dropped without a word, and what it hides settled."""
+    import numpy as np
+
+    from tautwise.errors import Fault, InputError
+
+    masked = [name for name, value in arguments.items() if isinstance(value, np.ma.MaskedArray)]
+    if masked:
+        example = "values.filled(numpy.nan)"
+        raise InputError([Fault(None, None, name, "a masked array", "a plain one", example) for name in masked])
 
 
 def _warn(status: Any) -> None:

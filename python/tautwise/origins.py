@@ -121,4 +121,5 @@ def scenery_of(project: Project) -> Scenery:
             for limit in limits
             if limit.over == GROUND
         ),
+        title=project.title,
     )

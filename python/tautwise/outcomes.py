@@ -79,7 +79,7 @@ def refuse_slack(project: Project, status: str, text: str, condition: str = "") 
         expected = f"natural lengths that put the line under load, or shorter ones ({_holds_apart(project)})"
         raise InputError([project.core_fault("stringing.natural_length", f"{text}{where}", expected)])
     if status == "out_of_reach" and given:
-        raise InputError([_too_short(project, text)])
+        raise InputError([_out_of_reach(project, text)])
     if status == "out_of_reach":
         raise InputError([project.core_fault("stringing", text, "a rule that the line can meet")])
 
@@ -90,9 +90,11 @@ def chords_m(project: Project) -> list[float]:
     return [math.dist(before, after) for before, after in pairwise(points)]
 
 
-def _too_short(project: Project, text: str) -> Fault:
+def _out_of_reach(project: Project, text: str) -> Fault:
     given = project.stringing.natural_length_m
     total, apart = math.fsum(given if isinstance(given, tuple) else (given or 0.0,)), math.fsum(chords_m(project))
+    if total > apart:
+        text = f"the line is too long: {total:.3f} m for supports that are {apart:.3f} m apart along it"
     if total < apart:
         text = f"the line is too short: {total:.3f} m would have to stretch by {100.0 * (apart / total - 1.0):.3g} %"
     return project.core_fault("stringing.natural_length", text, f"lengths near the distances {_holds_apart(project)}")

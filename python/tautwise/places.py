@@ -24,12 +24,14 @@ class Scenery(Record):
     crossings: name, from, to, top, and the widest clearance that a limit asks for above it.
     supports: name, station and elevation of the point where the hold is fixed, and the hold.
     ground_clearances: from, to, and the clearance that a limit asks for above the ground.
+    title: of the project.
     """
 
     ground: tuple[tuple[float, float], ...]
     crossings: tuple[tuple[str, float, float, float, float], ...]
     supports: tuple[tuple[str, float, float, str], ...]
     ground_clearances: tuple[tuple[float, float, float], ...]
+    title: str = ""
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -8,6 +8,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 from tautwise.keylines import Path as KeyPath
+from tautwise.limits import SupportLoadLimit, TensionLimit
 from tautwise.reader import Document
 from tautwise.strict import shown
 from tautwise.tables import Condition
@@ -22,9 +23,10 @@ DENSITY_KG_PER_M3 = (1_000.0, 20_000.0)
 MODULUS_PA = (1e9, 250e9)
 BREAKING_STRESS_PA = (20e6, 3000e6)
 EXPANSION_PER_K = (1e-6, 50e-6)
-HOTTEST_DEGC, HOTTEST_WITH_ICE_DEGC = 150.0, 5.0
+HOTTEST_DEGC, HOTTEST_WITH_ICE_DEGC = 120.0, 5.0
 LEAST_PULL_N = 20.0
-ICE_DIAMETERS_MOST, ICE_MOST_M = 5.0, 0.060
+LEAST_ALLOWED_N = 100.0
+ICE_DIAMETERS_MOST, ICE_MOST_M = 3.0, 0.060
 WIND_PRESSURE_MOST_PA, WIND_SPEED_MOST_M_PER_S = 3000.0, 90.0
 DRAG = (0.3, 2.5)
 SPAN_MOST_M, HEIGHT_MOST_M = 5000.0, 400.0
@@ -32,7 +34,7 @@ SPAN_MOST_M, HEIGHT_MOST_M = 5000.0, 400.0
 
 def warnings_of(project: Project, document: Document) -> tuple[str, ...]:
     """One line for each value that is hardly meant: file, line, key, why, and what it may have been meant to be."""
-    slips = [*_line(project), *_stringing(project), *_supports(project)]
+    slips = [*_line(project), *_stringing(project), *_supports(project), *_crossings(project), *_limits(project)]
     for number, condition in enumerate(project.conditions):
         slips += [((*("condition", number), *path), text) for path, text in _condition(project, condition)]
     return tuple(str(document.fault(path, text)) for path, text in slips)
@@ -63,7 +65,7 @@ def _line(project: Project) -> Iterator[Slip]:
             yield ("line", "area"), text
     expansion = line.given_expansion_per_K
     if expansion and not EXPANSION_PER_K[0] <= expansion <= EXPANSION_PER_K[1]:
-        yield ("line", "expansion"), f"{expansion:g} per K: a power of ten lost, or per degF for per K?"
+        yield ("line", "expansion"), f"{expansion:.4g} per K: a power of ten lost, or per degF for per K?"
 
 
 def _weight(project: Project, area_m2: float) -> Iterator[Slip]:
@@ -73,12 +75,12 @@ def _weight(project: Project, area_m2: float) -> Iterator[Slip]:
     low, high = DENSITY_KG_PER_M3
     if low <= density <= high:
         return
-    text = f"{weight:g} N/m over {_in(area_m2, 1e-6)} mm2 would be a density of {density:,.0f} kg/m3"
+    text = f"{weight:.4g} N/m over {_in(area_m2, 1e-6)} mm2 would be a density of {density:,.0f} kg/m3"
     slips = {
-        f'kg/km taken for N/m? then mass = "{weight / 1000:g} kg/m"': density * gravity / 1000,
-        f'kg/m taken for N/m? then mass = "{weight:g} kg/m"': density * gravity,
-        f"a factor of 1000? then {weight / 1000:g} N/m": density / 1000,
-        f'N/m taken for kg/m? then weight = "{weight / gravity:g} N/m"': density / gravity,
+        f'kg/km taken for N/m? then mass = "{weight / 1000:.4g} kg/m"': density * gravity / 1000,
+        f'kg/m taken for N/m? then mass = "{weight:.4g} kg/m"': density * gravity,
+        f"a factor of 1000? then {weight / 1000:.4g} N/m": density / 1000,
+        f'N/m taken for kg/m? then weight = "{weight / gravity:.4g} N/m"': density / gravity,
     }
     likely = [slip for slip, meant in slips.items() if low <= meant <= high]
     yield ("line", key), f"{text}: {likely[0] if likely else 'check the weight and the diameter or area'}"
@@ -87,7 +89,7 @@ def _weight(project: Project, area_m2: float) -> Iterator[Slip]:
 def _stringing(project: Project) -> Iterator[Slip]:
     stringing = project.stringing
     if stringing.temperature_degC > 60.0:
-        text = f"{stringing.temperature_degC:g} degC is hot for stringing: degF for degC?"
+        text = f"{stringing.temperature_degC:.4g} degC is hot for stringing: degF for degC?"
         yield ("stringing", "temperature"), text
     pulls: dict[KeyPath, float | None] = {("horizontal_tension",): stringing.horizontal_tension_N}
     if stringing.tension is not None:
@@ -95,9 +97,9 @@ def _stringing(project: Project) -> Iterator[Slip]:
     strength = project.line.breaking_strength_N
     for key, pull in pulls.items():
         if pull is not None and pull < LEAST_PULL_N:
-            yield ("stringing", *key), f"a pull of {pull:g} N: kN for N?"
+            yield ("stringing", *key), f"a pull of {pull:.4g} N: kN for N?"
         if pull is not None and strength is not None and pull > strength:
-            text = f"{pull:g} N is above the breaking strength, {strength:g} N: kN for N, or kgf for N?"
+            text = f"{_force(pull)} is above the breaking strength, {_force(strength)}: kN for N, or kgf for N?"
             yield ("stringing", *key), text
 
 
@@ -105,7 +107,7 @@ def _supports(project: Project) -> Iterator[Slip]:
     for number, (before, after) in enumerate(pairwise(project.supports), start=1):
         span = after.station_m - before.station_m
         if span > SPAN_MOST_M:
-            text = f"a span of {span:g} m: ft for m, or a zero too many?"
+            text = f"a span of {span:.4g} m: ft for m, or a zero too many?"
             yield ("support", number, "station"), text
     for number, support in enumerate(project.supports):
         if project.ground is None:
@@ -113,34 +115,64 @@ def _supports(project: Project) -> Iterator[Slip]:
         key = "height" if support.height_m is not None else "elevation"
         height = project.elevation_m(support) - project.ground.elevation(support.station_m)
         if height < 0.0:
-            yield ("support", number, key), f"the support lies {-height:g} m below the ground: height for elevation?"
+            yield ("support", number, key), f"the support lies {-height:.4g} m below the ground: height for elevation?"
         elif height > HEIGHT_MOST_M:
-            text = f"the support lies {height:g} m above the ground: ft for m, or an elevation for a height?"
+            text = f"the support lies {height:.4g} m above the ground: ft for m, or an elevation for a height?"
             yield ("support", number, key), text
+
+
+def _crossings(project: Project) -> Iterator[Slip]:
+    first, last = project.supports[0].station_m, project.supports[-1].station_m
+    for number, crossing in enumerate(project.crossings):
+        for key, station in (("from", crossing.from_m), ("to", crossing.to_m)):
+            if not first <= station <= last:
+                text = f"the crossing lies partly off the route, which runs from {first:.6g} m to {last:.6g} m"
+                yield ("crossing", number, key), text
+
+
+def _limits(project: Project) -> Iterator[Slip]:
+    strength = project.line.breaking_strength_N
+    for number, limit in enumerate(project.limits):
+        if not isinstance(limit, TensionLimit | SupportLoadLimit) or limit.most is None:
+            continue
+        if limit.most < LEAST_ALLOWED_N:
+            yield ("limit", number, "most"), f"{limit.most:.4g} N: kN for N?"
+        elif isinstance(limit, TensionLimit) and strength is not None and limit.most > strength:
+            text = f"{_force(limit.most)} is above the breaking strength, {_force(strength)}: kN for N, or kgf for N?"
+            yield ("limit", number, "most"), text
+    for number, support in enumerate(project.supports):
+        for key in ("along", "across", "down", "up"):
+            capacity = getattr(support.capacity, f"{key}_N")
+            if capacity is not None and capacity < LEAST_ALLOWED_N:
+                yield ("support", number, "capacity", key), f"{capacity:.4g} N: kN for N?"
 
 
 def _condition(project: Project, condition: Condition) -> Iterator[Slip]:
     temperature, ice, wind = condition.temperature_degC, condition.ice, condition.wind
     iced = ice is not None and ice.thickness_m > 0.0
     if temperature > HOTTEST_DEGC:
-        yield ("temperature",), f"{temperature:g} degC: degF for degC?"
+        yield ("temperature",), f"{temperature:.4g} degC: degF for degC?"
     elif iced and temperature > HOTTEST_WITH_ICE_DEGC:
-        yield ("temperature",), f'ice at {temperature:g} degC: degF for degC? then "{temperature:g} degF"'
+        yield ("temperature",), f'ice at {temperature:.4g} degC: degF for degC? then "{temperature:.4g} degF"'
     if ice is not None and iced:
         diameter = project.line.diameter_m or math.inf
-        if ice.thickness_m > ICE_MOST_M and ice.thickness_m > ICE_DIAMETERS_MOST * diameter:
+        if ice.thickness_m > ICE_MOST_M or ice.thickness_m > ICE_DIAMETERS_MOST * diameter:
             text = f"{_in(ice.thickness_m, 1e-3)} mm of ice all round: it is the radial thickness, not the diameter"
             yield ("ice", "thickness"), text
         if not 200.0 <= ice.density_kg_per_m3 <= 950.0:
-            yield ("ice", "density"), f"{ice.density_kg_per_m3:g} kg/m3 is no density of ice or rime"
+            yield ("ice", "density"), f"{ice.density_kg_per_m3:.4g} kg/m3 is no density of ice or rime"
     if wind is None:
         return
     if wind.pressure_Pa is not None and wind.pressure_Pa > WIND_PRESSURE_MOST_PA:
-        yield ("wind", "pressure"), f"{wind.pressure_Pa:g} Pa: psf or kPa for Pa, a factor of 1000?"
+        yield ("wind", "pressure"), f"{wind.pressure_Pa:.4g} Pa: psf or kPa for Pa, a factor of 1000?"
     if wind.speed_m_per_s is not None and wind.speed_m_per_s > WIND_SPEED_MOST_M_PER_S:
-        yield ("wind", "speed"), f"{wind.speed_m_per_s:g} m/s: km/h for m/s?"
+        yield ("wind", "speed"), f"{wind.speed_m_per_s:.4g} m/s: km/h for m/s?"
     if wind.drag and not DRAG[0] <= wind.drag <= DRAG[1]:
-        yield ("wind", "drag"), f"a drag coefficient of {wind.drag:g}: that of a round line is about 1"
+        yield ("wind", "drag"), f"a drag coefficient of {wind.drag:.4g}: that of a round line is about 1"
+
+
+def _force(newtons: float) -> str:
+    return f"{newtons:.4g} N" if newtons < 1e3 else f"{newtons / 1e3:.4g} kN"
 
 
 def _in(value: float, unit: float) -> str:

@@ -30,6 +30,7 @@ ARRAYS = ("crossing", "support", "condition", "mark", "limit")
 _BARE_QUANTITY = re.compile(r"=\s*([+-]?[0-9.][0-9.eE+-]*\s*[A-Za-z%/\N{DEGREE SIGN}][^,#\]}]*)")
 _PLACE = re.compile(r"\s*\(at (?:line ([0-9]+), column [0-9]+|end of document)\)$")
 _TWICE = {"Cannot overwrite": "this key stands here for the second time", "Cannot declare": "this table stands twice"}
+_OTHER_FORMAT = re.compile(r"tautwise [0-9]{1,3}")
 _BARE_NAME = re.compile(r"[A-Za-z0-9_-]+")
 
 
@@ -57,6 +58,7 @@ class Document:
     index: file name and line of each key path.
     sources: the files read, the project file first.
     faults: what is already known to be wrong.
+    incomplete: an included file could not be read, so that what is missing may stand there.
     """
 
     tables: dict[str, Any]
@@ -65,6 +67,7 @@ class Document:
     index: dict[KeyPath, tuple[str, int]] = field(default_factory=dict)
     sources: list[Source] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
+    incomplete: bool = False
 
     def where(self, path: KeyPath) -> tuple[str | None, int | None]:
         """File and line of a key, or of the nearest table around it.
@@ -113,14 +116,18 @@ def read_project(path: str | os.PathLike[str]) -> Document:
     ----------
     path: the file; TOML in UTF-8, at most 1 MB.
 
+    Returns
+    -------
+    The document; what is wrong with its format and its includes is among its faults.
+
     Raises
     ------
-    InputError: the file cannot be read, is too large in some way, is not TOML, or includes what it must not.
+    InputError: the file cannot be read, is too large in some way, is not TOML, or of a newer format.
     """
     name = os.fspath(path)
     reader = _Reader(name)
     tables, index = reader.file(Path(name), name, ())
-    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults)
+    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults, reader.incomplete)
 
 
 def read_text(path: Path, name: str, bytes_most: int) -> tuple[str, Source]:
@@ -179,6 +186,7 @@ class _Reader:
         self.sources: list[Source] = []
         self.seen: set[Path] = set()
         self.faults: list[Fault] = []
+        self.incomplete = False
 
     def file(
         self, path: Path, name: str, stack: tuple[Path, ...]
@@ -192,35 +200,45 @@ class _Reader:
         self.faults += _format_faults(document, is_main=not stack)
         self.seen.add(path.resolve())
         for key, entry in _includes(document):
-            file = self.included(document, key, entry, (*stack, path.resolve()))
-            shown_name = os.path.join(os.path.dirname(name), entry)
-            extra, extra_index = self.file(file, shown_name, (*stack, path.resolve()))
-            _merge(tables, index, extra, extra_index)
+            try:
+                file = self.included(document, key, entry, (*stack, path.resolve()))
+                shown_name = os.path.join(os.path.dirname(name), entry)
+                extra, extra_index = self.file(file, shown_name, (*stack, path.resolve()))
+            except InputError as error:
+                self.faults += error.faults
+                self.incomplete = True
+            else:
+                _merge(tables, index, extra, extra_index)
         tables.pop("include", None)
         return tables, index
 
-    def included(self, document: Document, key: KeyPath, entry: str, stack: tuple[Path, ...]) -> Path:
-        file = document.folder / entry
-        real = file.resolve()
-        text = f'"{shown(entry)}"'
-        problem = ""
-        if real == stack[-1]:
-            problem = f"{text}: the file includes itself"
-        elif real in stack:
-            problem = f"{text}: the files include each other in a circle"
-        elif real in self.seen:
-            problem = f"{text} is included twice"
-        elif len(stack) > INCLUDE_DEPTH_MOST or len(self.seen) > INCLUDE_FILES_MOST:
-            problem = f"too many included files: at most {INCLUDE_FILES_MOST}, at most {INCLUDE_DEPTH_MOST} deep"
-        elif not inside_folder(self.folder, file):
-            problem = f"{text} is outside the project's folder"
-        elif not file.exists():
-            problem = f"there is no file {text}"
+    def included(self, document: Document, key: KeyPath, entry: Any, stack: tuple[Path, ...]) -> Path:
+        problem = _entry_problem(entry) or self.include_problem(document.folder / entry, entry, stack)
         if problem:
             raise InputError(
                 [document.fault(key, problem, "a file in the project's folder or below it", 'include = "loads.toml"')]
             )
-        return file
+        return document.folder / str(entry)
+
+    def include_problem(self, file: Path, entry: str, stack: tuple[Path, ...]) -> str:
+        text = f'"{shown(entry)}"'
+        try:
+            real = file.resolve()
+        except (OSError, RuntimeError):
+            return f"{text} leads nowhere"
+        if real == stack[-1]:
+            return f"{text}: the file includes itself"
+        if real in stack:
+            return f"{text}: the files include each other in a circle"
+        if real in self.seen:
+            return f"{text} is included twice"
+        if len(stack) > INCLUDE_DEPTH_MOST or len(self.seen) > INCLUDE_FILES_MOST:
+            return f"too many included files: at most {INCLUDE_FILES_MOST}, at most {INCLUDE_DEPTH_MOST} deep"
+        if not inside_folder(self.folder, file):
+            return f"{text} is outside the project's folder"
+        if not file.exists():
+            return f"there is no file {text}"
+        return "" if file.is_file() else f"{text} is not a file"
 
 
 def _read_bytes(path: Path, name: str, bytes_most: int) -> bytes:
@@ -309,20 +327,23 @@ def _format_faults(document: Document, is_main: bool) -> list[Fault]:
         problem = f'"{shown(given)}" is a format that this version does not read'
     else:
         problem = f"{described(given)} is not a format of Tautwise"
-    raise InputError([document.fault(("format",), problem, *wanted)])
+    fault = document.fault(("format",), problem, *wanted)
+    if given is None or (isinstance(given, str) and _OTHER_FORMAT.fullmatch(given)):
+        raise InputError([fault])
+    document.tables["format"] = FORMAT  # a slip, told once: what else is wrong is told as well
+    return [fault]
 
 
-def _includes(document: Document) -> list[tuple[KeyPath, str]]:
+def _entry_problem(entry: Any) -> str:
+    if not isinstance(entry, str) or isinstance(entry, WrittenNumber) or not entry.strip() or len(entry) > 200:
+        return f"{described(entry)} is no file name"
+    return "" if entry.isprintable() else f'"{shown(entry)}" holds characters that cannot be printed'
+
+
+def _includes(document: Document) -> list[tuple[KeyPath, Any]]:
     given = document.tables.get("include")
     if given is None:
         return []
-    entries = given if isinstance(given, list) else [given]
-    for entry in entries:
-        if not isinstance(entry, str) or isinstance(entry, WrittenNumber) or not entry.strip() or len(entry) > 200:
-            problem = f"{described(entry)} is no file name"
-            raise InputError(
-                [document.fault(("include",), problem, "a file name or a list of them", 'include = "loads.toml"')]
-            )
     if not isinstance(given, list):
         return [(("include",), given)]
     return [(("include", number), entry) for number, entry in enumerate(given)]

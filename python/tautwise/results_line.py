@@ -10,7 +10,16 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, ClassVar
 
-from tautwise.columns import Table, force_column, length_column, number_column, plural, text_column
+from tautwise.columns import (
+    Table,
+    force_column,
+    force_text,
+    forces_text,
+    length_column,
+    number_column,
+    plural,
+    text_column,
+)
 from tautwise.errors import NotSettledError, TautwiseError
 from tautwise.places import Origin, Places
 from tautwise.records import Record
@@ -81,6 +90,10 @@ class SpanState(Record):
         """The supports at both ends."""
         return f"{self.from_support} to {self.to_support}"
 
+    def __repr__(self) -> str:
+        most = force_text(self.tension_max_N)
+        return f"SpanState {self.name!r}: {self.span_m:.1f} m, sag {self.sag_m:.3f} m, tension up to {most}"
+
 
 @dataclass(frozen=True, slots=True)
 class SupportState(Record):
@@ -98,6 +111,10 @@ class SupportState(Record):
     swing_deg: float | None
     position_m: tuple[float, float, float]
 
+    def __repr__(self) -> str:
+        (along, across, down), unit = forces_text(self.along_N, self.across_N, self.down_N)
+        return f"SupportState {self.name!r}: {along} along, {across} across, {down} {unit} down"
+
 
 @dataclass(frozen=True, slots=True)
 class MarkState(Record):
@@ -107,6 +124,10 @@ class MarkState(Record):
     at_length_m: float
     tension_N: float
     position_m: tuple[float, float, float]
+
+    def __repr__(self) -> str:
+        x, y, z = self.position_m
+        return f"MarkState {self.name!r}: at ({x:.2f}, {y:.2f}, {z:.2f}) m, tension {force_text(self.tension_N)}"
 
 
 @dataclass(frozen=True, slots=True)

@@ -14,7 +14,7 @@ from tautwise.errors import ShutWindowError
 from tautwise.records import Record
 
 OPEN_ENDED = "none"
-AT_LEAST = "at least"
+AT_LEAST, NEVER = "at least", "never"
 LEAST_PRICE_SHOWN = 0.005  # of the end's pull for each metre
 
 
@@ -36,6 +36,10 @@ class WindowEnd(Record):
     utilisation: float | None = None
     station_m: float | None = None
 
+    def __repr__(self) -> str:
+        where = f"{self.limit} in {self.condition}" if self.limit else "no limit"
+        return f"WindowEnd {force_text(self.horizontal_tension_N)}: {where}"
+
 
 @dataclass(frozen=True, slots=True)
 class PullToSpecify(Record):
@@ -56,6 +60,10 @@ class PullToSpecify(Record):
     condition: str | None
     place: str | None
     edges: tuple[WindowEnd, ...] = ()
+
+    def __repr__(self) -> str:
+        pull, used = force_text(self.horizontal_tension_N), 100.0 * self.worst_utilisation
+        return f"PullToSpecify {pull} +/- {self.tolerance_percent:g} %: worst use of a limit {used:.1f} %"
 
 
 @dataclass(frozen=True, slots=True)
@@ -230,7 +238,7 @@ def need_texts(conflict: tuple[Conflict, ...], beside_N: Iterable[float | None] 
     unit, divisor, decimals = force_format([*(each.needs_N for each in conflict), *beside_N])
     return [
         "holds at no pull"
-        if each.side == "never" or each.needs_N is None
+        if each.side == NEVER or each.needs_N is None
         else f"{each.side} {cut(each.needs_N / divisor, decimals, up=each.side == AT_LEAST)} {unit}"
         for each in conflict
     ]

@@ -10,6 +10,7 @@ import math
 import os
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
+from numbers import Real
 from typing import TYPE_CHECKING, Any, NoReturn
 
 from tautwise import _core
@@ -182,12 +183,21 @@ def pull_of(project: Project, pull: Pull) -> float | None:
         fault = project.core_fault("stringing", problem, expected)
         raise InputError([Fault(fault.file, fault.line, fault.path, problem, expected, 'horizontal_tension = "20 kN"')])
     try:
-        newtons = quantity(pull, "N") if isinstance(pull, str) else float(pull)
+        newtons = _newtons(pull)
     except Refused as refused:
         raise InputError([Fault(None, None, "pull", refused.problem, refused.expected, refused.example)]) from None
     if not (math.isfinite(newtons) and newtons > 0.0):
         raise InputError([Fault(None, None, "pull", f"{newtons:g} N is no pull", "a force above 0", '"20 kN"')])
     return newtons
+
+
+def _newtons(pull: object) -> float:
+    if isinstance(pull, bool) or not isinstance(pull, Real):
+        return quantity(pull, "N")
+    try:
+        return float(pull)  # NumPy's numbers too
+    except OverflowError:
+        raise Refused("the number is too large", "a force", '"20 kN"') from None
 
 
 @contextmanager
@@ -308,7 +318,4 @@ def _condition_index(project: Project, condition: str | None) -> int:
 
 
 def _best(project: Project, found: dict[str, Any] | None) -> PullWindow | None:
-    try:
-        return None if found is None else window_of(project, found, program(), _core.NLOPT_VERSION)
-    except (KeyError, TypeError):
-        return None
+    return None if found is None else window_of(project, found, program(), _core.NLOPT_VERSION)

@@ -184,7 +184,7 @@ def _unit(project: Project, row: Row) -> tuple[str, str]:
 
 
 def _end(project: Project, row: Row | None) -> WindowEnd | None:
-    if row is None:
+    if row is None or row["pull_N"] is None:
         return None
     limit, condition = _names(project, row)
     if limit is None:
@@ -204,8 +204,8 @@ def _end(project: Project, row: Row | None) -> WindowEnd | None:
 
 
 def _specify(project: Project, row: Row | None) -> PullToSpecify | None:
-    if row is None:
-        return None
+    if row is None or row["pull_N"] is None or row["worst_utilisation"] is None:
+        return None  # a search that was stopped before it had tried a pull
     limit, condition = _names(project, row)
     place = place_of(project, row)
     used = float(row["worst_utilisation"])

@@ -30,6 +30,7 @@ from tautwise.results_vet import (
 )
 from tautwise.results_window import (
     AT_LEAST,
+    NEVER,
     OPEN_ENDED,
     PullToSpecify,
     PullWindow,
@@ -203,9 +204,7 @@ def _shut_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [
         ink.alarm("SHUT: no pull keeps every limit") + f" (tried {tried}, bare at {window.temperature_degC:.4g} degC)"
     ]
-    if window.conflict:
-        table = conflict_table(window.conflict, [each.pull_N for each in window.relax])
-        lines += ["", ink.strong("These exclude one another"), *table.lines()]
+    lines += _conflict_lines(window, ink)
     file = quoted(project.source or "FILE")
     if not window.relax:
         lines += ["", "No single change of a limit or a support was found that opens it."]
@@ -218,6 +217,19 @@ def _shut_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     first = window.relax[0]
     place = f", {first.where}" if first.where else ""
     return [*lines, *next_steps([(f"change the {first.change}{place}, then", f"tautwise window {file}")], ink)]
+
+
+def _conflict_lines(window: PullWindow, ink: Ink) -> list[str]:
+    """The limits that exclude one another; or the one that no pull keeps, beside which no other matters."""
+    if not window.conflict:
+        return []
+    never = [each for each in window.conflict if each.side == NEVER]
+    if never:
+        head = f"No pull keeps {'this limit' if len(never) == 1 else 'any of these limits'}"
+        columns = (text_column("limit"), text_column("condition"))
+        return ["", ink.strong(head), *Table(columns, tuple((each.limit, each.condition) for each in never)).lines()]
+    table = conflict_table(window.conflict, [each.pull_N for each in window.relax])
+    return ["", ink.strong("These exclude one another"), *table.lines()]
 
 
 def _between(window: PullWindow) -> str:
