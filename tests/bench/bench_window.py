@@ -33,9 +33,10 @@ def section(spans):
     limits = [
         cases.limit("clearance", least=7.0),
         cases.limit("tension", share=0.55),
-        cases.limit("uplift", least=0.0, covers=[False, *[True] * (spans - 1), False]),
         cases.limit("catenary_constant", most=2500.0),
     ]
+    if inner:
+        limits.append(cases.limit("uplift", least=0.0, covers=[False, *[True] * (spans - 1), False]))
     x = np.linspace(-10.0, float(stations[-1]) + 10.0, 50 * spans)
     ground = np.column_stack([x, 2.0 * np.sin(x / 60.0)])
     of, none = cases.line(12.0, 20e6, strength=90e3), cases.rule("none", None)
