@@ -135,29 +135,40 @@ static PyObject *lengths_of(const tw_trial *trial)
     return list;
 }
 
-static PyObject *project_string(PyObject *object, PyObject *args, PyObject *keywords)
+/* A trial strung to a pull, or by the project's rule; NULL and raises. */
+static tw_trial *strung_trial(project_object *self, double pull)
 {
-    project_object *self = (project_object *)object;
-    double pull;
-    tw_options options;
-    PyObject *result = NULL;
-    if (!PyArg_ParseTuple(args, ":string") || split_keywords(self, keywords, &pull, &options) < 0) {
-        return NULL;
-    }
     tw_trial *trial = tw_trial_create(&self->problem.project);
     if (!trial) {
-        return PyErr_NoMemory();
+        PyErr_NoMemory();
+        return NULL;
     }
     tw_status status;
     Py_BEGIN_ALLOW_THREADS
     status = tw_trial_string(trial, pull);
     Py_END_ALLOW_THREADS
-    if (status == TW_OK) {
-        result = Py_BuildValue("{s:N,s:N}", "horizontal_tension_N", tw_fields_number(trial->pull_N), "lengths_m",
-                               lengths_of(trial));
-    } else {
+    if (status != TW_OK) {
         raise_status(self, status);
+        tw_trial_free(trial);
+        return NULL;
     }
+    return trial;
+}
+
+static PyObject *project_string(PyObject *object, PyObject *args, PyObject *keywords)
+{
+    project_object *self = (project_object *)object;
+    double pull;
+    tw_options options;
+    if (!PyArg_ParseTuple(args, ":string") || split_keywords(self, keywords, &pull, &options) < 0) {
+        return NULL;
+    }
+    tw_trial *trial = strung_trial(self, pull);
+    if (!trial) {
+        return NULL;
+    }
+    PyObject *result = Py_BuildValue("{s:N,s:N}", "horizontal_tension_N", tw_fields_number(trial->pull_N), "lengths_m",
+                                     lengths_of(trial));
     tw_trial_free(trial);
     return result;
 }
@@ -276,15 +287,11 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     if (!PyArg_ParseTuple(args, ":judge") || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
-    tw_trial *trial = tw_trial_create(project);
+    tw_trial *trial = strung_trial(self, pull);
     if (!trial) {
-        return PyErr_NoMemory();
+        return NULL;
     }
-    tw_status status;
-    Py_BEGIN_ALLOW_THREADS
-    status = tw_trial_string(trial, pull);
-    Py_END_ALLOW_THREADS
-    PyObject *list = status == TW_OK ? PyList_New(0) : raise_status(self, status);
+    PyObject *list = PyList_New(0);
     for (size_t i = 0; list && i < project->limit_count; i++) {
         for (size_t c = 0; list && c < project->condition_count; c++) {
             if (project->limit_applies[i * project->condition_count + c]

@@ -11,6 +11,14 @@ void tw_hold_attachment(const tw_support *support, double a[3])
     a[2] = support->elevation_m;
 }
 
+void tw_hold_chord(const tw_support *near, const tw_support *far, double chord[3])
+{
+    double a[3];
+    tw_hold_attachment(near, a);
+    tw_hold_attachment(far, chord);
+    tw_axpy(chord, -1.0, a, chord);
+}
+
 void tw_hold_swing(const tw_support *support, const double F[3], double soft_N, double swing[3])
 {
     double size = sqrt(tw_dot(F, F) + soft_N * soft_N);

@@ -15,6 +15,9 @@
 
 void tw_hold_attachment(const tw_support *support, double a[3]);
 
+/* From one support's attachment to another's. */
+void tw_hold_chord(const tw_support *near, const tw_support *far, double chord[3]);
+
 /* c - a under F. */
 void tw_hold_swing(const tw_support *support, const double force[3], double soft_N, double swing[3]);
 

@@ -66,7 +66,7 @@ tw_status tw_section_at_station(const tw_section *section, double station_m, dou
 /* Position and tension vector at a natural length from the first support; either may be NULL. */
 void tw_section_at(const tw_section *section, double s, double position[3], double tension[3]);
 
-/* Sums of a hung section, J: stretch energy and the potential of all loads (-work), datum elevation 0. */
+/* Stretch energy of a hung section, J. */
 double tw_section_stored(const tw_section *section);
 
 /* What the result keys ask for. */

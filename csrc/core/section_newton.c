@@ -86,13 +86,12 @@ static double close_up(tw_section *section, const tw_section_scratch *s)
     }
     balance_holds(section, s);
     for (size_t r = 0; r < s->runs; r++) {
-        double near[3], far[3];
+        double chord[3];
         double *error = s->error + 3 * r;
         size_t from = section->run_first[r], to = section->run_first[r + 1];
-        tw_hold_attachment(&section->project->supports[from], near);
-        tw_hold_attachment(&section->project->supports[to], far);
+        tw_hold_chord(&section->project->supports[from], &section->project->supports[to], chord);
         for (size_t i = 0; i < 3; i++) {
-            error[i] = s->end[3 * r + i] - (far[i] - near[i]) + (s->swing[3 * from + i] - s->swing[3 * to + i]);
+            error[i] = s->end[3 * r + i] - chord[i] + (s->swing[3 * from + i] - s->swing[3 * to + i]);
         }
         double size = tw_norm(error);
         worst = size > worst || !isfinite(size) ? size : worst;

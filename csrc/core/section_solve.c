@@ -30,10 +30,8 @@ static tw_status start_pulls(tw_section *section)
 {
     for (size_t k = 0; k < section->span_count; k++) {
         const tw_support *near = &section->project->supports[k];
-        double a[3], chord[3], mean[3], p[3], h, v;
-        tw_hold_attachment(near, a);
-        tw_hold_attachment(near + 1, chord);
-        tw_axpy(chord, -1.0, a, chord);
+        double chord[3], mean[3], p[3], h, v;
+        tw_hold_chord(near, near + 1, chord);
         chord[2] += near->hold == TW_HOLD_HANGER ? near->hanger_length_m : 0.0;
         chord[2] -= near[1].hold == TW_HOLD_HANGER ? near[1].hanger_length_m : 0.0;
         mean_load(section, k, mean);
@@ -108,10 +106,8 @@ static double longest_chord(const tw_section *section)
     double longest = 0.0;
     for (size_t k = 0; k < section->span_count; k++) {
         const tw_support *near = &section->project->supports[k];
-        double chord[3], a[3];
-        tw_hold_attachment(near, a);
-        tw_hold_attachment(near + 1, chord);
-        tw_axpy(chord, -1.0, a, chord);
+        double chord[3];
+        tw_hold_chord(near, near + 1, chord);
         longest = fmax(longest, fmax(tw_norm(chord), section->length_m[k]));
     }
     return longest;

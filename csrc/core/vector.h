@@ -29,11 +29,4 @@ static inline void tw_axpy(const double a[3], double factor, const double b[3], 
     out[2] = a[2] + factor * b[2];
 }
 
-static inline void tw_cross(const double a[3], const double b[3], double out[3])
-{
-    out[0] = a[1] * b[2] - a[2] * b[1];
-    out[1] = a[2] * b[0] - a[0] * b[2];
-    out[2] = a[0] * b[1] - a[1] * b[0];
-}
-
 #endif

@@ -7,21 +7,6 @@
 static const double FURTHEST_M = 200.0;   /* no relaxation moves a support further */
 static const double OPENER = 1e-6;        /* a relaxed allowance is rounded open by this share */
 
-static size_t best_of_curve(const tw_window_run *run)
-{
-    const tw_window *w = run->window;
-    size_t best = 0;
-    double lowest = INFINITY;
-    for (size_t k = 0; k < w->curve_count; k++) {
-        double f = tw_window_worst(run, w->curve + k * w->row_count, NULL);
-        if (f < lowest) {
-            lowest = f;
-            best = k;
-        }
-    }
-    return best;
-}
-
 /* Mask every row but one, or none. */
 static void mask_all_but(tw_window_run *run, size_t row)
 {
@@ -295,9 +280,9 @@ static size_t concerned(tw_window_run *run, double pull_N, size_t *supports)
     for (size_t i = 0; i < w->conflict_count; i++) {
         tw_verdict verdict;
         limit_at(run, w->conflict[i].limit, pull_N, &verdict);
-        size_t first = verdict.support != TW_NONE ? verdict.support : verdict.span;
-        size_t last = verdict.support != TW_NONE ? first : first + 1;
-        for (size_t j = first; first != TW_NONE && j <= last; j++) {
+        size_t first, last;
+        int placed = tw_window_beside(&verdict, &first, &last);
+        for (size_t j = first; placed && j <= last; j++) {
             size_t k = 0;
             while (k < count && supports[k] != j) {
                 k++;
@@ -313,7 +298,7 @@ static size_t concerned(tw_window_run *run, double pull_N, size_t *supports)
 tw_status tw_window_explain_shut(tw_window_run *run)
 {
     tw_window *w = run->window;
-    size_t at = best_of_curve(run);
+    size_t at = tw_window_curve_best(run, 0.0, INFINITY);
     size_t supports[TW_WINDOW_RELAX_SUPPORTS_MOST];
     double pull = w->curve_pull_N[at];
     find_conflict(run, at);

@@ -35,6 +35,13 @@ void tw_window_move(tw_window_run *run, const tw_support *home, size_t support, 
     run->moved = by != 0.0;
 }
 
+int tw_window_beside(const tw_verdict *verdict, size_t *first, size_t *last)
+{
+    *first = verdict->support != TW_NONE ? verdict->support : verdict->span;
+    *last = verdict->support != TW_NONE ? *first : *first + 1;
+    return *first != TW_NONE;
+}
+
 static size_t find_row(const tw_window *w, size_t limit, size_t condition)
 {
     for (size_t r = 0; r < w->row_count; r++) {
@@ -78,9 +85,9 @@ static void price_end(tw_window_run *run, const tw_window_end *end, int at_high)
     double per_pull = (margin_at(run, row, end->pull_N + step) - margin_at(run, row, end->pull_N - step)) / (2.0 * step);
     tw_window_price price = {at_high, end->limit, end->condition, TW_VARIABLE_PULL, TW_NONE, per_pull, NAN};
     add_price(run->window, &price);
-    size_t first = end->verdict.support != TW_NONE ? end->verdict.support : end->verdict.span;
-    size_t last = end->verdict.support != TW_NONE ? first : first + 1;
-    for (size_t j = first; first != TW_NONE && j <= last; j++) {
+    size_t first, last;
+    int placed = tw_window_beside(&end->verdict, &first, &last);
+    for (size_t j = first; placed && j <= last; j++) {
         price.support = j;
         price.variable = TW_VARIABLE_SUPPORT_HEIGHT;
         price_support(run, price, row, end->pull_N, per_pull);

@@ -107,25 +107,6 @@ static int add_to_view(view *v, size_t row, double factor)
     return 1;
 }
 
-static double curve_f(const tw_window_run *run, size_t k)
-{
-    return tw_window_worst(run, run->window->curve + k * run->window->row_count, NULL);
-}
-
-/* The curve's point with the lowest f between two pulls; TW_NONE where it has none there. */
-static size_t best_of_curve(const tw_window_run *run, double low_N, double high_N)
-{
-    const tw_window *w = run->window;
-    size_t best = TW_NONE;
-    for (size_t k = 0; k < w->curve_count; k++) {
-        int inside = w->curve_pull_N[k] >= low_N && w->curve_pull_N[k] <= high_N;
-        if (inside && (best == TW_NONE || curve_f(run, k) < curve_f(run, best))) {
-            best = k;
-        }
-    }
-    return best;
-}
-
 /* f over the tolerance: judged at both of its ends on every row, and known at the curve's points between them. Adds each
  * end's worst row to the view and counts those that were new. */
 static double judge_tolerance(tw_window_run *run, double pull_N, double tolerance, view *v, int *added)
@@ -143,7 +124,7 @@ static double judge_tolerance(tw_window_run *run, double pull_N, double toleranc
     for (size_t k = 0; tolerance > 0.0 && k < run->window->curve_count && !run->moved; k++) {
         double at = run->window->curve_pull_N[k];
         if (at > pull_N * factors[0] && at < pull_N * factors[1]) {
-            worst = fmax(worst, curve_f(run, k));
+            worst = fmax(worst, tw_window_curve_f(run, k));
         }
     }
     return worst;
@@ -219,7 +200,7 @@ double tw_window_minimax(tw_window_run *run, double low_N, double high_N, double
 {
     const tw_window *w = run->window;
     view v = {.run = run, .low = low_N, .ratio = log(high_N / low_N), .epigraph = 1};
-    size_t k = run->moved ? TW_NONE : best_of_curve(run, low_N, high_N);
+    size_t k = run->moved ? TW_NONE : tw_window_curve_best(run, low_N, high_N);
     int added = 1;
     *pull_N = k == TW_NONE ? sqrt(low_N * high_N) : w->curve_pull_N[k];
     if (!(v.ratio > 0.0)) {

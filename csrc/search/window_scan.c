@@ -89,9 +89,22 @@ static double *curve_row(const tw_window_run *run, size_t k)
     return run->window->curve + k * run->window->row_count;
 }
 
-static double curve_f(const tw_window_run *run, size_t k)
+double tw_window_curve_f(const tw_window_run *run, size_t k)
 {
     return tw_window_worst(run, curve_row(run, k), NULL);
+}
+
+size_t tw_window_curve_best(const tw_window_run *run, double low_N, double high_N)
+{
+    const tw_window *w = run->window;
+    size_t best = TW_NONE;
+    for (size_t k = 0; k < w->curve_count; k++) {
+        int inside = w->curve_pull_N[k] >= low_N && w->curve_pull_N[k] <= high_N;
+        if (inside && (best == TW_NONE || tw_window_curve_f(run, k) < tw_window_curve_f(run, best))) {
+            best = k;
+        }
+    }
+    return best;
 }
 
 /* Try a pull and keep it on the curve, in order. */
@@ -138,9 +151,9 @@ static void look_between(tw_window_run *run)
     tw_window *w = run->window;
     for (size_t k = 0; k < w->curve_count && run->stop == TW_OK; k++) {
         size_t before = w->curve_count;
-        double f = curve_f(run, k);
-        double left = k > 0 ? curve_f(run, k - 1) : INFINITY;
-        double right = k + 1 < w->curve_count ? curve_f(run, k + 1) : INFINITY;
+        double f = tw_window_curve_f(run, k);
+        double left = k > 0 ? tw_window_curve_f(run, k - 1) : INFINITY;
+        double right = k + 1 < w->curve_count ? tw_window_curve_f(run, k + 1) : INFINITY;
         if (f > 1.0 && f <= left && f < right) {
             look_for_dip(run, k);
         } else if (f <= 1.0 && f > NEAR_EDGE && (k == 0 || f >= left) && (k + 1 == w->curve_count || f > right)) {
@@ -177,7 +190,7 @@ size_t tw_window_intervals(tw_window_run *run, double *interval, size_t most)
     size_t count = 0;
     int inside = 0;
     for (size_t k = 0; k < w->curve_count && count < most && run->stop == TW_OK; k++) {
-        int holds = curve_f(run, k) <= TW_WINDOW_HOLDS;
+        int holds = tw_window_curve_f(run, k) <= TW_WINDOW_HOLDS;
         double pull = w->curve_pull_N[k];
         if (holds && !inside) {
             interval[2 * count] = k == 0 ? pull : tw_window_boundary(run, pull, w->curve_pull_N[k - 1]);

@@ -48,6 +48,15 @@ double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict);
  * most pulls; TW_UNDECIDED: a row has nothing to judge at any. */
 tw_status tw_window_scan(tw_window_run *run);
 
+/* f at a point of the curve. */
+double tw_window_curve_f(const tw_window_run *run, size_t k);
+
+/* The curve's point with the lowest f between two pulls; TW_NONE where it has none there. */
+size_t tw_window_curve_best(const tw_window_run *run, double low_N, double high_N);
+
+/* The supports beside a verdict's place, first to last: its own, or both of its span; 0 where it has no place. */
+int tw_window_beside(const tw_verdict *verdict, size_t *first, size_t *last);
+
 /* Open stretches of pulls on the scanned curve, masked rows left out; ends bracketed to rounding.
  * interval [2 most]; returns their number. */
 size_t tw_window_intervals(tw_window_run *run, double *interval, size_t most);
