@@ -24,6 +24,7 @@ static const field support_fields[] = {
     F(tw_support, height_m, NAN),
     F(tw_support, hanger_length_m, 0.0),
     F(tw_support, hanger_weight_N, 0.0),
+    F(tw_support, sheave_friction, NAN),
     F(tw_support, stiffness_along_N_per_m, NAN),
     F(tw_support, stiffness_across_N_per_m, NAN),
     F(tw_support, capacity_along_N, NAN),
@@ -74,6 +75,8 @@ static const field stringing_fields[] = {
     F(tw_stringing, temperature_degC, NAN),
     F(tw_stringing, value, NAN),
     F(tw_stringing, tolerance, 0.0),
+    F(tw_stringing, friction, 0.0),
+    F(tw_stringing, end_allowance_m, 0.0),
 };
 const field_table tw_stringing_table = TABLE(stringing_fields);
 
@@ -119,6 +122,7 @@ static const field settled_fields[] = {
     F(tw_settled, gap_relative, NAN),
     F(tw_settled, residual_N, NAN),
     F(tw_settled, closing_m, NAN),
+    F(tw_settled, sheave_imbalance_N, NAN),
 };
 const field_table tw_settled_table = TABLE(settled_fields);
 

@@ -13,6 +13,8 @@ static const char *const frame_names[] = {"span", "route", NULL};
 static const char *const kind_names[] = {"clearance", "tension", "support_load", "uplift", "swing", "sag",
                                          "catenary_constant", "slope", NULL};
 static const char *const direction_names[] = {"along", "across", "down", "up", "resultant", NULL};
+static const char *const method_names[] = {"clamped", "over_sheaves", NULL};
+static const char *const clip_names[] = {"plumb", "lies", NULL};
 static const char *const rule_names[] = {"pull", "tension", "sag", "total_length", "span_lengths", "none", NULL};
 
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
@@ -22,7 +24,7 @@ static const char *const condition_keys[] = {"loads", NULL};
 static const char *const load_keys[] = {"is_point", "place", "frame", "vector", NULL};
 static const char *const mark_keys[] = {"place", NULL};
 static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", NULL};
-static const char *const stringing_keys[] = {"rule", "index", "lengths_m", NULL};
+static const char *const stringing_keys[] = {"rule", "index", "lengths_m", "method", "clip", NULL};
 
 void tw_problem_free(problem *in)
 {
@@ -377,6 +379,13 @@ static int read_rule(PyObject *row, problem *out)
     if (rule < 0) {
         return -1;
     }
+    int method = tw_fields_choice(row, "method", method_names, TW_METHOD_CLAMPED);
+    int clip = tw_fields_choice(row, "clip", clip_names, TW_CLIP_PLUMB);
+    if (method < 0 || clip < 0) {
+        return -1;
+    }
+    stringing->method = (tw_stringing_method)method;
+    stringing->clip = (tw_stringing_clip)clip;
     stringing->rule = (tw_stringing_rule)rule;
     return rule == TW_STRING_SPAN_LENGTHS ? read_lengths(row, out) : 0;
 }

@@ -35,6 +35,7 @@ static const range support_rules[] = {
     {SUPPORT(height_m), -2e4, 2e4, OPTIONAL, "a height within 20 km"},
     {SUPPORT(hanger_length_m), 0.0, 1e3, 0, "a hanger length from 0 to 1 km"},
     {SUPPORT(hanger_weight_N), 0.0, 1e7, 0, "a hanger weight from 0 to 1e7 N"},
+    {SUPPORT(sheave_friction), 0.0, 1.0, OPTIONAL, "a coefficient of friction from 0 to 1"},
     {SUPPORT(stiffness_along_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(stiffness_across_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(capacity_along_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
@@ -183,9 +184,10 @@ static tw_status check_support(const tw_project *p, size_t j, tw_fault *fault)
             return fail(fault, "supports", j, "hanger_length_m", "a hanger length above 0");
         }
         return end ? fail(fault, "supports", j, "hold", "an anchor or a post at the line's ends") : TW_OK;
-    case TW_HOLD_SHEAVE: break;
+    case TW_HOLD_SHEAVE:
+        return end ? fail(fault, "supports", j, "hold", "an anchor or a post at the line's ends") : TW_OK;
     }
-    return fail(fault, "supports", j, "hold", "an anchor, a hanger or a post");
+    return fail(fault, "supports", j, "hold", "an anchor, a hanger, a sheave or a post");
 }
 
 static tw_status check_ground(const tw_project *p, tw_fault *fault)
@@ -321,6 +323,15 @@ static tw_status check_stringing(const tw_project *p, tw_fault *fault)
     const tw_stringing *rule = &p->stringing;
     if (!(rule->tolerance >= 0.0 && rule->tolerance < 0.9)) {
         return fail(fault, "stringing", TW_NONE, "tolerance", "a tolerance from 0 to 0.9");
+    }
+    if (!(rule->friction >= 0.0 && rule->friction <= 1.0)) {
+        return fail(fault, "stringing", TW_NONE, "friction", "a coefficient of friction from 0 to 1");
+    }
+    if (!(rule->end_allowance_m >= 0.0 && rule->end_allowance_m <= 1e4)) {
+        return fail(fault, "stringing", TW_NONE, "end_allowance_m", "an allowance from 0 to 10 km");
+    }
+    if (rule->method == TW_METHOD_OVER_SHEAVES && rule->rule == TW_STRING_SPAN_LENGTHS) {
+        return fail(fault, "stringing", TW_NONE, "method", "no length of each span for a line strung over sheaves");
     }
     switch (rule->rule) {
     case TW_STRING_NONE: return TW_OK;

@@ -4,6 +4,7 @@
 #include <math.h>
 
 #include "alloc.h"
+#include "hold.h"
 #include "sum.h"
 #include "vector.h"
 
@@ -42,7 +43,8 @@ static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j
                              support->elevation_m - datum->elevation_m};
     const double zero[3] = {datum->station_m, datum->offset_m, datum->elevation_m};
     const double stiffness[2] = {support->stiffness_along_N_per_m, support->stiffness_across_N_per_m};
-    hold->kind = support->hold;
+    double link = tw_hold_link_m(support);
+    hold->kind = link > 0.0 ? TW_HOLD_HANGER : support->hold;
     for (int i = 0; i < 3; i++) {
         int elastic = hold->kind == TW_HOLD_POST && i < 2 && isfinite(stiffness[i]);
         hold->fixed[i] = hold->kind != TW_HOLD_HANGER && !elastic;
@@ -53,7 +55,7 @@ static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j
         }
     }
     if (hold->kind == TW_HOLD_HANGER) {
-        hold->link_m = support->hanger_length_m;
+        hold->link_m = link;
         hold->link_over_m = tw_norm(hold->offset) - hold->link_m;
         hold->link_force_N = tw_norm(section->hold_force + 3 * j);
         hold->link_stiffness =

@@ -25,7 +25,7 @@ typedef struct tw_line {
 typedef enum tw_hold {
     TW_HOLD_ANCHOR, /* the line ends here; fixed point */
     TW_HOLD_HANGER, /* clamp at the lower end of a link that swings along and across */
-    TW_HOLD_SHEAVE, /* natural length runs over it; not built yet, refused by check */
+    TW_HOLD_SHEAVE, /* natural length runs over it: equal tension on both sides; fixed, or swinging on a link */
     TW_HOLD_POST    /* clamp on an elastic support */
 } tw_hold;
 
@@ -35,8 +35,9 @@ typedef struct tw_support {
     double elevation_m; /* of the point where the hold is fixed */
     double height_m;    /* above the ground profile where given so (elevation follows it when moved); else NaN */
     tw_hold hold;
-    double hanger_length_m;           /* hanger only, > 0 */
-    double hanger_weight_N;           /* hanger only, >= 0; half of it acts at the clamp */
+    double hanger_length_m;           /* hanger, > 0; link of a swinging sheave, 0: the sheave is fixed */
+    double hanger_weight_N;           /* hanger and sheave, >= 0; half of it acts at the clamp */
+    double sheave_friction;           /* sheave only: mu of T_1 = T_2 e^(mu theta), >= 0; enters the crew's range alone */
     double stiffness_along_N_per_m;   /* post only; infinity: rigid */
     double stiffness_across_N_per_m;  /* post only; infinity: rigid */
     double capacity_along_N;          /* capacities: NaN where not given */
@@ -94,6 +95,16 @@ typedef enum tw_stringing_rule {
     TW_STRING_NONE            /* only a window search can run */
 } tw_stringing_rule;
 
+typedef enum tw_stringing_method {
+    TW_METHOD_CLAMPED,     /* equal horizontal tension in every span, hangers plumb */
+    TW_METHOD_OVER_SHEAVES /* pulled in over sheaves at every support between anchors, then clamped */
+} tw_stringing_method;
+
+typedef enum tw_stringing_clip {
+    TW_CLIP_PLUMB, /* clamped where the hangers hang plumb: same natural length between anchors, equal horizontal tension */
+    TW_CLIP_LIES   /* clamped where the line lies on its sheaves */
+} tw_stringing_clip;
+
 typedef struct tw_stringing {
     double temperature_degC; /* reference of all expansion; bare line, no ice, no wind */
     tw_stringing_rule rule;
@@ -101,6 +112,10 @@ typedef struct tw_stringing {
     size_t index;
     const double *lengths_m; /* [support_count - 1], TW_STRING_SPAN_LENGTHS only */
     double tolerance;        /* fraction of the pull that the crew keeps, >= 0 */
+    tw_stringing_method method;
+    tw_stringing_clip clip;  /* over sheaves only */
+    double friction;         /* mu of the sheaves that the line is strung over and that have none of their own, >= 0 */
+    double end_allowance_m;  /* added at each end of a section to the length that is cut, >= 0 */
 } tw_stringing;
 
 typedef struct tw_mark {
@@ -231,6 +246,7 @@ typedef struct tw_settled {
     double gap_relative;
     double residual_N;        /* largest out-of-balance force on a node of the discretised line */
     double closing_m;         /* largest closing error of the exact line */
+    double sheave_imbalance_N;/* largest difference of tension across a sheave, exact line; 0 without sheaves */
     size_t elements;          /* of the discretised line */
     size_t evaluations;       /* of its energy by the optimiser */
     size_t newton_steps;      /* of its finish */

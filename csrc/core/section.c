@@ -4,7 +4,9 @@
 #include <string.h>
 
 #include "alloc.h"
+#include "hold.h"
 #include "load.h"
+#include "section_feed.h"
 #include "vector.h"
 
 static size_t loads_most(const tw_project *project)
@@ -43,14 +45,19 @@ tw_section *tw_section_create(const tw_project *project)
     section->load_length_m = tw_calloc(loads + 1, sizeof(double));
     section->load_from_m = tw_calloc(loads + 1, sizeof(double));
     section->load_to_m = tw_calloc(loads + 1, sizeof(double));
+    section->feed = tw_calloc(spans + 1, sizeof *section->feed);
+    section->moved_m = tw_calloc(spans + 1, sizeof(double));
+    section->feed_work = tw_calloc(TW_SECTION_FEED_PER_SPAN * spans, sizeof(double));
     section->work = tw_calloc(TW_SECTION_WORK_PER_SPAN * spans + 3, sizeof(double));
     if (!section->pieces || !section->piece_first || !section->cut_m || !section->slack
         || !section->run_first || !section->start_m || !section->length_m || !section->pull
         || !section->clamp || !section->clamp_load || !section->hold_force || !section->load_length_m
-        || !section->load_from_m || !section->load_to_m || !section->work) {
+        || !section->load_from_m || !section->load_to_m || !section->work || !section->feed || !section->moved_m
+        || !section->feed_work) {
         tw_section_free(section);
         return NULL;
     }
+    tw_section_feed_by_holds(section);
     return section;
 }
 
@@ -73,6 +80,9 @@ void tw_section_free(tw_section *section)
     tw_free(section->load_length_m);
     tw_free(section->load_from_m);
     tw_free(section->load_to_m);
+    tw_free(section->feed);
+    tw_free(section->moved_m);
+    tw_free(section->feed_work);
     tw_free(section->work);
     tw_free(section);
 }
@@ -235,7 +245,7 @@ static void load_clamps(tw_section *section, const tw_load *loads, size_t load_c
         double u[2], vector[3];
         plan_direction(section, span, u);
         g[0] = g[1] = 0.0;
-        g[2] = support->hold == TW_HOLD_HANGER ? -0.5 * support->hanger_weight_N : 0.0;
+        g[2] = tw_hold_link_m(support) > 0.0 ? -0.5 * support->hanger_weight_N : 0.0;
         for (size_t i = 0; i < load_count; i++) {
             if (loads[i].is_point && section->load_from_m[i] == s) {
                 into_route(loads[i].frame, u, loads[i].vector, vector);
@@ -269,6 +279,7 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
         return status;
     }
     section->piece_count = 0;
+    section->fed = 0;
     for (size_t k = 0; k < section->span_count; k++) {
         section->piece_first[k] = section->piece_count;
         section->start_m[k] = s0;

@@ -17,7 +17,18 @@
 #include "material.h"
 #include "span.h"
 
-enum { TW_SECTION_WORK_PER_SPAN = 45 }; /* doubles of scratch */
+enum {
+    TW_SECTION_WORK_PER_SPAN = 45, /* doubles of scratch */
+    TW_SECTION_FEED_PER_SPAN = 65  /* and for natural lengths that move */
+};
+
+/* What natural length does at a support, see section_feed.h. */
+typedef enum tw_feed {
+    TW_FEED_NONE,   /* nothing: the line is clamped, or ends */
+    TW_FEED_SHEAVE, /* runs over until the tension is the same on both sides, but for friction */
+    TW_FEED_PLUMB,  /* is shifted until the horizontal tension is the same on both sides */
+    TW_FEED_WINCH   /* comes in from outside until the span ahead has the horizontal tension feed_pull_N */
+} tw_feed;
 
 typedef struct tw_section {
     const tw_project *project;
@@ -40,6 +51,12 @@ typedef struct tw_section {
     double *work;            /* scratch of the solver; owned */
     unsigned char *slack;    /* [span_count + 1] 1: the hanger there hangs slack; owned */
     size_t *run_first;       /* [span_count + 1] scratch of the solver: runs of spans between holds that carry; owned */
+    tw_feed *feed;           /* [span_count + 1] by the supports' holds at first; owned */
+    double *moved_m;         /* [span_count + 1] natural length moved across each support into the span ahead; owned */
+    double *feed_work;       /* scratch of section_feed; owned */
+    double feed_pull_N;      /* horizontal tension that the winches keep */
+    int drag;                /* +1: friction lets the tension grow ahead over each sheave; -1: fall; 0: no friction */
+    int fed;                 /* 1: moved_m has been put on the pieces since they were loaded */
     double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 but where nothing else settles */
     double energy_lower_J;   /* D, datum at the first support */
     double closing_m;        /* largest closing error */

@@ -32,4 +32,7 @@ tw_section_scratch tw_section_carve(const tw_section *section);
 tw_status tw_section_iterate(tw_section *section, const tw_options *options, tw_section_scratch *s,
                              const tw_section_patience *how);
 
+/* At rest with the natural lengths as they stand: from the pulls there (warm) or from afresh. */
+tw_status tw_section_rest(tw_section *section, const tw_options *options, tw_section_scratch *s, int warm);
+
 #endif

@@ -3,6 +3,7 @@
 #include <string.h>
 
 #include "hold.h"
+#include "section_feed.h"
 #include "section_newton.h"
 #include "uniform.h"
 #include "vector.h"
@@ -32,8 +33,7 @@ static tw_status start_pulls(tw_section *section)
         const tw_support *near = &section->project->supports[k];
         double chord[3], mean[3], p[3], h, v;
         tw_hold_chord(near, near + 1, chord);
-        chord[2] += near->hold == TW_HOLD_HANGER ? near->hanger_length_m : 0.0;
-        chord[2] -= near[1].hold == TW_HOLD_HANGER ? near[1].hanger_length_m : 0.0;
+        chord[2] += tw_hold_link_m(near) - tw_hold_link_m(near + 1);
         mean_load(section, k, mean);
         double size = tw_norm(mean);
         for (int i = 0; i < 3; i++) {
@@ -124,7 +124,7 @@ static double largest_pull(const tw_section *section)
 
 static int is_hanger(const tw_section *section, size_t j)
 {
-    return section->project->supports[j].hold == TW_HOLD_HANGER;
+    return section->project->supports[j].hold == TW_HOLD_HANGER && section->feed[j] == TW_FEED_NONE;
 }
 
 /* Take the hangers that carry least as slack: all that carry next to nothing, or else the least of those that carry
@@ -250,19 +250,26 @@ static tw_status iterate_around_kinks(tw_section *section, const tw_options *opt
     return status == TW_NOT_SETTLED ? iterate_softened(section, options, s, scale) : status;
 }
 
+tw_status tw_section_rest(tw_section *section, const tw_options *options, tw_section_scratch *s, int warm)
+{
+    double scale = longest_chord(section);
+    section->soft_N = 0.0;
+    tw_status status = warm ? iterate_slack(section, options, s, scale, WARM_ROUNDS) : TW_NOT_SETTLED;
+    if (status == TW_NOT_SETTLED) {
+        status = iterate_cold(section, options, s, scale);
+    }
+    if (status == TW_NOT_SETTLED && has_hanger(section)) {
+        status = iterate_around_kinks(section, options, s, scale);
+    }
+    return status;
+}
+
 tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm)
 {
     tw_section_scratch s = tw_section_carve(section);
-    double scale = longest_chord(section);
     section->steps = 0;
-    section->soft_N = 0.0;
-    tw_status status = warm ? iterate_slack(section, options, &s, scale, WARM_ROUNDS) : TW_NOT_SETTLED;
-    if (status == TW_NOT_SETTLED) {
-        status = iterate_cold(section, options, &s, scale);
-    }
-    if (status == TW_NOT_SETTLED && has_hanger(section)) {
-        status = iterate_around_kinks(section, options, &s, scale);
-    }
+    tw_status status = tw_section_feeds(section) ? tw_section_run_over(section, options, &s, warm)
+                                                 : tw_section_rest(section, options, &s, warm);
     if (status == TW_OK || status == TW_CANCELLED) {
         finish(section, &s);
     }

@@ -1,6 +1,7 @@
 /* section_state: what can be read off a hung section. */
 #include <math.h>
 
+#include "hold.h"
 #include "section.h"
 #include "vector.h"
 
@@ -218,7 +219,7 @@ void tw_section_support_state(const tw_section *section, size_t support, tw_supp
 {
     const tw_support *at = &section->project->supports[support];
     const double *F = section->hold_force + 3 * support;
-    int hangs = at->hold == TW_HOLD_HANGER;
+    int hangs = tw_hold_link_m(at) > 0.0;
     state->along_N = -F[0];
     state->across_N = -F[1];
     state->down_N = F[2] + (hangs ? 0.5 * at->hanger_weight_N : 0.0);

@@ -14,6 +14,7 @@ typedef struct strung {
     double *swing;    /* [3 (span_count + 1)] */
     double *length_m; /* [span_count] */
     double *pull;     /* [3 span_count] tension vector at each span's start */
+    const tw_stringing_way *way; /* NULL: equal horizontal tension, hangers plumb */
     double *lifted;   /* [span_count + 1] 1: the line would lift this hanger; kept once found, or it could flip for ever */
 } strung;
 
@@ -32,7 +33,7 @@ static void hang_plumb(strung *line)
         const tw_support *support = &line->project->supports[j];
         line->lifted[j] = 0.0;
         line->swing[3 * j] = line->swing[3 * j + 1] = 0.0;
-        line->swing[3 * j + 2] = support->hold == TW_HOLD_HANGER ? -support->hanger_length_m : 0.0;
+        line->swing[3 * j + 2] = -tw_hold_link_m(support);
     }
 }
 
@@ -76,7 +77,7 @@ static double follow_holds(strung *line, double share)
     double moved = 0.0;
     for (size_t j = 0; j <= line->span_count; j++) {
         const tw_support *support = &line->project->supports[j];
-        double F[3] = {0.0, 0.0, support->hold == TW_HOLD_HANGER ? 0.5 * support->hanger_weight_N : 0.0};
+        double F[3] = {0.0, 0.0, tw_hold_link_m(support) > 0.0 ? 0.5 * support->hanger_weight_N : 0.0};
         double swing[3];
         if (j > 0) {
             tw_axpy(F, 1.0, line->pull + 3 * (j - 1), F);
@@ -86,7 +87,7 @@ static double follow_holds(strung *line, double share)
             tw_axpy(F, -1.0, line->pull + 3 * j, F);
         }
         line->lifted[j] = line->lifted[j] > 0.0 || F[2] <= 0.0 ? 1.0 : 0.0;
-        if (support->hold == TW_HOLD_HANGER && line->lifted[j] > 0.0) {
+        if (tw_hold_link_m(support) > 0.0 && line->lifted[j] > 0.0) {
             F[0] = F[1] = 0.0;
             F[2] = 1.0;
         }
@@ -100,7 +101,7 @@ static double follow_holds(strung *line, double share)
 
 /* Fixed point of the clamps under their own hold forces; straight routes are there at once, sharp bends want shorter steps,
  * and the last of those are taken as they stand within 1e-8 m. */
-static tw_status string_to(strung *line, double pull_N)
+static tw_status string_plumb(strung *line, double pull_N)
 {
     double share = 1.0, before = INFINITY;
     hang_plumb(line);
@@ -117,6 +118,13 @@ static tw_status string_to(strung *line, double pull_N)
         before = moved;
     }
     return TW_NOT_SETTLED;
+}
+
+static tw_status string_to(strung *line, double pull_N)
+{
+    tw_status status = string_plumb(line, pull_N);
+    return status == TW_OK && line->way ? line->way->string(line->way->data, pull_N, line->length_m, line->pull, line->swing)
+                                        : status;
 }
 
 tw_status tw_stringing_at_pull(const tw_project *project, double pull_N, double *length_m, double *work)
@@ -279,6 +287,21 @@ static tw_status lengths_by_rule(strung *line, double *pull_N)
         high = fmax(high, 0.3 * project->line.stiffness_N);
     }
     return solve_rule(line, low, high, pull_N);
+}
+
+tw_status tw_stringing_by(const tw_project *project, const tw_stringing_way *way, double *length_m, double *pull_N,
+                          double *work)
+{
+    const tw_stringing *rule = &project->stringing;
+    strung line = strung_on(project, length_m, work);
+    line.way = way;
+    if (!isnan(*pull_N) || rule->rule == TW_STRING_PULL) {
+        *pull_N = isnan(*pull_N) ? rule->value : *pull_N;
+        return string_to(&line, *pull_N);
+    }
+    return rule->rule == TW_STRING_TENSION || rule->rule == TW_STRING_SAG || rule->rule == TW_STRING_TOTAL_LENGTH
+               ? lengths_by_rule(&line, pull_N)
+               : TW_ERROR_RANGE;
 }
 
 tw_status tw_stringing_lengths(const tw_project *project, double *length_m, double *pull_N, double *work)

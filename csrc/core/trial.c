@@ -17,6 +17,7 @@ tw_trial *tw_trial_create(const tw_project *project)
     trial->bare_condition = TW_NONE;
     trial->length_m = tw_calloc(project->support_count, sizeof(double));
     trial->string_work = tw_calloc(TW_STRINGING_WORK(project), sizeof(double));
+    trial->pulling = tw_pulling_applies(project) ? tw_pulling_create(project) : NULL;
     trial->strung = tw_section_create(project);
     trial->bare = tw_section_create(project);
     trial->sections = tw_calloc(conditions, sizeof(tw_section *));
@@ -25,7 +26,8 @@ tw_trial *tw_trial_create(const tw_project *project)
     trial->at_N = tw_calloc(conditions, sizeof(double));
     trial->before_N = tw_calloc(conditions, sizeof(double));
     trial->before = tw_calloc(conditions, sizeof(double *));
-    if (!trial->length_m || !trial->string_work || !trial->strung || !trial->bare || !trial->sections || !trial->solved
+    if (!trial->length_m || !trial->string_work || !trial->strung || !trial->bare
+        || (tw_pulling_applies(project) && !trial->pulling) || !trial->sections || !trial->solved
         || !trial->warm || !trial->at_N || !trial->before_N || !trial->before) {
         goto fail;
     }
@@ -51,6 +53,7 @@ void tw_trial_free(tw_trial *trial)
         tw_section_free(trial->sections ? trial->sections[c] : NULL);
         tw_free(trial->before ? trial->before[c] : NULL);
     }
+    tw_pulling_free(trial->pulling);
     tw_section_free(trial->strung);
     tw_section_free(trial->bare);
     tw_free(trial->length_m);
@@ -70,6 +73,9 @@ tw_status tw_trial_string(tw_trial *trial, double pull_N)
     trial->bare_condition = TW_NONE;
     memset(trial->solved, 0, trial->project->condition_count * sizeof(int));
     trial->pull_N = pull_N;
+    if (trial->pulling && !(isnan(pull_N) && trial->project->stringing.rule == TW_STRING_SPAN_LENGTHS)) {
+        return tw_pulling_lengths(trial->pulling, &trial->pull_N, trial->length_m);
+    }
     if (isnan(pull_N)) {
         return tw_stringing_lengths(trial->project, trial->length_m, &trial->pull_N, trial->string_work);
     }

@@ -8,6 +8,7 @@
 
 #include "limit.h"
 #include "line.h"
+#include "pulling.h"
 #include "section.h"
 
 typedef struct tw_trial {
@@ -15,6 +16,7 @@ typedef struct tw_trial {
     double pull_N;         /* NaN: natural lengths were given */
     double *length_m;      /* [support_count - 1] owned */
     double *string_work;   /* scratch of stringing; owned */
+    tw_pulling *pulling;   /* NULL where no sheave is in play; owned */
     tw_section *strung;    /* bare, at stringing; solved on demand */
     int strung_ready;
     tw_section **sections; /* [condition_count] owned */

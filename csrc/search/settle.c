@@ -7,10 +7,12 @@
 #include "alloc.h"
 #include "clock.h"
 #include "energy.h"
+#include "section_feed.h"
 #include "vector.h"
 
 static const double link_excess_most = 1e-9;
 static const double gap_below_most = 1e-9; /* a bracket turned over by more than this and rounding is no bracket */
+static const double imbalance_most = 1e-9;  /* of the tension, across a sheave */
 static const double rounding_of_strain = 16.0 * DBL_EPSILON;
 static const double worth_refining = 0.9; /* a finer mesh that leaves more of the gap than this did not help */
 enum { GAIN_ROUNDINGS = 16, HALVINGS_MOST = 40, STALL_EVALUATIONS = 12, STALL_STEPS = 3, STALL_MESHES = 8 };
@@ -311,6 +313,10 @@ static tw_status judge(settle_run *run)
     if (!is_closed(run, out->gap_J, out->gap_relative)) {
         return TW_GAP_TOO_WIDE;
     }
+    out->sheave_imbalance_N = tw_section_imbalance(run->section);
+    if (!(out->sheave_imbalance_N <= imbalance_most * state.tension_N)) {
+        return TW_NOT_SETTLED;
+    }
     return parts.link_excess <= link_excess_most ? TW_OK : TW_NOT_SETTLED;
 }
 
@@ -390,6 +396,7 @@ tw_status tw_settle_with(const tw_section *section, const tw_options *options, t
     run.deadline = tw_clock_deadline(options->seconds_most);
     run.gap_least = INFINITY;
     out->energy_J = out->energy_lower_J = out->gap_J = out->gap_relative = out->residual_N = (double)NAN;
+    out->sheave_imbalance_N = (double)NAN;
     out->elements = out->evaluations = out->newton_steps = 0;
     while (try_mesh(&run, per_span)) {
         per_span *= 2;
