@@ -4,6 +4,7 @@
 
 #include "python_api.h"
 
+#include "crew.h"
 #include "line.h"
 #include "window.h"
 
@@ -15,5 +16,8 @@ PyObject *tw_answer_verdict(const tw_verdict *verdict);
 
 /* dict["status"], dict["status_text"]; -1 and raises. */
 int tw_answer_status(PyObject *dict, tw_status status);
+
+/* The numbers of a crew sheet. */
+PyObject *tw_answer_crew(const tw_crew *crew);
 
 #endif

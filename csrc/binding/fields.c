@@ -3,6 +3,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "crew.h"
 #include "limit.h"
 
 #define F(type, name, fallback) {#name, offsetof(type, name), fallback}
@@ -125,6 +126,27 @@ static const field settled_fields[] = {
     F(tw_settled, sheave_imbalance_N, NAN),
 };
 const field_table tw_settled_table = TABLE(settled_fields);
+
+static const field crew_span_fields[] = {
+    F(tw_crew_span, horizontal_tension_N, NAN), F(tw_crew_span, tension_max_N, NAN),
+    F(tw_crew_span, sag_m, NAN),                F(tw_crew_span, return_s, NAN),
+    F(tw_crew_span, return_parabola_s, NAN),
+};
+const field_table tw_crew_span_table = TABLE(crew_span_fields);
+
+static const field crew_length_fields[] = {
+    F(tw_crew_length, natural_m, NAN),
+    F(tw_crew_length, marked_m, NAN),
+};
+const field_table tw_crew_length_table = TABLE(crew_length_fields);
+
+static const field crew_support_fields[] = {
+    F(tw_crew_support, offset_m, NAN),
+    F(tw_crew_support, offset_stretched_m, NAN),
+    F(tw_crew_support, block_swing_rad, NAN),
+    F(tw_crew_support, block_down_N, NAN),
+};
+const field_table tw_crew_support_table = TABLE(crew_support_fields);
 
 static const field verdict_fields[] = {
     F(tw_verdict, value, NAN),

@@ -46,4 +46,7 @@ PyObject *tw_fields_number(double value);
 /* int, or None for TW_NONE. */
 PyObject *tw_fields_index(size_t index);
 
+/* What a crew sheet holds of spans, lengths and supports. */
+extern const field_table tw_crew_span_table, tw_crew_length_table, tw_crew_support_table;
+
 #endif

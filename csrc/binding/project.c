@@ -6,6 +6,7 @@
 
 #include "answer.h"
 #include "check.h"
+#include "crew.h"
 #include "fields.h"
 #include "module.h"
 #include "places.h"
@@ -422,6 +423,51 @@ static PyObject *project_window(PyObject *object, PyObject *args, PyObject *keyw
     return result;
 }
 
+/* Temperatures of a sheet: a copy of the array, with room for one more; NULL and raises. */
+static tw_crew *crew_at(const tw_project *project, PyObject *given)
+{
+    PyArrayObject *degC = (PyArrayObject *)PyArray_FROM_OTF(given, NPY_DOUBLE, NPY_ARRAY_IN_ARRAY);
+    tw_crew *crew = NULL;
+    if (degC && (PyArray_NDIM(degC) != 1 || PyArray_DIM(degC, 0) > 10000)) {
+        PyErr_SetString(PyExc_ValueError, "temperatures: expected a one-dimensional array of up to 10,000");
+    } else if (degC) {
+        size_t count = (size_t)PyArray_DIM(degC, 0);
+        crew = tw_crew_create(project, count);
+        if (crew) {
+            memcpy(crew->temperature_degC, PyArray_DATA(degC), count * sizeof(double));
+        } else {
+            PyErr_NoMemory();
+        }
+    }
+    Py_XDECREF(degC);
+    return crew;
+}
+
+static PyObject *project_sheet(PyObject *object, PyObject *args, PyObject *keywords)
+{
+    project_object *self = (project_object *)object;
+    PyObject *given, *result = NULL;
+    double pull;
+    tw_options options;
+    run_state run;
+    if (!PyArg_ParseTuple(args, "O:sheet", &given) || split_keywords(self, keywords, &pull, &options) < 0) {
+        return NULL;
+    }
+    tw_crew *crew = crew_at(&self->problem.project, given);
+    tw_trial *trial = crew ? strung_trial(self, pull) : NULL;
+    if (trial) {
+        tw_run_begin(&run, &options);
+        tw_status status = tw_crew_fill(crew, trial, &options);
+        tw_run_end(&run);
+        if (!run.raised) {
+            result = status == TW_OK ? tw_answer_crew(crew) : raise_status(self, status);
+        }
+    }
+    tw_trial_free(trial);
+    tw_crew_free(crew);
+    return result;
+}
+
 static PyMethodDef project_methods[] = {
     {"string", (PyCFunction)(void (*)(void))project_string, METH_VARARGS | METH_KEYWORDS,
      "string(*, pull=None) -> dict with horizontal_tension_N and lengths_m, one per span."},
@@ -435,6 +481,8 @@ static PyMethodDef project_methods[] = {
      "at(condition, stations, *, pull=None) -> dict of arrays at the stations; NaN where the line does not pass."},
     {"window", (PyCFunction)(void (*)(void))project_window, METH_VARARGS | METH_KEYWORDS,
      "window(**options) -> dict of the pretension window. On Ctrl-C the KeyboardInterrupt carries .best."},
+    {"sheet", (PyCFunction)(void (*)(void))project_sheet, METH_VARARGS | METH_KEYWORDS,
+     "sheet(temperatures, *, pull=None, **options) -> dict of what a crew needs, at the temperatures in degC."},
     {NULL, NULL, 0, NULL},
 };
 

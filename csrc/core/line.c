@@ -21,6 +21,16 @@ tw_options tw_options_default(void)
     return options;
 }
 
+tw_condition tw_line_bare(double temperature_degC)
+{
+    tw_condition condition = {
+        .temperature_degC = temperature_degC,
+        .wind_pressure_Pa = 0.0,
+        .wind_speed_m_per_s = (double)NAN,
+    };
+    return condition;
+}
+
 double tw_line_capacity(const tw_support *support, tw_direction direction)
 {
     switch (direction) {

@@ -197,6 +197,9 @@ typedef struct tw_options {
 
 tw_options tw_options_default(void);
 
+/* A condition that leaves the line bare and calm. */
+tw_condition tw_line_bare(double temperature_degC);
+
 /* Capacity of a support in a direction, N; NaN where none is given, and for the resultant. */
 double tw_line_capacity(const tw_support *support, tw_direction direction);
 

@@ -80,8 +80,8 @@ static tw_status pull_in(void *data, double pull_N, double *length_m, double *pu
     set_feeds(blocks, over ? TW_FEED_SHEAVE : TW_FEED_PLUMB);
     for (size_t j = 0; j < n; j++) {
         blocks->feed[j] = tw_pulling_begins(pulling->project, j) ? TW_FEED_WINCH : blocks->feed[j];
+        blocks->winch_N[j] = pull_N;
     }
-    blocks->feed_pull_N = pull_N;
     tw_status status = tw_section_load(blocks, TW_NONE, length_m, NULL, 0);
     if (status != TW_OK) {
         return status;

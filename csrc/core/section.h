@@ -27,7 +27,7 @@ typedef enum tw_feed {
     TW_FEED_NONE,   /* nothing: the line is clamped, or ends */
     TW_FEED_SHEAVE, /* runs over until the tension is the same on both sides, but for friction */
     TW_FEED_PLUMB,  /* is shifted until the horizontal tension is the same on both sides */
-    TW_FEED_WINCH   /* comes in from outside until the span ahead has the horizontal tension feed_pull_N */
+    TW_FEED_WINCH   /* comes in from outside until the span ahead has the horizontal tension winch_N */
 } tw_feed;
 
 typedef struct tw_section {
@@ -54,7 +54,7 @@ typedef struct tw_section {
     tw_feed *feed;           /* [span_count + 1] by the supports' holds at first; owned */
     double *moved_m;         /* [span_count + 1] natural length moved across each support into the span ahead; owned */
     double *feed_work;       /* scratch of section_feed; owned */
-    double feed_pull_N;      /* horizontal tension that the winches keep */
+    double *winch_N;         /* [span_count + 1] horizontal tension that a winch keeps in the span ahead; owned */
     int drag;                /* +1: friction lets the tension grow ahead over each sheave; -1: fall; 0: no friction */
     int fed;                 /* 1: moved_m has been put on the pieces since they were loaded */
     double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 but where nothing else settles */

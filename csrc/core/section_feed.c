@@ -180,7 +180,7 @@ static double miss_at(const feed_run *run, size_t j, double in_ahead[3], double 
     double miss = log_tension(ahead, section->feed[j] != TW_FEED_SHEAVE, in_ahead);
     if (section->feed[j] == TW_FEED_WINCH) {
         in_behind[0] = in_behind[1] = in_behind[2] = 0.0;
-        return miss - log(section->feed_pull_N);
+        return miss - log(section->winch_N[j]);
     }
     const double *behind = run->s->far + 3 * (j - 1);
     miss -= log_tension(behind, section->feed[j] != TW_FEED_SHEAVE, in_behind);
