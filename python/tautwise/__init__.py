@@ -25,6 +25,7 @@ if TYPE_CHECKING:
     from tautwise.kernel import SpanStates, natural_length, settle_spans
     from tautwise.model import Project, load
     from tautwise.results import (
+        CrewSheet,
         Equilibrium,
         LimitState,
         MarkState,
@@ -49,6 +50,7 @@ _HOMES = {
     "kernel": ("SpanStates", "natural_length", "settle_spans"),
     "model": ("Project", "load"),
     "results": (
+        "CrewSheet",
         "Equilibrium",
         "LimitState",
         "MarkState",
@@ -62,6 +64,7 @@ _HOMES = {
 _HOME_OF = {name: module for module, names in _HOMES.items() for name in names}
 
 __all__ = [
+    "CrewSheet",
     "Equilibrium",
     "Fault",
     "InputError",

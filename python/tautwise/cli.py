@@ -218,6 +218,39 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
 
 
 @commands.command()
+@files_argument
+@click.option("--temperature", "temperatures", multiple=True, metavar="TEMPERATURE",
+              help='A temperature of the line, such as "25 degC"; may be given several times.')  # fmt: skip
+@pull_option
+@click.option("--csv", "as_csv", is_flag=True, help="Print one CSV table instead of text.")
+@json_option
+def sheet(files: Sequence[str], temperatures: Sequence[str], pull: str | None, as_csv: bool, as_json: bool) -> int:
+    """Print the crew sheet: lengths to cut, sags by temperature, clipping offsets, return waves.
+
+    With several files, --json prints a list of documents.
+    """
+    if as_csv and as_json:
+        raise click.UsageError("--csv and --json exclude one another")
+    from tautwise.solve_sheet import sheet as crew_sheet
+
+    done, failed = _each(_loaded(files), lambda project: crew_sheet(project, temperatures or None, pull=pull))
+    if as_json:
+        _print_documents([found for _, found in done], many=len(files) > 1)
+    elif as_csv:
+        from tautwise.text_sheet import sheet_csv
+
+        _print(sheet_csv([found for _, found in done]))
+    else:
+        from tautwise.text_sheet import sheet_text
+
+        _print_texts(sheet_text(found, project, _ink()) for project, found in done)
+    for project, found in done:
+        _tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
+    _tell(failed)
+    return FAILED if failed else DONE
+
+
+@commands.command()
 @json_option
 def schema(as_json: bool) -> int:
     """Print the JSON Schema of the project file, for editors and checks (always JSON)."""

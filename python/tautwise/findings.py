@@ -1,11 +1,11 @@
-"""What a settled line shows that is hardly meant: above its strength, a loop, nearly slack."""
+"""What a settled line shows that is hardly meant: above its strength, a loop, lifted from a sheave, nearly slack."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from tautwise.columns import forces_text
+from tautwise.columns import force_text, forces_text
 from tautwise.outcomes import slack_words
 
 if TYPE_CHECKING:
@@ -20,7 +20,8 @@ def findings_of(project: Project, conditions: Sequence[Equilibrium], pull: float
     """One line for each thing that is hardly meant, with the file's name in front; `pull` in N as it was asked for."""
     loops = [text for each in conditions for text in _loops(each)]
     slack = slack_words(project, pull)
-    found = [*_broken(project, conditions), *loops, *([slack] if slack else [])]
+    lifted = [text for each in conditions for text in _lifted(project, each)]
+    found = [*_broken(project, conditions), *loops, *lifted, *([slack] if slack else [])]
     head = f"{project.source}: " if project.source else ""
     return tuple(head + text for text in found)
 
@@ -38,6 +39,16 @@ def _broken(project: Project, conditions: Sequence[Equilibrium]) -> list[str]:
             (tension, allowed), unit = forces_text(each.tension_max_N or 0.0, strength)
             found.append(f"the line is above its breaking strength in {each.name!r}: {tension} of {allowed} {unit}")
     return found
+
+
+def _lifted(project: Project, line: Equilibrium) -> list[str]:
+    """Sheaves out of which the line would lift."""
+    sheaves = {support.name for support in project.supports if support.hold == "sheave"}
+    return [
+        f"the line lifts out of the sheave at {each.name!r} in {line.name!r}, with {force_text(-each.down_N)}"
+        for each in line.supports
+        if each.name in sheaves and each.down_N < 0.0
+    ]
 
 
 def _loops(line: Equilibrium) -> list[str]:

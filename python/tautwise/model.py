@@ -38,7 +38,8 @@ from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of
 
 if TYPE_CHECKING:
-    from tautwise.results import Equilibrium, PullWindow, VetReport
+    from tautwise.results import CrewSheet, Equilibrium, PullWindow, VetReport
+    from tautwise.solve_sheet import Temperatures
 
 RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
 
@@ -172,6 +173,18 @@ class Project(BaseModel):
         import tautwise.solve as solve
 
         return solve.vet(self, pull=pull)
+
+    def sheet(self, temperatures_degC: Temperatures = None, pull: float | str | None = None) -> CrewSheet:
+        """What a crew needs to string the line: lengths to cut, sags by temperature, clipping offsets, return waves.
+
+        Parameters
+        ----------
+        temperatures_degC: of the line; by default from 25 K below to 25 K above the stringing temperature.
+        pull: as in `settle`.
+        """
+        from tautwise.solve_sheet import sheet
+
+        return sheet(self, temperatures_degC, pull=pull)
 
     def __repr__(self) -> str:
         counts = (("support", self.supports), ("condition", self.conditions), ("limit", self.limits))

@@ -29,12 +29,14 @@ LEAST_ALLOWED_N = 100.0
 ICE_DIAMETERS_MOST, ICE_MOST_M = 3.0, 0.060
 WIND_PRESSURE_MOST_PA, WIND_SPEED_MOST_M_PER_S = 3000.0, 90.0
 DRAG = (0.3, 2.5)
+FRICTION_MOST = 0.3
 SPAN_MOST_M, HEIGHT_MOST_M = 5000.0, 400.0
 
 
 def warnings_of(project: Project, document: Document) -> tuple[str, ...]:
     """One line for each value that is hardly meant: file, line, key, why, and what it may have been meant to be."""
     slips = [*_line(project), *_stringing(project), *_supports(project), *_crossings(project), *_limits(project)]
+    slips += _sheaves(project)
     for number, condition in enumerate(project.conditions):
         slips += [((*("condition", number), *path), text) for path, text in _condition(project, condition)]
     return tuple(str(document.fault(path, text)) for path, text in slips)
@@ -101,6 +103,18 @@ def _stringing(project: Project) -> Iterator[Slip]:
         if pull is not None and strength is not None and pull > strength:
             text = f"{_force(pull)} is above the breaking strength, {_force(strength)}: kN for N, or kgf for N?"
             yield ("stringing", *key), text
+
+
+def _sheaves(project: Project) -> Iterator[Slip]:
+    between = [support.hold for support in project.supports[1:-1]]
+    if project.stringing.over_sheaves and all(hold == "anchor" for hold in between):
+        yield ("stringing", "method"), "there is no support between anchors for the line to run over"
+    mus: list[tuple[KeyPath, float]] = [(("stringing", "friction"), project.stringing.friction)]
+    for number, support in enumerate(project.supports):
+        mus.append((("support", number, "friction"), support.sheave_friction or 0.0))
+    for path, mu in mus:
+        if mu > FRICTION_MOST:
+            yield path, f"a coefficient of {mu:.4g} is that of a rope on a fixed rod: a loss in % for the coefficient?"
 
 
 def _supports(project: Project) -> Iterator[Slip]:

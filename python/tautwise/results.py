@@ -11,6 +11,7 @@ from tautwise.results_line import (
     StrungState,
     SupportState,
 )
+from tautwise.results_sheet import CrewSection, CrewSheet, CrewSpan, CrewSupport, CrewTemperature, SpanReading
 from tautwise.results_vet import FileVerdict, LimitState, VetReport
 from tautwise.results_window import (
     Conflict,
@@ -25,6 +26,11 @@ from tautwise.results_window import (
 __all__ = [
     "CAUTION",
     "Conflict",
+    "CrewSection",
+    "CrewSheet",
+    "CrewSpan",
+    "CrewSupport",
+    "CrewTemperature",
     "Equilibrium",
     "FileVerdict",
     "LimitState",
@@ -36,6 +42,7 @@ __all__ = [
     "PullWindow",
     "Relaxation",
     "SettleReport",
+    "SpanReading",
     "SpanState",
     "StrungState",
     "SupportState",

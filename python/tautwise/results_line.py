@@ -132,11 +132,15 @@ class MarkState(Record):
 
 @dataclass(frozen=True, slots=True)
 class StrungState(Record):
-    """The line as strung: bare, at `temperature_degC`; the natural length of each span at that temperature."""
+    """The line as strung: bare, at `temperature_degC`; the natural length of each span at that temperature.
+
+    Strung over sheaves, or with sheaves in service, `horizontal_tension_N` is that of the first span after each anchor.
+    """
 
     temperature_degC: float
     horizontal_tension_N: float | None
     natural_length_m: tuple[float, ...]
+    method: str = "clamped"
 
 
 @dataclass(frozen=True, slots=True, repr=False)
@@ -149,6 +153,7 @@ class Equilibrium(Record):
     energy_J, energy_lower_J: potential energy from above and complementary energy from below, J; the exact energy lies
         between them, `gap_J` apart; `gap_relative` is that over the energy that the loads and the stretch exchange.
     residual_N, closing_m: largest out-of-balance force of the discretised line, closing error of the exact one.
+    sheave_imbalance_N: largest difference of tension across a sheave of the exact line; 0 where there is none.
     elements, evaluations: of the discretised line, and of its energy by the optimiser.
     newton_steps, exact_steps: Newton steps of the discretised and of the exact line.
     spans, supports, marks: along the line; marks hold the condition's point loads too.
@@ -172,6 +177,7 @@ class Equilibrium(Record):
     gap_relative: float | None
     residual_N: float | None
     closing_m: float | None
+    sheave_imbalance_N: float | None
     elements: int
     evaluations: int
     newton_steps: int
@@ -185,7 +191,7 @@ class Equilibrium(Record):
     def failed(cls, name: str, temperature_degC: float, status: str, text: str, **given: Any) -> Equilibrium:
         """A condition that did not settle; `given` holds what is known of the attempt."""
         numbers: dict[str, Any] = dict.fromkeys(
-            ("energy_J", "energy_lower_J", "gap_J", "gap_relative", "residual_N", "closing_m")
+            ("energy_J", "energy_lower_J", "gap_J", "gap_relative", "residual_N", "closing_m", "sheave_imbalance_N")
         )
         counts: dict[str, Any] = dict.fromkeys(("elements", "evaluations", "newton_steps", "exact_steps"), 0)
         return cls(

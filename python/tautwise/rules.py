@@ -8,15 +8,16 @@ from tautwise.check import Checked, at_most_one, exactly_one
 from tautwise.faults import example_of
 from tautwise.limits import GROUND, TensionLimit
 from tautwise.strict import did_you_mean, shown
-from tautwise.tables import Condition, Line, Stringing, Support
+from tautwise.tables import CLAMPED, HOLDS, OVER_SHEAVES, Condition, Line, Stringing, Support
 
 STRINGING_RULES = ("horizontal_tension", "tension", "sag", "natural_length")
 
 _HOLD_KEYS = {
-    "length": ("hanger", "the length of its link"),
-    "weight": ("hanger", "the weight of its link"),
-    "stiffness_along": ("post", "a spring rate"),
-    "stiffness_across": ("post", "a spring rate"),
+    "length": (("hanger", "sheave"), "the length of its link"),
+    "weight": (("hanger", "sheave"), "the weight of its link"),
+    "friction": (("sheave",), "friction"),
+    "stiffness_along": (("post",), "a spring rate"),
+    "stiffness_across": (("post",), "a spring rate"),
 }
 
 
@@ -47,9 +48,11 @@ def support_rules(checked: Checked) -> None:
             _hold_rules(checked, number)
     _order_rules(checked)
     for number in (0, count - 1) if count > 1 else ():
-        if checked.raw("support", number).get("hold") == "hanger":
+        why = {"hanger": "which would swing away", "sheave": "next to nothing: the line would run off it"}
+        hold = checked.raw("support", number).get("hold")
+        if isinstance(hold, str) and hold in why:
             which = "first" if number == 0 else "last"
-            problem = f"the {which} support is a hanger, which would swing away"
+            problem = f"the {which} support is a {hold}, {why[hold]}"
             checked.fault(("support", number, "hold"), problem, "an anchor or a post at both ends", 'hold = "anchor"')
 
 
@@ -78,6 +81,7 @@ def stringing_rules(checked: Checked) -> None:
     given = [key for key in STRINGING_RULES if checked.raw("stringing").get(key) is not None]
     at_most_one(checked, ("stringing",), Stringing, STRINGING_RULES)
     stringing = checked.stringing
+    _method_rules(checked)
     if given == ["tension"]:
         _support_index(checked, ("stringing", "tension", "support"))
     if given == ["sag"]:
@@ -89,6 +93,19 @@ def stringing_rules(checked: Checked) -> None:
     if isinstance(lengths, tuple) and len(lengths) != spans:
         problem = f"{len(lengths)} natural lengths for {spans} span{'s' if spans != 1 else ''}"
         checked.fault(("stringing", "natural_length"), problem, "one for each span, or one for the whole line")
+
+
+def _method_rules(checked: Checked) -> None:
+    """What belongs to a line strung over sheaves, and what it leaves no room for."""
+    raw = checked.raw("stringing")
+    over = raw.get("method") == OVER_SHEAVES
+    for key in () if over else ("clip", "friction"):
+        if raw.get(key) is not None:
+            problem = f'{key} belongs to a line strung over sheaves, and this one is strung "{CLAMPED}"'
+            checked.fault(("stringing", key), problem, f'method = "{OVER_SHEAVES}" beside it')
+    if over and isinstance(raw.get("natural_length"), list):
+        problem = "a length of each span leaves nothing to run over the sheaves"
+        checked.fault(("stringing", "natural_length"), problem, "one for the whole line", 'natural_length = "1850 m"')
 
 
 def _needed_by_conditions(checked: Checked) -> None:
@@ -122,12 +139,15 @@ def _hold_rules(checked: Checked, number: int) -> None:
     raw = checked.raw("support", number)
     hold = raw.get("hold", "anchor")
     path = ("support", number)
-    if not isinstance(hold, str) or hold not in ("anchor", "hanger", "post"):
+    if not isinstance(hold, str) or hold not in HOLDS:
         return
-    for key, (owner, what) in _HOLD_KEYS.items():
-        if raw.get(key) is not None and hold != owner:
+    for key, (owners, what) in _HOLD_KEYS.items():
+        if raw.get(key) is not None and hold not in owners:
             article = "an" if hold == "anchor" else "a"
-            checked.fault((*path, key), f"{article} {hold} has no {key}; {what} belongs to a {owner}")
+            checked.fault((*path, key), f"{article} {hold} has no {key}; {what} belongs to a {' or a '.join(owners)}")
+    if hold == "sheave" and raw.get("weight") is not None and raw.get("length") is None:
+        problem = "a sheave without a link hangs on nothing that could weigh on the line"
+        checked.fault((*path, "weight"), problem, "a length beside it", 'length = "0.6 m"')
     at_an_end = number in (0, checked.count("support") - 1)  # no place for a hanger, with or without a length
     if hold == "hanger" and raw.get("length") is None and not at_an_end:
         checked.fault((*path, "length"), "missing", "the length of the hanger", 'length = "1.8 m"')

@@ -101,6 +101,7 @@ def strung(project: Project, *, pull: Pull = None) -> StrungState:
         project.stringing.temperature_degC,
         finite(found["horizontal_tension_N"]),
         tuple(float(length) for length in found["lengths_m"]),
+        project.stringing.method,
     )
 
 

@@ -39,7 +39,7 @@ name = "West mast"
 station = "0 m"
 height = "15 m"                       # above the ground; or elevation = "21 m"
 hold = "anchor"                       # anchor: the line ends here. In between also: hanger (length, weight),
-                                      # post (stiffness_along, stiffness_across)
+                                      # sheave (length, weight, friction), post (stiffness_along, stiffness_across)
 capacity = { along = "90 kN", down = "30 kN" }
 
 [[support]]
@@ -54,6 +54,8 @@ horizontal_tension = "20 kN"          # the pull. Or instead: tension = { suppor
                                       # sag = { from = "West mast", to = "East mast", value = "6.7 m" },
                                       # natural_length = "300.1 m". `tautwise window` searches the pull by itself.
 tolerance = "3 %"                     # how well the crew can keep it
+# method = "over sheaves"             # pulled in over sheaves, then clamped; `tautwise sheet` tells the crew where
+# end_allowance = "2 m"               # added to what is cut, at each end of a section
 
 [[condition]]
 name = "hot"

@@ -12,6 +12,7 @@ from typing import Annotated, Any
 from pydantic import BaseModel, ConfigDict, Field
 
 from tautwise.fields import (
+    Allowance,
     AlongLine,
     Angle,
     AnyForce,
@@ -25,6 +26,7 @@ from tautwise.fields import (
     Drag,
     Elevation,
     Expansion,
+    Friction,
     HangerLength,
     Height,
     Lengths,
@@ -47,10 +49,11 @@ from tautwise.fields import (
 )
 from tautwise.units import STANDARD_GRAVITY_M_PER_S2
 
-HOLDS = ("anchor", "hanger", "post")
-SHEAVE = "a line in service over a sheave is not available in this version"
+HOLDS = ("anchor", "hanger", "sheave", "post")
+CLAMPED, OVER_SHEAVES = METHODS = ("clamped", "over sheaves")
+PLUMB, WHERE_IT_LIES = CLIPS = ("plumb", "where it lies")
 
-Hold = Annotated[str, Choice(HOLDS, later=(("sheave", SHEAVE),))]
+Hold = Annotated[str, Choice(HOLDS)]
 
 
 class Table(BaseModel):
@@ -136,6 +139,7 @@ class Support(Table):
     hold: Hold = "anchor"
     hanger_length_m: HangerLength | None = Field(None, alias="length")
     hanger_weight_N: SomeForce = Field(0.0, alias="weight")
+    sheave_friction: Friction | None = Field(None, alias="friction")
     stiffness_along_N_per_m: SpringRate | None = Field(None, alias="stiffness_along")
     stiffness_across_N_per_m: SpringRate | None = Field(None, alias="stiffness_across")
     capacity: Capacity = Capacity()
@@ -165,6 +169,15 @@ class Stringing(Table):
     sag: SagOf | None = None
     natural_length_m: Annotated[Any, Lengths()] = Field(None, alias="natural_length")
     tolerance: Tolerance = 0.0
+    method: Annotated[str, Choice(METHODS)] = CLAMPED
+    clip: Annotated[str, Choice(CLIPS)] = PLUMB
+    friction: Friction = 0.0
+    end_allowance_m: Allowance = Field(0.0, alias="end_allowance")
+
+    @property
+    def over_sheaves(self) -> bool:
+        """Whether the line is pulled in over sheaves and then clamped."""
+        return self.method == OVER_SHEAVES
 
 
 class Ice(Table):

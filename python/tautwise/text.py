@@ -109,8 +109,10 @@ def _strung_lines(report: SettleReport, project: Project) -> list[str]:
         pull = f"with a pull of {force_text(strung.horizontal_tension_N)}"
     total = math.fsum(strung.natural_length_m)
     spans = plural(len(strung.natural_length_m), "span")
+    rule = project.stringing
+    over = f" over sheaves, clamped {rule.clip}," if rule.over_sheaves else ""
     return [
-        f"Strung bare at {strung.temperature_degC:.4g} degC {pull}; natural length {total:.3f} m in {spans}.",
+        f"Strung bare{over} at {strung.temperature_degC:.4g} degC {pull}; natural length {total:.3f} m in {spans}.",
     ]
 
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SupportLoadLimit, SwingLimit
 from tautwise.rules_loading import has_capacity
-from tautwise.tables import Condition, Load, Support
+from tautwise.tables import PLUMB, Condition, Load, Support
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -54,6 +54,7 @@ def _support(project: Project, support: Support) -> dict[str, Any]:
         "hold": support.hold,
         "hanger_length_m": support.hanger_length_m or 0.0,
         "hanger_weight_N": support.hanger_weight_N,
+        "sheave_friction": support.sheave_friction,
         "stiffness_along_N_per_m": support.stiffness_along_N_per_m or rigid,
         "stiffness_across_N_per_m": support.stiffness_across_N_per_m or rigid,
         "capacity_along_N": support.capacity.along_N,
@@ -188,4 +189,8 @@ def _stringing(project: Project) -> dict[str, Any]:
         "index": index,
         "lengths_m": lengths,
         "tolerance": stringing.tolerance,
+        "method": stringing.method.replace(" ", "_"),
+        "clip": "plumb" if stringing.clip == PLUMB else "lies",
+        "friction": stringing.friction,
+        "end_allowance_m": stringing.end_allowance_m,
     }
