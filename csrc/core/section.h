@@ -18,6 +18,7 @@
 #include "span.h"
 
 enum { TW_SECTION_WORK_PER_SPAN = 45 }; /* doubles of scratch */
+enum { TW_SECTION_RUN_PIECES = 64 };    /* of a span under a load per horizontal metre */
 
 typedef struct tw_section {
     const tw_project *project;
@@ -40,6 +41,11 @@ typedef struct tw_section {
     double *work;            /* scratch of the solver; owned */
     unsigned char *slack;    /* [span_count + 1] 1: the hanger there hangs slack; owned */
     size_t *run_first;       /* [span_count + 1] scratch of the solver: runs of spans between holds that carry; owned */
+    double factor_weight;    /* of the hangers' weight in the condition */
+    double carriage_m;       /* natural length from the first support where the carriage stands; NaN: not known yet */
+    double *run_vector;      /* [3 piece_capacity] loads per horizontal metre on each piece, N/m; NULL: no such load; owned */
+    double *run_share;       /* [2 piece_capacity] horizontal over natural metre: at a piece's start, growth along it; owned */
+    size_t run_pieces;       /* for how many pieces run_share is known; 0: not */
     double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 but where nothing else settles */
     double energy_lower_J;   /* D, datum at the first support */
     double closing_m;        /* largest closing error */
@@ -56,6 +62,11 @@ void tw_section_free(tw_section *section);
 tw_status tw_section_load(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
                           int with_addition);
 
+/* Load and solve, with loads per horizontal metre brought into line with the shape and a carriage where it stands. warm: start
+ * from the pulls, shares and the carriage's place already there. TW_ERROR_PLACE: a held carriage's station is off its span. */
+tw_status tw_section_hang(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
+                          int with_addition, const tw_options *options, int warm);
+
 /* Find the equilibrium. warm: start from the pulls already there. Fills everything from pull on. */
 tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm);
 
@@ -65,6 +76,9 @@ void tw_section_locate(const tw_section *section, double s, size_t *span, double
 tw_status tw_section_at_station(const tw_section *section, double station_m, double *s);
 /* Position and tension vector at a natural length from the first support; either may be NULL. */
 void tw_section_at(const tw_section *section, double s, double position[3], double tension[3]);
+
+/* Tension vectors just before and just beyond a place; they differ where a point load acts. */
+void tw_section_beside(const tw_section *section, double s, double before[3], double beyond[3]);
 
 /* Stretch energy of a hung section, J. */
 double tw_section_stored(const tw_section *section);
