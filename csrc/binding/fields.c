@@ -24,7 +24,7 @@ static const field support_fields[] = {
     F(tw_support, height_m, NAN),
     F(tw_support, hanger_length_m, 0.0),
     F(tw_support, hanger_weight_N, 0.0),
-    F(tw_support, wind_area_m2, 0.0),
+    F(tw_support, hanger_wind_area_m2, 0.0),
     F(tw_support, stiffness_along_N_per_m, NAN),
     F(tw_support, stiffness_across_N_per_m, NAN),
     F(tw_support, capacity_along_N, NAN),

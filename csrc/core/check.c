@@ -37,7 +37,7 @@ static const range support_rules[] = {
     {SUPPORT(height_m), -2e4, 2e4, OPTIONAL, "a height within 20 km"},
     {SUPPORT(hanger_length_m), 0.0, 1e3, 0, "a hanger length from 0 to 1 km"},
     {SUPPORT(hanger_weight_N), 0.0, 1e7, 0, "a hanger weight from 0 to 1e7 N"},
-    {SUPPORT(wind_area_m2), 0.0, 1e3, 0, "a wind area from 0 to 1000 m2"},
+    {SUPPORT(hanger_wind_area_m2), 0.0, 1e3, 0, "a wind area from 0 to 1000 m2"},
     {SUPPORT(stiffness_along_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(stiffness_across_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(capacity_along_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},

@@ -37,7 +37,7 @@ typedef struct tw_support {
     tw_hold hold;
     double hanger_length_m;           /* hanger only, > 0 */
     double hanger_weight_N;           /* hanger only, >= 0; half of it acts at the clamp */
-    double wind_area_m2;              /* hanger only: drag area of the string (area times drag), half of it at the clamp */
+    double hanger_wind_area_m2;              /* hanger only: drag area of the string (area times drag), half of it at the clamp */
     double stiffness_along_N_per_m;   /* post only; infinity: rigid */
     double stiffness_across_N_per_m;  /* post only; infinity: rigid */
     double capacity_along_N;          /* capacities: NaN where not given */

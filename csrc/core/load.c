@@ -82,7 +82,7 @@ void tw_load_basic(const tw_line *line, const tw_condition *condition, double ic
 
 void tw_load_hanger(const tw_support *support, const tw_condition *condition, double angle_rad, double load[3])
 {
-    double push = 0.5 * tw_load_pressure(condition) * support->wind_area_m2;
+    double push = 0.5 * tw_load_pressure(condition) * support->hanger_wind_area_m2;
     load[0] = push != 0.0 ? push * cos(angle_rad) : 0.0;
     load[1] = push != 0.0 ? push * sin(angle_rad) : 0.0;
     load[2] = -0.5 * condition->factor_weight * support->hanger_weight_N;

@@ -40,7 +40,7 @@ double tw_section_follow_runs(tw_section *section)
             ends[e] = hypot(t[0], t[1]) / size * tw_material_stretch(&section->material, size);
         }
         double rate = (ends[1] - ends[0]) / piece->length_m;
-        double start = tw_ramp_run(&section->material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
+        double start = tw_span_ramp_run(&section->material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
         double change = fabs(start - share[0]) + fabs(rate - share[1]) * piece->length_m;
         most = change > most || isnan(change) ? change : most;
         tw_axpy(piece->load, start - share[0], vector, piece->load);

@@ -134,8 +134,8 @@ void tw_piece_energies(const tw_material *material, const double tension[3], con
 void tw_piece_part(const tw_material *material, const tw_piece *piece, double from, double length,
                    double displacement[3], double flexibility[6])
 {
-    if (tw_ramp_is(piece)) {
-        tw_ramp_part(material, piece, from, length, displacement, flexibility);
+    if (tw_span_ramp_is(piece)) {
+        tw_span_ramp_part(material, piece, from, length, displacement, flexibility);
         return;
     }
     double tension[3];
@@ -146,8 +146,8 @@ void tw_piece_part(const tw_material *material, const tw_piece *piece, double fr
 void tw_piece_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
                         double *line_length_m)
 {
-    if (tw_ramp_is(piece)) {
-        tw_ramp_integrals(material, piece, conjugate_J, stored_J, line_length_m);
+    if (tw_span_ramp_is(piece)) {
+        tw_span_ramp_integrals(material, piece, conjugate_J, stored_J, line_length_m);
         return;
     }
     tw_piece_energies(material, piece->tension, piece->load, piece->length_m, conjugate_J, stored_J, line_length_m);
@@ -175,10 +175,10 @@ void tw_piece_position(const tw_material *material, const tw_piece *piece, doubl
 
 int tw_piece_turns(const tw_piece *piece, double *s)
 {
-    if (tw_ramp_is(piece)) {
+    if (tw_span_ramp_is(piece)) {
         static const double ahead[3] = {1.0, 0.0, 0.0};
         double places[2] = {-1.0, -1.0};
-        int count = tw_ramp_stationary(piece, ahead, places);
+        int count = tw_span_ramp_stationary(piece, ahead, places);
         *s = places[0];
         return count > 0;
     }
@@ -242,8 +242,8 @@ void tw_span_hang(const tw_material *material, tw_piece *pieces, size_t count, c
 static void stationary(const tw_piece *piece, const double direction[3], double places[2])
 {
     places[0] = places[1] = -1.0;
-    if (tw_ramp_is(piece)) {
-        tw_ramp_stationary(piece, direction, places);
+    if (tw_span_ramp_is(piece)) {
+        tw_span_ramp_stationary(piece, direction, places);
         return;
     }
     double rate = tw_dot(direction, piece->load);
@@ -319,8 +319,8 @@ double tw_span_slope(const tw_piece *pieces, size_t count)
         slope = fmax(slope, slope_of(pieces[k].tension));
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         slope = fmax(slope, slope_of(t));
-        if (tw_ramp_is(&pieces[k])) {
-            slope = fmax(slope, tw_ramp_slope(&pieces[k]));
+        if (tw_span_ramp_is(&pieces[k])) {
+            slope = fmax(slope, tw_span_ramp_slope(&pieces[k]));
             continue;
         }
         double inner = slope_stationary(&pieces[k]);
@@ -340,7 +340,7 @@ double tw_span_tension_max(const tw_piece *pieces, size_t count)
         most = fmax(most, tw_norm(pieces[k].tension));
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         most = fmax(most, tw_norm(t));
-        most = tw_ramp_is(&pieces[k]) ? fmax(most, tw_ramp_tension_max(&pieces[k])) : most;
+        most = tw_span_ramp_is(&pieces[k]) ? fmax(most, tw_span_ramp_tension_max(&pieces[k])) : most;
     }
     return most;
 }

@@ -91,7 +91,7 @@ static void add_stretch(sums *to, const tw_piece *piece, double from, double len
     }
 }
 
-void tw_ramp_part(const tw_material *material, const tw_piece *piece, double from, double length, double displacement[3],
+void tw_span_ramp_part(const tw_material *material, const tw_piece *piece, double from, double length, double displacement[3],
                   double flexibility[6])
 {
     sums to = {.material = material, .displacement = displacement, .flexibility = flexibility};
@@ -102,7 +102,7 @@ void tw_ramp_part(const tw_material *material, const tw_piece *piece, double fro
     add_stretch(&to, piece, from, length);
 }
 
-void tw_ramp_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
+void tw_span_ramp_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
                        double *line_length_m)
 {
     sums to = {.material = material};
@@ -118,7 +118,7 @@ void tw_ramp_integrals(const tw_material *material, const tw_piece *piece, doubl
     }
 }
 
-double tw_ramp_run(const tw_material *material, const tw_piece *piece)
+double tw_span_ramp_run(const tw_material *material, const tw_piece *piece)
 {
     sums to = {.material = material};
     add_stretch(&to, piece, 0.0, piece->length_m);
@@ -126,7 +126,7 @@ double tw_ramp_run(const tw_material *material, const tw_piece *piece)
 }
 
 /* c - b s - a s^2 / 2 = 0, without cancellation. */
-int tw_ramp_stationary(const tw_piece *piece, const double direction[3], double places[2])
+int tw_span_ramp_stationary(const tw_piece *piece, const double direction[3], double places[2])
 {
     double a = tw_dot(direction, piece->ramp), b = tw_dot(direction, piece->load);
     double c = tw_dot(direction, piece->tension);
@@ -208,12 +208,12 @@ static double size_of(const double t[3])
     return tw_norm(t);
 }
 
-double tw_ramp_slope(const tw_piece *piece)
+double tw_span_ramp_slope(const tw_piece *piece)
 {
     return greatest_within(slope_slope, piece, slope_of);
 }
 
-double tw_ramp_tension_max(const tw_piece *piece)
+double tw_span_ramp_tension_max(const tw_piece *piece)
 {
     return greatest_within(tension_slope, piece, size_of);
 }

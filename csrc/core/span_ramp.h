@@ -10,25 +10,25 @@
 
 #include "span.h"
 
-static inline int tw_ramp_is(const tw_piece *piece)
+static inline int tw_span_ramp_is(const tw_piece *piece)
 {
     return piece->ramp[0] != 0.0 || piece->ramp[1] != 0.0 || piece->ramp[2] != 0.0;
 }
 
 /* See tw_piece_part and tw_piece_integrals. */
-void tw_ramp_part(const tw_material *material, const tw_piece *piece, double from, double length, double displacement[3],
+void tw_span_ramp_part(const tw_material *material, const tw_piece *piece, double from, double length, double displacement[3],
                   double flexibility[6]);
-void tw_ramp_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
+void tw_span_ramp_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
                        double *line_length_m);
 
 /* int |t_xy|/|t| W*'(|t|) ds: the horizontal run of a piece, uniform or not, m. */
-double tw_ramp_run(const tw_material *material, const tw_piece *piece);
+double tw_span_ramp_run(const tw_material *material, const tw_piece *piece);
 
 /* Where direction . t = 0 within the piece, ascending: how many of two, the rest of `places` untouched. */
-int tw_ramp_stationary(const tw_piece *piece, const double direction[3], double places[2]);
+int tw_span_ramp_stationary(const tw_piece *piece, const double direction[3], double places[2]);
 
 /* Greatest |t_z|/|t_xy| and |t| at places within the piece where they are stationary; 0 where there is none. */
-double tw_ramp_slope(const tw_piece *piece);
-double tw_ramp_tension_max(const tw_piece *piece);
+double tw_span_ramp_slope(const tw_piece *piece);
+double tw_span_ramp_tension_max(const tw_piece *piece);
 
 #endif

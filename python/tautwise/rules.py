@@ -15,6 +15,7 @@ STRINGING_RULES = ("horizontal_tension", "tension", "sag", "natural_length")
 _HOLD_KEYS = {
     "length": ("hanger", "the length of its link"),
     "weight": ("hanger", "the weight of its link"),
+    "wind_area": ("hanger", "the drag area of its string"),
     "stiffness_along": ("post", "a spring rate"),
     "stiffness_across": ("post", "a spring rate"),
 }
