@@ -289,7 +289,7 @@ class Pattern(Kind):
     """
 
     words = "shares from 0 to 1 repeated along the spans, or a share beyond or before a support or on some spans"
-    example = '[1, 0], or { beyond = "West mast", share = 0.5 }'
+    example = "[1, 0]"
     where = ("beyond", "before", "spans")
 
     def read(self, value: Any) -> tuple[float, ...] | SharesOf:

@@ -66,7 +66,9 @@ def potential(material: Material, nodes: Array, lengths_m: Array, loads: Array, 
     total = 0.0
     for i, (length, load) in enumerate(zip(lengths_m, loads, strict=True)):
         element = nodes[2 * i : 2 * i + 3]
-        total += element_stored(material, element, float(length), points) - element_work(element, float(length), load)
+        total += element_stored(material, element, float(length), points) - element_work(
+            element, float(length), load
+        )
     return total
 
 

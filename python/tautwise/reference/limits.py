@@ -72,7 +72,9 @@ def judge(problem: Mapping[str, Any], limit: int, settled: Settled, bare: Settle
     return max(found, key=lambda verdict: verdict.utilisation, default=None)
 
 
-def judge_span(problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int) -> list[Verdict]:
+def judge_span(
+    problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int
+) -> list[Verdict]:
     """Verdicts of one span."""
     if rule["kind"] == "clearance":
         clearance = least_clearance(problem, rule, settled, span)
@@ -135,7 +137,9 @@ def lift(settled: Settled, support: int) -> float | None:
     return float(link[2]) / at.hanger_length_m + 1.0
 
 
-def least_clearance(problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int) -> float | None:
+def least_clearance(
+    problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int
+) -> float | None:
     """Least vertical clearance of a span over the ground or a crossing's top between the rule's stations, m.
 
     Dense samples of the line, the stretch's own bounds and the profile's points; then golden section on both sides
@@ -155,7 +159,11 @@ def least_clearance(problem: Mapping[str, Any], rule: Mapping[str, Any], settled
     samples = np.linspace(0.0, hung.length_m, 401)
     passed = start[0] + hung.positions_at(samples)[:, 0]
     edges = [x for x in [low, high, *stations] if low <= x <= high]
-    cuts = [s for x in edges for s in crossings_of(lambda s: start[0] + hung.position_at(s)[0], samples, passed, x)]
+    cuts = [
+        s
+        for x in edges
+        for s in crossings_of(lambda s: start[0] + hung.position_at(s)[0], samples, passed, x)
+    ]
     places = np.unique(np.concatenate([samples, cuts]))
     found = start + hung.positions_at(places)
     inside = (found[:, 0] >= low - 1e-9) & (found[:, 0] <= high + 1e-9)
