@@ -151,7 +151,7 @@ def test_settle_document(project):
     assert set(condition["spans"][0]["low_point"]) == {"station_m", "elevation_m"}
     support = condition["supports"][0]
     assert set(support) == {"name", "along_N", "across_N", "down_N", "resultant_N", "swing_deg", "position_m"}
-    assert set(condition["marks"][0]) == {"name", "at_length_m", "tension_N", "position_m"}
+    assert set(condition["marks"][0]) == {"name", "at_length_m", "tension_N", "tension_beyond_N", "position_m"}
 
 
 def test_window_documents(window, shut):

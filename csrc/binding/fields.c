@@ -26,6 +26,7 @@ static const field support_fields[] = {
     F(tw_support, hanger_length_m, 0.0),
     F(tw_support, hanger_weight_N, 0.0),
     F(tw_support, sheave_friction, NAN),
+    F(tw_support, hanger_wind_area_m2, 0.0),
     F(tw_support, stiffness_along_N_per_m, NAN),
     F(tw_support, stiffness_across_N_per_m, NAN),
     F(tw_support, capacity_along_N, NAN),
@@ -51,7 +52,13 @@ static const field condition_fields[] = {
     F(tw_condition, air_density_kg_per_m3, 1.225),
     F(tw_condition, wind_drag, 1.0),
     F(tw_condition, wind_angle_rad, 1.57079632679489661923),
+    F(tw_condition, wind_bearing_rad, NAN),
+    F(tw_condition, wind_altitude_m, NAN),
     F(tw_condition, resultant_addition_N_per_m, 0.0),
+    F(tw_condition, factor_weight, 1.0),
+    F(tw_condition, factor_ice, 1.0),
+    F(tw_condition, factor_wind, 1.0),
+    F(tw_condition, factor_load, 1.0),
 };
 const field_table tw_condition_table = TABLE(condition_fields);
 
@@ -113,6 +120,7 @@ const field_table tw_support_state_table = TABLE(support_state_fields);
 static const field mark_state_fields[] = {
     F(tw_mark_state, at_length_m, NAN),
     F(tw_mark_state, tension_N, NAN),
+    F(tw_mark_state, tension_beyond_N, NAN),
 };
 const field_table tw_mark_state_table = TABLE(mark_state_fields);
 

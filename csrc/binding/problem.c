@@ -9,6 +9,7 @@
 
 static const char *const hold_names[] = {"anchor", "hanger", "sheave", "post", NULL};
 static const char *const place_names[] = {"whole", "station", "length", NULL};
+static const char *const carriage_names[] = {"none", "free", "held", NULL};
 static const char *const frame_names[] = {"span", "route", NULL};
 static const char *const kind_names[] = {"clearance", "tension", "support_load", "uplift", "swing", "sag",
                                          "catenary_constant", "slope", NULL};
@@ -20,14 +21,21 @@ static const char *const rule_names[] = {"pull", "tension", "sag", "total_length
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
                                            "stringing", NULL};
 static const char *const support_keys[] = {"hold", NULL};
-static const char *const condition_keys[] = {"loads", NULL};
-static const char *const load_keys[] = {"is_point", "place", "frame", "vector", NULL};
+static const char *const condition_keys[] = {"loads", "ice_share", NULL};
+static const char *const load_keys[] = {"is_point", "is_run", "place", "frame", "vector", "vector_to", "covers",
+                                        "carriage", "carriage_span", NULL};
 static const char *const mark_keys[] = {"place", NULL};
 static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", NULL};
 static const char *const stringing_keys[] = {"rule", "index", "lengths_m", "method", "clip", NULL};
 
 void tw_problem_free(problem *in)
 {
+    for (size_t i = 0; i < in->project.load_count; i++) {
+        PyMem_Free((void *)in->loads[i].covers);
+    }
+    for (size_t c = 0; in->conditions && c < in->condition_rows; c++) {
+        PyMem_Free((void *)in->conditions[c].ice_share);
+    }
     PyMem_Free(in->supports);
     PyMem_Free(in->ground);
     PyMem_Free(in->crossings);
@@ -190,10 +198,10 @@ static int read_crossings(PyObject *dict, problem *out)
     return 0;
 }
 
-/* dict["vector"]: three numbers. */
-static int read_vector(PyObject *row, double vector[3])
+/* dict[key]: three numbers. */
+static int read_vector(PyObject *row, const char *key, double vector[3])
 {
-    PyObject *given = tw_fields_get(row, "vector");
+    PyObject *given = tw_fields_get(row, key);
     PyObject *numbers = given ? PySequence_Tuple(given) : NULL;
     int result = numbers && PyTuple_GET_SIZE(numbers) == 3 ? 0 : -1;
     for (int i = 0; result == 0 && i < 3; i++) {
@@ -202,27 +210,74 @@ static int read_vector(PyObject *row, double vector[3])
     }
     Py_XDECREF(numbers);
     if (result < 0 && !PyErr_Occurred()) {
-        PyErr_SetString(PyExc_ValueError, "vector: expected three numbers");
+        PyErr_Format(PyExc_ValueError, "%s: expected three numbers", key);
     }
     return result;
 }
 
-static int read_load(PyObject *row, tw_load *load)
+/* A list of truths, or all true where missing. */
+static int read_flags(PyObject *row, const char *key, unsigned char *flags, size_t count)
+{
+    PyObject *list;
+    size_t given;
+    int result = rows_of(row, key, &list, &given);
+    if (result == 0 && list && given != count) {
+        PyErr_Format(PyExc_ValueError, "%s: expected %zu entries, not %zu", key, count, given);
+        result = -1;
+    }
+    for (size_t i = 0; result == 0 && i < count; i++) {
+        int truth = list ? PyObject_IsTrue(row_at(list, i)) : 1;
+        result = truth < 0 ? -1 : 0;
+        flags[i] = (unsigned char)(truth > 0);
+    }
+    Py_XDECREF(list);
+    return result;
+}
+
+/* dict["covers"]: one truth for each span, owned by the load; NULL where missing. */
+static int read_load_covers(PyObject *row, size_t spans, tw_load *load)
+{
+    if (!tw_fields_get(row, "covers")) {
+        return 0;
+    }
+    unsigned char *covers = room(spans, 1);
+    load->covers = covers;
+    return covers ? read_flags(row, "covers", covers, spans) : -1;
+}
+
+static int truth_of(PyObject *row, const char *key)
+{
+    PyObject *value = tw_fields_get(row, key);
+    return value ? PyObject_IsTrue(value) : 0;
+}
+
+static int read_carriage(PyObject *row, tw_load *load)
+{
+    int carriage = tw_fields_choice(row, "carriage", carriage_names, TW_CARRIAGE_NONE);
+    load->carriage = carriage < 0 ? TW_CARRIAGE_NONE : (tw_carriage)carriage;
+    return carriage < 0 ? -1 : read_index(row, "carriage_span", &load->carriage_span);
+}
+
+static int read_load(PyObject *row, size_t spans, tw_load *load)
 {
     if (tw_fields_read(row, tw_load_table, load_keys, load) < 0) {
         return -1;
     }
     int place = tw_fields_choice(row, "place", place_names, TW_PLACE_WHOLE);
     int frame = tw_fields_choice(row, "frame", frame_names, TW_FRAME_SPAN);
-    PyObject *point = tw_fields_get(row, "is_point");
-    int is_point = point ? PyObject_IsTrue(point) : 0;
-    if (place < 0 || frame < 0 || is_point < 0) {
+    int is_point = truth_of(row, "is_point"), is_run = truth_of(row, "is_run");
+    if (place < 0 || frame < 0 || is_point < 0 || is_run < 0 || read_carriage(row, load) < 0) {
+        return -1;
+    }
+    load->is_run = is_run;
+    load->is_ramp = tw_fields_get(row, "vector_to") != NULL;
+    if (load->is_ramp && read_vector(row, "vector_to", load->vector_to) < 0) {
         return -1;
     }
     load->place = (tw_place)place;
     load->frame = (tw_frame)frame;
     load->is_point = is_point;
-    return read_vector(row, load->vector);
+    return read_vector(row, "vector", load->vector) < 0 ? -1 : read_load_covers(row, spans, load);
 }
 
 /* The loads of a condition go behind those already read. */
@@ -240,17 +295,37 @@ static int read_loads(PyObject *row, tw_condition *condition, problem *out)
     }
     for (size_t i = 0; result == 0 && i < count; i++) {
         tw_load load = {0};
-        result = read_load(row_at(rows, i), &load);
+        result = read_load(row_at(rows, i), out->project.support_count - 1, &load);
         out->loads[before + i] = load;
-        out->project.load_count += result == 0;
+        out->project.load_count++; /* whole or not, so that what it owns is freed */
     }
     Py_XDECREF(rows);
     return result;
 }
 
+/* dict["ice_share"]: a share for each span, owned by the condition; NULL where missing. */
+static int read_ice_share(PyObject *row, size_t spans, tw_condition *condition)
+{
+    if (!tw_fields_get(row, "ice_share")) {
+        return 0;
+    }
+    PyArrayObject *array = vector_of(row, "ice_share");
+    double *shares = array ? room(spans, sizeof(double)) : NULL;
+    condition->ice_share = shares;
+    if (shares && (size_t)PyArray_DIM(array, 0) != spans) {
+        PyErr_Format(PyExc_ValueError, "ice_share: expected %zu entries", spans);
+    } else if (shares) {
+        memcpy(shares, PyArray_DATA(array), spans * sizeof(double));
+    }
+    Py_XDECREF(array);
+    return PyErr_Occurred() ? -1 : 0;
+}
+
 static int read_condition(PyObject *row, size_t index, problem *out)
 {
-    if (tw_fields_read(row, tw_condition_table, condition_keys, &out->conditions[index]) < 0) {
+    out->condition_rows = index + 1;
+    if (tw_fields_read(row, tw_condition_table, condition_keys, &out->conditions[index]) < 0
+        || read_ice_share(row, out->project.support_count - 1, &out->conditions[index]) < 0) {
         return -1;
     }
     return read_loads(row, &out->conditions[index], out);
@@ -287,25 +362,6 @@ static int read_marks(PyObject *dict, problem *out)
     out->project.marks = out->marks;
     out->project.mark_count = count;
     return 0;
-}
-
-/* A list of truths, or all true where missing. */
-static int read_flags(PyObject *row, const char *key, unsigned char *flags, size_t count)
-{
-    PyObject *list;
-    size_t given;
-    int result = rows_of(row, key, &list, &given);
-    if (result == 0 && list && given != count) {
-        PyErr_Format(PyExc_ValueError, "%s: expected %zu entries, not %zu", key, count, given);
-        result = -1;
-    }
-    for (size_t i = 0; result == 0 && i < count; i++) {
-        int truth = list ? PyObject_IsTrue(row_at(list, i)) : 1;
-        result = truth < 0 ? -1 : 0;
-        flags[i] = (unsigned char)(truth > 0);
-    }
-    Py_XDECREF(list);
-    return result;
 }
 
 /* The tables of truths grow with the limits, row by row. */

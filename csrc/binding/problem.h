@@ -12,6 +12,7 @@ typedef struct problem {
     double *ground; /* stations, then elevations */
     tw_crossing *crossings;
     tw_condition *conditions;
+    size_t condition_rows; /* read so far */
     tw_load *loads;
     tw_mark *marks;
     tw_limit *limits;

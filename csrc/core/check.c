@@ -1,5 +1,7 @@
 #include "check.h"
 
+#include "check_load.h"
+
 #include <math.h>
 #include <string.h>
 
@@ -36,6 +38,7 @@ static const range support_rules[] = {
     {SUPPORT(hanger_length_m), 0.0, 1e3, 0, "a hanger length from 0 to 1 km"},
     {SUPPORT(hanger_weight_N), 0.0, 1e7, 0, "a hanger weight from 0 to 1e7 N"},
     {SUPPORT(sheave_friction), 0.0, 1.0, OPTIONAL, "a coefficient of friction from 0 to 1"},
+    {SUPPORT(hanger_wind_area_m2), 0.0, 1e3, 0, "a wind area from 0 to 1000 m2"},
     {SUPPORT(stiffness_along_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(stiffness_across_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(capacity_along_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
@@ -61,6 +64,12 @@ static const range condition_rules[] = {
     {CONDITION(air_density_kg_per_m3), 0.0, 10.0, 0, "an air density from 0 to 10 kg/m3"},
     {CONDITION(wind_drag), 0.0, 10.0, 0, "a drag coefficient from 0 to 10"},
     {CONDITION(wind_angle_rad), -6.3, 6.3, 0, "an angle within a full turn"},
+    {CONDITION(wind_bearing_rad), -6.3, 6.3, OPTIONAL, "a bearing within a full turn"},
+    {CONDITION(wind_altitude_m), -500.0, 11000.0, OPTIONAL, "an altitude from -500 to 11,000 m"},
+    {CONDITION(factor_weight), 0.0, 100.0, 0, "a load factor from 0 to 100"},
+    {CONDITION(factor_ice), 0.0, 100.0, 0, "a load factor from 0 to 100"},
+    {CONDITION(factor_wind), 0.0, 100.0, 0, "a load factor from 0 to 100"},
+    {CONDITION(factor_load), 0.0, 100.0, 0, "a load factor from 0 to 100"},
     {CONDITION(resultant_addition_N_per_m), 0.0, 1e6, 0, "an addition from 0 to 1e6 N/m"},
 };
 
@@ -71,6 +80,9 @@ static const range load_rules[] = {
     {LOAD(vector[0]), -1e9, 1e9, 0, "a load within 1e9 N"},
     {LOAD(vector[1]), -1e9, 1e9, 0, "a load within 1e9 N"},
     {LOAD(vector[2]), -1e9, 1e9, 0, "a load within 1e9 N"},
+    {LOAD(vector_to[0]), -1e9, 1e9, 0, "a load within 1e9 N/m"},
+    {LOAD(vector_to[1]), -1e9, 1e9, 0, "a load within 1e9 N/m"},
+    {LOAD(vector_to[2]), -1e9, 1e9, 0, "a load within 1e9 N/m"},
 };
 
 #define MARK(field) #field, offsetof(tw_mark, field)
@@ -224,12 +236,17 @@ static tw_status check_conditions(const tw_project *p, tw_fault *fault)
             return fail(fault, "conditions", c, "temperature_degC", "a thermal strain above -0.5");
         }
     }
+    const char *field = NULL;
+    for (size_t c = 0; c < p->condition_count; c++) {
+        const char *expected = tw_check_condition_loads(p, c, &field);
+        if (expected) {
+            return fail(fault, "conditions", c, field, expected);
+        }
+    }
     for (size_t i = 0; i < p->load_count; i++) {
-        const tw_load *load = &p->loads[i];
-        int placed = load->place != TW_PLACE_WHOLE;
-        if (load->is_point ? !placed || isnan(load->from_m)
-                           : placed && !(load->from_m < load->to_m)) {
-            return fail(fault, "loads", i, "from_m", "a point load with its place, or a stretch with from before to");
+        const char *expected = tw_check_load(&p->loads[i], p->support_count - 1, &field);
+        if (expected) {
+            return fail(fault, "loads", i, field, expected);
         }
     }
     return TW_OK;

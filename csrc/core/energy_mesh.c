@@ -68,15 +68,17 @@ static void mesh_element(tw_energy *energy, size_t element, const tw_piece *piec
 {
     double *edge = energy->edge + BLOCK * element;
     double *node = energy->load + BLOCK * element + 3; /* start, middle, end */
-    double tension[3];
+    double from[3], middle[3], to[3];
     energy->length_m[element] = length;
     for (int half = 0; half < 2; half++) {
-        tw_piece_tension(piece, s + 0.5 * length * half, tension);
-        tw_piece_displacement(&energy->material, tension, piece->load, 0.5 * length, edge + 3 * half, NULL);
+        tw_piece_part(&energy->material, piece, s + 0.5 * length * half, 0.5 * length, edge + 3 * half, NULL);
     }
-    tw_axpy(node, length / 6.0, piece->load, node);
-    tw_axpy(node + 3, length / 1.5, piece->load, node + 3);
-    tw_axpy(node + 6, length / 6.0, piece->load, node + 6);
+    tw_axpy(piece->load, s, piece->ramp, from);
+    tw_axpy(piece->load, s + 0.5 * length, piece->ramp, middle);
+    tw_axpy(piece->load, s + length, piece->ramp, to);
+    tw_axpy(node, length / 6.0, from, node); /* exact for a load that is linear in s */
+    tw_axpy(node + 3, length / 1.5, middle, node + 3);
+    tw_axpy(node + 6, length / 6.0, to, node + 6);
 }
 
 /* The edges of a span must reach from clamp to clamp; what they miss (the exact line's closing error and rounding) is

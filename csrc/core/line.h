@@ -37,6 +37,7 @@ typedef struct tw_support {
     tw_hold hold;
     double hanger_length_m;           /* hanger, > 0; link of a swinging sheave, 0: the sheave is fixed */
     double hanger_weight_N;           /* hanger and sheave, >= 0; half of it acts at the clamp */
+    double hanger_wind_area_m2;       /* hanger and sheave: drag area of the string (area times drag), half of it at the clamp */
     double sheave_friction;           /* sheave only: mu of T_1 = T_2 e^(mu theta), >= 0; enters the crew's range alone */
     double stiffness_along_N_per_m;   /* post only; infinity: rigid */
     double stiffness_across_N_per_m;  /* post only; infinity: rigid */
@@ -63,13 +64,25 @@ typedef enum tw_frame {
     TW_FRAME_ROUTE /* vector is (x, y, z) */
 } tw_frame;
 
+typedef enum tw_carriage {
+    TW_CARRIAGE_NONE, /* a load that is fixed on the line */
+    TW_CARRIAGE_FREE, /* a force that rolls along the line to its lowest place, between the ends of its span */
+    TW_CARRIAGE_HELD  /* a force braked at the station from_m, whatever the line does */
+} tw_carriage;
+
 typedef struct tw_load {
     int is_point;     /* 1: force at from_m; 0: load per natural metre between from_m and to_m */
+    int is_run;       /* 1: a load per horizontal metre of the line as it hangs; not with is_point */
+    int is_ramp;      /* 1: from vector at from_m to vector_to at to_m, linear along the line; neither point nor run */
+    tw_carriage carriage; /* of a point load; at most one load of a condition has one */
+    size_t carriage_span; /* the span on which it stands */
     tw_place place;
     tw_frame frame;
     double from_m;    /* NaN on the whole line */
     double to_m;      /* NaN on the whole line and for a point load */
     double vector[3]; /* N for a point load, N/m otherwise */
+    double vector_to[3]; /* N/m, of a ramp only */
+    const unsigned char *covers; /* [support_count - 1] the spans on which it acts; NULL: all. Borrowed */
 } tw_load;
 
 typedef struct tw_condition {
@@ -81,7 +94,14 @@ typedef struct tw_condition {
     double air_density_kg_per_m3;      /* used with speed */
     double wind_drag;
     double wind_angle_rad;             /* from the span's direction, anticlockwise seen from above; pi/2: square, to the left */
+    double wind_bearing_rad;           /* from which it blows, clockwise from north (y) as a compass; NaN: by the angle */
+    double wind_altitude_m;            /* NaN: air_density_kg_per_m3; else the density of the standard atmosphere there */
     double resultant_addition_N_per_m; /* added to the length of the resultant of weight, ice and wind */
+    double factor_weight;              /* of the line and hangers; each factor multiplies its action, >= 0 */
+    double factor_ice;                 /* of the ice's weight, not of its diameter */
+    double factor_wind;
+    double factor_load;
+    const double *ice_share;           /* [support_count - 1] share of the ice's weight on each span; NULL: 1. Borrowed */
     size_t load_first;                 /* this condition's own loads: project->loads[load_first ... + load_count - 1] */
     size_t load_count;
 } tw_condition;
@@ -236,6 +256,7 @@ typedef struct tw_support_state {
 typedef struct tw_mark_state {
     double at_length_m; /* natural length from the first support */
     double tension_N;
+    double tension_beyond_N; /* just beyond it: the same but where a point load acts */
     double position_m[3];
 } tw_mark_state;
 

@@ -19,7 +19,8 @@
 
 enum {
     TW_SECTION_WORK_PER_SPAN = 45, /* doubles of scratch */
-    TW_SECTION_FEED_PER_SPAN = 65  /* and for natural lengths that move */
+    TW_SECTION_FEED_PER_SPAN = 65, /* and for natural lengths that move */
+    TW_SECTION_RUN_PIECES = 64     /* of a span under a load per horizontal metre */
 };
 
 /* What natural length does at a support, see section_feed.h. */
@@ -57,6 +58,11 @@ typedef struct tw_section {
     double *winch_N;         /* [span_count + 1] horizontal tension that a winch keeps in the span ahead; owned */
     int drag;                /* +1: friction lets the tension grow ahead over each sheave; -1: fall; 0: no friction */
     int fed;                 /* 1: moved_m has been put on the pieces since they were loaded */
+    double factor_weight;    /* of the hangers' weight in the condition */
+    double carriage_m;       /* natural length from the first support where the carriage stands; NaN: not known yet */
+    double *run_vector;      /* [3 piece_capacity] loads per horizontal metre on each piece, N/m; NULL: no such load; owned */
+    double *run_share;       /* [2 piece_capacity] horizontal over natural metre: at a piece's start, growth along it; owned */
+    size_t run_pieces;       /* for how many pieces run_share is known; 0: not */
     double soft_N;           /* rounding of a slack hanger's kink, see hold.h; 0 but where nothing else settles */
     double energy_lower_J;   /* D, datum at the first support */
     double closing_m;        /* largest closing error */
@@ -73,6 +79,11 @@ void tw_section_free(tw_section *section);
 tw_status tw_section_load(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
                           int with_addition);
 
+/* Load and solve, with loads per horizontal metre brought into line with the shape and a carriage where it stands. warm: start
+ * from the pulls, shares and the carriage's place already there. TW_ERROR_PLACE: a held carriage's station is off its span. */
+tw_status tw_section_hang(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
+                          int with_addition, const tw_options *options, int warm);
+
 /* Find the equilibrium. warm: start from the pulls already there. Fills everything from pull on. */
 tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm);
 
@@ -82,6 +93,9 @@ void tw_section_locate(const tw_section *section, double s, size_t *span, double
 tw_status tw_section_at_station(const tw_section *section, double station_m, double *s);
 /* Position and tension vector at a natural length from the first support; either may be NULL. */
 void tw_section_at(const tw_section *section, double s, double position[3], double tension[3]);
+
+/* Tension vectors just before and just beyond a place; they differ where a point load acts. */
+void tw_section_beside(const tw_section *section, double s, double before[3], double beyond[3]);
 
 /* Stretch energy of a hung section, J. */
 double tw_section_stored(const tw_section *section);

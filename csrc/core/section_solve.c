@@ -18,8 +18,9 @@ static void mean_load(const tw_section *section, size_t span, double mean[3])
     mean[0] = mean[1] = mean[2] = 0.0;
     for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
         const tw_piece *piece = &section->pieces[p];
-        tw_axpy(mean, piece->length_m, piece->load, mean);
-        tw_axpy(mean, 1.0, piece->force, mean);
+        double total[3];
+        tw_piece_total(piece, total);
+        tw_axpy(mean, 1.0, total, mean);
     }
     for (int i = 0; i < 3; i++) {
         mean[i] /= section->length_m[span];
@@ -94,7 +95,7 @@ static void finish(tw_section *section, const tw_section_scratch *s)
             tw_piece *piece = &section->pieces[p];
             double conjugate;
             tw_axpy(piece->start, 1.0, start, piece->start);
-            tw_piece_energies(&section->material, piece->tension, piece->load, piece->length_m, &conjugate, NULL, NULL);
+            tw_piece_integrals(&section->material, piece, &conjugate, NULL, NULL);
             lower -= conjugate;
         }
     }

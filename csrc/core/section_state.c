@@ -51,6 +51,27 @@ void tw_section_at(const tw_section *section, double s, double position[3], doub
     }
 }
 
+/* Places are compared as they were when the loads were put on: within a share of a span that rounding cannot reach. */
+void tw_section_beside(const tw_section *section, double s, double before[3], double beyond[3])
+{
+    size_t span;
+    double within;
+    tw_section_locate(section, s, &span, &within);
+    double near = 1e-11 * section->length_m[span];
+    size_t p = section->piece_first[span];
+    while (p + 1 < section->piece_first[span + 1] && within > section->pieces[p].length_m + near) {
+        within -= section->pieces[p].length_m;
+        p++;
+    }
+    const tw_piece *piece = &section->pieces[p];
+    tw_piece_tension(piece, fmin(within, piece->length_m), before);
+    if (p + 1 < section->piece_first[span + 1] && within >= piece->length_m - near) {
+        tw_copy(piece[1].tension, beyond);
+    } else {
+        tw_copy(before, beyond);
+    }
+}
+
 static int passes(const tw_material *material, const tw_piece *piece, double s0, double s1, double station_m, double *s)
 {
     double a[3], b[3];
@@ -114,8 +135,9 @@ static void total_load(const tw_piece *pieces, size_t count, double load[3])
 {
     load[0] = load[1] = load[2] = 0.0;
     for (size_t p = 0; p < count; p++) {
-        tw_axpy(load, pieces[p].length_m, pieces[p].load, load);
-        tw_axpy(load, 1.0, pieces[p].force, load);
+        double total[3];
+        tw_piece_total(&pieces[p], total);
+        tw_axpy(load, 1.0, total, load);
     }
 }
 
@@ -131,6 +153,14 @@ static double slant_sag(const tw_section *section, const tw_piece *pieces, size_
     return fmax(0.0, tw_span_extreme(&section->material, pieces, count, direction, frame->start, &at));
 }
 
+/* First place where the shear under q + growth s is used up from above, or -1. */
+static double no_shear(double shear, double q, double growth)
+{
+    double square = q * q + 2.0 * growth * shear;
+    double root = square > 0.0 ? q + sqrt(square) : 0.0;
+    return root > 0.0 ? 2.0 * shear / root : -1.0;
+}
+
 /* Taut string along the chord: deflection M(x)/H, a metre of line taken for a metre of chord; its greatest. Of a uniform
  * load w L c / (8 H) on a span L with chord c, which on a level span is w L^2 / (8 H). */
 static double small_deflection_sag(const tw_piece *pieces, size_t count, double natural, double span, double chord, double H)
@@ -140,19 +170,21 @@ static double small_deflection_sag(const tw_piece *pieces, size_t count, double 
     double support = 0.0, x = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
-        support += -pieces[p].load[2] * slant * l * (span - x - 0.5 * l) - pieces[p].force[2] * (span - x - l);
+        double arm = span - x;
+        support += -pieces[p].load[2] * slant * l * (arm - 0.5 * l) - pieces[p].force[2] * (arm - l);
+        support -= pieces[p].ramp[2] / scale * slant * l * l * (0.5 * arm - l / 3.0);
         x += l;
     }
     double shear = support / span, moment = 0.0, most = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
-        double q = -pieces[p].load[2] * slant;
-        double top = q > 0.0 ? shear / q : -1.0;
+        double q = -pieces[p].load[2] * slant, growth = -pieces[p].ramp[2] / scale * slant;
+        double top = no_shear(shear, q, growth);
         if (top > 0.0 && top < l) {
-            most = fmax(most, moment + 0.5 * shear * top);
+            most = fmax(most, moment + top * (shear - top * (0.5 * q + growth * top / 6.0)));
         }
-        moment += shear * l - 0.5 * q * l * l;
-        shear -= q * l - pieces[p].force[2];
+        moment += l * (shear - l * (0.5 * q + growth * l / 6.0));
+        shear -= l * (q + 0.5 * growth * l) - pieces[p].force[2];
         most = fmax(most, moment);
     }
     return most / H;
@@ -163,7 +195,7 @@ static double line_length(const tw_section *section, const tw_piece *pieces, siz
     double length = 0.0;
     for (size_t p = 0; p < count; p++) {
         double part;
-        tw_piece_energies(&section->material, pieces[p].tension, pieces[p].load, pieces[p].length_m, NULL, NULL, &part);
+        tw_piece_integrals(&section->material, &pieces[p], NULL, NULL, &part);
         length += part;
     }
     return length;
@@ -222,7 +254,7 @@ void tw_section_support_state(const tw_section *section, size_t support, tw_supp
     int hangs = tw_hold_link_m(at) > 0.0;
     state->along_N = -F[0];
     state->across_N = -F[1];
-    state->down_N = F[2] + (hangs ? 0.5 * at->hanger_weight_N : 0.0);
+    state->down_N = F[2] + (hangs ? 0.5 * section->factor_weight * at->hanger_weight_N : 0.0);
     state->resultant_N = sqrt(F[0] * F[0] + F[1] * F[1] + state->down_N * state->down_N);
     tw_copy(section->clamp + 3 * support, state->position_m);
     const double *c = state->position_m;
@@ -236,7 +268,7 @@ double tw_section_stored(const tw_section *section)
     for (size_t p = 0; p < section->piece_count; p++) {
         const tw_piece *piece = &section->pieces[p];
         double stored;
-        tw_piece_energies(&section->material, piece->tension, piece->load, piece->length_m, NULL, &stored, NULL);
+        tw_piece_integrals(&section->material, piece, NULL, &stored, NULL);
         total += stored;
     }
     return total;

@@ -2,6 +2,7 @@
 
 #include <math.h>
 
+#include "span_ramp.h"
 #include "vector.h"
 
 /* A piece resolved along its load: t = a e + b with b normal to e. */
@@ -130,20 +131,57 @@ void tw_piece_energies(const tw_material *material, const double tension[3], con
     }
 }
 
+void tw_piece_part(const tw_material *material, const tw_piece *piece, double from, double length,
+                   double displacement[3], double flexibility[6])
+{
+    if (tw_span_ramp_is(piece)) {
+        tw_span_ramp_part(material, piece, from, length, displacement, flexibility);
+        return;
+    }
+    double tension[3];
+    tw_axpy(piece->tension, -from, piece->load, tension);
+    tw_piece_displacement(material, tension, piece->load, length, displacement, flexibility);
+}
+
+void tw_piece_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
+                        double *line_length_m)
+{
+    if (tw_span_ramp_is(piece)) {
+        tw_span_ramp_integrals(material, piece, conjugate_J, stored_J, line_length_m);
+        return;
+    }
+    tw_piece_energies(material, piece->tension, piece->load, piece->length_m, conjugate_J, stored_J, line_length_m);
+}
+
+void tw_piece_total(const tw_piece *piece, double total[3])
+{
+    for (int i = 0; i < 3; i++) {
+        total[i] = piece->length_m * (piece->load[i] + 0.5 * piece->length_m * piece->ramp[i]) + piece->force[i];
+    }
+}
+
 void tw_piece_tension(const tw_piece *piece, double s, double tension[3])
 {
     tw_axpy(piece->tension, -s, piece->load, tension);
+    tw_axpy(tension, -0.5 * s * s, piece->ramp, tension);
 }
 
 void tw_piece_position(const tw_material *material, const tw_piece *piece, double s, double position[3])
 {
     double displacement[3];
-    tw_piece_displacement(material, piece->tension, piece->load, s, displacement, NULL);
+    tw_piece_part(material, piece, 0.0, s, displacement, NULL);
     tw_axpy(piece->start, 1.0, displacement, position);
 }
 
 int tw_piece_turns(const tw_piece *piece, double *s)
 {
+    if (tw_span_ramp_is(piece)) {
+        static const double ahead[3] = {1.0, 0.0, 0.0};
+        double places[2] = {-1.0, -1.0};
+        int count = tw_span_ramp_stationary(piece, ahead, places);
+        *s = places[0];
+        return count > 0;
+    }
     *s = piece->load[0] != 0.0 ? piece->tension[0] / piece->load[0] : -1.0;
     return *s > 0.0 && *s < piece->length_m;
 }
@@ -179,7 +217,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
 void tw_span_hang(const tw_material *material, tw_piece *pieces, size_t count, const double start[3],
                   const double pull[3], double end[3], double end_tension[3], double flexibility[6])
 {
-    double step[3];
+    double step[3], total[3];
     double piece_flexibility[6];
     tw_copy(start, end);
     tw_copy(pull, end_tension);
@@ -190,23 +228,27 @@ void tw_span_hang(const tw_material *material, tw_piece *pieces, size_t count, c
         tw_piece *piece = &pieces[k];
         tw_copy(end, piece->start);
         tw_copy(end_tension, piece->tension);
-        tw_piece_displacement(material, piece->tension, piece->load, piece->length_m, step,
-                              flexibility ? piece_flexibility : NULL);
+        tw_piece_part(material, piece, 0.0, piece->length_m, step, flexibility ? piece_flexibility : NULL);
         tw_axpy(end, 1.0, step, end);
-        tw_axpy(end_tension, -piece->length_m, piece->load, end_tension);
-        tw_axpy(end_tension, -1.0, piece->force, end_tension);
+        tw_piece_total(piece, total);
+        tw_axpy(end_tension, -1.0, total, end_tension);
         for (int i = 0; flexibility && i < 6; i++) {
             flexibility[i] += piece_flexibility[i];
         }
     }
 }
 
-/* Natural length within a piece where direction . t = 0, or -1. */
-static double stationary(const tw_piece *piece, const double direction[3])
+/* Natural lengths within a piece where direction . t = 0, -1 where there is none; a ramp has up to two. */
+static void stationary(const tw_piece *piece, const double direction[3], double places[2])
 {
+    places[0] = places[1] = -1.0;
+    if (tw_span_ramp_is(piece)) {
+        tw_span_ramp_stationary(piece, direction, places);
+        return;
+    }
     double rate = tw_dot(direction, piece->load);
     double s = rate != 0.0 ? tw_dot(direction, piece->tension) / rate : -1.0;
-    return s > 0.0 && s < piece->length_m ? s : -1.0;
+    places[0] = s > 0.0 && s < piece->length_m ? s : -1.0;
 }
 
 double tw_span_extreme(const tw_material *material, const tw_piece *pieces, size_t count, const double direction[3],
@@ -215,9 +257,11 @@ double tw_span_extreme(const tw_material *material, const tw_piece *pieces, size
     double best = -INFINITY;
     double passed = 0.0;
     for (size_t k = 0; k < count; k++) {
-        const double places[3] = {0.0, stationary(&pieces[k], direction), pieces[k].length_m};
-        for (int i = 0; i < 3; i++) {
-            if (places[i] < 0.0 || (i == 2 && k + 1 < count)) {
+        double inner[2];
+        stationary(&pieces[k], direction, inner);
+        const double places[4] = {0.0, inner[0], inner[1], pieces[k].length_m};
+        for (int i = 0; i < 4; i++) {
+            if (places[i] < 0.0 || (i == 3 && k + 1 < count)) {
                 continue;
             }
             double r[3];
@@ -275,6 +319,10 @@ double tw_span_slope(const tw_piece *pieces, size_t count)
         slope = fmax(slope, slope_of(pieces[k].tension));
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         slope = fmax(slope, slope_of(t));
+        if (tw_span_ramp_is(&pieces[k])) {
+            slope = fmax(slope, tw_span_ramp_slope(&pieces[k]));
+            continue;
+        }
         double inner = slope_stationary(&pieces[k]);
         if (inner >= 0.0) {
             tw_piece_tension(&pieces[k], inner, t);
@@ -292,6 +340,7 @@ double tw_span_tension_max(const tw_piece *pieces, size_t count)
         most = fmax(most, tw_norm(pieces[k].tension));
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         most = fmax(most, tw_norm(t));
+        most = tw_span_ramp_is(&pieces[k]) ? fmax(most, tw_span_ramp_tension_max(&pieces[k])) : most;
     }
     return most;
 }

@@ -18,7 +18,8 @@
 
 typedef struct tw_piece {
     double length_m;   /* natural, >= 0 */
-    double load[3];    /* N per natural metre, route axes */
+    double load[3];    /* N per natural metre, route axes; where there is a ramp: at the start */
+    double ramp[3];    /* N/m2, growth of the load along the piece: load + ramp s; zero where it is uniform */
     double force[3];   /* N, point force at the piece's end; zero where none */
     double tension[3]; /* tension vector at the start: set by tw_span_hang */
     double start[3];   /* position of the start, m: set by tw_span_hang */
@@ -33,13 +34,25 @@ void tw_piece_displacement(const tw_material *material, const double tension[3],
 void tw_piece_energies(const tw_material *material, const double tension[3], const double load[3], double length,
                        double *conjugate_J, double *stored_J, double *line_length_m);
 
+/* The same for `length` of a hung piece from natural length `from` of it on, ramp included. */
+void tw_piece_part(const tw_material *material, const tw_piece *piece, double from, double length,
+                   double displacement[3], double flexibility[6]);
+
+/* And for all of a hung piece, ramp included. */
+void tw_piece_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
+                        double *line_length_m);
+
+/* All loads on a piece, its point force included, N. */
+void tw_piece_total(const tw_piece *piece, double total[3]);
+
 /* Tension vector at natural length s from the piece's start. */
 void tw_piece_tension(const tw_piece *piece, double s, double tension[3]);
 
 /* Position at natural length s from the piece's start. */
 void tw_piece_position(const tw_material *material, const tw_piece *piece, double s, double position[3]);
 
-/* The one place within a piece where the station turns back (t_x = 0): returns 1 and where, or 0. */
+/* The one place within a piece where the station turns back (t_x = 0): returns 1 and where, or 0. A ramp along the route
+ * could turn twice; the first is taken. */
 int tw_piece_turns(const tw_piece *piece, double *s);
 
 /* Natural length at which the piece passes a station, between s0 and s1 (stations x0 and x1), where the station grows or

@@ -117,10 +117,7 @@ static tw_status solve_into(tw_trial *trial, tw_section *section, size_t conditi
         status = tw_trial_strung(trial, options, &strung);
     }
     if (status == TW_OK) {
-        status = tw_section_load(section, condition, trial->length_m, strung, with_addition);
-    }
-    if (status == TW_OK) {
-        status = tw_section_solve(section, options, warm);
+        status = tw_section_hang(section, condition, trial->length_m, strung, with_addition, options, warm);
         trial->settles++;
     }
     return status;

@@ -10,7 +10,17 @@ static void mark_at(const tw_section *section, double s, tw_mark_state *state)
     double tension[3];
     state->at_length_m = s;
     tw_section_at(section, s, state->position_m, tension);
-    state->tension_N = tw_norm(tension);
+    state->tension_N = state->tension_beyond_N = tw_norm(tension);
+}
+
+/* A point load: the tension on both its sides. */
+static void load_at(const tw_section *section, double s, tw_mark_state *state)
+{
+    double before[3], beyond[3];
+    mark_at(section, s, state);
+    tw_section_beside(section, s, before, beyond);
+    state->tension_N = tw_norm(before);
+    state->tension_beyond_N = tw_norm(beyond);
 }
 
 static double line_length(const tw_section *section)
@@ -48,10 +58,10 @@ static void report_loads(const tw_section *section, size_t count, tw_settled *ou
 {
     for (size_t i = 0; i < count; i++) {
         if (isnan(section->load_length_m[i])) {
-            const tw_mark_state nowhere = {NAN, NAN, {NAN, NAN, NAN}};
+            const tw_mark_state nowhere = {NAN, NAN, NAN, {NAN, NAN, NAN}};
             out->loads[i] = nowhere;
         } else {
-            mark_at(section, section->load_length_m[i], &out->loads[i]);
+            load_at(section, section->load_length_m[i], &out->loads[i]);
         }
     }
 }

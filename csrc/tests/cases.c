@@ -113,6 +113,8 @@ tw_condition *case_condition(tw_case *c, double temperature_degC)
 {
     tw_condition *condition = &c->conditions[c->project.condition_count++];
     condition->temperature_degC = temperature_degC;
+    condition->factor_weight = condition->factor_ice = condition->factor_wind = condition->factor_load = 1.0;
+    condition->wind_bearing_rad = condition->wind_altitude_m = ABSENT;
     condition->ice_density_kg_per_m3 = 900.0;
     condition->wind_pressure_Pa = condition->wind_speed_m_per_s = ABSENT;
     condition->air_density_kg_per_m3 = 1.225;
@@ -178,10 +180,7 @@ tw_section *case_hung(const tw_case *c, size_t condition)
     if (status == TW_OK) {
         int hangs = tw_section_load(strung, TW_NONE, c->lengths_m, NULL, 0) == TW_OK
                     && tw_section_solve(strung, &c->options, 0) == TW_OK;
-        status = tw_section_load(section, condition, c->lengths_m, hangs ? strung : NULL, 1);
-    }
-    if (status == TW_OK) {
-        status = tw_section_solve(section, &c->options, 0);
+        status = tw_section_hang(section, condition, c->lengths_m, hangs ? strung : NULL, 1, &c->options, 0);
     }
     tw_section_free(strung);
     if (status == TW_OK) {

@@ -27,6 +27,8 @@ static inline void fixture_begin(fixture *f, double weight_N_per_m, double stiff
     f->project.conditions = &f->condition;
     f->project.condition_count = 1;
     f->project.loads = f->loads;
+    f->condition.factor_weight = f->condition.factor_ice = f->condition.factor_wind = f->condition.factor_load = 1.0;
+    f->condition.wind_bearing_rad = f->condition.wind_altitude_m = (double)NAN;
     f->condition.wind_speed_m_per_s = 0.0;
     f->condition.wind_pressure_Pa = (double)NAN;
     f->options = tw_options_default();

@@ -12,9 +12,10 @@ if TYPE_CHECKING:
 
 _TABLES = {"supports": "support", "crossings": "crossing", "conditions": "condition", "marks": "mark"}
 _TABLES |= {"limits": "limit", "loads": "load"}
-_UNIT = re.compile(r"_(?:kg_per_m3|N_per_m|m_per_s|per_K|degC|rad|Pa|N|m)$")
+_UNIT = re.compile(r"_(?:kg_per_m3|N_per_m|m_per_s|per_K|degC|rad|Pa|N|m2|m)$")
 _PREFIXES = {"hanger_": (), "ice_": ("ice",), "wind_": ("wind",), "capacity_": ("capacity",), "air_": ("wind",)}
 _PREFIXES |= {"sheave_": ()}
+_PREFIXES |= {"factor_": ("factors",)}
 _STRINGING_RULES = {
     "horizontal_tension_N": ("horizontal_tension",),
     "tension": ("tension", "value"),

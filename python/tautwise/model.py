@@ -32,7 +32,8 @@ from tautwise.plausible import warnings_of
 from tautwise.profile import Ground
 from tautwise.reader import Document, Source, read_project
 from tautwise.rules import line_rules, place_rules, stringing_rules, support_rules
-from tautwise.rules_loading import condition_rules, limit_rules, mark_rules
+from tautwise.rules_loading import limit_rules, mark_rules
+from tautwise.rules_loads import condition_rules
 from tautwise.strict import described, did_you_mean, shown
 from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of

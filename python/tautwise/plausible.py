@@ -11,7 +11,7 @@ from tautwise.keylines import Path as KeyPath
 from tautwise.limits import SupportLoadLimit, TensionLimit
 from tautwise.reader import Document
 from tautwise.strict import shown
-from tautwise.tables import Condition
+from tautwise.tables import Condition, Wind
 from tautwise.units import STANDARD_GRAVITY_M_PER_S2
 
 if TYPE_CHECKING:
@@ -30,6 +30,9 @@ ICE_DIAMETERS_MOST, ICE_MOST_M = 3.0, 0.060
 WIND_PRESSURE_MOST_PA, WIND_SPEED_MOST_M_PER_S = 3000.0, 90.0
 DRAG = (0.3, 2.5)
 FRICTION_MOST = 0.3
+FACTOR_MOST = 3.0
+ALTITUDE_MOST_M = 5000.0
+WIND_AREA_MOST_M2 = 20.0
 SPAN_MOST_M, HEIGHT_MOST_M = 5000.0, 400.0
 
 
@@ -124,6 +127,8 @@ def _supports(project: Project) -> Iterator[Slip]:
             text = f"a span of {span:.4g} m: ft for m, or a zero too many?"
             yield ("support", number, "station"), text
     for number, support in enumerate(project.supports):
+        if support.wind_area_m2 > WIND_AREA_MOST_M2:
+            yield ("support", number, "wind_area"), f"a wind area of {support.wind_area_m2:.4g} m2: cm2 or ft2 for m2?"
         if project.ground is None:
             continue
         key = "height" if support.height_m is not None else "elevation"
@@ -175,8 +180,16 @@ def _condition(project: Project, condition: Condition) -> Iterator[Slip]:
             yield ("ice", "thickness"), text
         if not 200.0 <= ice.density_kg_per_m3 <= 950.0:
             yield ("ice", "density"), f"{ice.density_kg_per_m3:.4g} kg/m3 is no density of ice or rime"
-    if wind is None:
-        return
+    for action, factor in condition.factors:
+        if factor > FACTOR_MOST:
+            yield ("factors", action), f"a load factor of {factor:.4g}: a decimal point lost?"
+    if wind is not None:
+        yield from _wind(wind)
+
+
+def _wind(wind: Wind) -> Iterator[Slip]:
+    if wind.altitude_m is not None and wind.altitude_m > ALTITUDE_MOST_M:
+        yield ("wind", "altitude"), f"an altitude of {wind.altitude_m:.4g} m: ft for m?"
     if wind.pressure_Pa is not None and wind.pressure_Pa > WIND_PRESSURE_MOST_PA:
         yield ("wind", "pressure"), f"{wind.pressure_Pa:.4g} Pa: psf or kPa for Pa, a factor of 1000?"
     if wind.speed_m_per_s is not None and wind.speed_m_per_s > WIND_SPEED_MOST_M_PER_S:

@@ -118,12 +118,17 @@ class SupportState(Record):
 
 @dataclass(frozen=True, slots=True)
 class MarkState(Record):
-    """A place fixed on the line (a mark or a point load): natural length from the first support, tension, position."""
+    """A mark, point load or carriage: natural length from the first support, tension, position.
+
+    tension_beyond_N: just beyond the place; other than tension_N, that before it, where a point load acts. Their
+        difference is what a held carriage is braked with; a free one has none.
+    """
 
     name: str
     at_length_m: float
     tension_N: float
     position_m: tuple[float, float, float]
+    tension_beyond_N: float
 
     def __repr__(self) -> str:
         x, y, z = self.position_m

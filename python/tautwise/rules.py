@@ -15,6 +15,7 @@ STRINGING_RULES = ("horizontal_tension", "tension", "sag", "natural_length")
 _HOLD_KEYS = {
     "length": (("hanger", "sheave"), "the length of its link"),
     "weight": (("hanger", "sheave"), "the weight of its link"),
+    "wind_area": (("hanger", "sheave"), "the drag area of its string"),
     "friction": (("sheave",), "friction"),
     "stiffness_along": (("post",), "a spring rate"),
     "stiffness_across": (("post",), "a spring rate"),

@@ -17,7 +17,7 @@ _GIVEN_ONCE = {
     "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
     "Support": {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]},
     "Wind": {"oneOf": [{"required": ["pressure"]}, {"required": ["speed"]}]},
-    "Load": {"oneOf": [{"required": ["force"]}, {"required": ["per_length"]}]},
+    "Load": {"oneOf": [{"required": ["force"]}, {"required": ["per_length"]}, {"required": ["per_run"]}]},
     "Mark": {"oneOf": [{"required": ["at"]}, {"required": ["at_length"]}]},
     "TensionLimit": {"oneOf": [{"required": ["share"]}, {"required": ["most"]}]},
     "SupportLoadLimit": {"oneOf": [{"required": ["share"]}, {"required": ["most"]}]},

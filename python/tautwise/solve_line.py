@@ -60,6 +60,8 @@ def load_label(load: Load, number: int) -> str:
     """What a point load is called among the marks: its name, or its size and place."""
     if load.name:
         return load.name
+    if load.carriage is not None:
+        return f"carriage, {force_text(load.force_N or 0.0)}"
     place = load.at_m if load.at_m is not None else load.at_length_m
     size = force_text(load.force_N or 0.0)
     return f"load {number + 1}, {size}" if place is None else f"load {number + 1}, {size} at {place:g} m"
@@ -108,7 +110,13 @@ def _marks(project: Project, index: int, found: Mapping[str, Any]) -> tuple[Mark
 
 
 def _mark(name: str, state: Mapping[str, Any]) -> MarkState:
-    return MarkState(name, float(state["at_length_m"]), float(state["tension_N"]), _point(state["position_m"]))
+    return MarkState(
+        name,
+        float(state["at_length_m"]),
+        float(state["tension_N"]),
+        _point(state["position_m"]),
+        float(state["tension_beyond_N"]),
+    )
 
 
 def _point(values: Any) -> tuple[float, float, float]:

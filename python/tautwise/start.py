@@ -71,6 +71,12 @@ temperature = "-5 degC"
 ice = { thickness = "10 mm", density = "900 kg/m^3" }     # radial thickness
 wind = { pressure = "300 Pa", drag = 1.0 }                # or speed = "22 m/s"; square across the line
 # load = [ { force = "500 N", at = "150 m" }, { per_length = "20 N/m", from = "40 m", to = "80 m" } ]
+# Also: { per_length = "20 N/m", per_length_to = "5 N/m", from = "40 m", to = "80 m" }, a ramp;
+# { per_run = "200 N/m", spans = ["West mast"] }, per horizontal metre, on spans named by their first support;
+# { force = "2 kN", carriage = "free" }, which rolls to its lowest place, or carriage = "held" with at.
+# factors = { weight = 1.0, ice = 1.2, wind = 1.5 }        # each action times its factor
+# In ice: pattern = [1, 0] for every second span shed, or { beyond = "West mast", share = 0.5 }. In wind, with speed:
+# altitude = "1200 m", for the density of the air. A hanger's wind_area is the drag area of its string.
 
 [[mark]]                              # a place on the line whose position is reported
 name = "marker ball"

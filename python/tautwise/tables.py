@@ -14,18 +14,22 @@ from pydantic import BaseModel, ConfigDict, Field
 from tautwise.fields import (
     Allowance,
     AlongLine,
+    Altitude,
     Angle,
     AnyForce,
     AnyForcePerLength,
     Area,
     AxialStiffness,
+    Bearing,
     Choice,
     Coordinate,
     Density,
     Direction,
     Drag,
+    DragArea,
     Elevation,
     Expansion,
+    Factor,
     Friction,
     HangerLength,
     Height,
@@ -33,6 +37,7 @@ from tautwise.fields import (
     MassPerLength,
     Modulus,
     Name,
+    Pattern,
     PositiveForce,
     PositiveForcePerLength,
     PositiveLength,
@@ -140,6 +145,7 @@ class Support(Table):
     hanger_length_m: HangerLength | None = Field(None, alias="length")
     hanger_weight_N: SomeForce = Field(0.0, alias="weight")
     sheave_friction: Friction | None = Field(None, alias="friction")
+    wind_area_m2: DragArea = Field(0.0, alias="wind_area")
     stiffness_along_N_per_m: SpringRate | None = Field(None, alias="stiffness_along")
     stiffness_across_N_per_m: SpringRate | None = Field(None, alias="stiffness_across")
     capacity: Capacity = Capacity()
@@ -181,35 +187,63 @@ class Stringing(Table):
 
 
 class Ice(Table):
-    """A sleeve of ice: radial thickness and density."""
+    """A sleeve of ice: radial thickness and density, and the share of it that each span keeps."""
 
     thickness_m: Thickness = Field(alias="thickness")
     density_kg_per_m3: Density = Field(alias="density")
+    pattern: Annotated[Any, Pattern()] = None
 
 
 class Wind(Table):
-    """Wind by pressure or by speed, on the iced diameter; 90 deg blows square across, to the left."""
+    """Wind by pressure or by speed, on the iced diameter; 90 deg blows square across, to the left.
+
+    A bearing is where it blows from, as on a compass; the air's density is given, or that at an altitude.
+    """
 
     pressure_Pa: Pressure | None = Field(None, alias="pressure")
     speed_m_per_s: Speed | None = Field(None, alias="speed")
     drag: Drag = 1.0
     angle_rad: Angle = Field(math.pi / 2, alias="angle")
+    bearing_rad: Bearing | None = Field(None, alias="bearing")
     air_density_kg_per_m3: Density = Field(1.225, alias="air_density")
+    altitude_m: Altitude | None = Field(None, alias="altitude")
+
+
+class Factors(Table):
+    """What each action of a condition is multiplied with."""
+
+    weight: Factor = 1.0
+    ice: Factor = 1.0
+    wind: Factor = 1.0
+    load: Factor = 1.0
 
 
 class Load(Table):
-    """A force at a place of the line, or a load per length on a stretch of it."""
+    """A force at a place of the line or on a carriage, or a load per length or per run on a stretch of it."""
 
     name: Name | None = None
     force_N: AnyForce | None = Field(None, alias="force")
     per_length_N_per_m: AnyForcePerLength | None = Field(None, alias="per_length")
+    per_length_to_N_per_m: AnyForcePerLength | None = Field(None, alias="per_length_to")
+    per_run_N_per_m: AnyForcePerLength | None = Field(None, alias="per_run")
     direction: Annotated[Any, Direction()] = "down"
+    carriage: Annotated[str, Choice(("free", "held"))] | None = None
+    span: Name | None = None
+    spans: Annotated[tuple[Name, ...], Field(min_length=1)] | None = None
+    beyond: Name | None = None
+    before: Name | None = None
     at_m: Coordinate | None = Field(None, alias="at")
     from_m: Coordinate | None = Field(None, alias="from")
     to_m: Coordinate | None = Field(None, alias="to")
     at_length_m: AlongLine | None = Field(None, alias="at_length")
     from_length_m: AlongLine | None = Field(None, alias="from_length")
     to_length_m: AlongLine | None = Field(None, alias="to_length")
+
+    @property
+    def size(self) -> float:
+        """The force, N, or the load per length or per run, N/m, at the beginning."""
+        given = (self.force_N, self.per_length_N_per_m, self.per_run_N_per_m)
+        return next((value for value in given if value is not None), 0.0)
 
 
 class Condition(Table):
@@ -220,6 +254,7 @@ class Condition(Table):
     ice: Ice | None = None
     wind: Wind | None = None
     resultant_addition_N_per_m: SomeForcePerLength = Field(0.0, alias="resultant_addition")
+    factors: Factors = Factors()
     loads: tuple[Load, ...] = Field((), alias="load")
 
 

@@ -10,13 +10,11 @@ import numpy as np
 
 from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SupportLoadLimit, SwingLimit
 from tautwise.rules_loading import has_capacity
-from tautwise.tables import PLUMB, Condition, Load, Support
+from tautwise.tables import PLUMB, Support
+from tautwise.to_core_loads import condition_of
 
 if TYPE_CHECKING:
     from tautwise.model import Project
-
-_WORD_VECTORS = {"down": (0.0, 0.0, -1.0), "up": (0.0, 0.0, 1.0), "across": (0.0, 1.0, 0.0), "along": (1.0, 0.0, 0.0)}
-_ICE_DENSITY_UNUSED = 900.0
 
 
 def problem_of(project: Project) -> dict[str, Any]:
@@ -26,7 +24,7 @@ def problem_of(project: Project) -> dict[str, Any]:
         "supports": [_support(project, support) for support in project.supports],
         "ground": _ground(project),
         "crossings": [{"from_m": one.from_m, "to_m": one.to_m, "top_m": one.top_m} for one in project.crossings],
-        "conditions": [_condition(condition) for condition in project.conditions],
+        "conditions": [condition_of(project, condition) for condition in project.conditions],
         "marks": [_place(mark.at_m, mark.at_length_m) for mark in project.marks],
         "limits": [_limit(project, limit) for limit in project.limits],
         "stringing": _stringing(project),
@@ -55,6 +53,7 @@ def _support(project: Project, support: Support) -> dict[str, Any]:
         "hanger_length_m": support.hanger_length_m or 0.0,
         "hanger_weight_N": support.hanger_weight_N,
         "sheave_friction": support.sheave_friction,
+        "hanger_wind_area_m2": support.wind_area_m2,
         "stiffness_along_N_per_m": support.stiffness_along_N_per_m or rigid,
         "stiffness_across_N_per_m": support.stiffness_across_N_per_m or rigid,
         "capacity_along_N": support.capacity.along_N,
@@ -71,46 +70,6 @@ def _ground(project: Project) -> dict[str, Any] | None:
         "station_m": np.array(project.ground.stations_m, dtype=np.float64),
         "elevation_m": np.array(project.ground.elevations_m, dtype=np.float64),
     }
-
-
-def _condition(condition: Condition) -> dict[str, Any]:
-    ice, wind = condition.ice, condition.wind
-    core: dict[str, Any] = {
-        "temperature_degC": condition.temperature_degC,
-        "ice_thickness_m": ice.thickness_m if ice else 0.0,
-        "ice_density_kg_per_m3": ice.density_kg_per_m3 if ice else _ICE_DENSITY_UNUSED,
-        "wind_pressure_Pa": wind.pressure_Pa if wind else 0.0,
-        "wind_speed_m_per_s": wind.speed_m_per_s if wind else None,
-        "resultant_addition_N_per_m": condition.resultant_addition_N_per_m,
-        "loads": [_load(load) for load in condition.loads],
-    }
-    if wind:
-        core["air_density_kg_per_m3"] = wind.air_density_kg_per_m3
-        core["wind_drag"] = wind.drag
-        core["wind_angle_rad"] = wind.angle_rad
-    return core
-
-
-def _load(load: Load) -> dict[str, Any]:
-    size = load.force_N if load.force_N is not None else load.per_length_N_per_m
-    by_word = isinstance(load.direction, str)
-    vector = _WORD_VECTORS[load.direction] if by_word else load.direction
-    core: dict[str, Any] = {
-        "is_point": load.force_N is not None,
-        "frame": "span" if by_word else "route",
-        "vector": tuple(part * (size or 0.0) for part in vector),
-        "place": "whole",
-        "from_m": None,
-        "to_m": None,
-    }
-    for place, first, second, last in (
-        ("station", load.at_m, load.from_m, load.to_m),
-        ("length", load.at_length_m, load.from_length_m, load.to_length_m),
-    ):
-        begin = first if first is not None else second
-        if begin is not None:
-            core |= {"place": place, "from_m": begin, "to_m": last}
-    return core
 
 
 def _place(station_m: float | None, length_m: float | None) -> dict[str, Any]:

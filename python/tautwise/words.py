@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from tautwise.columns import plural
+from tautwise.fields import SharesOf
 
 if TYPE_CHECKING:
     from tautwise.tables import Condition, Load
@@ -16,18 +17,42 @@ def condition_words(condition: Condition) -> str:
     """Temperature and loads of a condition."""
     words = [f"{condition.temperature_degC:.4g} degC"]
     if condition.ice and condition.ice.thickness_m:
-        words.append(f"{1e3 * condition.ice.thickness_m:.4g} mm of ice")
+        words.append(f"{1e3 * condition.ice.thickness_m:.4g} mm of ice{_pattern_words(condition.ice.pattern)}")
     if condition.wind and condition.wind.pressure_Pa:
         words.append(f"wind of {condition.wind.pressure_Pa:.4g} Pa")
     if condition.wind and condition.wind.speed_m_per_s:
         words.append(f"wind of {condition.wind.speed_m_per_s:.4g} m/s")
     if condition.resultant_addition_N_per_m:
         words.append(f"{condition.resultant_addition_N_per_m:.4g} N/m added to the resultant")
+    factors = [f"{key} times {value:.4g}" for key, value in condition.factors if value != 1.0]
+    words += factors
     words += [load_words(load) for load in condition.loads[:LOADS_NAMED]]
     more = len(condition.loads) - LOADS_NAMED
     if more > 0:
         words.append(f"and {plural(more, 'more load')}")
     return ", ".join(words)
+
+
+def _pattern_words(pattern: tuple[float, ...] | SharesOf | None) -> str:
+    if pattern is None:
+        return ""
+    if not isinstance(pattern, SharesOf):
+        return f" (shares {', '.join(f'{share:g}' for share in pattern)} along the spans)"
+    where = f"on {_names(pattern.spans)}" if pattern.spans else ""
+    return f" (share {pattern.share:g} {where or _side(pattern.beyond, pattern.before)})"
+
+
+def _names(spans: tuple[str, ...]) -> str:
+    first = ", ".join(spans[:LOADS_NAMED])
+    return (
+        f"the span from {first}"
+        if len(spans) == 1
+        else f"the spans from {first}{' ...' if spans[LOADS_NAMED:] else ''}"
+    )
+
+
+def _side(beyond: str | None, before: str | None) -> str:
+    return f"beyond {beyond}" if beyond else f"before {before}"
 
 
 def load_words(load: Load) -> str:
@@ -42,7 +67,11 @@ def load_words(load: Load) -> str:
     if load.force_N is not None:
         size = f"{load.force_N:.4g} N" if abs(load.force_N) < 1e3 else f"{load.force_N / 1e3:.4g} kN"
     else:
-        size = f"{load.per_length_N_per_m or 0.0:.4g} N/m"
+        size = f"{load.size:.4g} N/m"
+        if load.per_length_to_N_per_m is not None:
+            size = f"{load.size:.4g} to {load.per_length_to_N_per_m:.4g} N/m"
+        if load.per_run_N_per_m is not None:
+            size += " of run"
     parts = [f"{load.name}:" if load.name else "", size, _direction_words(load), _place_words(load)]
     return " ".join(part for part in parts if part)
 
@@ -54,6 +83,14 @@ def _direction_words(load: Load) -> str:
 
 
 def _place_words(load: Load) -> str:
+    if load.carriage == "free":
+        return f"on a free carriage{f' in the span from {load.span}' if load.span else ''}"
+    if load.carriage == "held":
+        return f"on a carriage held at {load.at_m:g} m"
+    if load.spans is not None:
+        return f"on {_names(load.spans)}"
+    if load.beyond is not None or load.before is not None:
+        return _side(load.beyond, load.before)
     if load.at_m is not None:
         return f"at {load.at_m:g} m"
     if load.at_length_m is not None:

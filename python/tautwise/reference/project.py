@@ -9,9 +9,9 @@ from typing import Any
 
 import numpy as np
 
-from . import limits, loads
-from .quadrature import Array
-from .section import Section, Settled, Support, settle_section
+from . import carriage, limits, loads
+from .quadrature import Array, Growing, PieceLoad
+from .section import Section, Settled, Support
 from .span import Material, Piece
 from .states import span_state, support_state
 from .stringing import Strung, pull_by_rule, string_to
@@ -72,38 +72,46 @@ class Twin:
         """A condition in equilibrium; -1 is the bare line at stringing."""
         key = (condition, pull_N, with_addition)
         if key not in self._settled:
-            self._settled[key] = settle_section(self.section(condition, pull_N, with_addition))
+            self._settled[key] = carriage.settle(self, condition, pull_N, with_addition)
         return self._settled[key]
 
     def states(self, condition: int, pull_N: float | None = None) -> dict[str, list[dict[str, float]]]:
         """Spans and supports of a condition in equilibrium, keys as in the solver's results."""
         settled = self.settle(condition, pull_N)
+        weight = self.problem["conditions"][condition].get("factor_weight", 1.0) if condition >= 0 else 1.0
         return {
             "spans": [span_state(settled, k) for k in range(len(settled.spans))],
-            "supports": [support_state(settled, j) for j in range(len(self.supports))],
+            "supports": [support_state(settled, j, weight) for j in range(len(self.supports))],
         }
 
-    def section(self, condition: int, pull_N: float | None, with_addition: bool = True) -> Section:
-        """The loads of a condition on the natural lengths."""
+    def section(
+        self, condition: int, pull_N: float | None, with_addition: bool = True, rolled_m: float | None = None
+    ) -> Section:
+        """The loads of a condition on the natural lengths; a carriage at natural length `rolled_m`."""
         lengths = self.lengths_m(pull_N)
         row = (
             self.problem["conditions"][condition]
             if condition >= 0
             else {"temperature_degC": self.rule["temperature_degC"]}
         )
-        basic = loads.basic(self.line, row, with_addition)
-        placed = [self.placed(load, lengths, pull_N) for load in row.get("loads", ())]
+        placed = [self.placed(load, lengths, pull_N, rolled_m) for load in row.get("loads", ())]
         starts = np.concatenate([[0.0], np.cumsum(lengths)])
-        spans = [self.pieces(k, float(starts[k]), lengths[k], basic, placed) for k in range(len(lengths))]
-        return Section(
-            self.material(row["temperature_degC"]), spans, self.supports, self.clamp_loads(starts, placed)
-        )
+        spans = []
+        for k, length in enumerate(lengths):
+            basic = loads.basic(self.line, row, with_addition, k, self.along(k)[:2])
+            spans.append(self.pieces(k, float(starts[k]), length, basic, placed, row.get("factor_load", 1.0)))
+        clamp_loads = self.clamp_loads(starts, placed, row)
+        return Section(self.material(row["temperature_degC"]), spans, self.supports, clamp_loads)
 
     def placed(
-        self, load: Mapping[str, Any], lengths: list[float], pull_N: float | None
+        self, load: Mapping[str, Any], lengths: list[float], pull_N: float | None, rolled_m: float | None = None
     ) -> tuple[float, float, Mapping[str, Any]]:
         """First and last natural length of a load (one and the same for a point load), and the load."""
         place = load.get("place", "whole")
+        if load.get("is_run"):
+            raise NotImplementedError("loads per run are in .run, for one span")
+        if load.get("carriage", "none") != "none" and rolled_m is not None:
+            return rolled_m, rolled_m, load
         if place == "whole":
             return 0.0, sum(lengths), load
         ends = [load["from_m"], load["from_m"] if load.get("is_point") else load["to_m"]]
@@ -116,13 +124,15 @@ class Twin:
         vector = np.asarray(load["vector"], dtype=np.float64)
         return vector if load.get("frame", "span") == "route" else self.turned(vector, span)
 
+    def along(self, span: int) -> Array:
+        """Plan direction of a span between its supports."""
+        run = self.supports[span + 1].place - self.supports[span].place
+        return np.array([run[0], run[1], 0.0]) / math.hypot(run[0], run[1])
+
     def turned(self, vector: Array, span: int) -> Array:
         """From a span's axes (along, to the left, up) between its supports into the route's."""
-        run = self.supports[span + 1].place - self.supports[span].place
-        along = np.array([run[0], run[1], 0.0]) / math.hypot(run[0], run[1])
-        return np.asarray(
-            vector[0] * along + vector[1] * np.array([-along[1], along[0], 0.0]) + [0.0, 0.0, vector[2]]
-        )
+        along = self.along(span)
+        return np.asarray(vector[0] * along + vector[1] * np.array([-along[1], along[0], 0.0]) + [0.0, 0.0, vector[2]])
 
     def pieces(
         self,
@@ -131,6 +141,7 @@ class Twin:
         length: float,
         basic: Array,
         placed: list[tuple[float, float, Mapping[str, Any]]],
+        factor: float = 1.0,
     ) -> list[Piece]:
         """A span cut wherever a load begins, ends or acts."""
         snap = SNAP * length
@@ -141,26 +152,36 @@ class Twin:
         cuts.append(length)
         found = []
         for low, high in pairwise(cuts):
-            load, force = self.turned(basic, span), np.zeros(3)
+            load, rate, force = self.turned(basic, span), np.zeros(3), np.zeros(3)
             for first, last, row in placed:
                 if row.get("is_point"):
                     at_end = abs(first - start - high) <= snap and high < length
-                    force = force + (self.vector(row, span) if at_end else 0.0)
-                elif first - start < 0.5 * (low + high) < last - start:
-                    load = load + self.vector(row, span)
-            found.append(Piece(high - low, load, force))
+                    force = force + (factor * self.vector(row, span) if at_end else 0.0)
+                elif first - start < 0.5 * (low + high) < last - start and covers(row, span):
+                    load = load + factor * self.vector(row, span)
+                    if row.get("vector_to") is not None:
+                        more = self.vector({**row, "vector": row["vector_to"]}, span) - self.vector(row, span)
+                        load = load + factor * more * (start + low - first) / (last - first)
+                        rate = rate + factor * more / (last - first)
+            piece_load: PieceLoad = Growing(load, rate) if rate.any() else load
+            found.append(Piece(high - low, piece_load, force))
         return found
 
-    def clamp_loads(self, starts: Array, placed: list[tuple[float, float, Mapping[str, Any]]]) -> Array:
-        """Half of each hanger's weight, and the point loads that act right at a clamp; N, (n + 1, 3)."""
+    def clamp_loads(
+        self, starts: Array, placed: list[tuple[float, float, Mapping[str, Any]]], condition: Mapping[str, Any]
+    ) -> Array:
+        """Half of each hanger's weight and wind, and the point loads that act right at a clamp; N, (n + 1, 3)."""
         found = np.zeros((len(self.supports), 3))
         for j, support in enumerate(self.supports):
             span = min(j, len(self.supports) - 2)
             snap = SNAP * float(starts[span + 1] - starts[span])
-            found[j, 2] -= 0.5 * support.hanger_weight_N if support.hold == "hanger" else 0.0
+            if support.hold == "hanger":
+                area = self.problem["supports"][j].get("hanger_wind_area_m2", 0.0)
+                own = loads.at_hanger(condition, support.hanger_weight_N, area, self.along(span)[:2])
+                found[j] += self.turned(own, span)
             for first, _, row in placed:
                 if row.get("is_point") and abs(first - starts[j]) <= snap:
-                    found[j] += self.vector(row, span)
+                    found[j] += condition.get("factor_load", 1.0) * self.vector(row, span)
         return found
 
     def judge(self, pull_N: float | None = None) -> dict[tuple[int, int], limits.Verdict]:
@@ -182,6 +203,11 @@ class Twin:
     def worst(self, pull_N: float) -> float:
         """The greatest utilisation of all limits at a pull; 0 without any."""
         return max((verdict.utilisation for verdict in self.judge(pull_N).values()), default=0.0)
+
+
+def covers(load: Mapping[str, Any], span: int) -> bool:
+    """Whether a load acts on a span."""
+    return load.get("covers") is None or bool(load["covers"][span])
 
 
 def support_of(row: Mapping[str, Any]) -> Support:

@@ -4,28 +4,67 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 Array = NDArray[np.float64]
 
+
+@dataclass(frozen=True)
+class Growing:
+    """A load per natural metre that grows along its piece, N/m: start + rate s.
+
+    Times a length it is what that length carries, as a uniform load is:
+
+    >>> (Growing(np.array([0.0, 0.0, -2.0]), np.array([0.0, 0.0, -0.5])) * 4.0).tolist()
+    [0.0, 0.0, -12.0]
+    """
+
+    start: Array
+    rate: Array
+
+    def __mul__(self, length: float | Array) -> Array:
+        return np.asarray(self.start * length + 0.5 * self.rate * length**2)
+
+    def at(self, s: float) -> Array:
+        """The load at natural length s."""
+        return np.asarray(self.start + self.rate * s)
+
+
+PieceLoad = Array | Growing
+
+
+def load_at(load: PieceLoad, s: float) -> Array:
+    """The load per natural metre at natural length s of its piece."""
+    return load.at(s) if isinstance(load, Growing) else load
+
+
 POINTS, WEIGHTS = np.polynomial.legendre.leggauss(16)
 
 
-def least_tension(tension: Array, load: Array, start: float, end: float) -> float:
-    """Least |t| over start <= s <= end of t(s) = tension - load s, in N.
+def least_tension(tension: Array, load: PieceLoad, start: float, end: float) -> float:
+    """Least |t| over start <= s <= end of t(s) = tension - load s, in N; of a growing load a lower bound.
 
     >>> least_tension(np.array([3.0, 0.0, -4.0]), np.array([0.0, 0.0, -1.0]), 0.0, 10.0)
     3.0
     """
+    if isinstance(load, Growing):
+        middle = float(np.linalg.norm(tension - load * (0.5 * (start + end))))
+        return max(0.0, middle - 0.5 * strength(load, start, end) * (end - start))
     square = float(load @ load)
     nearest = float(tension @ load) / square if square > 0.0 else start
     nearest = min(max(nearest, start), end)
     return float(np.linalg.norm(tension - load * nearest))
 
 
-def panels(tension: Array, load: Array, length: float) -> list[float]:
+def strength(load: PieceLoad, start: float, end: float) -> float:
+    """Greatest |load| between two natural lengths, N/m."""
+    return max(float(np.linalg.norm(load_at(load, s))) for s in (start, end))
+
+
+def panels(tension: Array, load: PieceLoad, length: float) -> list[float]:
     """Edges, in m of natural length, of panels that are short enough for the quadrature.
 
     t/|t| is analytic but for two points of the complex plane, |t(s)|/|load| away from s. A panel no longer
@@ -39,11 +78,10 @@ def panels(tension: Array, load: Array, length: float) -> list[float]:
     """
     edges = [0.0]
     waiting = [length]
-    strength = float(np.linalg.norm(load))
     while waiting:
         start, end = edges[-1], waiting[-1]
         least = least_tension(tension, load, start, end)
-        if strength * (end - start) <= least or end - start < 1e-12 * length:
+        if strength(load, start, end) * (end - start) <= least or end - start < 1e-12 * length:
             edges.append(waiting.pop())
         else:
             waiting.append(0.5 * (start + end))

@@ -13,7 +13,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .quadrature import Array
+from .quadrature import Array, load_at
 from .span import Hung, Material, NotSettled, Piece, settle
 
 
@@ -32,9 +32,7 @@ class Support:
 
     def plumb(self) -> Array:
         """Where the clamp is when nothing pulls it aside."""
-        return np.asarray(
-            self.place - np.array([0.0, 0.0, self.hanger_length_m if self.hold == "hanger" else 0.0])
-        )
+        return np.asarray(self.place - np.array([0.0, 0.0, self.hanger_length_m if self.hold == "hanger" else 0.0]))
 
     def clamp(self, force: Array) -> Array:
         """Where the clamp is under the force of the hold on the line: a link pulls towards its fixing."""
@@ -112,7 +110,9 @@ class Settled:
                 work += (
                     half
                     * float(weight)
-                    * float(piece.load @ self.position_at(k, start + half * (1.0 + point)))
+                    * float(
+                        load_at(piece.load, half * (1.0 + point)) @ self.position_at(k, start + half * (1.0 + point))
+                    )
                 )
             work += float(piece.force @ self.position_at(k, start + piece.length_m))
         return work
@@ -137,9 +137,7 @@ def settle_section(section: Section) -> Settled:
     try:
         return newton(section, pulls)
     except NotSettled:
-        total = sum(
-            float(np.linalg.norm(piece.load)) * piece.length_m for span in section.spans for piece in span
-        )
+        total = sum(float(np.linalg.norm(piece.load * piece.length_m)) for span in section.spans for piece in span)
     for power in range(1, 10):
         supports = [replace(support, blur_N=total * 10.0**-power) for support in section.supports]
         settled = newton(replace(section, supports=supports), pulls)
@@ -166,9 +164,7 @@ def newton(section: Section, pulls: Array) -> Settled:
 def first_guess(section: Section) -> Array:
     """The pulls of each span by itself between plumb clamps."""
     clamps = [support.plumb() for support in section.supports]
-    pulls = [
-        settle(section.material, span, clamps[k + 1] - clamps[k]).pull for k, span in enumerate(section.spans)
-    ]
+    pulls = [settle(section.material, span, clamps[k + 1] - clamps[k]).pull for k, span in enumerate(section.spans)]
     return np.array(pulls)
 
 

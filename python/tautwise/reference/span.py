@@ -15,7 +15,7 @@ from typing import TypeVar
 
 import numpy as np
 
-from .quadrature import Array, golden, nodes, panels
+from .quadrature import Array, PieceLoad, golden, nodes, panels
 
 Number = TypeVar("Number", float, Array)
 
@@ -51,10 +51,10 @@ class Material:
 
 @dataclass(frozen=True)
 class Piece:
-    """A stretch of natural length under a uniform load (N/m), with a point force (N) at its end."""
+    """A stretch of natural length under a uniform or growing load (N/m), with a point force (N) at its end."""
 
     length_m: float
-    load: Array
+    load: PieceLoad
     force: Array = field(default_factory=lambda: np.zeros(3))
 
 
@@ -170,12 +170,12 @@ class Hung:
         return np.concatenate([np.linspace(a, b, 65) for a, b in pairwise(edges)])
 
 
-def height_along(material: Material, tension: Array, load: Array, direction: Array, s: float) -> float:
+def height_along(material: Material, tension: Array, load: PieceLoad, direction: Array, s: float) -> float:
     """direction . (r(s) - r(0)) of a stretch, m."""
     return float(direction @ displacement(material, tension, load, s))
 
 
-def displacement(material: Material, tension: Array, load: Array, length: float) -> Array:
+def displacement(material: Material, tension: Array, load: PieceLoad, length: float) -> Array:
     """r(length) - r(0) of a stretch that starts with a tension vector, m.
 
     >>> bar = displacement(Material(1e6), np.array([1000.0, 0.0, 0.0]), np.zeros(3), 10.0)
@@ -190,7 +190,7 @@ def displacement(material: Material, tension: Array, load: Array, length: float)
     return np.asarray((weights * material.stretch(size) / size) @ t)
 
 
-def displacements(material: Material, tension: Array, load: Array, lengths: Array) -> Array:
+def displacements(material: Material, tension: Array, load: PieceLoad, lengths: Array) -> Array:
     """The same for many lengths that grow from 0 in steps shorter than a panel; shape (n, 3)."""
     places, weights = nodes([float(s) for s in lengths])
     t = tension - load * places[:, None]
@@ -199,7 +199,7 @@ def displacements(material: Material, tension: Array, load: Array, lengths: Arra
     return np.vstack([np.zeros(3), np.cumsum(parts.sum(axis=1), axis=0)])
 
 
-def flexibility(material: Material, tension: Array, load: Array, length: float) -> Array:
+def flexibility(material: Material, tension: Array, load: PieceLoad, length: float) -> Array:
     """d displacement / d tension, m/N: int [(1 + e0)/|t| (I - tt'/|t|^2) + I/EA] ds.
 
     >>> matrix = flexibility(Material(1e6), np.array([1000.0, 0.0, 0.0]), np.zeros(3), 10.0)

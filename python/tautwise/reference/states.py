@@ -6,7 +6,7 @@ import math
 
 import numpy as np
 
-from .quadrature import Array, golden
+from .quadrature import Array, Growing, golden, load_at
 from .section import Settled
 from .span import Hung
 
@@ -47,10 +47,26 @@ def total_load(hung: Hung) -> Array:
 
 
 def tension_max(hung: Hung) -> float:
-    """Greatest tension of a span, N: |t| is convex along a piece, so it sits at one of the piece's ends."""
+    """Greatest tension of a span, N: |t| is convex along a piece, so it sits at one of the piece's ends.
+
+    Under a growing load it need not: samples, then golden section.
+    """
     starts = [tension for _, tension, _ in hung.starts()]
     ends = [tension - piece.load * piece.length_m for _, tension, piece in hung.starts()]
-    return max(float(np.linalg.norm(tension)) for tension in starts + ends)
+    most = max(float(np.linalg.norm(tension)) for tension in starts + ends)
+    for _, tension, piece in hung.starts():
+        if isinstance(piece.load, Growing):
+            places = np.linspace(0.0, piece.length_m, 257)
+            sizes = [float(np.linalg.norm(tension - piece.load * s)) for s in places]
+            peak = int(np.argmax(sizes))
+            near, far = places[max(peak - 1, 0)], places[min(peak + 1, 256)]
+            refined = golden(
+                lambda s, t=tension, q=piece.load: float(np.linalg.norm(t - q * s)),  # type: ignore[misc]
+                float(near),
+                float(far),
+            )
+            most = max(most, sizes[peak], refined[1])
+    return most
 
 
 def sag_of(settled: Settled, span: int) -> float:
@@ -91,23 +107,32 @@ def small_deflection_sag(hung: Hung, span_m: float, rise_m: float, horizontal_N:
     distributed, points, x = [], [], 0.0
     for piece in hung.pieces:
         length = piece.length_m * scale
-        distributed.append((x, x + length, -float(piece.load[2]) * slant))
+        ends = [-float(load_at(piece.load, s)[2]) * slant for s in (0.0, piece.length_m)]
+        distributed.append((x, x + length, *ends))
         points.append((x + length, -float(piece.force[2])))
         x += length
 
     def green(x: float, y: float) -> float:
         return min(x, y) * (span_m - max(x, y)) / span_m
 
-    def integral(x: float, a: float, b: float) -> float:
-        low, high = min(b, max(a, x)), max(a, min(b, x))
-        left = (high - a) * (green(x, a) + green(x, high)) / 2.0
-        return left + (b - low) * (green(x, low) + green(x, b)) / 2.0
+    def integral(x: float, a: float, b: float, qa: float, qb: float) -> float:
+        """int G q dy between a and b: a product of two lines on either side of x, for Simpson's rule."""
+
+        def product(y: float) -> float:
+            return green(x, y) * (qa + (qb - qa) * (y - a) / (b - a))
+
+        turn = min(b, max(a, x))
+        return sum(
+            (high - low) / 6.0 * (product(low) + 4.0 * product(0.5 * (low + high)) + product(high))
+            for low, high in ((a, turn), (turn, b))
+            if high > low
+        )
 
     def sag(x: float) -> float:
-        spread = sum(q * integral(x, a, b) for a, b, q in distributed)
+        spread = sum(integral(x, a, b, qa, qb) for a, b, qa, qb in distributed)
         return (spread + sum(force * green(x, y) for y, force in points)) / horizontal_N
 
-    candidates = [sag(y) for y, _ in points] + [golden(sag, a, b)[1] for a, b, _ in distributed]
+    candidates = [sag(y) for y, _ in points] + [golden(sag, a, b)[1] for a, b, _, _ in distributed]
     return max(0.0, *candidates)
 
 
@@ -140,14 +165,14 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
     }
 
 
-def support_state(settled: Settled, support: int) -> dict[str, float]:
+def support_state(settled: Settled, support: int, weight_factor: float = 1.0) -> dict[str, float]:
     """Force of line and hold on a support, N, and the angle of a hanger from the vertical, rad, else NaN."""
     at, force = settled.section.supports[support], settled.hold_forces[support]
     swing = math.nan
     if at.hold == "hanger":
         link = at.place - settled.clamps[support]
         swing = math.atan2(math.hypot(link[0], link[1]), link[2])
-    down = float(force[2]) + (0.5 * at.hanger_weight_N if at.hold == "hanger" else 0.0)
+    down = float(force[2]) + (0.5 * weight_factor * at.hanger_weight_N if at.hold == "hanger" else 0.0)
     return {
         "along_N": -float(force[0]),
         "across_N": -float(force[1]),

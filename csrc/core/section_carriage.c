@@ -1,0 +1,232 @@
+/* section_carriage: a section hung where its loads depend on its shape.
+ *
+ * Loads per horizontal metre are those of the last shape, hung again until they change no more. For a load p on a line at an
+ * angle a from the horizontal the change shrinks about by sin^2 a each time.
+ *
+ * A free carriage, a force F that rolls without friction, rests where moving it gains no energy: where the tension is the
+ * same on both sides, with t the tension vector before it
+ *     |t - F| = |t|,   so   F.F - 2 t.F = 0
+ * and rolls towards the side of the smaller tension. A held one stands at a station x: r_x(s) = x. Either is one equation in
+ * the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
+ */
+#include <math.h>
+
+#include "section_load.h"
+#include "span_ramp.h"
+#include "vector.h"
+
+enum { RUN_ROUNDS = 200, ROLL_ROUNDS = 80 };
+static const double RUN_CHANGE = 1e-12;    /* of a share that counts as none */
+static const double RUN_SETTLED = 1e-10;   /* and that is accepted where rounding leaves no less */
+static const double ROLL_MARGIN = 1e-6;    /* of the span: nearer to a support than this is at it */
+static const double ROLL_STEP = 1e-13;     /* of the span: as near as a place is found */
+static const double ROLL_FIRST = 0.02;     /* of the span: the first step of the search for a bracket */
+static const double ROLL_BALANCED = 1e-9;  /* of the tension: a difference that counts as none */
+
+double tw_section_follow_runs(tw_section *section)
+{
+    double most = 0.0;
+    for (size_t p = 0; p < section->piece_count; p++) {
+        tw_piece *piece = &section->pieces[p];
+        double *share = section->run_share + 2 * p;
+        const double *vector = section->run_vector + 3 * p;
+        double ends[2], t[3];
+        if (tw_norm(vector) == 0.0 || !(piece->length_m > 0.0)) {
+            continue;
+        }
+        for (int e = 0; e < 2; e++) {
+            tw_piece_tension(piece, e * piece->length_m, t);
+            double size = tw_norm(t);
+            ends[e] = hypot(t[0], t[1]) / size * tw_material_stretch(&section->material, size);
+        }
+        double rate = (ends[1] - ends[0]) / piece->length_m;
+        double start = tw_span_ramp_run(&section->material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
+        double change = fabs(start - share[0]) + fabs(rate - share[1]) * piece->length_m;
+        most = change > most || isnan(change) ? change : most;
+        tw_axpy(piece->load, start - share[0], vector, piece->load);
+        tw_axpy(piece->ramp, rate - share[1], vector, piece->ramp);
+        share[0] = start;
+        share[1] = rate;
+    }
+    return most;
+}
+
+/* Solve, and again until the loads per run are those of the shape. */
+static tw_status solve_runs(tw_section *section, const tw_options *options, int warm, size_t *steps)
+{
+    tw_status status = tw_section_solve(section, options, warm);
+    double before = INFINITY;
+    *steps += section->steps;
+    for (int round = 0; status == TW_OK && section->run_vector; round++) {
+        double change = tw_section_follow_runs(section);
+        int done = change <= RUN_CHANGE || (change <= RUN_SETTLED && change >= 0.5 * before);
+        if (!done && (round == RUN_ROUNDS || !isfinite(change))) {
+            return TW_NOT_SETTLED;
+        }
+        before = change;
+        status = tw_section_solve(section, options, 1);
+        *steps += section->steps;
+        if (done) {
+            break;
+        }
+    }
+    return status;
+}
+
+/* One carriage on its way. */
+typedef struct rolling {
+    tw_section *section;
+    size_t condition;
+    const double *length_m;
+    const tw_section *strung;
+    int with_addition;
+    const tw_options *options;
+    const tw_load *load;
+    double force[3];
+    int warm;
+    size_t steps;
+    double tension_N; /* at the carriage, of the last place */
+    tw_status status;
+} rolling;
+
+static const tw_load *carriage_of(const tw_project *project, size_t condition)
+{
+    const tw_condition *state = &project->conditions[condition];
+    for (size_t i = 0; i < state->load_count; i++) {
+        const tw_load *load = &project->loads[state->load_first + i];
+        if (load->carriage != TW_CARRIAGE_NONE) {
+            return load;
+        }
+    }
+    return NULL;
+}
+
+/* What is zero where the carriage stands, growing with s there. */
+static double roll_miss(rolling *run, double s)
+{
+    double place[3], before[3], beyond[3];
+    tw_section *section = run->section;
+    if (run->load->carriage == TW_CARRIAGE_HELD) {
+        tw_section_at(section, s, place, NULL);
+        return place[0] - run->load->from_m;
+    }
+    tw_section_beside(section, s, before, beyond);
+    tw_axpy(before, -1.0, run->force, beyond);
+    run->tension_N = tw_norm(before);
+    return (tw_dot(run->force, run->force) - 2.0 * tw_dot(before, run->force)) / (tw_norm(beyond) + run->tension_N);
+}
+
+/* The line hung with the carriage at s; NaN, and the status, when that fails. */
+static double roll_to(rolling *run, double s)
+{
+    tw_section *section = run->section;
+    section->carriage_m = s;
+    run->status = tw_section_load(section, run->condition, run->length_m, run->strung, run->with_addition);
+    if (run->status == TW_OK) {
+        run->status = solve_runs(section, run->options, run->warm, &run->steps);
+    }
+    run->warm = run->status == TW_OK;
+    return run->warm ? roll_miss(run, section->carriage_m) : (double)NAN;
+}
+
+/* Two places between which the miss changes its sign, from a first one; 0 where it keeps it up to the end of the span, which
+ * is then in place[1]. */
+static int bracket_place(rolling *run, double low, double high, double place[2], double miss[2])
+{
+    double step = ROLL_FIRST * (high - low);
+    miss[0] = roll_to(run, place[0]);
+    place[1] = place[0];
+    miss[1] = miss[0];
+    while (run->status == TW_OK && miss[0] * miss[1] > 0.0) {
+        double end = miss[1] < 0.0 ? high : low;
+        if (place[1] == end) {
+            return 0;
+        }
+        place[0] = place[1];
+        miss[0] = miss[1];
+        place[1] = miss[1] < 0.0 ? fmin(place[0] + step, high) : fmax(place[0] - step, low);
+        miss[1] = roll_to(run, place[1]);
+        step *= 2.0;
+    }
+    return run->status == TW_OK;
+}
+
+/* Chandrupatla's method: inverse quadratic interpolation where it can be trusted, else bisection. */
+static double narrow_place(rolling *run, double place[2], double miss[2], double tolerance)
+{
+    double b = place[0], fb = miss[0], a = place[1], fa = miss[1], c = a, fc = fa;
+    double share = fa != fb ? fmin(fmax(fa / (fa - fb), 0.01), 0.99) : 0.5;
+    for (int round = 0; round < ROLL_ROUNDS && fa != 0.0 && fb != 0.0; round++) {
+        double at = a + share * (b - a);
+        double miss_at = roll_to(run, at);
+        if (run->status != TW_OK) {
+            return at;
+        }
+        int same = (miss_at < 0.0) == (fa < 0.0);
+        c = same ? a : b;
+        fc = same ? fa : fb;
+        b = same ? b : a;
+        fb = same ? fb : fa;
+        a = at;
+        fa = miss_at;
+        double least = tolerance / fabs(b - a);
+        if (least > 0.5) {
+            break;
+        }
+        double xi = (a - b) / (c - b), phi = (fa - fb) / (fc - fb);
+        int trusted = phi * phi < xi && (1.0 - phi) * (1.0 - phi) < 1.0 - xi;
+        share = trusted ? fa / (fb - fa) * fc / (fb - fc) + (c - a) / (b - a) * fa / (fc - fa) * fb / (fc - fb) : 0.5;
+        share = fmin(fmax(share, least), 1.0 - least);
+    }
+    return fabs(fa) <= fabs(fb) ? a : b;
+}
+
+static tw_status roll(rolling *run)
+{
+    tw_section *section = run->section;
+    size_t span = run->load->carriage_span;
+    int held = run->load->carriage == TW_CARRIAGE_HELD;
+    tw_section_load_vector(section, run->condition, run->load, span, run->force);
+    run->status = tw_section_load(section, run->condition, run->length_m, run->strung, run->with_addition);
+    if (run->status != TW_OK || tw_norm(run->force) == 0.0) {
+        return run->status != TW_OK ? run->status : solve_runs(section, run->options, run->warm, &run->steps);
+    }
+    double start = section->start_m[span], length = section->length_m[span];
+    double low = start + ROLL_MARGIN * length, high = start + length - ROLL_MARGIN * length;
+    double place[2] = {fmin(fmax(section->carriage_m, low), high), 0.0}, miss[2], at;
+    if (bracket_place(run, low, high, place, miss)) {
+        at = narrow_place(run, place, miss, ROLL_STEP * length);
+    } else {
+        at = place[1] == high ? section->start_m[span + 1] : start;
+        run->status = run->status == TW_OK && held ? TW_ERROR_PLACE : run->status;
+    }
+    if (run->status == TW_OK && section->carriage_m != at) {
+        roll_to(run, at);
+    }
+    double off = run->status == TW_OK ? roll_miss(run, section->carriage_m) : 0.0;
+    int between = section->carriage_m > start && section->carriage_m < start + length;
+    return run->status == TW_OK && !held && between && !(fabs(off) <= ROLL_BALANCED * run->tension_N) ? TW_NOT_SETTLED
+                                                                                                    : run->status;
+}
+
+tw_status tw_section_hang(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
+                          int with_addition, const tw_options *options, int warm)
+{
+    rolling run = {.section = section, .condition = condition, .length_m = length_m, .strung = strung,
+                   .with_addition = with_addition, .options = options, .warm = warm};
+    run.load = condition == TW_NONE ? NULL : carriage_of(section->project, condition);
+    if (!warm) {
+        section->carriage_m = (double)NAN;
+        section->run_pieces = 0;
+    }
+    if (run.load) {
+        run.status = roll(&run);
+    } else {
+        run.status = tw_section_load(section, condition, length_m, strung, with_addition);
+        if (run.status == TW_OK) {
+            run.status = solve_runs(section, options, warm, &run.steps);
+        }
+    }
+    section->steps = run.steps;
+    return run.status;
+}

@@ -1,0 +1,214 @@
+"""Bad loads are refused, with file, line, key path, what is wrong, what is expected and an example."""
+
+from __future__ import annotations
+
+import pytest
+
+from tautwise.errors import InputError
+from tautwise.model import load
+
+GOOD = """\
+format = "tautwise 1"
+
+[line]
+diameter = "16 mm"
+area = "150 mm^2"
+weight = "11.9 N/m"
+modulus = "150 GPa"
+expansion = "11.5e-6 / K"
+
+[[support]]
+name = "West mast"
+station = "0 m"
+elevation = "24 m"
+
+[[support]]
+name = "Middle"
+station = "150 m"
+elevation = "25 m"
+hold = "hanger"
+length = "1.8 m"
+wind_area = "0.4 m^2"
+
+[[support]]
+name = "East mast"
+station = "300 m"
+elevation = "24 m"
+
+[stringing]
+temperature = "15 degC"
+horizontal_tension = "20 kN"
+
+[[condition]]
+name = "iced"
+temperature = "-5 degC"
+ice = { thickness = "15 mm", density = "900 kg/m^3", pattern = [1, 0] }
+wind = { speed = "25 m/s", altitude = "1200 m" }
+factors = { weight = 1.1, ice = 1.5, wind = 1.5, load = 1.2 }
+load = [ { force = "2 kN", carriage = "free", span = "Middle" } ]
+"""
+LOAD = '{ force = "2 kN", carriage = "free", span = "Middle" }'
+PATTERN = "pattern = [1, 0]"
+WIND = 'wind = { speed = "25 m/s", altitude = "1200 m" }'
+
+
+def loads(*made):
+    return {LOAD: ", ".join(made)}
+
+
+def file_of(tmp_path, changes):
+    text = GOOD
+    for old, new in changes.items():
+        assert old in text
+        text = text.replace(old, new, 1)
+    file = tmp_path / "bad.taut.toml"
+    file.write_text(text, encoding="utf-8")
+    return file
+
+
+# What stands in place of the pattern, and what is said of it.
+PATTERNS = [
+    ("pattern = [1, 0, 1]", "3 shares for 2 spans"),
+    ("pattern = [1, 1.2]", "a share of 1.2, which is above 1"),
+    ("pattern = [-0.1]", "which is negative"),
+    ("pattern = []", "a list of 0 shares"),
+    ('pattern = "all"', "is no pattern"),
+    ('pattern = { beyond = "Midle", share = 0.5 }', 'did you mean "Middle"?'),
+    ('pattern = { beyond = "East mast", share = 0 }', "no span starts at"),
+    ('pattern = { before = "West mast", share = 0 }', "no span lies before"),
+    ('pattern = { beyond = "Middle" }', "share is missing"),
+    ("pattern = { share = 0.5 }", "beyond, before or spans is missing"),
+    ('pattern = { beyond = "Middle", shares = 0 }', 'did you mean "share"?'),
+    ('pattern = { spans = ["Middel"], share = 0 }', 'no support "Middel"'),
+]
+
+# What is replaced, by what, its key in the condition or support, and what is said.
+KEYS = [
+    (WIND, 'wind = { speed = "25 m/s", bearing = "225 deg" }', "wind.bearing", "east and north"),
+    (
+        WIND,
+        'wind = { speed = "25 m/s", bearing = "225 deg", angle = "60 deg" }',
+        "wind.bearing",
+        "angle and bearing are given at once",
+    ),
+    (
+        WIND,
+        'wind = { speed = "25 m/s", altitude = "1 km", air_density = "1.1 kg/m^3" }',
+        "wind.altitude",
+        "air_density and altitude are given at once",
+    ),
+    (WIND, 'wind = { pressure = "1 kPa", altitude = "1 km" }', "wind.altitude", "needs no altitude"),
+    ("1200 m", "12 km", "wind.altitude", "too large"),
+    ("ice = 1.5, ", "ice = -1.5, ", "factors.ice", "negative"),
+    ("ice = 1.5, ", "snow = 1.5, ", "factors.snow", "unknown key"),
+    ("factors = { weight = 1.1, ice = 1.5, wind = 1.5, load = 1.2 }", "factors = 1.5", "factors", "table"),
+    ('hold = "hanger"\nlength = "1.8 m"\n', "", "wind_area", "an anchor has no wind_area"),
+    ("0.4 m^2", "-0.4 m^2", "wind_area", "negative"),
+]
+
+# The loads, the key of the load that is wrong (empty: the load itself), and what is said.
+LOADS = [
+    ('{ per_length_to = "3 N/m", force = "1 kN", at = "20 m" }', "per_length_to", "end of a ramp"),
+    ('{ per_length = "3 N/m", per_length_to = "9 N/m" }', "per_length_to", "neither begins nor ends"),
+    ('{ per_length = "3 N/m", spans = ["Midle"] }', "spans[0]", 'did you mean "Middle"?'),
+    ('{ per_length = "3 N/m", spans = ["East mast"] }', "spans[0]", "no span starts at the last"),
+    ('{ per_length = "3 N/m", beyond = "East mast" }', "beyond", "no span starts at the last"),
+    ('{ per_length = "3 N/m", before = "West mast" }', "before", "no span lies before"),
+    ('{ per_length = "3 N/m", beyond = "Middle", before = "Middle" }', "before", "given at once"),
+    ('{ per_length = "3 N/m", spans = ["Middle"], from = "1 m", to = "9 m" }', "spans", "beside from"),
+    ('{ per_length = "3 N/m", span = "Middle" }', "span", "only a carriage"),
+    ('{ force = "3 N", at = "3 m", spans = ["Middle"] }', "spans", "a force stands at one place"),
+    ('{ per_run = "3 N/m", direction = "across" }', "direction", "down or up"),
+    ('{ per_run = "-3 N/m" }', "per_run", "a negative load"),
+    ('{ per_run = "3 N/m", per_length = "3 N/m" }', "per_run", "given at once"),
+    ('{ per_run = "3 N/m", at = "30 m" }', "at", "no stretch of the line"),
+    ('{ per_run = "3 N/m", from = "30 m", to = "400 m" }', "to", "not on the line"),
+    ('{ carriage = "free", span = "Middle" }', "", "a carriage without a force"),
+    ('{ force = "0 N", carriage = "free", span = "Middle" }', "force", "without a force"),
+    ('{ force = "1 kN", carriage = "free" }', "", "neither span nor at"),
+    ('{ force = "1 kN", carriage = "free", span = "Midle" }', "span", 'did you mean "Middle"?'),
+    ('{ force = "1 kN", carriage = "free", span = "East mast" }', "span", "no span starts at"),
+    ('{ force = "1 kN", carriage = "free", span = "Middle", at = "20 m" }', "at", "not in the span"),
+    ('{ force = "1 kN", carriage = "free", at = "150 m" }', "at", "a carriage at a support"),
+    ('{ force = "1 kN", carriage = "fre", at = "50 m" }', "carriage", 'did you mean "free"?'),
+    ('{ force = "1 kN", carriage = "held" }', "", "at is missing"),
+    ('{ force = "1 kN", carriage = "held", at_length = "9 m" }', "at_length", "no place of the natural"),
+    (
+        '{ force = "2 kN", carriage = "free", span = "Middle" }, { force = "2 kN", carriage = "free", span = "Middle" }',
+        "load[1].carriage",
+        "a second carriage",
+    ),
+]
+
+
+def faults_of(tmp_path, old, new):
+    with pytest.raises(InputError) as refused:
+        load(file_of(tmp_path, {old: new}))
+    line = GOOD[: GOOD.index(old)].count("\n") + 1
+    assert all(fault.file.endswith("bad.taut.toml") for fault in refused.value.faults)
+    return line, refused.value.faults
+
+
+def one_says(faults, path, words, line):
+    """One fault at the path says so, at a line about where it was written, and says what is right."""
+    said = [fault for fault in faults if fault.path == path and words in f"{fault.problem} {fault.expected}"]
+    assert said, [str(fault) for fault in faults]
+    assert line <= said[0].line <= line + 2
+    assert said[0].expected or "did you mean" in said[0].problem or "belongs to" in said[0].problem
+
+
+@pytest.mark.parametrize(("new", "words"), PATTERNS)
+def test_bad_patterns_are_refused(tmp_path, new, words):
+    line, faults = faults_of(tmp_path, PATTERN, new)
+    one_says(faults, "condition.iced.ice.pattern", words, line)
+
+
+@pytest.mark.parametrize(("old", "new", "key", "words"), KEYS)
+def test_bad_keys_are_refused(tmp_path, old, new, key, words):
+    line, faults = faults_of(tmp_path, old, new)
+    one_says(faults, f"{'support.Middle' if key == 'wind_area' else 'condition.iced'}.{key}", words, line)
+
+
+@pytest.mark.parametrize(("new", "key", "words"), LOADS)
+def test_bad_loads_are_refused(tmp_path, new, key, words):
+    line, faults = faults_of(tmp_path, LOAD, new)
+    path = key if key.startswith("load") else f"load[0].{key}".rstrip(".")
+    one_says(faults, f"condition.iced.{path}", words, line)
+
+
+def test_the_good_file_is_good(tmp_path):
+    project = load(file_of(tmp_path, {}))
+    assert not project.warnings
+    condition = project.settle()
+    assert condition.settled
+    assert condition.marks[0].tension_beyond_N == pytest.approx(condition.marks[0].tension_N, rel=1e-9)
+
+
+GOOD_LOADS = [
+    '{ per_length = "3 N/m", per_length_to = "9 N/m", from = "10 m", to = "80 m" }',
+    '{ per_run = "300 N/m", spans = ["Middle"] }',
+    '{ per_run = "300 N/m", beyond = "Middle" }',
+    '{ per_length = "30 N/m", before = "Middle", direction = "across" }',
+    '{ force = "1 kN", carriage = "held", at = "40 m" }',
+    '{ force = "1 kN", carriage = "free", at = "40 m" }',
+]
+
+
+@pytest.mark.parametrize("made", GOOD_LOADS)
+def test_good_loads_settle(tmp_path, made):
+    condition = load(file_of(tmp_path, loads(made))).settle()
+    assert condition.settled
+
+
+SLIPS = [
+    ({"wind = 1.5, load": "wind = 15, load"}, "condition.iced.factors.wind", "a load factor of 15"),
+    ({"1200 m": "6000 m"}, "condition.iced.wind.altitude", "ft for m?"),
+    ({"0.4 m^2": "40 m^2"}, "support.Middle.wind_area", "a wind area of 40 m2"),
+]
+
+
+@pytest.mark.parametrize(("changes", "key", "words"), SLIPS)
+def test_what_is_hardly_meant_is_said(tmp_path, changes, key, words):
+    (warning,) = load(file_of(tmp_path, changes)).warnings
+    assert key in warning
+    assert words in warning
