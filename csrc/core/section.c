@@ -29,6 +29,8 @@ tw_section *tw_section_create(const tw_project *project)
     section->project = project;
     section->span_count = spans;
     section->piece_capacity = spans + 2 * loads;
+    section->materials = tw_calloc(spans, sizeof *section->materials);
+    section->curves = project->line.part_count > 0 ? tw_calloc(spans, sizeof *section->curves) : NULL;
     section->pieces = tw_calloc(section->piece_capacity, sizeof *section->pieces);
     section->piece_first = tw_calloc(spans + 1, sizeof *section->piece_first);
     section->cut_m = tw_calloc(2 * loads + 1, sizeof(double));
@@ -44,7 +46,7 @@ tw_section *tw_section_create(const tw_project *project)
     section->load_from_m = tw_calloc(loads + 1, sizeof(double));
     section->load_to_m = tw_calloc(loads + 1, sizeof(double));
     section->work = tw_calloc(TW_SECTION_WORK_PER_SPAN * spans + 3, sizeof(double));
-    if (!section->pieces || !section->piece_first || !section->cut_m || !section->slack
+    if (!section->materials || (project->line.part_count > 0 && !section->curves) || !section->pieces || !section->piece_first || !section->cut_m || !section->slack
         || !section->run_first || !section->start_m || !section->length_m || !section->pull
         || !section->clamp || !section->clamp_load || !section->hold_force || !section->load_length_m
         || !section->load_from_m || !section->load_to_m || !section->work) {
@@ -59,6 +61,8 @@ void tw_section_free(tw_section *section)
     if (!section) {
         return;
     }
+    tw_free(section->materials);
+    tw_free(section->curves);
     tw_free(section->pieces);
     tw_free(section->piece_first);
     tw_free(section->cut_m);
@@ -246,6 +250,25 @@ static void load_clamps(tw_section *section, const tw_load *loads, size_t load_c
     }
 }
 
+static void set_materials(tw_section *section, double temperature_degC)
+{
+    const tw_line *line = &section->project->line;
+    double reference = section->project->stringing.temperature_degC;
+    section->stiffness_N = 0.0;
+    for (size_t k = 0; k < section->span_count; k++) {
+        tw_curve *curve = section->curves ? &section->curves[k] : NULL;
+        if (k > 0 && !section->permanent) {
+            section->materials[k] = section->materials[0];
+        } else if (section->creeping) {
+            section->materials[k] = tw_material_creeping(line, temperature_degC, reference, curve);
+        } else {
+            section->materials[k] = tw_material_after(line, temperature_degC, reference,
+                                                      section->permanent ? &section->permanent[k] : NULL, curve);
+        }
+        section->stiffness_N = fmax(section->stiffness_N, section->materials[k].stiffness_N);
+    }
+}
+
 tw_status tw_section_load(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
                           int with_addition)
 {
@@ -255,10 +278,9 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
     const tw_load *loads = NULL;
     size_t load_count = 0;
     double s0 = 0.0;
-    section->material = tw_material_at(&project->line, reference, reference);
+    set_materials(section, condition != TW_NONE ? project->conditions[condition].temperature_degC : reference);
     if (condition != TW_NONE) {
         const tw_condition *state = &project->conditions[condition];
-        section->material = tw_material_at(&project->line, state->temperature_degC, reference);
         tw_load_basic(&project->line, state, with_addition, basic);
         load_count = state->load_count;
         loads = load_count ? project->loads + state->load_first : NULL;

@@ -43,7 +43,7 @@ void tw_section_at(const tw_section *section, double s, double position[3], doub
     tw_section_locate(section, s, &span, &within);
     const tw_piece *piece = piece_within(section, span, &within);
     if (position) {
-        tw_piece_position(&section->material, piece, within, position);
+        tw_piece_position(&section->materials[span], piece, within, position);
     }
     if (tension) {
         tw_piece_tension(piece, within, tension);
@@ -67,16 +67,19 @@ static int passes(const tw_material *material, const tw_piece *piece, double s0,
 static tw_status spans_at_station(const tw_section *section, size_t from, size_t to, double station_m, double *s)
 {
     double passed = section->start_m[from];
-    for (size_t p = section->piece_first[from]; p < section->piece_first[to]; p++) {
-        const tw_piece *piece = &section->pieces[p];
-        double turn, at;
-        int turns = tw_piece_turns(piece, &turn);
-        if (passes(&section->material, piece, 0.0, turns ? turn : piece->length_m, station_m, &at)
-            || (turns && passes(&section->material, piece, turn, piece->length_m, station_m, &at))) {
-            *s = passed + at;
-            return TW_OK;
+    for (size_t k = from; k < to; k++) {
+        const tw_material *material = &section->materials[k];
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            const tw_piece *piece = &section->pieces[p];
+            double turn, at;
+            int turns = tw_piece_turns(piece, &turn);
+            if (passes(material, piece, 0.0, turns ? turn : piece->length_m, station_m, &at)
+                || (turns && passes(material, piece, turn, piece->length_m, station_m, &at))) {
+                *s = passed + at;
+                return TW_OK;
+            }
+            passed += piece->length_m;
         }
-        passed += piece->length_m;
     }
     return TW_ERROR_PLACE;
 }
@@ -113,12 +116,14 @@ static void total_load(const tw_piece *pieces, size_t count, double load[3])
 {
     load[0] = load[1] = load[2] = 0.0;
     for (size_t p = 0; p < count; p++) {
-        tw_axpy(load, pieces[p].length_m, pieces[p].load, load);
+        double total[3];
+        tw_piece_total(&pieces[p], total);
+        tw_axpy(load, 1.0, total, load);
         tw_axpy(load, 1.0, pieces[p].force, load);
     }
 }
 
-static double slant_sag(const tw_section *section, const tw_piece *pieces, size_t count, const chord_frame *frame)
+static double slant_sag(const tw_material *material, const tw_piece *pieces, size_t count, const chord_frame *frame)
 {
     double load[3], at;
     total_load(pieces, count, load);
@@ -127,7 +132,7 @@ static double slant_sag(const tw_section *section, const tw_piece *pieces, size_
     double d[3];
     tw_span_slant(frame->span, frame->rise, own, d);
     const double direction[3] = {d[0] * u[0] - d[1] * u[1], d[0] * u[1] + d[1] * u[0], d[2]};
-    return fmax(0.0, tw_span_extreme(&section->material, pieces, count, direction, frame->start, &at));
+    return fmax(0.0, tw_span_extreme(material, pieces, count, direction, frame->start, &at));
 }
 
 /* Taut string along the chord: deflection M(x)/H, a metre of line taken for a metre of chord; its greatest. Of a uniform
@@ -139,30 +144,35 @@ static double small_deflection_sag(const tw_piece *pieces, size_t count, double 
     double support = 0.0, x = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
+        double bend = -pieces[p].ramp[2] * slant / scale; /* growth of the load, per metre of chord */
         support += -pieces[p].load[2] * slant * l * (span - x - 0.5 * l) - pieces[p].force[2] * (span - x - l);
+        support += 0.5 * bend * l * l * (span - x - 2.0 / 3.0 * l);
         x += l;
     }
     double shear = support / span, moment = 0.0, most = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
         double q = -pieces[p].load[2] * slant;
-        double top = q > 0.0 ? shear / q : -1.0;
+        double bend = -pieces[p].ramp[2] * slant / scale;
+        double root = sqrt(fmax(q * q + 2.0 * bend * shear, 0.0));
+        double top = q + root > 0.0 ? 2.0 * shear / (q + root) : -1.0; /* shear = q x + bend x^2 / 2 */
+        top = bend == 0.0 && q > 0.0 ? shear / q : top;
         if (top > 0.0 && top < l) {
-            most = fmax(most, moment + 0.5 * shear * top);
+            most = fmax(most, moment + (shear - (0.5 * q + bend * top / 6.0) * top) * top);
         }
-        moment += shear * l - 0.5 * q * l * l;
-        shear -= q * l - pieces[p].force[2];
+        moment += shear * l - (0.5 * q + bend * l / 6.0) * l * l;
+        shear -= (q + 0.5 * bend * l) * l - pieces[p].force[2];
         most = fmax(most, moment);
     }
     return most / H;
 }
 
-static double line_length(const tw_section *section, const tw_piece *pieces, size_t count)
+static double line_length(const tw_material *material, const tw_piece *pieces, size_t count)
 {
     double length = 0.0;
     for (size_t p = 0; p < count; p++) {
         double part;
-        tw_piece_energies(&section->material, pieces[p].tension, pieces[p].load, pieces[p].length_m, NULL, NULL, &part);
+        tw_piece_energy(material, &pieces[p], NULL, NULL, &part);
         length += part;
     }
     return length;
@@ -181,11 +191,22 @@ static void span_tensions(const tw_section *section, size_t span, const tw_piece
     state->slope_max = tw_span_slope(pieces, count);
 }
 
+/* The line's own unstressed length is its measure: a part that has stretched further than the other hangs loose. */
+static double permanent_strain(const tw_section *section, size_t span)
+{
+    double reference = section->project->stringing.temperature_degC;
+    if (!section->permanent) {
+        return 0.0;
+    }
+    tw_curve curve;
+    return tw_material_after(&section->project->line, reference, reference, &section->permanent[span], &curve).strain;
+}
+
 void tw_section_span_state(const tw_section *section, size_t span, tw_span_state *state)
 {
     const tw_piece *pieces = section->pieces + section->piece_first[span];
     size_t count = section->piece_first[span + 1] - section->piece_first[span];
-    const tw_material *material = &section->material;
+    const tw_material *material = &section->materials[span];
     const chord_frame frame = chord_of(section, span);
     const double slope = frame.rise / frame.span;
     const double down[3] = {slope * frame.u[0], slope * frame.u[1], -1.0};
@@ -196,13 +217,13 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     state->span_m = frame.span;
     state->rise_m = frame.rise;
     state->natural_length_m = section->length_m[span];
-    state->line_length_m = line_length(section, pieces, count);
+    state->line_length_m = line_length(material, pieces, count);
     span_tensions(section, span, pieces, count, &frame, state);
     state->sag_m = fmax(0.0, tw_span_extreme(material, pieces, count, down, frame.start, &at));
     const tw_piece *piece = piece_within(section, span, &at);
     tw_piece_position(material, piece, at, position);
     state->sag_station_m = position[0];
-    state->slant_sag_m = slant_sag(section, pieces, count, &frame);
+    state->slant_sag_m = slant_sag(material, pieces, count, &frame);
     state->blowout_m = fmax(0.0, fmax(tw_span_extreme(material, pieces, count, left, frame.start, &at),
                                       tw_span_extreme(material, pieces, count, right, frame.start, &at)));
     tw_span_extreme(material, pieces, count, fall, frame.start, &at);
@@ -210,6 +231,7 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     tw_piece_position(material, piece, at, position);
     state->low_station_m = position[0];
     state->low_elevation_m = position[2];
+    state->permanent_strain = permanent_strain(section, span);
     state->small_deflection_sag_m = small_deflection_sag(pieces, count, section->length_m[span], frame.span,
                                                          hypot(frame.span, frame.rise), state->horizontal_tension_N);
 }
@@ -232,11 +254,12 @@ void tw_section_support_state(const tw_section *section, size_t support, tw_supp
 double tw_section_stored(const tw_section *section)
 {
     double total = 0.0;
-    for (size_t p = 0; p < section->piece_count; p++) {
-        const tw_piece *piece = &section->pieces[p];
-        double stored;
-        tw_piece_energies(&section->material, piece->tension, piece->load, piece->length_m, NULL, &stored, NULL);
-        total += stored;
+    for (size_t k = 0; k < section->span_count; k++) {
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            double stored;
+            tw_piece_energy(&section->materials[k], &section->pieces[p], NULL, &stored, NULL);
+            total += stored;
+        }
     }
     return total;
 }
