@@ -235,7 +235,7 @@ typedef struct tw_span_state {
     double low_station_m;         /* lowest point of the line between the clamps */
     double low_elevation_m;
     double slope_max;             /* |dz| over plan distance */
-    double permanent_strain;      /* what history has added to the unstressed length at the stringing temperature */
+    double permanent_strain;      /* what history has added to the strain at this temperature and horizontal tension */
     double small_deflection_sag_m;/* taut-string sag under the same loads and horizontal tension */
 } tw_span_state;
 

@@ -254,6 +254,7 @@ static void set_materials(tw_section *section, double temperature_degC)
 {
     const tw_line *line = &section->project->line;
     double reference = section->project->stringing.temperature_degC;
+    section->temperature_degC = temperature_degC;
     section->stiffness_N = 0.0;
     for (size_t k = 0; k < section->span_count; k++) {
         tw_curve *curve = section->curves ? &section->curves[k] : NULL;

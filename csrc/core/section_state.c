@@ -191,15 +191,16 @@ static void span_tensions(const tw_section *section, size_t span, const tw_piece
     state->slope_max = tw_span_slope(pieces, count);
 }
 
-/* The line's own unstressed length is its measure: a part that has stretched further than the other hangs loose. */
-static double permanent_strain(const tw_section *section, size_t span)
+static double permanent_strain(const tw_section *section, size_t span, double horizontal_N)
 {
-    double reference = section->project->stringing.temperature_degC;
+    tw_curve curve;
     if (!section->permanent) {
         return 0.0;
     }
-    tw_curve curve;
-    return tw_material_after(&section->project->line, reference, reference, &section->permanent[span], &curve).strain;
+    tw_material strung = tw_material_after(&section->project->line, section->temperature_degC,
+                                           section->project->stringing.temperature_degC, NULL, &curve);
+    double tension = fmax(horizontal_N, 0.0);
+    return tw_material_stretch(&section->materials[span], tension) - tw_material_stretch(&strung, tension);
 }
 
 void tw_section_span_state(const tw_section *section, size_t span, tw_span_state *state)
@@ -231,7 +232,7 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     tw_piece_position(material, piece, at, position);
     state->low_station_m = position[0];
     state->low_elevation_m = position[2];
-    state->permanent_strain = permanent_strain(section, span);
+    state->permanent_strain = permanent_strain(section, span, state->horizontal_tension_N);
     state->small_deflection_sag_m = small_deflection_sag(pieces, count, section->length_m[span], frame.span,
                                                          hypot(frame.span, frame.rise), state->horizontal_tension_N);
 }

@@ -32,15 +32,16 @@ from tautwise.plausible import warnings_of
 from tautwise.profile import Ground
 from tautwise.reader import Document, Source, read_project
 from tautwise.rules import line_rules, place_rules, stringing_rules, support_rules
+from tautwise.rules_curves import curve_rules, history_rules
 from tautwise.rules_loading import condition_rules, limit_rules, mark_rules
 from tautwise.strict import described, did_you_mean, shown
-from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
+from tautwise.tables import Condition, Crossing, History, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of
 
 if TYPE_CHECKING:
     from tautwise.results import Equilibrium, PullWindow, VetReport
 
-RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
+RULES = (line_rules, curve_rules, history_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
 
 
 class Project(BaseModel):
@@ -54,7 +55,7 @@ class Project(BaseModel):
     Attributes
     ----------
     title: of the project, possibly empty.
-    line, ground (or None), stringing: the tables.
+    line, ground (or None), stringing, history: the tables.
     supports, crossings, conditions, marks, limits: the arrays of tables, in the order of the file.
     source: the project file as the user named it; None for keyword arguments.
     input_sha256: the SHA-256 of the file. With included files or a ground profile: of the lines "HASH  NAME" of all of
@@ -72,6 +73,7 @@ class Project(BaseModel):
     line: Line
     ground: Ground | None
     stringing: Stringing
+    history: History = History()
     crossings: tuple[Crossing, ...]
     supports: tuple[Support, ...]
     conditions: tuple[Condition, ...]
@@ -184,7 +186,7 @@ class Project(BaseModel):
 Project.__signature__ = inspect.Signature(  # the keys of a file, which are not the fields of the model
     [
         inspect.Parameter(key, inspect.Parameter.KEYWORD_ONLY, default=None, annotation=Any)
-        for key in ("title", "line", "ground", "crossing", "support", "stringing", "condition", "mark", "limit")
+        for key in ("title", "line", "ground", "crossing", "support", "stringing", "history", "condition", "mark", "limit")
     ]
 )
 
@@ -218,6 +220,7 @@ def _values(checked: Checked) -> dict[str, Any]:
         "line": checked.line,
         "ground": checked.ground,
         "stringing": checked.stringing,
+        "history": checked.history,
         "crossings": tuple(checked.crossings),
         "supports": tuple(checked.supports),
         "conditions": tuple(checked.conditions),

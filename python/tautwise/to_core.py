@@ -8,9 +8,10 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from tautwise.curves import force_terms
 from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SupportLoadLimit, SwingLimit
 from tautwise.rules_loading import has_capacity
-from tautwise.tables import Condition, Load, Support
+from tautwise.tables import SECONDS_PER_HOUR, Condition, Line, Load, Part, Support
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -30,17 +31,53 @@ def problem_of(project: Project) -> dict[str, Any]:
         "marks": [_place(mark.at_m, mark.at_length_m) for mark in project.marks],
         "limits": [_limit(project, limit) for limit in project.limits],
         "stringing": _stringing(project),
+        "history": _history(project),
     }
 
 
 def _line(project: Project) -> dict[str, Any]:
     line = project.line
+    tested = line.test_temperature_degC
     return {
         "diameter_m": line.diameter_m or 0.0,
         "weight_N_per_m": line.weight_N_per_m,
         "stiffness_N": line.stiffness_N,
         "expansion_per_K": line.expansion_per_K,
         "breaking_strength_N": line.breaking_strength_N,
+        "parts": [_part(line, part) for part in line.parts],
+        **({} if tested is None else {"test_temperature_degC": tested}),
+        "bedding_in_strain": line.bedding_in,
+        **_creep(line),
+    }
+
+
+def _part(line: Line, part: Part) -> dict[str, Any]:
+    area = line.part_area_m2(part)
+    return {
+        "loading_N": force_terms(part.initial_Pa, area),
+        "creep_N": None if part.creep_Pa is None else force_terms(part.creep_Pa, area),
+        "valid_to": part.valid_to,
+        "final_stiffness_N": part.final_modulus_Pa * area,
+        "expansion_per_K": line.expansion_per_K if part.expansion_per_K is None else part.expansion_per_K,
+    }
+
+
+def _creep(line: Line) -> dict[str, Any]:
+    """A given strain is the power law with the exponent 0."""
+    if line.creep_law is None:
+        return {"creep_coefficient": line.creep_strain or 0.0, "creep_exponent": 0.0, "creep_hours": 1.0}
+    law = line.creep_law
+    hours = law.time_s / SECONDS_PER_HOUR
+    return {"creep_coefficient": law.coefficient, "creep_exponent": law.exponent, "creep_hours": hours}
+
+
+def _history(project: Project) -> dict[str, Any]:
+    names = [condition.name for condition in project.conditions]
+    met = project.history.conditions
+    everyday = project.history.creep_condition
+    return {
+        "met": [met is None or name in met for name in names],
+        "creep_condition": None if everyday is None else names.index(everyday),
     }
 
 
@@ -76,6 +113,7 @@ def _condition(condition: Condition) -> dict[str, Any]:
     ice, wind = condition.ice, condition.wind
     core: dict[str, Any] = {
         "temperature_degC": condition.temperature_degC,
+        "state": condition.state,
         "ice_thickness_m": ice.thickness_m if ice else 0.0,
         "ice_density_kg_per_m3": ice.density_kg_per_m3 if ice else _ICE_DENSITY_UNUSED,
         "wind_pressure_Pa": wind.pressure_Pa if wind else 0.0,
