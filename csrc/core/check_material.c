@@ -127,7 +127,7 @@ static tw_status check_strains(const tw_line *line, tw_fault *fault)
     if (!(line->creep_hours >= 0.0 && line->creep_hours <= 1e8)) {
         return tw_check_fail(fault, "line", TW_NONE, "creep_hours", "a time from 0 to 1e8 h");
     }
-    return tw_line_creep(line) <= 0.2 ? TW_OK
+    return tw_curve_given_creep(line) <= 0.2 ? TW_OK
                                       : tw_check_fail(fault, "line", TW_NONE, "creep_hours", "a creep of at most 20 % in all");
 }
 

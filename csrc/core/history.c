@@ -104,7 +104,7 @@ void tw_history_end(tw_history *history, int crept)
     }
     for (size_t k = 0; k < spans; k++) {
         history->heaviest[k].strain = project->line.bedding_in_strain;
-        history->crept[k].strain = project->line.bedding_in_strain + tw_line_creep(&project->line);
+        history->crept[k].strain = project->line.bedding_in_strain + tw_curve_given_creep(&project->line);
     }
     history->ready = 1;
 }

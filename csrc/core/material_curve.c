@@ -314,7 +314,7 @@ void tw_permanent_take(tw_permanent *permanent, const tw_line *line, size_t part
     permanent->meets[part] = creeping && creeps(of) ? meeting(of, left, strain) : strain;
 }
 
-int tw_line_creeps(const tw_line *line)
+int tw_curve_creeps(const tw_line *line)
 {
     for (size_t i = 0; i < line->part_count; i++) {
         if (creeps(&line->parts[i])) {
@@ -324,7 +324,7 @@ int tw_line_creeps(const tw_line *line)
     return 0;
 }
 
-double tw_line_creep(const tw_line *line)
+double tw_curve_given_creep(const tw_line *line)
 {
     return line->creep_coefficient > 0.0 ? line->creep_coefficient * pow(line->creep_hours, line->creep_exponent) : 0.0;
 }

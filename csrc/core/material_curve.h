@@ -55,9 +55,9 @@ double tw_part_force(const tw_part *part, double strain, int creeping);
 void tw_permanent_take(tw_permanent *permanent, const tw_line *line, size_t part, double strain, int creeping);
 
 /* Whether any part has a creep curve. */
-int tw_line_creeps(const tw_line *line);
+int tw_curve_creeps(const tw_line *line);
 
 /* Creep strain c t^n of the line: the form of the predictor equations of CIGRE, Electra 75 (1981), stress held. */
-double tw_line_creep(const tw_line *line);
+double tw_curve_given_creep(const tw_line *line);
 
 #endif

@@ -107,7 +107,7 @@ void tw_piece_displacement(const tw_material *material, const double tension[3],
     if (material->curve) {
         const tw_stretch_of_line all = {tension, load, NULL, length};
         tw_curved_integrals beyond;
-        tw_curved_integrate(material, &all, flexibility != NULL, &beyond);
+        tw_piece_integrate(material, &all, flexibility != NULL, &beyond);
         tw_axpy(displacement, 1.0, beyond.displacement, displacement);
         for (int i = 0; flexibility && i < 6; i++) {
             flexibility[i] += beyond.flexibility[i];
@@ -132,7 +132,7 @@ void tw_piece_energies(const tw_material *material, const double tension[3], con
     tw_curved_integrals beyond = {.length_m = 0.0};
     if (material->curve && length > 0.0) {
         const tw_stretch_of_line all = {tension, load, NULL, length};
-        tw_curved_integrate(material, &all, 0, &beyond);
+        tw_piece_integrate(material, &all, 0, &beyond);
     }
     if (conjugate_J) {
         *conjugate_J = unit * first + stored + beyond.conjugate_J;
@@ -180,7 +180,7 @@ void tw_piece_ahead(const tw_material *material, const tw_piece *piece, double s
     }
     const tw_stretch_of_line all = {tension, load, piece->ramp, length};
     tw_curved_integrals whole;
-    tw_curved_integrate(material, &all, flexibility != NULL, &whole);
+    tw_piece_integrate(material, &all, flexibility != NULL, &whole);
     tw_copy(whole.displacement, displacement);
     for (int i = 0; flexibility && i < 6; i++) {
         flexibility[i] = whole.flexibility[i];
@@ -196,7 +196,7 @@ void tw_piece_energy(const tw_material *material, const tw_piece *piece, double 
     }
     const tw_stretch_of_line all = {piece->tension, piece->load, piece->ramp, piece->length_m};
     tw_curved_integrals whole = {.length_m = 0.0};
-    tw_curved_integrate(material, &all, 0, &whole);
+    tw_piece_integrate(material, &all, 0, &whole);
     if (conjugate_J) {
         *conjugate_J = whole.conjugate_J;
     }
@@ -363,7 +363,7 @@ double tw_span_slope(const tw_piece *pieces, size_t count)
         slope = fmax(slope, slope_of(t));
         double inner = slope_stationary(&pieces[k]);
         if (tw_piece_varies(&pieces[k])) {
-            slope = fmax(slope, tw_curved_most(&pieces[k], slope_of));
+            slope = fmax(slope, tw_piece_most(&pieces[k], slope_of));
         } else if (inner >= 0.0) {
             tw_piece_tension(&pieces[k], inner, t);
             slope = fmax(slope, slope_of(t));
@@ -386,7 +386,7 @@ double tw_span_tension_max(const tw_piece *pieces, size_t count)
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         most = fmax(most, tw_norm(t));
         if (tw_piece_varies(&pieces[k])) {
-            most = fmax(most, tw_curved_most(&pieces[k], size_of));
+            most = fmax(most, tw_piece_most(&pieces[k], size_of));
         }
     }
     return most;

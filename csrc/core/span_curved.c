@@ -133,7 +133,7 @@ static double turns(const tw_stretch_of_line *line, double from, double to)
     return from;
 }
 
-void tw_curved_integrate(const tw_material *material, const tw_stretch_of_line *line, int with_flexibility,
+void tw_piece_integrate(const tw_material *material, const tw_stretch_of_line *line, int with_flexibility,
                          tw_curved_integrals *out)
 {
     double steepest = load_most(line);
@@ -156,7 +156,7 @@ void tw_curved_integrate(const tw_material *material, const tw_stretch_of_line *
 }
 
 /* Golden section on the two intervals beside the best place of a scan. */
-double tw_curved_most(const tw_piece *piece, double (*of)(const double tension[3]))
+double tw_piece_most(const tw_piece *piece, double (*of)(const double tension[3]))
 {
     static const double golden = 0.61803398874989484820;
     double t[3], best = -INFINITY;

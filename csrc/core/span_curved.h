@@ -29,11 +29,11 @@ typedef struct tw_curved_integrals {
 } tw_curved_integrals;
 
 /* With a ramp the whole integrals, without one those beyond the linear law of the same greatest slope. */
-void tw_curved_integrate(const tw_material *material, const tw_stretch_of_line *stretch, int with_flexibility,
+void tw_piece_integrate(const tw_material *material, const tw_stretch_of_line *stretch, int with_flexibility,
                          tw_curved_integrals *out);
 
 /* Greatest value of a smooth function of the tension vector inside a piece: looked for at places close enough together
  * that two extremes are not taken for one, then narrowed down. */
-double tw_curved_most(const tw_piece *piece, double (*of)(const double tension[3]));
+double tw_piece_most(const tw_piece *piece, double (*of)(const double tension[3]));
 
 #endif

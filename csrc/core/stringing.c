@@ -4,7 +4,7 @@
 #include <string.h>
 
 #include "hold.h"
-#include "span_length.h"
+#include "uniform_curved.h"
 #include "uniform.h"
 #include "vector.h"
 
@@ -64,7 +64,7 @@ static tw_status lengths_between_clamps(strung *line, double pull_N)
         const tw_uniform span = {run, -rise, data->weight_N_per_m, line->material.stiffness_N, 0.0};
         tw_status status = tw_uniform_length(&span, pull_N, &line->length_m[k], &v);
         if (status == TW_OK && line->material.curve) {
-            status = tw_span_curved_length(&line->material, &span, pull_N, &line->length_m[k], &v);
+            status = tw_uniform_curved_length(&line->material, &span, pull_N, &line->length_m[k], &v);
         }
         if (status != TW_OK) {
             return status;
@@ -180,7 +180,7 @@ static tw_status measure(strung *line, double pull_N, double *miss)
         }
         break;
     case TW_STRING_PULL:
-    case TW_STRING_SPAN_LENGTHS:
+    case TW_STRING_UNIFORM_CURVEDS:
     case TW_STRING_NONE: return TW_ERROR_RANGE;
     }
     return TW_OK;
@@ -300,7 +300,7 @@ tw_status tw_stringing_lengths(const tw_project *project, double *length_m, doub
     case TW_STRING_TENSION:
     case TW_STRING_SAG:
     case TW_STRING_TOTAL_LENGTH: return lengths_by_rule(&line, pull_N);
-    case TW_STRING_SPAN_LENGTHS:
+    case TW_STRING_UNIFORM_CURVEDS:
         memcpy(length_m, rule->lengths_m, line.span_count * sizeof(double));
         return TW_OK;
     case TW_STRING_NONE: break;

@@ -210,7 +210,7 @@ static tw_status live_through(tw_trial *trial, const tw_options *options)
             tw_history_meet(trial->history, section, c);
         }
     }
-    int creeps = curved && tw_line_creeps(line);
+    int creeps = curved && tw_curve_creeps(line);
     if (status == TW_OK && creeps) {
         status = settle_apart(trial, project->history.creep_condition, 1, options);
     }

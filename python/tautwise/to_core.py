@@ -37,18 +37,26 @@ def problem_of(project: Project) -> dict[str, Any]:
 
 def _line(project: Project) -> dict[str, Any]:
     line = project.line
-    tested = line.test_temperature_degC
     return {
         "diameter_m": line.diameter_m or 0.0,
         "weight_N_per_m": line.weight_N_per_m,
         "stiffness_N": line.stiffness_N,
         "expansion_per_K": line.expansion_per_K,
         "breaking_strength_N": line.breaking_strength_N,
-        "parts": [_part(line, part) for part in line.parts],
-        **({} if tested is None else {"test_temperature_degC": tested}),
-        "bedding_in_strain": line.bedding_in,
-        **_creep(line),
+        **_stretching(line),
     }
+
+
+def _stretching(line: Line) -> dict[str, Any]:
+    """What a linear line that never stretches for good has not."""
+    core: dict[str, Any] = {}
+    if line.parts:
+        core["parts"] = [_part(line, part) for part in line.parts]
+    if line.test_temperature_degC is not None:
+        core["test_temperature_degC"] = line.test_temperature_degC
+    if line.bedding_in:
+        core["bedding_in_strain"] = line.bedding_in
+    return core | _creep(line)
 
 
 def _part(line: Line, part: Part) -> dict[str, Any]:
@@ -64,14 +72,18 @@ def _part(line: Line, part: Part) -> dict[str, Any]:
 
 def _creep(line: Line) -> dict[str, Any]:
     """A given strain is the power law with the exponent 0."""
-    if line.creep_law is None:
-        return {"creep_coefficient": line.creep_strain or 0.0, "creep_exponent": 0.0, "creep_hours": 1.0}
+    if line.creep_strain:
+        return {"creep_coefficient": line.creep_strain, "creep_exponent": 0.0, "creep_hours": 1.0}
     law = line.creep_law
+    if law is None:
+        return {}
     hours = law.time_s / SECONDS_PER_HOUR
     return {"creep_coefficient": law.coefficient, "creep_exponent": law.exponent, "creep_hours": hours}
 
 
-def _history(project: Project) -> dict[str, Any]:
+def _history(project: Project) -> dict[str, Any] | None:
+    if all(condition.state == "initial" for condition in project.conditions):
+        return None
     names = [condition.name for condition in project.conditions]
     met = project.history.conditions
     everyday = project.history.creep_condition

@@ -1,4 +1,4 @@
-#include "span_length.h"
+#include "uniform_curved.h"
 
 #include <math.h>
 
@@ -6,7 +6,7 @@
 
 enum { STEPS_MOST = 60 };
 
-tw_status tw_span_curved_length(const tw_material *material, const tw_uniform *span, double h_N, double *length_m,
+tw_status tw_uniform_curved_length(const tw_material *material, const tw_uniform *span, double h_N, double *length_m,
                                 double *v_N)
 {
     const double start[3] = {0.0, 0.0, 0.0};
