@@ -330,7 +330,7 @@ static tw_status check_stringing(const tw_project *p, tw_fault *fault)
     }
     switch (rule->rule) {
     case TW_STRING_NONE: return TW_OK;
-    case TW_STRING_UNIFORM_CURVEDS:
+    case TW_STRING_SPAN_LENGTHS:
         for (size_t k = 0; k + 1 < p->support_count; k++) {
             if (!(rule->lengths_m[k] > 0.0 && rule->lengths_m[k] <= 1e7)) {
                 return fail(fault, "stringing", k, "lengths_m", "a natural length above 0, up to 10,000 km");

@@ -15,9 +15,9 @@ enum { BLOCK = TW_BLOCKTRI_SIZE };
 static const double link_over_line = 10.0;
 
 /* A piece without length has no element; its point force falls on the node before. */
-static size_t piece_elements(const tw_piece *piece, double uniform_curved_m, size_t per_span)
+static size_t piece_elements(const tw_piece *piece, double span_length_m, size_t per_span)
 {
-    double share = (double)per_span * piece->length_m / uniform_curved_m;
+    double share = (double)per_span * piece->length_m / span_length_m;
     if (!(piece->length_m > 0.0)) {
         return 0;
     }
@@ -83,7 +83,7 @@ static void mesh_element(tw_energy *energy, size_t element, size_t span, const t
 
 /* The edges of a span must reach from clamp to clamp; what they miss (the exact line's closing error and rounding) is
  * spread over them, so that the bracket is honest whatever the exact line was. */
-static void close_span(tw_energy *energy, const tw_energy_hold *from, const tw_energy_hold *to, double uniform_curved_m)
+static void close_span(tw_energy *energy, const tw_energy_hold *from, const tw_energy_hold *to, double span_length_m)
 {
     tw_sum reached[3] = {{0.0, 0.0}};
     double missing[3];
@@ -97,7 +97,7 @@ static void close_span(tw_energy *energy, const tw_energy_hold *from, const tw_e
     }
     for (size_t e = 2 * from->block; e < 2 * to->block; e++) {
         double *edge = energy->edge + 3 * e;
-        tw_axpy(edge, 0.5 * energy->length_m[e / 2] / uniform_curved_m, missing, edge);
+        tw_axpy(edge, 0.5 * energy->length_m[e / 2] / span_length_m, missing, edge);
     }
 }
 

@@ -116,7 +116,7 @@ typedef enum tw_stringing_rule {
     TW_STRING_TENSION,        /* value: larger line tension at support `index`, N; equal horizontal tension */
     TW_STRING_SAG,            /* value: vertical sag of span `index`, m; equal horizontal tension */
     TW_STRING_TOTAL_LENGTH,   /* value: sum of natural lengths, m; equal horizontal tension */
-    TW_STRING_UNIFORM_CURVEDS,   /* lengths_m: natural length of each span */
+    TW_STRING_SPAN_LENGTHS,   /* lengths_m: natural length of each span */
     TW_STRING_NONE            /* only a window search can run */
 } tw_stringing_rule;
 
@@ -125,7 +125,7 @@ typedef struct tw_stringing {
     tw_stringing_rule rule;
     double value;
     size_t index;
-    const double *lengths_m; /* [support_count - 1], TW_STRING_UNIFORM_CURVEDS only */
+    const double *lengths_m; /* [support_count - 1], TW_STRING_SPAN_LENGTHS only */
     double tolerance;        /* fraction of the pull that the crew keeps, >= 0 */
 } tw_stringing;
 

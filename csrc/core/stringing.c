@@ -180,7 +180,7 @@ static tw_status measure(strung *line, double pull_N, double *miss)
         }
         break;
     case TW_STRING_PULL:
-    case TW_STRING_UNIFORM_CURVEDS:
+    case TW_STRING_SPAN_LENGTHS:
     case TW_STRING_NONE: return TW_ERROR_RANGE;
     }
     return TW_OK;
@@ -300,7 +300,7 @@ tw_status tw_stringing_lengths(const tw_project *project, double *length_m, doub
     case TW_STRING_TENSION:
     case TW_STRING_SAG:
     case TW_STRING_TOTAL_LENGTH: return lengths_by_rule(&line, pull_N);
-    case TW_STRING_UNIFORM_CURVEDS:
+    case TW_STRING_SPAN_LENGTHS:
         memcpy(length_m, rule->lengths_m, line.span_count * sizeof(double));
         return TW_OK;
     case TW_STRING_NONE: break;

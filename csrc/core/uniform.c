@@ -238,7 +238,7 @@ tw_status tw_plain_span_settle(const tw_plain_span *span, tw_plain_state *state)
     return isfinite(all) ? TW_OK : TW_NOT_FINITE;
 }
 
-tw_status tw_plain_uniform_curved(const tw_plain_span *span, double horizontal_tension_N, double *natural_length_m)
+tw_status tw_plain_span_length(const tw_plain_span *span, double horizontal_tension_N, double *natural_length_m)
 {
     tw_uniform uniform;
     double p[3], e[3], v;

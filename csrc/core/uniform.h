@@ -28,7 +28,7 @@ tw_status tw_uniform_length(const tw_uniform *span, double h_N, double *natural_
 typedef struct tw_plain_span {
     double span_m;
     double rise_m;
-    double natural_length_m; /* ignored by tw_plain_uniform_curved */
+    double natural_length_m; /* ignored by tw_plain_span_length */
     double stiffness_N;
     double weight_N_per_m;
     double across_N_per_m;
@@ -46,6 +46,6 @@ typedef struct tw_plain_state {
 
 /* Both refuse what is not finite or out of range with TW_ERROR_RANGE. */
 tw_status tw_plain_span_settle(const tw_plain_span *span, tw_plain_state *state);
-tw_status tw_plain_uniform_curved(const tw_plain_span *span, double horizontal_tension_N, double *natural_length_m);
+tw_status tw_plain_span_length(const tw_plain_span *span, double horizontal_tension_N, double *natural_length_m);
 
 #endif

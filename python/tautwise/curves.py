@@ -1,7 +1,7 @@
 """Stress-strain curves of a project file: polynomials in the percent of strain, and what is asked of them.
 
-A curve stands in a file as its coefficients, each with the unit of a stress: ``initial = ["-512 psi", "4.902e4 psi"]`` is
--512 psi plus 4.902e4 psi for each percent of strain, then for each percent squared and so on, up to the fourth power.
+A curve stands in a file as its coefficients, each with the unit of a stress: ``initial = ["-512 psi", "4.902e4 psi"]``
+is -512 psi plus 4.902e4 psi for each percent of strain, then for each percent squared and so on, to the fourth power.
 """
 
 from __future__ import annotations

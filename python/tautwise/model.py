@@ -41,7 +41,17 @@ from tautwise.to_core import problem_of
 if TYPE_CHECKING:
     from tautwise.results import Equilibrium, PullWindow, VetReport
 
-RULES = (line_rules, curve_rules, history_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
+RULES = (
+    line_rules,
+    curve_rules,
+    history_rules,
+    support_rules,
+    place_rules,
+    stringing_rules,
+    condition_rules,
+    mark_rules,
+    limit_rules,
+)
 
 
 class Project(BaseModel):
@@ -186,7 +196,18 @@ class Project(BaseModel):
 Project.__signature__ = inspect.Signature(  # the keys of a file, which are not the fields of the model
     [
         inspect.Parameter(key, inspect.Parameter.KEYWORD_ONLY, default=None, annotation=Any)
-        for key in ("title", "line", "ground", "crossing", "support", "stringing", "history", "condition", "mark", "limit")
+        for key in (
+            "title",
+            "line",
+            "ground",
+            "crossing",
+            "support",
+            "stringing",
+            "history",
+            "condition",
+            "mark",
+            "limit",
+        )
     ]
 )
 
