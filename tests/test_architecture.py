@@ -24,12 +24,12 @@ CORE_LAYERS = (
     {"check", "material", "load", "hold"},
     {"span", "uniform"},
     {"section", "stringing"},
-    {"ground", "energy"},
+    {"ground", "energy", "history"},
     {"limit"},
     {"trial"},
 )
 # Nouns that a file exports beside its own name.
-NOUNS = {"line": {"options"}, "span": {"piece"}, "uniform": {"plain"}}
+NOUNS = {"line": {"options"}, "material": {"curve", "part", "permanent"}, "span": {"piece"}, "uniform": {"plain"}}
 
 FORBIDDEN_IN_CORE = re.compile(
     r"\b(v?f?printf|v?sn?printf|puts|fputs|perror|exit|_Exit|abort|assert|signal|raise|longjmp|malloc|calloc|realloc|free"

@@ -15,8 +15,20 @@ static const field line_fields[] = {
     F(tw_line, stiffness_N, NAN),
     F(tw_line, expansion_per_K, 0.0),
     F(tw_line, breaking_strength_N, NAN),
+    F(tw_line, test_temperature_degC, 20.0),
+    F(tw_line, bedding_in_strain, 0.0),
+    F(tw_line, creep_coefficient, 0.0),
+    F(tw_line, creep_exponent, 0.0),
+    F(tw_line, creep_hours, 0.0),
 };
 const field_table tw_line_table = TABLE(line_fields);
+
+static const field part_fields[] = {
+    F(tw_part, valid_to, NAN),
+    F(tw_part, final_stiffness_N, NAN),
+    F(tw_part, expansion_per_K, 0.0),
+};
+const field_table tw_part_table = TABLE(part_fields);
 
 static const field support_fields[] = {
     F(tw_support, station_m, NAN),
@@ -104,6 +116,7 @@ static const field span_state_fields[] = {
     F(tw_span_state, low_station_m, NAN),
     F(tw_span_state, low_elevation_m, NAN),
     F(tw_span_state, slope_max, NAN),
+    F(tw_span_state, permanent_strain, NAN),
     F(tw_span_state, small_deflection_sag_m, NAN),
 };
 const field_table tw_span_state_table = TABLE(span_state_fields);

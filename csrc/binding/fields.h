@@ -18,6 +18,7 @@ typedef struct field_table {
     size_t count;
 } field_table;
 
+extern const field_table tw_part_table;
 extern const field_table tw_line_table, tw_support_table, tw_crossing_table, tw_condition_table, tw_load_table,
     tw_mark_table, tw_limit_table, tw_stringing_table; /* read */
 extern const field_table tw_span_state_table, tw_support_state_table, tw_mark_state_table,

@@ -6,8 +6,10 @@
 
 #include "check.h"
 #include "fields.h"
+#include "problem_line.h"
 
 static const char *const hold_names[] = {"anchor", "hanger", "sheave", "post", NULL};
+static const char *const state_names[] = {"initial", "final", "after creep", NULL};
 static const char *const place_names[] = {"whole", "station", "length", NULL};
 static const char *const carriage_names[] = {"none", "free", "held", NULL};
 static const char *const frame_names[] = {"span", "route", NULL};
@@ -19,9 +21,9 @@ static const char *const clip_names[] = {"plumb", "lies", NULL};
 static const char *const rule_names[] = {"pull", "tension", "sag", "total_length", "span_lengths", "none", NULL};
 
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
-                                           "stringing", NULL};
+                                           "stringing", "history", NULL};
 static const char *const support_keys[] = {"hold", NULL};
-static const char *const condition_keys[] = {"loads", "ice_share", NULL};
+static const char *const condition_keys[] = {"loads", "ice_share", "state", NULL};
 static const char *const load_keys[] = {"is_point", "is_run", "place", "frame", "vector", "vector_to", "covers",
                                         "carriage", "carriage_span", NULL};
 static const char *const mark_keys[] = {"place", NULL};
@@ -46,6 +48,7 @@ void tw_problem_free(problem *in)
     PyMem_Free(in->applies);
     PyMem_Free(in->covers);
     PyMem_Free(in->lengths);
+    PyMem_Free(in->met);
     memset(in, 0, sizeof *in);
 }
 
@@ -328,7 +331,9 @@ static int read_condition(PyObject *row, size_t index, problem *out)
         || read_ice_share(row, out->project.support_count - 1, &out->conditions[index]) < 0) {
         return -1;
     }
-    return read_loads(row, &out->conditions[index], out);
+    int state = tw_fields_choice(row, "state", state_names, TW_STATE_INITIAL);
+    out->conditions[index].state = state < 0 ? TW_STATE_INITIAL : (tw_state)state;
+    return state < 0 ? -1 : read_loads(row, &out->conditions[index], out);
 }
 
 static int read_conditions(PyObject *dict, problem *out)
@@ -448,7 +453,33 @@ static int read_rule(PyObject *row, problem *out)
 
 static int read_line(PyObject *row, problem *out)
 {
-    return tw_fields_read(row, tw_line_table, NULL, &out->project.line);
+    return tw_problem_line_read(row, &out->project.line);
+}
+
+/* What a history leaves out is met, and creep is bare at the stringing temperature. */
+static int read_history(PyObject *dict, problem *out)
+{
+    static const char *const keys[] = {"met", "creep_condition", NULL};
+    static const field_table none = {NULL, 0};
+    PyObject *row = Py_XNewRef(tw_fields_get(dict, "history"));
+    size_t conditions = out->project.condition_count;
+    out->project.history.creep_condition = TW_NONE;
+    if (!row) {
+        return 0;
+    }
+    int result = tw_fields_read(row, none, keys, NULL);
+    if (result == 0 && !(out->met = room(conditions, 1))) {
+        result = -1;
+    }
+    if (result == 0) {
+        result = read_flags(row, "met", out->met, conditions);
+        out->project.history.met = out->met;
+    }
+    if (result == 0) {
+        result = read_index(row, "creep_condition", &out->project.history.creep_condition);
+    }
+    Py_DECREF(row);
+    return result;
 }
 
 /* dict[key], held while it is read; -1 and raises, also where it is missing. */
@@ -503,7 +534,7 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
     }
     if (read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
         || read_marks(dict, out) < 0 || read_limits(dict, out) < 0
-        || read_part(dict, "stringing", read_rule, out) < 0) {
+        || read_part(dict, "stringing", read_rule, out) < 0 || read_history(dict, out) < 0) {
         return -1;
     }
     if (tw_check_project(&out->project, &fault) != TW_OK) {

@@ -19,6 +19,7 @@ typedef struct problem {
     unsigned char *applies;
     unsigned char *covers;
     double *lengths;
+    unsigned char *met;
 } problem;
 
 /* 0, or -1 and raises; range_error is raised with .path and .expected for a number out of range. */

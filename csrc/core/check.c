@@ -5,6 +5,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "check_rules.h"
 
 enum {
     OPEN_LOW = 1,  /* the low end is excluded */
@@ -113,7 +114,7 @@ static void copy_text(char *to, const char *from, size_t size)
     memcpy(to, from, length < size ? length : size - 1);
 }
 
-static tw_status fail(tw_fault *fault, const char *table, size_t index, const char *field, const char *expected)
+tw_status tw_check_fail(tw_fault *fault, const char *table, size_t index, const char *field, const char *expected)
 {
     memset(fault, 0, sizeof *fault);
     copy_text(fault->table, table, sizeof fault->table);
@@ -121,6 +122,11 @@ static tw_status fail(tw_fault *fault, const char *table, size_t index, const ch
     copy_text(fault->expected, expected, sizeof fault->expected);
     fault->index = index;
     return TW_ERROR_RANGE;
+}
+
+static tw_status fail(tw_fault *fault, const char *table, size_t index, const char *field, const char *expected)
+{
+    return tw_check_fail(fault, table, index, field, expected);
 }
 
 static int holds(const range *r, double value)
@@ -387,6 +393,9 @@ tw_status tw_check_project(const tw_project *project, tw_fault *fault)
     status = check_numbers(project, fault);
     for (size_t j = 0; status == TW_OK && j < project->support_count; j++) {
         status = check_support(project, j, fault);
+    }
+    if (status == TW_OK) {
+        status = tw_check_material(project, fault);
     }
     if (status == TW_OK) {
         status = check_ground(project, fault);

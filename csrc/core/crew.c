@@ -78,7 +78,7 @@ static void read_spans(const tw_section *section, double mass_kg_per_m, tw_crew_
         rows[k].horizontal_tension_N = state.horizontal_tension_N;
         rows[k].tension_max_N = state.tension_max_N;
         rows[k].sag_m = state.sag_m;
-        rows[k].return_s = tw_wave_return_s(&section->material, section->pieces + first,
+        rows[k].return_s = tw_wave_return_s(&section->materials[k], section->pieces + first,
                                             section->piece_first[k + 1] - first, mass_kg_per_m);
         rows[k].return_parabola_s = tw_wave_parabola_s(state.sag_m);
     }
@@ -138,9 +138,10 @@ static void fill_supports(crew_run *run)
         tw_support_state state;
         int ends = j == run->crew->span_count || tw_pulling_begins(&run->bare, j);
         tw_section_support_state(blocks, j, &state);
-        const double *beside = blocks->pull + 3 * (j < run->crew->span_count ? j : j - 1);
+        size_t span = j < run->crew->span_count ? j : j - 1;
+        const double *beside = blocks->pull + 3 * span;
         out->offset_m = ends ? 0.0 : plumb - blocks->start_m[j];
-        out->offset_stretched_m = out->offset_m * tw_material_stretch(&blocks->material, tw_norm(beside));
+        out->offset_stretched_m = out->offset_m * tw_material_stretch(&blocks->materials[span], tw_norm(beside));
         out->block_swing_rad = ends ? (double)NAN : state.swing_rad;
         out->block_down_N = state.down_N;
         plumb = ends ? blocks->start_m[j] : plumb;

@@ -46,15 +46,16 @@ static double element_evaluate(const tw_energy *energy, size_t element, const do
     double a[3], b[3], slope[3];
     double fa[3] = {0.0, 0.0, 0.0}, fb[3] = {0.0, 0.0, 0.0};
     double *g = gradient + BLOCK * element + 3;
+    const tw_material *material = &energy->materials[energy->span[element]];
     double length = energy->length_m[element];
     double stored = 0.0;
     element_edges(energy, element, x, a, b);
     for (int p = 0; p < 2; p++) {
         double xi = p == 0 ? -two_point : two_point;
         double stretch = element_slope(a, b, length, xi, slope);
-        double tension = tw_material_tension(&energy->material, stretch);
+        double tension = tw_material_tension(material, stretch);
         double factor = tension > 0.0 ? tension / stretch : 0.0;
-        stored += tw_material_energy(&energy->material, stretch);
+        stored += tw_material_energy(material, stretch);
         tw_axpy(fa, (0.5 - xi) * factor, slope, fa);
         tw_axpy(fb, (0.5 + xi) * factor, slope, fb);
         *tension_most = fmax(*tension_most, tension);
@@ -168,13 +169,13 @@ static void stiffness_along(const double unit[3], double tangent, double across,
 }
 
 /* Second derivatives of the stretch energy at a point of integration, in r'. */
-static void point_stiffness(const tw_energy *energy, const double a[3], const double b[3], double length, double xi,
+static void point_stiffness(const tw_material *material, const double a[3], const double b[3], double length, double xi,
                             double floor_N, double out[6])
 {
     double slope[3];
     double stretch = element_slope(a, b, length, xi, slope);
-    double tension = fmax(tw_material_tension(&energy->material, stretch), floor_N);
-    double tangent = fmax(tw_material_tangent(&energy->material, stretch), floor_N);
+    double tension = fmax(tw_material_tension(material, stretch), floor_N);
+    double tangent = fmax(tw_material_tangent(material, stretch), floor_N);
     double inverse = stretch > 0.0 ? 1.0 / stretch : 1.0;
     for (int i = 0; i < 3; i++) {
         slope[i] *= inverse;
@@ -187,13 +188,14 @@ static void element_stiffness(const tw_energy *energy, size_t element, const dou
                               double ab[6], double bb[6])
 {
     double a[3], b[3], low[6], high[6];
+    const tw_material *material = &energy->materials[energy->span[element]];
     double length = energy->length_m[element];
     const double near = 2.0 * (0.5 + two_point) * (0.5 + two_point) / length;
     const double far = 2.0 * (0.5 - two_point) * (0.5 - two_point) / length;
     const double mixed = -1.0 / (6.0 * length);
     element_edges(energy, element, x, a, b);
-    point_stiffness(energy, a, b, length, -two_point, floor_N, low);
-    point_stiffness(energy, a, b, length, two_point, floor_N, high);
+    point_stiffness(material, a, b, length, -two_point, floor_N, low);
+    point_stiffness(material, a, b, length, two_point, floor_N, high);
     for (int i = 0; i < 6; i++) {
         aa[i] = near * low[i] + far * high[i];
         ab[i] = mixed * (low[i] + high[i]);
@@ -283,13 +285,13 @@ void tw_energy_hessian(const tw_energy *energy, const double *x, double floor_N,
 static double element_stored(const tw_energy *energy, size_t element, const double a[3], const double b[3])
 {
     double length = energy->length_m[element];
+    const tw_material *material = &energy->materials[energy->span[element]];
     double slope[3];
     double stored = 0.0;
     for (int p = 0; p < 4; p++) {
         double low = element_slope(a, b, length, -eight_point[p], slope);
         double high = element_slope(a, b, length, eight_point[p], slope);
-        stored += eight_weight[p] *
-                  (tw_material_energy(&energy->material, low) + tw_material_energy(&energy->material, high));
+        stored += eight_weight[p] * (tw_material_energy(material, low) + tw_material_energy(material, high));
     }
     return 0.5 * length * stored;
 }

@@ -6,7 +6,7 @@
  * b (middle -> end), at xi in [-1, 1]:
  *     r' = (2/l) [(1/2 - xi) a + (1/2 + xi) b]
  * The stretch energy is integrated at the two Gauss points xi = -+1/sqrt(3): with three, stiff stretch and soft bending
- * fight, and the sag converges two orders slower. Uniform loads act consistently, l q (1, 4, 1)/6.
+ * fight, and the sag converges two orders slower. Loads act consistently, l (q0, 2 (q0 + q1), q1)/6 from end to end.
  * Holds: an anchor is a fixed node; a post adds k_x dx^2/2 + k_y dy^2/2 and is rigid vertically; a hanger is a link of
  * length l that cannot grow and carries no compression, kept by the augmented term
  *     ((F + k e)+^2 - F^2) / (2 k)      e = |c - a| - l,  F: its force in the exact line,  k = 10 (EA + F) / l
@@ -37,7 +37,8 @@ typedef struct tw_energy_hold {
 } tw_energy_hold;
 
 typedef struct tw_energy {
-    tw_material material;
+    tw_material *materials; /* [hold_count - 1] of the spans; owned, their curves the section's */
+    size_t *span;          /* [element_count] which span an element is of; owned */
     size_t element_count;
     size_t hold_count;
     double *edge;          /* [6 element_count] a, b in the start shape, m; owned */

@@ -2,6 +2,7 @@
 #include "energy.h"
 
 #include <math.h>
+#include <string.h>
 
 #include "alloc.h"
 #include "hold.h"
@@ -59,26 +60,27 @@ static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j
         hold->link_over_m = tw_norm(hold->offset) - hold->link_m;
         hold->link_force_N = tw_norm(section->hold_force + 3 * j);
         hold->link_stiffness =
-            link_over_line * (section->material.stiffness_N + hold->link_force_N) / hold->link_m;
+            link_over_line * (section->stiffness_N + hold->link_force_N) / hold->link_m;
     }
 }
 
-/* One element that starts at natural length s of the piece: edges, length, its share of the uniform load. */
-static void mesh_element(tw_energy *energy, size_t element, const tw_piece *piece, double s, double length)
+/* One element of a span that starts at natural length s of the piece: edges, length, its share of the load. */
+static void mesh_element(tw_energy *energy, size_t element, size_t span, const tw_piece *piece, double s, double length)
 {
     double *edge = energy->edge + BLOCK * element;
     double *node = energy->load + BLOCK * element + 3; /* start, middle, end */
-    double from[3], middle[3], to[3];
+    double first[3], middle[3], last[3];
     energy->length_m[element] = length;
+    energy->span[element] = span;
     for (int half = 0; half < 2; half++) {
-        tw_piece_part(&energy->material, piece, s + 0.5 * length * half, 0.5 * length, edge + 3 * half, NULL);
+        tw_piece_ahead(&energy->materials[span], piece, s + 0.5 * length * half, 0.5 * length, edge + 3 * half, NULL);
     }
-    tw_axpy(piece->load, s, piece->ramp, from);
-    tw_axpy(piece->load, s + 0.5 * length, piece->ramp, middle);
-    tw_axpy(piece->load, s + length, piece->ramp, to);
-    tw_axpy(node, length / 6.0, from, node); /* exact for a load that is linear in s */
+    tw_piece_load(piece, s, first);
+    tw_piece_load(piece, s + 0.5 * length, middle);
+    tw_piece_load(piece, s + length, last);
+    tw_axpy(node, length / 6.0, first, node);
     tw_axpy(node + 3, length / 1.5, middle, node + 3);
-    tw_axpy(node + 6, length / 6.0, to, node + 6);
+    tw_axpy(node + 6, length / 6.0, last, node + 6);
 }
 
 /* The edges of a span must reach from clamp to clamp; what they miss (the exact line's closing error and rounding) is
@@ -109,7 +111,7 @@ static void mesh_span(tw_energy *energy, const tw_section *section, size_t span,
         size_t count = piece_elements(piece, section->length_m[span], per_span);
         for (size_t i = 0; i < count; i++) {
             double length = piece->length_m / (double)count;
-            mesh_element(energy, element++, piece, length * (double)i, length);
+            mesh_element(energy, element++, span, piece, length * (double)i, length);
         }
         double *end = energy->load + BLOCK * element + 3;
         tw_axpy(end, 1.0, piece->force, end);
@@ -138,16 +140,18 @@ tw_energy *tw_energy_create(const tw_section *section, size_t per_span)
     if (energy == NULL) {
         return NULL;
     }
-    energy->material = section->material;
     energy->element_count = tw_energy_elements(section, per_span);
     energy->hold_count = section->span_count + 1;
+    energy->materials = tw_calloc(section->span_count, sizeof *energy->materials);
+    energy->span = tw_calloc(energy->element_count, sizeof *energy->span);
     energy->edge = tw_calloc(energy->element_count, BLOCK * sizeof(double));
     energy->length_m = tw_calloc(energy->element_count, sizeof(double));
     energy->load = tw_calloc(energy->element_count + 1, BLOCK * sizeof(double));
     energy->holds = tw_calloc(energy->hold_count, sizeof *energy->holds);
-    if (energy->edge == NULL || energy->length_m == NULL || energy->load == NULL || energy->holds == NULL) {
+    if (energy->materials == NULL || energy->span == NULL || energy->edge == NULL || energy->length_m == NULL || energy->load == NULL || energy->holds == NULL) {
         goto fail;
     }
+    memcpy(energy->materials, section->materials, section->span_count * sizeof *energy->materials);
     mesh_section(energy, section, per_span);
     return energy;
 fail:
@@ -158,6 +162,8 @@ fail:
 void tw_energy_free(tw_energy *energy)
 {
     if (energy != NULL) {
+        tw_free(energy->materials);
+        tw_free(energy->span);
         tw_free(energy->edge);
         tw_free(energy->length_m);
         tw_free(energy->load);

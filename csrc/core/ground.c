@@ -89,6 +89,23 @@ static double at_station(const stretch *line, double station)
     return tw_piece_at_station(line->material, line->piece, line->s0, line->s1, a, b, station);
 }
 
+/* Under a load that varies: every place where the line runs along the top, a greatest clearance among them or not. */
+static void offer_stationary(const stretch *line, const top *t, const double normal[3], double from, double to,
+                             least *best)
+{
+    double places[2];
+    tw_piece_stationary(line->piece, normal, places);
+    for (int i = 0; i < 2; i++) {
+        double r[3];
+        if (places[i] > line->s0 && places[i] < line->s1) {
+            tw_piece_position(line->material, line->piece, places[i], r);
+            if (r[0] >= from && r[0] <= to) {
+                offer_place(line, t, places[i], best);
+            }
+        }
+    }
+}
+
 /* Exact least clearance over one straight top between stations from and to. Along a piece, d(clearance)/ds has the sign
  * of normal . t, which is linear in s: where it grows through zero within the stretch is the least place, otherwise an end. */
 static void judge_top(const stretch *line, const top *t, double from, double to, least *best)
@@ -96,7 +113,7 @@ static void judge_top(const stretch *line, const top *t, double from, double to,
     const double normal[3] = {-t->slope, 0.0, 1.0};
     double rate = -tw_dot(normal, line->piece->load);
     double at_zero = tw_dot(normal, line->piece->tension);
-    double s = rate > 0.0 ? -at_zero / rate : -1.0;
+    double s = rate > 0.0 && !tw_piece_varies(line->piece) ? -at_zero / rate : -1.0;
     if (s > line->s0 && s < line->s1) {
         double r[3];
         tw_piece_position(line->material, line->piece, s, r);
@@ -106,6 +123,9 @@ static void judge_top(const stretch *line, const top *t, double from, double to,
         }
         offer_place(line, t, at_station(line, r[0] < from ? from : to), best);
         return;
+    }
+    if (tw_piece_varies(line->piece)) {
+        offer_stationary(line, t, normal, from, to, best);
     }
     offer_place(line, t, at_station(line, from), best);
     offer_place(line, t, at_station(line, to), best);
@@ -128,7 +148,8 @@ static double bound(const stretch *line, const double *x, const double *z)
 static stretch make_stretch(const tw_material *material, const tw_piece *piece, double s0, double s1)
 {
     stretch line = {.material = material, .piece = piece, .s0 = s0, .s1 = s1};
-    line.convex = piece->load[0] == 0.0 && piece->load[2] <= 0.0 && piece->tension[0] > 0.0;
+    line.convex = piece->load[0] == 0.0 && piece->load[2] <= 0.0 && piece->tension[0] > 0.0 && piece->ramp[0] == 0.0
+                  && piece->load[2] + piece->length_m * piece->ramp[2] <= 0.0;
     double first[3] = {0.0}, last[3] = {0.0};
     tw_piece_position(material, piece, s0, first);
     tw_piece_position(material, piece, s1, last);
@@ -210,10 +231,10 @@ int tw_ground_clearance(const tw_section *section, size_t span, size_t crossing,
         const tw_piece *piece = &section->pieces[p];
         double turn;
         int turns = tw_piece_turns(piece, &turn);
-        stretch line = make_stretch(&section->material, piece, 0.0, turns ? turn : piece->length_m);
+        stretch line = make_stretch(&section->materials[span], piece, 0.0, turns ? turn : piece->length_m);
         judge_stretch(section, &line, crossing, from_m, to_m, &best);
         if (turns) {
-            line = make_stretch(&section->material, piece, turn, piece->length_m);
+            line = make_stretch(&section->materials[span], piece, turn, piece->length_m);
             judge_stretch(section, &line, crossing, from_m, to_m, &best);
         }
     }

@@ -27,6 +27,13 @@ tw_condition tw_line_bare(double temperature_degC)
         .temperature_degC = temperature_degC,
         .wind_pressure_Pa = 0.0,
         .wind_speed_m_per_s = (double)NAN,
+        .wind_drag = 1.0,
+        .wind_bearing_rad = (double)NAN,
+        .wind_altitude_m = (double)NAN,
+        .factor_weight = 1.0,
+        .factor_ice = 1.0,
+        .factor_wind = 1.0,
+        .factor_load = 1.0,
     };
     return condition;
 }

@@ -14,12 +14,30 @@
 
 #define TW_NONE ((size_t)-1) /* "no such index" */
 
+enum { TW_CURVE_TERMS = 5, TW_PARTS_MOST = 2 };
+
+/* One part of a line with a curved law (core, outer layers, or the whole); see material_curve.h. Strains are ratios. */
+typedef struct tw_part {
+    double loading_N[TW_CURVE_TERMS]; /* force of the part at strain e, first loading: sum loading_N[k] e^k */
+    double creep_N[TW_CURVE_TERMS];   /* the same after long creep at constant force; creep_N[0] NaN: it does not creep */
+    double valid_to;                  /* strain up to which both hold; beyond it they go on straight */
+    double final_stiffness_N;         /* of unloading and reloading, per unit strain */
+    double expansion_per_K;
+} tw_part;
+
 typedef struct tw_line {
     double diameter_m;          /* bare outside diameter; 0 where neither ice nor wind acts */
     double weight_N_per_m;      /* bare, per natural metre */
-    double stiffness_N;         /* EA */
-    double expansion_per_K;     /* thermal strain per kelvin */
+    double stiffness_N;         /* EA; of a curved line its greatest slope, by which pulls are bounded */
+    double expansion_per_K;     /* thermal strain per kelvin; a curved line's parts have their own */
     double breaking_strength_N; /* NaN: not given */
+    size_t part_count;          /* 0: linear */
+    tw_part parts[TW_PARTS_MOST];
+    double test_temperature_degC; /* at which the parts' laws were measured together */
+    double bedding_in_strain;   /* in every state but the initial one */
+    double creep_coefficient;   /* c of the creep strain c t^n, in the state after creep */
+    double creep_exponent;      /* n */
+    double creep_hours;         /* t */
 } tw_line;
 
 typedef enum tw_hold {
@@ -85,7 +103,15 @@ typedef struct tw_load {
     const unsigned char *covers; /* [support_count - 1] the spans on which it acts; NULL: all. Borrowed */
 } tw_load;
 
+/* What the line has been through before a condition. */
+typedef enum tw_state {
+    TW_STATE_INITIAL,    /* nothing: as strung */
+    TW_STATE_FINAL,      /* the heaviest condition of its history, and its bedding in */
+    TW_STATE_AFTER_CREEP /* these, and creep at the everyday condition */
+} tw_state;
+
 typedef struct tw_condition {
+    tw_state state;
     double temperature_degC;
     double ice_thickness_m;            /* radial */
     double ice_density_kg_per_m3;
@@ -137,6 +163,12 @@ typedef struct tw_stringing {
     double friction;         /* mu of the sheaves that the line is strung over and that have none of their own, >= 0 */
     double end_allowance_m;  /* added at each end of a section to the length that is cut, >= 0 */
 } tw_stringing;
+
+/* The conditions a line has met before those in a state other than the initial one. */
+typedef struct tw_history_rule {
+    const unsigned char *met; /* [condition_count] 1: met; NULL: all of them */
+    size_t creep_condition;   /* everyday condition, or TW_NONE: bare at the stringing temperature */
+} tw_history_rule;
 
 typedef struct tw_mark {
     tw_place place; /* station as strung, or natural length; never WHOLE */
@@ -195,6 +227,7 @@ typedef struct tw_project {
     const unsigned char *limit_covers;  /* [limit_count][support_count]: it looks at the support, or at the span that
                                            starts there (tension, sag, slope, catenary constant, clearance) */
     tw_stringing stringing;
+    tw_history_rule history;
 } tw_project;
 
 /* What a poll callback returns: 0 to go on, anything else to cancel. Called often; it should look at the clock first. */
@@ -240,6 +273,7 @@ typedef struct tw_span_state {
     double low_station_m;         /* lowest point of the line between the clamps */
     double low_elevation_m;
     double slope_max;             /* |dz| over plan distance */
+    double permanent_strain;      /* what history has added to the strain at this temperature and horizontal tension */
     double small_deflection_sag_m;/* taut-string sag under the same loads and horizontal tension */
 } tw_span_state;
 

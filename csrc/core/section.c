@@ -50,7 +50,9 @@ tw_section *tw_section_create(const tw_project *project)
     section->span_count = spans;
     section->carriage_m = (double)NAN;
     section->piece_capacity = spans + 2 * loads;
-    if (!create_run(section)) {
+    section->materials = tw_calloc(spans, sizeof *section->materials);
+    section->curves = project->line.part_count > 0 ? tw_calloc(spans, sizeof *section->curves) : NULL;
+    if (!section->materials || (project->line.part_count > 0 && !section->curves) || !create_run(section)) {
         tw_section_free(section);
         return NULL;
     }
@@ -90,6 +92,8 @@ void tw_section_free(tw_section *section)
     if (!section) {
         return;
     }
+    tw_free(section->materials);
+    tw_free(section->curves);
     tw_free(section->pieces);
     tw_free(section->piece_first);
     tw_free(section->cut_m);

@@ -33,7 +33,12 @@ typedef enum tw_feed {
 
 typedef struct tw_section {
     const tw_project *project;
-    tw_material material;
+    tw_material *materials;  /* [span_count] owned */
+    tw_curve *curves;        /* [span_count] room for their laws; NULL on a linear line; owned */
+    double stiffness_N;      /* largest of the materials */
+    const tw_permanent *permanent; /* [span_count] what its history has left, borrowed; NULL: as strung */
+    double temperature_degC; /* of the condition */
+    int creeping;            /* 1: the parts' creep curves in place of their loading curves */
     size_t span_count;
     size_t piece_capacity;   /* allocated */
     size_t piece_count;

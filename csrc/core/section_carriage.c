@@ -12,7 +12,6 @@
 #include <math.h>
 
 #include "section_load.h"
-#include "span_ramp.h"
 #include "vector.h"
 
 enum { RUN_ROUNDS = 200, ROLL_ROUNDS = 80 };
@@ -23,30 +22,55 @@ static const double ROLL_STEP = 1e-13;     /* of the span: as near as a place is
 static const double ROLL_FIRST = 0.02;     /* of the span: the first step of the search for a bracket */
 static const double ROLL_BALANCED = 1e-9;  /* of the tension: a difference that counts as none */
 
+/* Horizontal run of a piece: int |t_xy|/|t| W*'(|t|) ds at five Gauss-Legendre points; a piece is short beside its span. */
+static double plan_run(const tw_material *material, const tw_piece *piece)
+{
+    static const double point[5] = {0.046910077030668, 0.230765344947158, 0.5, 0.769234655052842, 0.953089922969332};
+    static const double weight[5] = {0.118463442528095, 0.239314335249683, 0.284444444444444, 0.239314335249683,
+                                     0.118463442528095};
+    double run = 0.0;
+    for (int i = 0; i < 5; i++) {
+        double t[3];
+        tw_piece_tension(piece, point[i] * piece->length_m, t);
+        double size = tw_norm(t);
+        run += weight[i] * hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
+    }
+    return run * piece->length_m;
+}
+
+/* Brings the loads per run on a piece into line with its shape; returns the change of the share. */
+static double follow_run(tw_section *section, const tw_material *material, size_t p)
+{
+    tw_piece *piece = &section->pieces[p];
+    double *share = section->run_share + 2 * p;
+    const double *vector = section->run_vector + 3 * p;
+    double ends[2], t[3];
+    if (tw_norm(vector) == 0.0 || !(piece->length_m > 0.0)) {
+        return 0.0;
+    }
+    for (int e = 0; e < 2; e++) {
+        tw_piece_tension(piece, e * piece->length_m, t);
+        double size = tw_norm(t);
+        ends[e] = hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
+    }
+    double rate = (ends[1] - ends[0]) / piece->length_m;
+    double start = plan_run(material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
+    double change = fabs(start - share[0]) + fabs(rate - share[1]) * piece->length_m;
+    tw_axpy(piece->load, start - share[0], vector, piece->load);
+    tw_axpy(piece->ramp, rate - share[1], vector, piece->ramp);
+    share[0] = start;
+    share[1] = rate;
+    return change;
+}
+
 double tw_section_follow_runs(tw_section *section)
 {
     double most = 0.0;
-    for (size_t p = 0; p < section->piece_count; p++) {
-        tw_piece *piece = &section->pieces[p];
-        double *share = section->run_share + 2 * p;
-        const double *vector = section->run_vector + 3 * p;
-        double ends[2], t[3];
-        if (tw_norm(vector) == 0.0 || !(piece->length_m > 0.0)) {
-            continue;
+    for (size_t k = 0; k < section->span_count; k++) {
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            double change = follow_run(section, &section->materials[k], p);
+            most = change > most || isnan(change) ? change : most;
         }
-        for (int e = 0; e < 2; e++) {
-            tw_piece_tension(piece, e * piece->length_m, t);
-            double size = tw_norm(t);
-            ends[e] = hypot(t[0], t[1]) / size * tw_material_stretch(&section->material, size);
-        }
-        double rate = (ends[1] - ends[0]) / piece->length_m;
-        double start = tw_span_ramp_run(&section->material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
-        double change = fabs(start - share[0]) + fabs(rate - share[1]) * piece->length_m;
-        most = change > most || isnan(change) ? change : most;
-        tw_axpy(piece->load, start - share[0], vector, piece->load);
-        tw_axpy(piece->ramp, rate - share[1], vector, piece->ramp);
-        share[0] = start;
-        share[1] = rate;
     }
     return most;
 }

@@ -218,8 +218,8 @@ static void end_per_length(const feed_run *run, size_t r, double in[3], double o
     const double *ahead = section->pull + 3 * from, *far = run->s->far + 3 * last;
     double T = tw_norm(ahead), t = tw_norm(far);
     for (int i = 0; i < 3; i++) {
-        in[i] = ahead[i] * tw_material_stretch(&section->material, T) / T;
-        out[i] = -far[i] * tw_material_stretch(&section->material, t) / t;
+        in[i] = ahead[i] * tw_material_stretch(&section->materials[from], T) / T;
+        out[i] = -far[i] * tw_material_stretch(&section->materials[last], t) / t;
     }
     add_product(bend, -1.0, first_piece(section, from)->load, in); /* what comes in is carried by all that follows */
 }

@@ -7,11 +7,6 @@
 #include "section_load.h"
 #include "vector.h"
 
-static const tw_condition bare = {
-    .wind_pressure_Pa = 0.0, .wind_drag = 1.0, .wind_bearing_rad = (double)NAN, .wind_altitude_m = (double)NAN,
-    .factor_weight = 1.0, .factor_ice = 1.0, .factor_wind = 1.0, .factor_load = 1.0,
-};
-
 /* What is being put on. */
 typedef struct loading {
     const tw_condition *state;
@@ -294,18 +289,38 @@ void tw_section_load_vector(const tw_section *section, size_t condition, const t
     }
 }
 
+static void set_materials(tw_section *section, double temperature_degC)
+{
+    const tw_line *line = &section->project->line;
+    double reference = section->project->stringing.temperature_degC;
+    section->temperature_degC = temperature_degC;
+    section->stiffness_N = 0.0;
+    for (size_t k = 0; k < section->span_count; k++) {
+        tw_curve *curve = section->curves ? &section->curves[k] : NULL;
+        if (k > 0 && !section->permanent) {
+            section->materials[k] = section->materials[0];
+        } else if (section->creeping) {
+            section->materials[k] = tw_material_creeping(line, temperature_degC, reference, curve);
+        } else {
+            section->materials[k] = tw_material_after(line, temperature_degC, reference,
+                                                      section->permanent ? &section->permanent[k] : NULL, curve);
+        }
+        section->stiffness_N = fmax(section->stiffness_N, section->materials[k].stiffness_N);
+    }
+}
+
 tw_status tw_section_load(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
                           int with_addition)
 {
     const tw_project *project = section->project;
     double reference = project->stringing.temperature_degC;
+    const tw_condition bare = tw_line_bare(reference);
     loading on = {&bare, NULL, 0, strung, with_addition};
-    section->material = tw_material_at(&project->line, reference, reference);
+    set_materials(section, condition != TW_NONE ? project->conditions[condition].temperature_degC : reference);
     if (condition != TW_NONE) {
         on.state = &project->conditions[condition];
         on.count = on.state->load_count;
         on.loads = on.count ? project->loads + on.state->load_first : NULL;
-        section->material = tw_material_at(&project->line, on.state->temperature_degC, reference);
     }
     section->factor_weight = on.state->factor_weight;
     memcpy(section->length_m, length_m, section->span_count * sizeof(double));

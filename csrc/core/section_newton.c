@@ -67,7 +67,7 @@ static void hang_run(tw_section *section, const tw_section_scratch *s, size_t ru
             tw_copy(place, s->reach + 3 * k);
             tw_axpy(s->far + 3 * (k - 1), -1.0, section->clamp_load + 3 * k, section->pull + 3 * k);
         }
-        tw_span_hang(&section->material, section->pieces + first, section->piece_first[k + 1] - first, place,
+        tw_span_hang(&section->materials[k], section->pieces + first, section->piece_first[k + 1] - first, place,
                      section->pull + 3 * k, end, s->far + 3 * k, bend ? span_bend : NULL);
         tw_copy(end, place);
         for (int i = 0; bend && i < 6; i++) {

@@ -21,6 +21,7 @@ static void mean_load(const tw_section *section, size_t span, double mean[3])
         double total[3];
         tw_piece_total(piece, total);
         tw_axpy(mean, 1.0, total, mean);
+        tw_axpy(mean, 1.0, piece->force, mean);
     }
     for (int i = 0; i < 3; i++) {
         mean[i] /= section->length_m[span];
@@ -42,7 +43,8 @@ static tw_status start_pulls(tw_section *section)
         }
         double drop = tw_dot(chord, mean);
         tw_axpy(chord, -drop, mean, p);
-        const tw_uniform span = {tw_norm(p), drop, size, section->material.stiffness_N, section->material.strain};
+        const tw_uniform span = {tw_norm(p), drop, size, section->materials[k].stiffness_N,
+                                 section->materials[k].strain};
         if (!(span.span > 0.0)) {
             return TW_NOT_SETTLED;
         }
@@ -90,13 +92,14 @@ static void finish(tw_section *section, const tw_section_scratch *s)
     }
     for (size_t r = 0; r < s->runs; r++) {
         const double *start = section->clamp + 3 * section->run_first[r];
-        size_t last = section->piece_first[section->run_first[r + 1]];
-        for (size_t p = section->piece_first[section->run_first[r]]; p < last; p++) {
-            tw_piece *piece = &section->pieces[p];
-            double conjugate;
-            tw_axpy(piece->start, 1.0, start, piece->start);
-            tw_piece_integrals(&section->material, piece, &conjugate, NULL, NULL);
-            lower -= conjugate;
+        for (size_t k = section->run_first[r]; k < section->run_first[r + 1]; k++) {
+            for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+                tw_piece *piece = &section->pieces[p];
+                double conjugate;
+                tw_axpy(piece->start, 1.0, start, piece->start);
+                tw_piece_energy(&section->materials[k], piece, &conjugate, NULL, NULL);
+                lower -= conjugate;
+            }
         }
     }
     section->energy_lower_J = lower;

@@ -44,7 +44,7 @@ void tw_section_at(const tw_section *section, double s, double position[3], doub
     tw_section_locate(section, s, &span, &within);
     const tw_piece *piece = piece_within(section, span, &within);
     if (position) {
-        tw_piece_position(&section->material, piece, within, position);
+        tw_piece_position(&section->materials[span], piece, within, position);
     }
     if (tension) {
         tw_piece_tension(piece, within, tension);
@@ -89,16 +89,19 @@ static int passes(const tw_material *material, const tw_piece *piece, double s0,
 static tw_status spans_at_station(const tw_section *section, size_t from, size_t to, double station_m, double *s)
 {
     double passed = section->start_m[from];
-    for (size_t p = section->piece_first[from]; p < section->piece_first[to]; p++) {
-        const tw_piece *piece = &section->pieces[p];
-        double turn, at;
-        int turns = tw_piece_turns(piece, &turn);
-        if (passes(&section->material, piece, 0.0, turns ? turn : piece->length_m, station_m, &at)
-            || (turns && passes(&section->material, piece, turn, piece->length_m, station_m, &at))) {
-            *s = passed + at;
-            return TW_OK;
+    for (size_t k = from; k < to; k++) {
+        const tw_material *material = &section->materials[k];
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            const tw_piece *piece = &section->pieces[p];
+            double turn, at;
+            int turns = tw_piece_turns(piece, &turn);
+            if (passes(material, piece, 0.0, turns ? turn : piece->length_m, station_m, &at)
+                || (turns && passes(material, piece, turn, piece->length_m, station_m, &at))) {
+                *s = passed + at;
+                return TW_OK;
+            }
+            passed += piece->length_m;
         }
-        passed += piece->length_m;
     }
     return TW_ERROR_PLACE;
 }
@@ -138,10 +141,11 @@ static void total_load(const tw_piece *pieces, size_t count, double load[3])
         double total[3];
         tw_piece_total(&pieces[p], total);
         tw_axpy(load, 1.0, total, load);
+        tw_axpy(load, 1.0, pieces[p].force, load);
     }
 }
 
-static double slant_sag(const tw_section *section, const tw_piece *pieces, size_t count, const chord_frame *frame)
+static double slant_sag(const tw_material *material, const tw_piece *pieces, size_t count, const chord_frame *frame)
 {
     double load[3], at;
     total_load(pieces, count, load);
@@ -150,15 +154,7 @@ static double slant_sag(const tw_section *section, const tw_piece *pieces, size_
     double d[3];
     tw_span_slant(frame->span, frame->rise, own, d);
     const double direction[3] = {d[0] * u[0] - d[1] * u[1], d[0] * u[1] + d[1] * u[0], d[2]};
-    return fmax(0.0, tw_span_extreme(&section->material, pieces, count, direction, frame->start, &at));
-}
-
-/* First place where the shear under q + growth s is used up from above, or -1. */
-static double no_shear(double shear, double q, double growth)
-{
-    double square = q * q + 2.0 * growth * shear;
-    double root = square > 0.0 ? q + sqrt(square) : 0.0;
-    return root > 0.0 ? 2.0 * shear / root : -1.0;
+    return fmax(0.0, tw_span_extreme(material, pieces, count, direction, frame->start, &at));
 }
 
 /* Taut string along the chord: deflection M(x)/H, a metre of line taken for a metre of chord; its greatest. Of a uniform
@@ -178,24 +174,27 @@ static double small_deflection_sag(const tw_piece *pieces, size_t count, double 
     double shear = support / span, moment = 0.0, most = 0.0;
     for (size_t p = 0; p < count; p++) {
         double l = pieces[p].length_m * scale;
-        double q = -pieces[p].load[2] * slant, growth = -pieces[p].ramp[2] / scale * slant;
-        double top = no_shear(shear, q, growth);
+        double q = -pieces[p].load[2] * slant;
+        double bend = -pieces[p].ramp[2] * slant / scale;
+        double root = sqrt(fmax(q * q + 2.0 * bend * shear, 0.0));
+        double top = q + root > 0.0 ? 2.0 * shear / (q + root) : -1.0; /* shear = q x + bend x^2 / 2 */
+        top = bend == 0.0 && q > 0.0 ? shear / q : top;
         if (top > 0.0 && top < l) {
-            most = fmax(most, moment + top * (shear - top * (0.5 * q + growth * top / 6.0)));
+            most = fmax(most, moment + (shear - (0.5 * q + bend * top / 6.0) * top) * top);
         }
-        moment += l * (shear - l * (0.5 * q + growth * l / 6.0));
-        shear -= l * (q + 0.5 * growth * l) - pieces[p].force[2];
+        moment += shear * l - (0.5 * q + bend * l / 6.0) * l * l;
+        shear -= (q + 0.5 * bend * l) * l - pieces[p].force[2];
         most = fmax(most, moment);
     }
     return most / H;
 }
 
-static double line_length(const tw_section *section, const tw_piece *pieces, size_t count)
+static double line_length(const tw_material *material, const tw_piece *pieces, size_t count)
 {
     double length = 0.0;
     for (size_t p = 0; p < count; p++) {
         double part;
-        tw_piece_integrals(&section->material, &pieces[p], NULL, NULL, &part);
+        tw_piece_energy(material, &pieces[p], NULL, NULL, &part);
         length += part;
     }
     return length;
@@ -214,11 +213,23 @@ static void span_tensions(const tw_section *section, size_t span, const tw_piece
     state->slope_max = tw_span_slope(pieces, count);
 }
 
+static double permanent_strain(const tw_section *section, size_t span, double horizontal_N)
+{
+    tw_curve curve;
+    if (!section->permanent) {
+        return 0.0;
+    }
+    tw_material strung = tw_material_after(&section->project->line, section->temperature_degC,
+                                           section->project->stringing.temperature_degC, NULL, &curve);
+    double tension = fmax(horizontal_N, 0.0);
+    return tw_material_stretch(&section->materials[span], tension) - tw_material_stretch(&strung, tension);
+}
+
 void tw_section_span_state(const tw_section *section, size_t span, tw_span_state *state)
 {
     const tw_piece *pieces = section->pieces + section->piece_first[span];
     size_t count = section->piece_first[span + 1] - section->piece_first[span];
-    const tw_material *material = &section->material;
+    const tw_material *material = &section->materials[span];
     const chord_frame frame = chord_of(section, span);
     const double slope = frame.rise / frame.span;
     const double down[3] = {slope * frame.u[0], slope * frame.u[1], -1.0};
@@ -229,13 +240,13 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     state->span_m = frame.span;
     state->rise_m = frame.rise;
     state->natural_length_m = section->length_m[span];
-    state->line_length_m = line_length(section, pieces, count);
+    state->line_length_m = line_length(material, pieces, count);
     span_tensions(section, span, pieces, count, &frame, state);
     state->sag_m = fmax(0.0, tw_span_extreme(material, pieces, count, down, frame.start, &at));
     const tw_piece *piece = piece_within(section, span, &at);
     tw_piece_position(material, piece, at, position);
     state->sag_station_m = position[0];
-    state->slant_sag_m = slant_sag(section, pieces, count, &frame);
+    state->slant_sag_m = slant_sag(material, pieces, count, &frame);
     state->blowout_m = fmax(0.0, fmax(tw_span_extreme(material, pieces, count, left, frame.start, &at),
                                       tw_span_extreme(material, pieces, count, right, frame.start, &at)));
     tw_span_extreme(material, pieces, count, fall, frame.start, &at);
@@ -243,6 +254,7 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     tw_piece_position(material, piece, at, position);
     state->low_station_m = position[0];
     state->low_elevation_m = position[2];
+    state->permanent_strain = permanent_strain(section, span, state->horizontal_tension_N);
     state->small_deflection_sag_m = small_deflection_sag(pieces, count, section->length_m[span], frame.span,
                                                          hypot(frame.span, frame.rise), state->horizontal_tension_N);
 }
@@ -265,11 +277,12 @@ void tw_section_support_state(const tw_section *section, size_t support, tw_supp
 double tw_section_stored(const tw_section *section)
 {
     double total = 0.0;
-    for (size_t p = 0; p < section->piece_count; p++) {
-        const tw_piece *piece = &section->pieces[p];
-        double stored;
-        tw_piece_integrals(&section->material, piece, NULL, &stored, NULL);
-        total += stored;
+    for (size_t k = 0; k < section->span_count; k++) {
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            double stored;
+            tw_piece_energy(&section->materials[k], &section->pieces[p], NULL, &stored, NULL);
+            total += stored;
+        }
     }
     return total;
 }

@@ -2,7 +2,7 @@
 
 #include <math.h>
 
-#include "span_ramp.h"
+#include "span_curved.h"
 #include "vector.h"
 
 /* A piece resolved along its load: t = a e + b with b normal to e. */
@@ -104,6 +104,15 @@ void tw_piece_displacement(const tw_material *material, const double tension[3],
         flexibility[3] += compliance * length;
         flexibility[5] += compliance * length;
     }
+    if (material->curve) {
+        const tw_stretch_of_line all = {tension, load, NULL, length};
+        tw_curved_integrals beyond;
+        tw_piece_integrate(material, &all, flexibility != NULL, &beyond);
+        tw_axpy(displacement, 1.0, beyond.displacement, displacement);
+        for (int i = 0; flexibility && i < 6; i++) {
+            flexibility[i] += beyond.flexibility[i];
+        }
+    }
 }
 
 void tw_piece_energies(const tw_material *material, const double tension[3], const double load[3], double length,
@@ -120,43 +129,36 @@ void tw_piece_energies(const tw_material *material, const double tension[3], con
         second = length * ((r.a0 * r.a0 + r.a0 * r.a1 + r.a1 * r.a1) / 3.0 + r.h2);
     }
     double stored = 0.5 * second / material->stiffness_N;
+    tw_curved_integrals beyond = {.length_m = 0.0};
+    if (material->curve && length > 0.0) {
+        const tw_stretch_of_line all = {tension, load, NULL, length};
+        tw_piece_integrate(material, &all, 0, &beyond);
+    }
     if (conjugate_J) {
-        *conjugate_J = unit * first + stored;
+        *conjugate_J = unit * first + stored + beyond.conjugate_J;
     }
     if (stored_J) {
-        *stored_J = stored;
+        *stored_J = stored + beyond.stored_J;
     }
     if (line_length_m) {
-        *line_length_m = unit * length + first / material->stiffness_N;
+        *line_length_m = unit * length + first / material->stiffness_N + beyond.length_m;
     }
 }
 
-void tw_piece_part(const tw_material *material, const tw_piece *piece, double from, double length,
-                   double displacement[3], double flexibility[6])
+int tw_piece_varies(const tw_piece *piece)
 {
-    if (tw_span_ramp_is(piece)) {
-        tw_span_ramp_part(material, piece, from, length, displacement, flexibility);
-        return;
-    }
-    double tension[3];
-    tw_axpy(piece->tension, -from, piece->load, tension);
-    tw_piece_displacement(material, tension, piece->load, length, displacement, flexibility);
+    return piece->ramp[0] != 0.0 || piece->ramp[1] != 0.0 || piece->ramp[2] != 0.0;
 }
 
-void tw_piece_integrals(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
-                        double *line_length_m)
+void tw_piece_load(const tw_piece *piece, double s, double load[3])
 {
-    if (tw_span_ramp_is(piece)) {
-        tw_span_ramp_integrals(material, piece, conjugate_J, stored_J, line_length_m);
-        return;
-    }
-    tw_piece_energies(material, piece->tension, piece->load, piece->length_m, conjugate_J, stored_J, line_length_m);
+    tw_axpy(piece->load, s, piece->ramp, load);
 }
 
 void tw_piece_total(const tw_piece *piece, double total[3])
 {
     for (int i = 0; i < 3; i++) {
-        total[i] = piece->length_m * (piece->load[i] + 0.5 * piece->length_m * piece->ramp[i]) + piece->force[i];
+        total[i] = piece->length_m * piece->load[i] + 0.5 * piece->length_m * piece->length_m * piece->ramp[i];
     }
 }
 
@@ -166,23 +168,77 @@ void tw_piece_tension(const tw_piece *piece, double s, double tension[3])
     tw_axpy(tension, -0.5 * s * s, piece->ramp, tension);
 }
 
+void tw_piece_ahead(const tw_material *material, const tw_piece *piece, double s, double length, double displacement[3],
+                    double flexibility[6])
+{
+    double tension[3], load[3];
+    tw_piece_tension(piece, s, tension);
+    tw_piece_load(piece, s, load);
+    if (!tw_piece_varies(piece) || !(length > 0.0)) {
+        tw_piece_displacement(material, tension, load, length, displacement, flexibility);
+        return;
+    }
+    const tw_stretch_of_line all = {tension, load, piece->ramp, length};
+    tw_curved_integrals whole;
+    tw_piece_integrate(material, &all, flexibility != NULL, &whole);
+    tw_copy(whole.displacement, displacement);
+    for (int i = 0; flexibility && i < 6; i++) {
+        flexibility[i] = whole.flexibility[i];
+    }
+}
+
+void tw_piece_energy(const tw_material *material, const tw_piece *piece, double *conjugate_J, double *stored_J,
+                     double *line_length_m)
+{
+    if (!tw_piece_varies(piece)) {
+        tw_piece_energies(material, piece->tension, piece->load, piece->length_m, conjugate_J, stored_J, line_length_m);
+        return;
+    }
+    const tw_stretch_of_line all = {piece->tension, piece->load, piece->ramp, piece->length_m};
+    tw_curved_integrals whole = {.length_m = 0.0};
+    tw_piece_integrate(material, &all, 0, &whole);
+    if (conjugate_J) {
+        *conjugate_J = whole.conjugate_J;
+    }
+    if (stored_J) {
+        *stored_J = whole.stored_J;
+    }
+    if (line_length_m) {
+        *line_length_m = whole.length_m;
+    }
+}
+
 void tw_piece_position(const tw_material *material, const tw_piece *piece, double s, double position[3])
 {
     double displacement[3];
-    tw_piece_part(material, piece, 0.0, s, displacement, NULL);
+    tw_piece_ahead(material, piece, 0.0, s, displacement, NULL);
     tw_axpy(piece->start, 1.0, displacement, position);
+}
+
+void tw_piece_stationary(const tw_piece *piece, const double direction[3], double places[2])
+{
+    double rest = tw_dot(direction, piece->tension);
+    double rate = tw_dot(direction, piece->load);
+    double bend = tw_dot(direction, piece->ramp);
+    places[0] = rate != 0.0 ? rest / rate : -1.0;
+    places[1] = -1.0;
+    if (bend != 0.0) { /* rest - rate s - bend s^2 / 2 = 0, without cancellation */
+        double root = rate * rate + 2.0 * bend * rest;
+        double q = rate + copysign(sqrt(fmax(root, 0.0)), rate);
+        places[0] = root >= 0.0 && q != 0.0 ? 2.0 * rest / q : -1.0;
+        places[1] = root >= 0.0 ? -q / bend : -1.0;
+    }
+    for (int i = 0; i < 2; i++) {
+        places[i] = places[i] > 0.0 && places[i] < piece->length_m ? places[i] : -1.0;
+    }
 }
 
 int tw_piece_turns(const tw_piece *piece, double *s)
 {
-    if (tw_span_ramp_is(piece)) {
-        static const double ahead[3] = {1.0, 0.0, 0.0};
-        double places[2] = {-1.0, -1.0};
-        int count = tw_span_ramp_stationary(piece, ahead, places);
-        *s = places[0];
-        return count > 0;
-    }
-    *s = piece->load[0] != 0.0 ? piece->tension[0] / piece->load[0] : -1.0;
+    double places[2];
+    const double ahead[3] = {1.0, 0.0, 0.0};
+    tw_piece_stationary(piece, ahead, places);
+    *s = places[0] >= 0.0 ? places[0] : places[1];
     return *s > 0.0 && *s < piece->length_m;
 }
 
@@ -217,7 +273,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
 void tw_span_hang(const tw_material *material, tw_piece *pieces, size_t count, const double start[3],
                   const double pull[3], double end[3], double end_tension[3], double flexibility[6])
 {
-    double step[3], total[3];
+    double step[3];
     double piece_flexibility[6];
     tw_copy(start, end);
     tw_copy(pull, end_tension);
@@ -228,27 +284,14 @@ void tw_span_hang(const tw_material *material, tw_piece *pieces, size_t count, c
         tw_piece *piece = &pieces[k];
         tw_copy(end, piece->start);
         tw_copy(end_tension, piece->tension);
-        tw_piece_part(material, piece, 0.0, piece->length_m, step, flexibility ? piece_flexibility : NULL);
+        tw_piece_ahead(material, piece, 0.0, piece->length_m, step, flexibility ? piece_flexibility : NULL);
         tw_axpy(end, 1.0, step, end);
-        tw_piece_total(piece, total);
-        tw_axpy(end_tension, -1.0, total, end_tension);
+        tw_piece_tension(piece, piece->length_m, end_tension);
+        tw_axpy(end_tension, -1.0, piece->force, end_tension);
         for (int i = 0; flexibility && i < 6; i++) {
             flexibility[i] += piece_flexibility[i];
         }
     }
-}
-
-/* Natural lengths within a piece where direction . t = 0, -1 where there is none; a ramp has up to two. */
-static void stationary(const tw_piece *piece, const double direction[3], double places[2])
-{
-    places[0] = places[1] = -1.0;
-    if (tw_span_ramp_is(piece)) {
-        tw_span_ramp_stationary(piece, direction, places);
-        return;
-    }
-    double rate = tw_dot(direction, piece->load);
-    double s = rate != 0.0 ? tw_dot(direction, piece->tension) / rate : -1.0;
-    places[0] = s > 0.0 && s < piece->length_m ? s : -1.0;
 }
 
 double tw_span_extreme(const tw_material *material, const tw_piece *pieces, size_t count, const double direction[3],
@@ -257,9 +300,8 @@ double tw_span_extreme(const tw_material *material, const tw_piece *pieces, size
     double best = -INFINITY;
     double passed = 0.0;
     for (size_t k = 0; k < count; k++) {
-        double inner[2];
-        stationary(&pieces[k], direction, inner);
-        const double places[4] = {0.0, inner[0], inner[1], pieces[k].length_m};
+        double places[4] = {0.0, -1.0, -1.0, pieces[k].length_m};
+        tw_piece_stationary(&pieces[k], direction, places + 1);
         for (int i = 0; i < 4; i++) {
             if (places[i] < 0.0 || (i == 3 && k + 1 < count)) {
                 continue;
@@ -319,17 +361,20 @@ double tw_span_slope(const tw_piece *pieces, size_t count)
         slope = fmax(slope, slope_of(pieces[k].tension));
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         slope = fmax(slope, slope_of(t));
-        if (tw_span_ramp_is(&pieces[k])) {
-            slope = fmax(slope, tw_span_ramp_slope(&pieces[k]));
-            continue;
-        }
         double inner = slope_stationary(&pieces[k]);
-        if (inner >= 0.0) {
+        if (tw_piece_varies(&pieces[k])) {
+            slope = fmax(slope, tw_piece_most(&pieces[k], slope_of));
+        } else if (inner >= 0.0) {
             tw_piece_tension(&pieces[k], inner, t);
             slope = fmax(slope, slope_of(t));
         }
     }
     return slope;
+}
+
+static double size_of(const double t[3])
+{
+    return tw_norm(t);
 }
 
 double tw_span_tension_max(const tw_piece *pieces, size_t count)
@@ -340,7 +385,9 @@ double tw_span_tension_max(const tw_piece *pieces, size_t count)
         most = fmax(most, tw_norm(pieces[k].tension));
         tw_piece_tension(&pieces[k], pieces[k].length_m, t);
         most = fmax(most, tw_norm(t));
-        most = tw_span_ramp_is(&pieces[k]) ? fmax(most, tw_span_ramp_tension_max(&pieces[k])) : most;
+        if (tw_piece_varies(&pieces[k])) {
+            most = fmax(most, tw_piece_most(&pieces[k], size_of));
+        }
     }
     return most;
 }

@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "hold.h"
+#include "uniform_curved.h"
 #include "uniform.h"
 #include "vector.h"
 
@@ -11,6 +12,7 @@
 typedef struct strung {
     const tw_project *project;
     size_t span_count;
+    tw_material material; /* as strung */
     double *swing;    /* [3 (span_count + 1)] */
     double *length_m; /* [span_count] */
     double *pull;     /* [3 span_count] tension vector at each span's start */
@@ -18,9 +20,12 @@ typedef struct strung {
     double *lifted;   /* [span_count + 1] 1: the line would lift this hanger; kept once found, or it could flip for ever */
 } strung;
 
-static strung strung_on(const tw_project *project, double *length_m, double *work)
+/* curve: room for the law of a curved line, for as long as the strung line is used. */
+static strung strung_on(const tw_project *project, double *length_m, double *work, tw_curve *curve)
 {
+    double reference = project->stringing.temperature_degC;
     strung line = {.project = project, .span_count = project->support_count - 1, .length_m = length_m};
+    line.material = tw_material_after(&project->line, reference, reference, NULL, curve);
     line.swing = work;
     line.pull = work + 3 * project->support_count;
     line.lifted = work + 6 * project->support_count;
@@ -57,8 +62,11 @@ static tw_status lengths_between_clamps(strung *line, double pull_N)
     for (size_t k = 0; k < line->span_count; k++) {
         double run, rise, u[2], v;
         chord_of(line, k, &run, &rise, u);
-        const tw_uniform span = {run, -rise, data->weight_N_per_m, data->stiffness_N, 0.0};
+        const tw_uniform span = {run, -rise, data->weight_N_per_m, line->material.stiffness_N, 0.0};
         tw_status status = tw_uniform_length(&span, pull_N, &line->length_m[k], &v);
+        if (status == TW_OK && line->material.curve) {
+            status = tw_uniform_curved_length(&line->material, &span, pull_N, &line->length_m[k], &v);
+        }
         if (status != TW_OK) {
             return status;
         }
@@ -129,7 +137,8 @@ static tw_status string_to(strung *line, double pull_N)
 
 tw_status tw_stringing_at_pull(const tw_project *project, double pull_N, double *length_m, double *work)
 {
-    strung line = strung_on(project, length_m, work);
+    tw_curve curve;
+    strung line = strung_on(project, length_m, work, &curve);
     return string_to(&line, pull_N);
 }
 
@@ -154,12 +163,11 @@ static double sag_of(const strung *line, size_t span)
     const tw_line *data = &line->project->line;
     double run, rise, u[2], end[3], far[3], at;
     const double zero[3] = {0.0, 0.0, 0.0};
-    const tw_material material = {data->stiffness_N, 0.0};
     tw_piece piece = {.length_m = line->length_m[span], .load = {0.0, 0.0, -data->weight_N_per_m}};
     chord_of(line, span, &run, &rise, u);
     const double down[3] = {rise / run * u[0], rise / run * u[1], -1.0};
-    tw_span_hang(&material, &piece, 1, zero, line->pull + 3 * span, end, far, NULL);
-    return tw_span_extreme(&material, &piece, 1, down, zero, &at);
+    tw_span_hang(&line->material, &piece, 1, zero, line->pull + 3 * span, end, far, NULL);
+    return tw_span_extreme(&line->material, &piece, 1, down, zero, &at);
 }
 
 /* What the rule measures at a pull, less what it asks for; falls with the pull, but for the tension rule. */
@@ -293,7 +301,8 @@ tw_status tw_stringing_by(const tw_project *project, const tw_stringing_way *way
                           double *work)
 {
     const tw_stringing *rule = &project->stringing;
-    strung line = strung_on(project, length_m, work);
+    tw_curve curve;
+    strung line = strung_on(project, length_m, work, &curve);
     line.way = way;
     if (!isnan(*pull_N) || rule->rule == TW_STRING_PULL) {
         *pull_N = isnan(*pull_N) ? rule->value : *pull_N;
@@ -307,7 +316,8 @@ tw_status tw_stringing_by(const tw_project *project, const tw_stringing_way *way
 tw_status tw_stringing_lengths(const tw_project *project, double *length_m, double *pull_N, double *work)
 {
     const tw_stringing *rule = &project->stringing;
-    strung line = strung_on(project, length_m, work);
+    tw_curve curve;
+    strung line = strung_on(project, length_m, work, &curve);
     *pull_N = rule->rule == TW_STRING_PULL ? rule->value : (double)NAN;
     switch (rule->rule) {
     case TW_STRING_PULL: return string_to(&line, rule->value);

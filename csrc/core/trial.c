@@ -31,6 +31,9 @@ tw_trial *tw_trial_create(const tw_project *project)
         || !trial->warm || !trial->at_N || !trial->before_N || !trial->before) {
         goto fail;
     }
+    if (tw_history_needed(project) && !(trial->history = tw_history_create(project))) {
+        goto fail;
+    }
     for (size_t c = 0; c < conditions; c++) {
         trial->sections[c] = tw_section_create(project);
         trial->before[c] = tw_calloc(3 * (project->support_count - 1), sizeof(double));
@@ -54,6 +57,7 @@ void tw_trial_free(tw_trial *trial)
         tw_free(trial->before ? trial->before[c] : NULL);
     }
     tw_pulling_free(trial->pulling);
+    tw_history_free(trial->history);
     tw_section_free(trial->strung);
     tw_section_free(trial->bare);
     tw_free(trial->length_m);
@@ -71,6 +75,9 @@ tw_status tw_trial_string(tw_trial *trial, double pull_N)
 {
     trial->strung_ready = 0;
     trial->bare_condition = TW_NONE;
+    if (trial->history) {
+        trial->history->ready = 0;
+    }
     memset(trial->solved, 0, trial->project->condition_count * sizeof(int));
     trial->pull_N = pull_N;
     if (trial->pulling && !(isnan(pull_N) && trial->project->stringing.rule == TW_STRING_SPAN_LENGTHS)) {
@@ -108,6 +115,20 @@ static int needs_strung(const tw_project *project, size_t condition)
     return 0;
 }
 
+static tw_status live_through(tw_trial *trial, const tw_options *options);
+
+/* What its history has left in the line before a condition. */
+static tw_status bring_to_state(tw_trial *trial, tw_section *section, size_t condition, const tw_options *options)
+{
+    tw_state state = trial->project->conditions[condition].state;
+    if (state == TW_STATE_INITIAL) {
+        return TW_OK;
+    }
+    tw_status status = trial->history->ready ? TW_OK : live_through(trial, options);
+    section->permanent = status == TW_OK ? tw_history_of(trial->history, state) : NULL;
+    return status;
+}
+
 static tw_status solve_into(tw_trial *trial, tw_section *section, size_t condition, const tw_options *options, int warm,
                             int with_addition)
 {
@@ -115,6 +136,10 @@ static tw_status solve_into(tw_trial *trial, tw_section *section, size_t conditi
     tw_status status = TW_OK;
     if (needs_strung(trial->project, condition)) {
         status = tw_trial_strung(trial, options, &strung);
+    }
+    section->permanent = NULL;
+    if (status == TW_OK) {
+        status = bring_to_state(trial, section, condition, options);
     }
     if (status == TW_OK) {
         status = tw_section_hang(section, condition, trial->length_m, strung, with_addition, options, warm);
@@ -153,6 +178,48 @@ tw_status tw_trial_section(tw_trial *trial, size_t condition, const tw_options *
     trial->solved[condition] = status == TW_OK;
     trial->warm[condition] = status != TW_OK ? 0 : warm ? 2 : 1;
     trial->at_N[condition] = trial->pull_N;
+    return status;
+}
+
+/* Settles a condition in the history's own section, whatever its state. */
+static tw_status settle_apart(tw_trial *trial, size_t condition, int creeping, const tw_options *options)
+{
+    const tw_section *strung = NULL;
+    tw_status status = TW_OK;
+    if (condition != TW_NONE && needs_strung(trial->project, condition)) {
+        status = tw_trial_strung(trial, options, &strung);
+    }
+    trial->settles++;
+    return status == TW_OK ? tw_history_settle(trial->history, condition, trial->length_m, strung, creeping, options)
+                           : status;
+}
+
+/* The history: every met condition as strung, those that are wanted so anyhow from where they stand; then creep. */
+static tw_status live_through(tw_trial *trial, const tw_options *options)
+{
+    const tw_project *project = trial->project;
+    const tw_line *line = &project->line;
+    tw_status status = TW_OK;
+    int curved = line->part_count > 0;
+    tw_history_begin(trial->history);
+    for (size_t c = 0; curved && status == TW_OK && c < project->condition_count; c++) {
+        const tw_section *section = trial->history->section;
+        if (!tw_history_met(project, c)) {
+            continue;
+        }
+        status = project->conditions[c].state == TW_STATE_INITIAL ? tw_trial_section(trial, c, options, &section)
+                                                                  : settle_apart(trial, c, 0, options);
+        if (status == TW_OK) {
+            tw_history_meet(trial->history, section, c);
+        }
+    }
+    int creeps = curved && tw_curve_creeps(line);
+    if (status == TW_OK && creeps) {
+        status = settle_apart(trial, project->history.creep_condition, 1, options);
+    }
+    if (status == TW_OK) {
+        tw_history_end(trial->history, creeps);
+    }
     return status;
 }
 

@@ -6,6 +6,7 @@
 #ifndef TW_TRIAL_H
 #define TW_TRIAL_H
 
+#include "history.h"
 #include "limit.h"
 #include "line.h"
 #include "pulling.h"
@@ -27,6 +28,7 @@ typedef struct tw_trial {
     double **before;       /* [condition_count][3 (support_count - 1)] its span pulls; owned */
     tw_section *bare;      /* the condition without its resultant addition, for swing */
     size_t bare_condition; /* which one it holds, or TW_NONE */
+    tw_history *history;   /* NULL where every condition is as strung; owned */
     size_t settles;        /* sections solved so far */
 } tw_trial;
 

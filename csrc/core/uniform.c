@@ -10,7 +10,7 @@ enum { STEPS_MOST = 100 };
 /* End of the span hung with (h, v): across and along the load, with its 2x2 flexibility (hh, hv, vv). */
 static void hang(const tw_uniform *span, double length, double h, double v, double end[2], double flexibility[3])
 {
-    const tw_material material = {span->stiffness_N, span->strain};
+    const tw_material material = {span->stiffness_N, span->strain, NULL};
     const double tension[3] = {h, 0.0, v};
     const double load[3] = {0.0, 0.0, span->weight};
     double displacement[3];
@@ -201,7 +201,7 @@ static int plain_in_range(const tw_plain_span *span)
 
 static void plain_state(const tw_plain_span *span, const double pull[3], tw_plain_state *state)
 {
-    const tw_material material = {span->stiffness_N, span->strain};
+    const tw_material material = {span->stiffness_N, span->strain, NULL};
     const double origin[3] = {0.0, 0.0, 0.0};
     tw_piece piece = {.length_m = span->natural_length_m, .load = {0.0, span->across_N_per_m, -span->weight_N_per_m}};
     double end[3], far[3], at;

@@ -45,7 +45,7 @@ typedef struct settle_run {
 static double residual_allowed(const settle_run *run, const tw_energy_state *state)
 {
     return run->options->residual_relative * state->tension_N +
-           rounding_of_strain * run->section->material.stiffness_N;
+           rounding_of_strain * run->section->stiffness_N;
 }
 
 static int is_balanced(const settle_run *run, const tw_energy_state *state)
@@ -103,7 +103,7 @@ fail:
 /* Factor of the Hessian at best; where the line is slack, with a floor that is raised until it is definite. */
 static tw_status factor(settle_run *run)
 {
-    double stiffness = run->section->material.stiffness_N;
+    double stiffness = run->section->stiffness_N;
     double floor_N = 0.0;
     tw_status status;
     do {

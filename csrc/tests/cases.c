@@ -265,17 +265,18 @@ double case_complementary(tw_section *section, const double *pull)
             size_t first = section->piece_first[j], count = section->piece_first[j + 1] - first;
             double end[3];
             tw_axpy(F, -1.0, pull + 3 * j, F);
-            tw_span_hang(&section->material, section->pieces + first, count, zero, pull + 3 * j, end, behind, NULL);
+            tw_span_hang(&section->materials[j], section->pieces + first, count, zero, pull + 3 * j, end, behind, NULL);
         }
         tw_hold_attachment(support, a);
         tw_axpy(a, -1.0, datum, a);
         lower += tw_dot(F, a) + tw_hold_energy(support, F, section->soft_N);
     }
-    for (size_t p = 0; p < section->piece_count; p++) {
-        const tw_piece *piece = &section->pieces[p];
-        double conjugate;
-        tw_piece_energies(&section->material, piece->tension, piece->load, piece->length_m, &conjugate, NULL, NULL);
-        lower -= conjugate;
+    for (size_t k = 0; k < section->span_count; k++) {
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            double conjugate;
+            tw_piece_energy(&section->materials[k], &section->pieces[p], &conjugate, NULL, NULL);
+            lower -= conjugate;
+        }
     }
     return lower;
 }

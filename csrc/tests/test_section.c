@@ -21,7 +21,7 @@ static void check_equilibrium(const tw_section *s, double tolerance)
             const tw_piece *last = &s->pieces[s->piece_first[j] - 1];
             tw_piece_tension(last, last->length_m, t);
             tw_axpy(sum, -1.0, t, sum);
-            tw_piece_position(&s->material, last, last->length_m, r);
+            tw_piece_position(&s->materials[j - 1], last, last->length_m, r);
             tw_axpy(r, -1.0, s->clamp + 3 * j, r);
             CHECK_NEAR(tw_norm(r), 0.0, tolerance);
             passed += s->length_m[j - 1];

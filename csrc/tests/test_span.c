@@ -6,7 +6,7 @@
 #include "expect.h"
 #include "vector.h"
 
-static const tw_material STEEL = {34.7e6, 4e-4};
+static const tw_material STEEL = {.stiffness_N = 34.7e6, .strain = 4e-4};
 
 typedef struct drawn {
     double tension[3], load[3], length;
@@ -83,7 +83,7 @@ static void test_displacement_and_energies_are_their_integrals(void)
 /* Irvine, Cable Structures (1981), ch. 1 (from memory). */
 static void test_elastic_catenary(void)
 {
-    const tw_material cold = {34.7e6, 0.0};
+    const tw_material cold = {.stiffness_N = 34.7e6};
     const double w = 15.97, EA = 34.7e6, H = 17368.8076566, V = 2401.888, load[3] = {0.0, 0.0, -15.97};
     const double pull[3] = {H, 0.0, -V};
     for (double s = 10.0; s <= 300.0; s += 29.0) {

@@ -18,12 +18,12 @@ from tautwise.limits import LIMITS, BaseLimit
 from tautwise.profile import Ground, csv_ground, point_ground
 from tautwise.reader import ARRAYS, Document
 from tautwise.strict import Refused, described, did_you_mean, nearest, shown
-from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support, Table
+from tautwise.tables import Condition, Crossing, GroundTable, Head, History, Line, Mark, Stringing, Support, Table
 from tautwise.units import quantity
 
 MOST = {"crossing": 2000, "support": 2000, "condition": 500, "mark": 2000, "limit": 500}
 LOADS_MOST = 2000
-TOP_TABLES = ("line", "ground", "stringing")
+TOP_TABLES = ("line", "ground", "stringing", "history")
 TOP_KEYS = (*keys_of(Head), "include", *TOP_TABLES, *ARRAYS)
 
 T = TypeVar("T", bound=Table)
@@ -39,6 +39,7 @@ class Checked:
     ground: Ground | None = None
     ground_given: bool = False
     stringing: Stringing | None = None
+    history: History | None = None
     crossings: list[Crossing | None] = field(default_factory=list)
     supports: list[Support | None] = field(default_factory=list)
     conditions: list[Condition | None] = field(default_factory=list)
@@ -108,6 +109,7 @@ def read_tables(document: Document) -> Checked:
     checked.line = _required(checked, "line", Line, 'weight = "11.9 N/m"')
     checked.stringing = _required(checked, "stringing", Stringing, 'temperature = "15 degC"')
     checked.ground = _ground(checked)
+    checked.history = _history(checked)
     checked.crossings = _array(checked, "crossing", Crossing)
     checked.supports = _array(checked, "support", Support)
     checked.conditions = _array(checked, "condition", Condition)
@@ -227,6 +229,13 @@ def _ground(checked: Checked) -> Ground | None:
         return None
     checked.document.sources.append(source)
     return ground
+
+
+def _history(checked: Checked) -> History | None:
+    raw = checked.document.tables.get("history")
+    if raw is None:
+        return History()
+    return _table(checked, ("history",), History, raw) if _is_table(checked, ("history",), raw) else None
 
 
 def _array(checked: Checked, key: str, model: type[T]) -> list[T | None]:

@@ -27,6 +27,8 @@ _STRINGING_RULES = {
 def file_path(project: Project, core_path: str) -> KeyPath:
     """The key path in the file of a path in the core's problem, such as ``supports[2].hanger_length_m``."""
     parts: list[str | int] = []
+    if core_path.startswith("parts["):
+        return _curve(project, core_path)
     for name, index in re.findall(r"([A-Za-z_0-9]+)(?:\[([0-9]+)\])?", core_path):
         if name == "loads" and not parts and index:
             parts += _load(project, int(index))
@@ -45,6 +47,19 @@ def _key(name: str, inside: bool) -> tuple[str, ...]:
         if key.startswith(prefix):
             return (*tables, key if prefix == "air_" else key.removeprefix(prefix))
     return (key,)
+
+
+_CURVE_KEYS = {"loading_N": "initial", "creep_N": "creep", "final_stiffness_N": "final_modulus"}
+
+
+def _curve(project: Project, core_path: str) -> KeyPath:
+    """The core numbers the parts of a curved line."""
+    given = [key for key in ("curve", "core", "outer") if getattr(project.line, key) is not None]
+    found = re.fullmatch(r"parts\[([0-9]+)\]\.(\w+)", core_path)
+    if found is None:
+        return ("line",)
+    key = _CURVE_KEYS.get(found[2], _UNIT.sub("", found[2]))
+    return ("line", given[int(found[1])], key)
 
 
 def _load(project: Project, index: int) -> KeyPath:

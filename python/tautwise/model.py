@@ -32,17 +32,28 @@ from tautwise.plausible import warnings_of
 from tautwise.profile import Ground
 from tautwise.reader import Document, Source, read_project
 from tautwise.rules import line_rules, place_rules, stringing_rules, support_rules
+from tautwise.rules_curves import curve_rules, history_rules
 from tautwise.rules_loading import limit_rules, mark_rules
 from tautwise.rules_loads import condition_rules
 from tautwise.strict import described, did_you_mean, shown
-from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
+from tautwise.tables import Condition, Crossing, History, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of
 
 if TYPE_CHECKING:
     from tautwise.results import CrewSheet, Equilibrium, PullWindow, VetReport
     from tautwise.solve_sheet import Temperatures
 
-RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
+RULES = (
+    line_rules,
+    curve_rules,
+    history_rules,
+    support_rules,
+    place_rules,
+    stringing_rules,
+    condition_rules,
+    mark_rules,
+    limit_rules,
+)
 
 
 class Project(BaseModel):
@@ -56,7 +67,7 @@ class Project(BaseModel):
     Attributes
     ----------
     title: of the project, possibly empty.
-    line, ground (or None), stringing: the tables.
+    line, ground (or None), stringing, history: the tables.
     supports, crossings, conditions, marks, limits: the arrays of tables, in the order of the file.
     source: the project file as the user named it; None for keyword arguments.
     input_sha256: the SHA-256 of the file. With included files or a ground profile: of the lines "HASH  NAME" of all of
@@ -74,6 +85,7 @@ class Project(BaseModel):
     line: Line
     ground: Ground | None
     stringing: Stringing
+    history: History = History()
     crossings: tuple[Crossing, ...]
     supports: tuple[Support, ...]
     conditions: tuple[Condition, ...]
@@ -198,7 +210,18 @@ class Project(BaseModel):
 Project.__signature__ = inspect.Signature(  # the keys of a file, which are not the fields of the model
     [
         inspect.Parameter(key, inspect.Parameter.KEYWORD_ONLY, default=None, annotation=Any)
-        for key in ("title", "line", "ground", "crossing", "support", "stringing", "condition", "mark", "limit")
+        for key in (
+            "title",
+            "line",
+            "ground",
+            "crossing",
+            "support",
+            "stringing",
+            "history",
+            "condition",
+            "mark",
+            "limit",
+        )
     ]
 )
 
@@ -232,6 +255,7 @@ def _values(checked: Checked) -> dict[str, Any]:
         "line": checked.line,
         "ground": checked.ground,
         "stringing": checked.stringing,
+        "history": checked.history,
         "crossings": tuple(checked.crossings),
         "supports": tuple(checked.supports),
         "conditions": tuple(checked.conditions),

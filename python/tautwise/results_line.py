@@ -60,6 +60,7 @@ class SpanState(Record):
     blowout_m: greatest horizontal distance from the vertical plane of the chord.
     low_point: lowest point between the clamps.
     slope_max: greatest rise over run of the line.
+    permanent_strain: what the line's history has added to its strain at this temperature and horizontal tension.
     small_deflection_sag_m: sag of a taut string under the same loads and horizontal tension, the usual shortcut.
     small_deflection_off_percent: how far that is off the exact sag; None where there is no sag.
     """
@@ -84,6 +85,7 @@ class SpanState(Record):
     slope_max: float | None
     small_deflection_sag_m: float | None
     small_deflection_off_percent: float | None
+    permanent_strain: float = 0.0
 
     @property
     def name(self) -> str:
@@ -190,6 +192,7 @@ class Equilibrium(Record):
     spans: tuple[SpanState, ...]
     supports: tuple[SupportState, ...]
     marks: tuple[MarkState, ...]
+    state: str = "initial"
     origin: Origin | None = field(default=None, compare=False, repr=False)
 
     @classmethod

@@ -7,6 +7,7 @@ from itertools import pairwise
 from tautwise.check import Checked, at_most_one, exactly_one
 from tautwise.faults import example_of
 from tautwise.limits import GROUND, TensionLimit
+from tautwise.rules_curves import expands, is_curved
 from tautwise.strict import did_you_mean, shown
 from tautwise.tables import CLAMPED, HOLDS, OVER_SHEAVES, Condition, Line, Stringing, Support
 
@@ -28,7 +29,8 @@ def line_rules(checked: Checked) -> None:
         return
     exactly_one(checked, ("line",), Line, ("weight", "mass"))
     raw = checked.raw("line")
-    if exactly_one(checked, ("line",), Line, ("stiffness", "modulus")) == "modulus" and raw.get("area") is None:
+    given = None if is_curved(raw) else exactly_one(checked, ("line",), Line, ("stiffness", "modulus"))
+    if given == "modulus" and raw.get("area") is None:
         checked.fault(("line",), "modulus is given without area", "both, or stiffness", 'area = "150 mm^2"')
     _needed_by_conditions(checked)
     for number, limit in enumerate(checked.limits):
@@ -116,7 +118,7 @@ def _needed_by_conditions(checked: Checked) -> None:
     if sleeved is not None and raw.get("diameter") is None:
         problem = f'diameter is missing, on which the ice or wind of "{shown(sleeved)}" acts'
         checked.fault(("line",), problem, "the bare outside diameter", example_of(Line, "diameter"))
-    if checked.stringing is None or raw.get("expansion") is not None:
+    if checked.stringing is None or expands(raw):
         return
     strung = checked.stringing.temperature_degC
     warmer = next((one.name for one in conditions if one.temperature_degC != strung), None)

@@ -8,10 +8,17 @@ from pydantic import Field
 
 from tautwise.check import MOST
 from tautwise.limits import Limit
-from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support
+from tautwise.tables import Condition, Crossing, GroundTable, Head, History, Line, Mark, Stringing, Support
 
 _WEIGHT = {"oneOf": [{"required": ["weight"]}, {"required": ["mass"]}]}
-_STIFFNESS = {"oneOf": [{"required": ["stiffness"]}, {"required": ["modulus", "area"]}]}
+_STIFFNESS = {
+    "oneOf": [
+        {"required": ["stiffness"]},
+        {"required": ["modulus", "area"]},
+        {"required": ["curve"]},
+        {"required": ["core", "outer"]},
+    ]
+}
 _GIVEN_ONCE = {
     "Line": {"allOf": [_WEIGHT, _STIFFNESS]},
     "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
@@ -34,6 +41,7 @@ class ProjectFile(Head):
     crossing: tuple[Crossing, ...] = Field((), max_length=MOST["crossing"])
     support: tuple[Support, ...] = Field(min_length=2, max_length=MOST["support"])
     stringing: Stringing
+    history: History | None = None
     condition: tuple[Condition, ...] = Field(min_length=1, max_length=MOST["condition"])
     mark: tuple[Mark, ...] = Field((), max_length=MOST["mark"])
     limit: tuple[Limit, ...] = Field((), max_length=MOST["limit"])

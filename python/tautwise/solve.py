@@ -255,7 +255,7 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
 def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
     """First and last station, m, of the line as strung, bare: posts lean."""
     bare = {"temperature_degC": project.stringing.temperature_degC}
-    problem = {**project.to_core(), "conditions": [bare], "marks": [], "limits": []}
+    problem = {**project.to_core(), "conditions": [bare], "marks": [], "limits": [], "history": None}
     with errors_of(project, pull, AS_STRUNG):
         supports = _core.Project(problem).settle(0, pull=pull)["supports"]
     if not supports:

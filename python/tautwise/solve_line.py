@@ -41,13 +41,13 @@ def equilibrium_of(project: Project, index: int, found: Mapping[str, Any], origi
     text = "settled within tolerance" if found["status"] == "ok" else found["status_text"]
     head = (condition.name, found["status"], text, condition.temperature_degC)
     if found["status"] != "ok":
-        return Equilibrium.failed(head[0], head[3], head[1], head[2], **energies, **counts)
+        return Equilibrium.failed(head[0], head[3], head[1], head[2], state=condition.state, **energies, **counts)
     names = [support.name for support in project.supports]
     spans = tuple(_span(names[number], names[number + 1], state) for number, state in enumerate(found["spans"]))
     supports = tuple(_support(name, state) for name, state in zip(names, found["supports"], strict=True))
     return Equilibrium(
         head[0], SETTLED, head[2], head[3], **energies, **counts,
-        spans=spans, supports=supports, marks=_marks(project, index, found), origin=origin,
+        state=condition.state, spans=spans, supports=supports, marks=_marks(project, index, found), origin=origin,
     )  # fmt: skip
 
 
@@ -78,6 +78,7 @@ def _span(start: str, end: str, state: Mapping[str, Any]) -> SpanState:
         low_point=None if low[0] is None or low[1] is None else LowPoint(low[0], low[1]),
         slope_max=finite(state["slope_max"]),
         small_deflection_sag_m=small,
+        permanent_strain=float(state["permanent_strain"]),
         small_deflection_off_percent=_off_percent(small, float(state["sag_m"]), float(state["span_m"])),
     )
 

@@ -11,6 +11,7 @@ from typing import Annotated, Any
 
 from pydantic import BaseModel, ConfigDict, Field
 
+from tautwise.curves import Stresses, force_terms, steepest
 from tautwise.fields import (
     Allowance,
     AlongLine,
@@ -27,8 +28,10 @@ from tautwise.fields import (
     Direction,
     Drag,
     DragArea,
+    Duration,
     Elevation,
     Expansion,
+    Exponent,
     Factor,
     Friction,
     HangerLength,
@@ -47,6 +50,8 @@ from tautwise.fields import (
     SomeForcePerLength,
     Speed,
     SpringRate,
+    Strain,
+    StrainRange,
     Temperature,
     Thickness,
     Tolerance,
@@ -58,6 +63,9 @@ HOLDS = ("anchor", "hanger", "sheave", "post")
 CLAMPED, OVER_SHEAVES = METHODS = ("clamped", "over sheaves")
 PLUMB, WHERE_IT_LIES = CLIPS = ("plumb", "where it lies")
 
+STATES = ("initial", "final", "after creep")
+SECONDS_PER_HOUR = 3600.0
+
 Hold = Annotated[str, Choice(HOLDS)]
 
 
@@ -67,8 +75,35 @@ class Table(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid", hide_input_in_errors=True)
 
 
+class CreepLaw(Table):
+    """Creep as a strain c t^n that grows with the time t in hours, whatever the tension."""
+
+    coefficient: Strain
+    exponent: Exponent
+    time_s: Duration = Field(alias="time")
+
+
+class Part(Table):
+    """A part of a line with a curved law: stress on `area` against percent of strain, and how it unloads and creeps.
+
+    `initial` is first loading, `creep` what is reached in the end at constant stress, both up to the strain `valid_to`,
+    from where they go on straight; `final_modulus` is that of unloading.
+    """
+
+    initial_Pa: Annotated[tuple[float, ...], Stresses()] = Field(alias="initial")
+    creep_Pa: Annotated[tuple[float, ...], Stresses()] | None = Field(None, alias="creep")
+    final_modulus_Pa: Modulus = Field(alias="final_modulus")
+    valid_to: StrainRange = 0.0045
+    area_m2: Area | None = Field(None, alias="area")
+    expansion_per_K: Expansion | None = Field(None, alias="expansion")
+
+
 class Line(Table):
-    """The line itself, bare: per natural metre at the stringing temperature."""
+    """The line itself, bare: per natural metre at the stringing temperature.
+
+    Its law is linear, by modulus or stiffness; or curved: one `curve`, or a `core` and an `outer` part that share the
+    load until one goes slack.
+    """
 
     name: Name | None = None
     diameter_m: PositiveLength | None = Field(None, alias="diameter")
@@ -79,6 +114,22 @@ class Line(Table):
     given_stiffness_N: AxialStiffness | None = Field(None, alias="stiffness")
     given_expansion_per_K: Expansion | None = Field(None, alias="expansion")
     breaking_strength_N: PositiveForce | None = Field(None, alias="breaking_strength")
+    curve: Part | None = None
+    core: Part | None = None
+    outer: Part | None = None
+    test_temperature_degC: Temperature | None = Field(None, alias="test_temperature")
+    bedding_in: Strain = 0.0
+    creep_strain: Strain | None = None
+    creep_law: CreepLaw | None = None
+
+    @property
+    def parts(self) -> tuple[Part, ...]:
+        """The parts of a curved law; none on a linear line."""
+        return tuple(part for part in (self.curve, self.core, self.outer) if part is not None)
+
+    def part_area_m2(self, part: Part) -> float:
+        """The area that a part's stresses are on, m2."""
+        return part.area_m2 or self.area_m2 or math.nan
 
     @property
     def weight_N_per_m(self) -> float:
@@ -89,10 +140,16 @@ class Line(Table):
 
     @property
     def stiffness_N(self) -> float:
-        """EA, N; from modulus and area where these are given."""
+        """EA, N; from modulus and area where these are given; of a curved law its greatest slope."""
         if self.given_stiffness_N is not None:
             return self.given_stiffness_N
+        if self.parts:
+            return math.fsum(self._steepest_N(part) for part in self.parts)
         return (self.modulus_Pa or math.nan) * (self.area_m2 or math.nan)
+
+    def _steepest_N(self, part: Part) -> float:
+        area = self.part_area_m2(part)
+        return max(part.final_modulus_Pa * area, steepest(force_terms(part.initial_Pa, area), part.valid_to))
 
     @property
     def expansion_per_K(self) -> float:
@@ -251,11 +308,23 @@ class Condition(Table):
 
     name: Name
     temperature_degC: Temperature = Field(alias="temperature")
+    state: Annotated[str, Choice(STATES)] = "initial"
     ice: Ice | None = None
     wind: Wind | None = None
     resultant_addition_N_per_m: SomeForcePerLength = Field(0.0, alias="resultant_addition")
     factors: Factors = Factors()
     loads: tuple[Load, ...] = Field((), alias="load")
+
+
+class History(Table):
+    """What the line has been through before a condition in the state final or after creep.
+
+    `conditions` are those it has met (default: all), `creep_condition` is the everyday one (default: bare, at the
+    stringing temperature).
+    """
+
+    conditions: Annotated[tuple[Name, ...], Field(min_length=1)] | None = None
+    creep_condition: Name | None = None
 
 
 class Mark(Table):

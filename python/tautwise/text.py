@@ -99,7 +99,17 @@ def condition_text(found: Equilibrium, project: Project, ink: Ink) -> list[str]:
     lines = [head, *_span_lines(found), "", *_support_lines(found.supports)]
     if found.marks:
         lines += ["", *_mark_lines(found)]
-    return [*lines, "", f"  {_bracket_words(found)}"]
+    return [*lines, "", *_stretch_lines(found), f"  {_bracket_words(found)}"]
+
+
+def _stretch_lines(found: Equilibrium) -> list[str]:
+    """What history has done to the line, span by span."""
+    if found.state == "initial":
+        return []
+    longer = [100.0 * span.permanent_strain for span in found.spans]
+    least, most = f"{min(longer):.4f}", f"{max(longer):.4f}"
+    much = most if least == most else f"{least} to {most}"
+    return [f"  Stretched for good: {much} % longer at this tension and temperature than as strung."]
 
 
 def _strung_lines(report: SettleReport, project: Project) -> list[str]:

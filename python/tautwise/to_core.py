@@ -8,9 +8,10 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from tautwise.curves import force_terms
 from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SupportLoadLimit, SwingLimit
 from tautwise.rules_loading import has_capacity
-from tautwise.tables import PLUMB, Support
+from tautwise.tables import PLUMB, SECONDS_PER_HOUR, Line, Part, Support
 from tautwise.to_core_loads import condition_of
 
 if TYPE_CHECKING:
@@ -28,6 +29,7 @@ def problem_of(project: Project) -> dict[str, Any]:
         "marks": [_place(mark.at_m, mark.at_length_m) for mark in project.marks],
         "limits": [_limit(project, limit) for limit in project.limits],
         "stringing": _stringing(project),
+        "history": _history(project),
     }
 
 
@@ -39,6 +41,53 @@ def _line(project: Project) -> dict[str, Any]:
         "stiffness_N": line.stiffness_N,
         "expansion_per_K": line.expansion_per_K,
         "breaking_strength_N": line.breaking_strength_N,
+        **_stretching(line),
+    }
+
+
+def _stretching(line: Line) -> dict[str, Any]:
+    """What a linear line that never stretches for good has not."""
+    core: dict[str, Any] = {}
+    if line.parts:
+        core["parts"] = [_part(line, part) for part in line.parts]
+    if line.test_temperature_degC is not None:
+        core["test_temperature_degC"] = line.test_temperature_degC
+    if line.bedding_in:
+        core["bedding_in_strain"] = line.bedding_in
+    return core | _creep(line)
+
+
+def _part(line: Line, part: Part) -> dict[str, Any]:
+    area = line.part_area_m2(part)
+    return {
+        "loading_N": force_terms(part.initial_Pa, area),
+        "creep_N": None if part.creep_Pa is None else force_terms(part.creep_Pa, area),
+        "valid_to": part.valid_to,
+        "final_stiffness_N": part.final_modulus_Pa * area,
+        "expansion_per_K": line.expansion_per_K if part.expansion_per_K is None else part.expansion_per_K,
+    }
+
+
+def _creep(line: Line) -> dict[str, Any]:
+    """A given strain is the power law with the exponent 0."""
+    if line.creep_strain:
+        return {"creep_coefficient": line.creep_strain, "creep_exponent": 0.0, "creep_hours": 1.0}
+    law = line.creep_law
+    if law is None:
+        return {}
+    hours = law.time_s / SECONDS_PER_HOUR
+    return {"creep_coefficient": law.coefficient, "creep_exponent": law.exponent, "creep_hours": hours}
+
+
+def _history(project: Project) -> dict[str, Any] | None:
+    if all(condition.state == "initial" for condition in project.conditions):
+        return None
+    names = [condition.name for condition in project.conditions]
+    met = project.history.conditions
+    everyday = project.history.creep_condition
+    return {
+        "met": [met is None or name in met for name in names],
+        "creep_condition": None if everyday is None else names.index(everyday),
     }
 
 

@@ -21,6 +21,7 @@ def condition_of(project: Project, condition: Condition) -> dict[str, Any]:
     ice, wind, factors = condition.ice, condition.wind, condition.factors
     core: dict[str, Any] = {
         "temperature_degC": condition.temperature_degC,
+        "state": condition.state,
         "ice_thickness_m": ice.thickness_m if ice else 0.0,
         "ice_density_kg_per_m3": ice.density_kg_per_m3 if ice else _ICE_DENSITY_UNUSED,
         "wind_pressure_Pa": wind.pressure_Pa if wind else 0.0,

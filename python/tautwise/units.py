@@ -86,12 +86,12 @@ DIMENSIONS: Mapping[str, Dimension] = {
         _dimension("degC", "a temperature", "-20 degC", kelvin=1),
         _dimension("1/K", "an expansion per degree", "11.5e-6 / K", kelvin=-1),
         _dimension("rad", "an angle", "20 deg", radian=1),
+        _dimension("s", "a time", "10 year", second=1),
         _dimension("1", "a ratio", "3 %"),
     )
 }
 _OTHER_DIMENSIONS = (
     _dimension("kg", "a mass", "1 kg", kilogram=1),
-    _dimension("s", "a time", "1 s", second=1),
     _dimension("m^3", "a volume", "1 m^3", meter=3),
     _dimension("N*m", "a moment", "1 N*m", kilogram=1, meter=2, second=-2),
     _dimension("m/s^2", "an acceleration", "1 m/s^2", meter=1, second=-2),

@@ -16,6 +16,8 @@ LOADS_NAMED = 3
 def condition_words(condition: Condition) -> str:
     """Temperature and loads of a condition."""
     words = [f"{condition.temperature_degC:.4g} degC"]
+    if condition.state != "initial":
+        words.append({"final": "final state"}.get(condition.state, condition.state))
     if condition.ice and condition.ice.thickness_m:
         words.append(f"{1e3 * condition.ice.thickness_m:.4g} mm of ice{_pattern_words(condition.ice.pattern)}")
     if condition.wind and condition.wind.pressure_Pa:

@@ -1,0 +1,120 @@
+#include "history.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "alloc.h"
+
+int tw_history_needed(const tw_project *project)
+{
+    for (size_t c = 0; c < project->condition_count; c++) {
+        if (project->conditions[c].state != TW_STATE_INITIAL) {
+            return 1;
+        }
+    }
+    return 0;
+}
+
+int tw_history_met(const tw_project *project, size_t condition)
+{
+    return !project->history.met || project->history.met[condition];
+}
+
+tw_history *tw_history_create(const tw_project *project)
+{
+    tw_history *history = tw_calloc(1, sizeof *history);
+    if (!history) {
+        return NULL;
+    }
+    history->project = project;
+    history->section = tw_section_create(project);
+    history->heaviest = tw_calloc(project->support_count - 1, sizeof *history->heaviest);
+    history->crept = tw_calloc(project->support_count - 1, sizeof *history->crept);
+    if (!history->section || !history->heaviest || !history->crept) {
+        tw_history_free(history);
+        return NULL;
+    }
+    return history;
+}
+
+void tw_history_free(tw_history *history)
+{
+    if (history) {
+        tw_section_free(history->section);
+        tw_free(history->heaviest);
+        tw_free(history->crept);
+        tw_free(history);
+    }
+}
+
+void tw_history_begin(tw_history *history)
+{
+    history->ready = 0;
+    for (size_t k = 0; k + 1 < history->project->support_count; k++) {
+        history->heaviest[k] = tw_permanent_none();
+    }
+}
+
+tw_status tw_history_settle(tw_history *history, size_t condition, const double *length_m, const tw_section *strung,
+                            int creeping, const tw_options *options)
+{
+    history->section->creeping = creeping;
+    tw_status status = tw_section_load(history->section, condition, length_m, strung, 1);
+    return status == TW_OK ? tw_section_solve(history->section, options, 0) : status;
+}
+
+static double mean_stretch(const tw_section *section, size_t span)
+{
+    double length = 0.0;
+    for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
+        double part;
+        tw_piece_energy(&section->materials[span], &section->pieces[p], NULL, NULL, &part);
+        length += part;
+    }
+    return length / section->length_m[span];
+}
+
+static void take(tw_permanent *permanent, const tw_section *section, double temperature_degC, int creeping)
+{
+    const tw_line *line = &section->project->line;
+    double reference = section->project->stringing.temperature_degC;
+    for (size_t k = 0; k < section->span_count; k++) {
+        double stretch = mean_stretch(section, k);
+        for (size_t i = 0; i < line->part_count; i++) {
+            double strain = tw_part_strain(line, i, stretch, temperature_degC, reference);
+            tw_permanent_take(&permanent[k], line, i, strain, creeping);
+        }
+    }
+}
+
+void tw_history_meet(tw_history *history, const tw_section *section, size_t condition)
+{
+    take(history->heaviest, section, history->project->conditions[condition].temperature_degC, 0);
+}
+
+void tw_history_end(tw_history *history, int crept)
+{
+    const tw_project *project = history->project;
+    size_t everyday = project->history.creep_condition;
+    size_t spans = project->support_count - 1;
+    memcpy(history->crept, history->heaviest, spans * sizeof *history->crept);
+    if (crept) {
+        take(history->crept, history->section,
+             everyday == TW_NONE ? project->stringing.temperature_degC : project->conditions[everyday].temperature_degC, 1);
+    }
+    for (size_t k = 0; k < spans; k++) {
+        history->heaviest[k].strain = project->line.bedding_in_strain;
+        history->crept[k].strain = project->line.bedding_in_strain + tw_curve_given_creep(&project->line);
+    }
+    history->ready = 1;
+}
+
+const tw_permanent *tw_history_of(const tw_history *history, tw_state state)
+{
+    switch (state) {
+    case TW_STATE_INITIAL: return NULL;
+    case TW_STATE_FINAL: return history->heaviest;
+    case TW_STATE_AFTER_CREEP: return history->crept;
+    }
+    return NULL;
+}
