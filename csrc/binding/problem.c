@@ -6,8 +6,10 @@
 
 #include "check.h"
 #include "fields.h"
+#include "route.h"
 
 static const char *const hold_names[] = {"anchor", "hanger", "sheave", "post", NULL};
+static const char *const route_names[] = {"straight", "turning", NULL};
 static const char *const place_names[] = {"whole", "station", "length", NULL};
 static const char *const frame_names[] = {"span", "route", NULL};
 static const char *const kind_names[] = {"clearance", "tension", "support_load", "uplift", "swing", "sag",
@@ -16,7 +18,7 @@ static const char *const direction_names[] = {"along", "across", "down", "up", "
 static const char *const rule_names[] = {"pull", "tension", "sag", "total_length", "span_lengths", "none", NULL};
 
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
-                                           "stringing", NULL};
+                                           "stringing", "route", NULL};
 static const char *const support_keys[] = {"hold", NULL};
 static const char *const condition_keys[] = {"loads", NULL};
 static const char *const load_keys[] = {"is_point", "place", "frame", "vector", NULL};
@@ -27,6 +29,7 @@ static const char *const stringing_keys[] = {"rule", "index", "lengths_m", NULL}
 void tw_problem_free(problem *in)
 {
     PyMem_Free(in->supports);
+    PyMem_Free(in->route);
     PyMem_Free(in->ground);
     PyMem_Free(in->crossings);
     PyMem_Free(in->conditions);
@@ -125,6 +128,21 @@ static int read_supports(PyObject *dict, problem *out)
     out->project.supports = out->supports;
     out->project.support_count = count;
     return 0;
+}
+
+/* A turning route: station_m and offset_m of the supports are plan coordinates, and the stations are measured here. */
+static int read_route(PyObject *dict, problem *out)
+{
+    int route = tw_fields_choice(dict, "route", route_names, 0);
+    if (route == 1) {
+        out->route = room(out->project.support_count, sizeof(double));
+        if (!out->route) {
+            return -1;
+        }
+        tw_route_measure(out->supports, out->project.support_count, out->route);
+        out->project.route_station_m = out->route;
+    }
+    return route < 0 ? -1 : 0;
 }
 
 static PyArrayObject *vector_of(PyObject *dict, const char *key)
@@ -436,7 +454,7 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
         tw_problem_raise("supports", TW_NONE, "count", "at least two supports", range_error);
         return -1;
     }
-    if (read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
+    if (read_route(dict, out) < 0 || read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
         || read_marks(dict, out) < 0 || read_limits(dict, out) < 0
         || read_part(dict, "stringing", read_rule, out) < 0) {
         return -1;

@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "route.h"
 #include "sum.h"
 #include "vector.h"
 
@@ -67,40 +68,74 @@ static double element_evaluate(const tw_energy *energy, size_t element, const do
     return 0.5 * length * stored;
 }
 
-/* Growth of a hanger's link beyond its length, without cancellation, and the unit vector along it; returns |c - a|. */
-static double link_over(const tw_energy_hold *hold, const double *d, double *over, double unit[3])
+/* Growth of a link beyond its length, without cancellation, and the unit vector along it; returns |c - a|. */
+static double link_over(const tw_energy_link *link, const double *d, double *over, double unit[3])
 {
-    double link[3];
-    tw_axpy(hold->offset, 1.0, d, link);
-    double length = tw_norm(link);
-    double sum = length + hold->link_m + hold->link_over_m;
-    *over = hold->link_over_m + (2.0 * tw_dot(hold->offset, d) + tw_dot(d, d)) / sum;
+    double way[3];
+    tw_axpy(link->offset, 1.0, d, way);
+    double length = tw_norm(way);
+    double sum = length + link->length_m + link->over_m;
+    *over = link->over_m + (2.0 * tw_dot(link->offset, d) + tw_dot(d, d)) / sum;
     for (int i = 0; i < 3; i++) {
-        unit[i] = length > 0.0 ? link[i] / length : 0.0;
+        unit[i] = length > 0.0 ? way[i] / length : 0.0;
     }
     return length;
+}
+
+/* Energy of a link at displacement d of its clamp; adds its force to g. */
+static double link_evaluate(const tw_energy_link *link, const double *d, double *g)
+{
+    double over, unit[3];
+    link_over(link, d, &over, unit);
+    double force = link->force_N + link->stiffness * over;
+    if (force <= 0.0) {
+        return -0.5 * link->force_N * link->force_N / link->stiffness;
+    }
+    tw_axpy(g, force, unit, g);
+    return over * (link->force_N + 0.5 * link->stiffness * over);
+}
+
+/* How far the springs are moved at displacement d of their clamp, in their axes. */
+static void springs_moved(const tw_energy_hold *hold, const double *d, double own[3])
+{
+    double moved[3];
+    tw_axpy(hold->offset, 1.0, d, moved);
+    tw_route_into_axes(hold->ahead, moved, own);
+}
+
+/* Energy of the springs; adds their force to g. */
+static double springs_evaluate(const tw_energy_hold *hold, const double *d, double *g)
+{
+    double own[3], force[3], stored = 0.0;
+    springs_moved(hold, d, own);
+    for (int i = 0; i < 3; i++) {
+        stored += 0.5 * hold->stiffness[i] * own[i] * own[i];
+        own[i] *= hold->stiffness[i];
+    }
+    tw_route_out_of_axes(hold->ahead, own, force);
+    tw_axpy(g, 1.0, force, g);
+    return stored;
 }
 
 /* Energy of a hold at displacement d of its clamp; adds its force to g. */
 static double hold_evaluate(const tw_energy_hold *hold, const double *d, double *g)
 {
-    double stored = 0.0;
-    if (hold->kind == TW_HOLD_HANGER) {
-        double over, unit[3];
-        link_over(hold, d, &over, unit);
-        double force = hold->link_force_N + hold->link_stiffness * over;
-        if (force <= 0.0) {
-            return -0.5 * hold->link_force_N * hold->link_force_N / hold->link_stiffness;
-        }
-        tw_axpy(g, force, unit, g);
-        return over * (hold->link_force_N + 0.5 * hold->link_stiffness * over);
-    }
-    for (int i = 0; i < 2; i++) {
-        double move = hold->offset[i] + d[i];
-        stored += 0.5 * hold->stiffness[i] * move * move;
-        g[i] += hold->stiffness[i] * move;
+    double stored = springs_evaluate(hold, d, g);
+    for (int i = 0; i < hold->link_count; i++) {
+        stored += link_evaluate(&hold->link[i], d, g);
     }
     return stored;
+}
+
+/* Take the fixed directions out of a clamp's gradient. */
+static void hold_release(const tw_energy_hold *hold, double *g)
+{
+    for (int i = 0; i < 3; i++) {
+        g[i] = hold->fixed[i] ? 0.0 : g[i];
+    }
+    if (hold->guided) {
+        tw_axpy(g, -tw_dot(hold->guide, g), hold->guide, g);
+    }
 }
 
 /* Puts the loads on: adds -load.x to the energy and -load to the gradient. */
@@ -142,9 +177,7 @@ tw_energy_state tw_energy_evaluate(const tw_energy *energy, const double *x, dou
         const tw_energy_hold *hold = &energy->holds[j];
         size_t end = BLOCK * hold->block + 3;
         tw_sum_add(&potential, hold_evaluate(hold, x + end, gradient + end));
-        for (size_t i = 0; i < 3; i++) {
-            gradient[end + i] = hold->fixed[i] ? 0.0 : gradient[end + i];
-        }
+        hold_release(hold, gradient + end);
     }
     memset(gradient, 0, 3 * sizeof(double));
     state.potential_J = tw_sum_value(&potential);
@@ -225,20 +258,41 @@ static void element_scatter(tw_blocktri *matrix, size_t element, const double aa
     }
 }
 
-static void hold_stiffness(const tw_energy_hold *hold, const double *d, double *triangle)
+/* Springs in x, y, up: the along and across rates turned into the plan's axes. */
+static void springs_stiffness(const tw_energy_hold *hold, double stiffness[6])
 {
-    double stiffness[6] = {hold->stiffness[0], 0.0, 0.0, hold->stiffness[1], 0.0, 0.0};
-    if (hold->kind == TW_HOLD_HANGER) {
-        double over, unit[3];
-        double length = link_over(hold, d, &over, unit);
-        double force = hold->link_force_N + hold->link_stiffness * over;
-        if (force > 0.0) {
-            stiffness_along(unit, hold->link_stiffness, length > 0.0 ? force / length : 0.0, stiffness);
-        }
-    }
+    const double *e = hold->ahead, *k = hold->stiffness;
+    stiffness[0] = k[0] * e[0] * e[0] + k[1] * e[1] * e[1];
+    stiffness[1] = (k[0] - k[1]) * e[0] * e[1];
+    stiffness[2] = stiffness[4] = 0.0;
+    stiffness[3] = k[0] * e[1] * e[1] + k[1] * e[0] * e[0];
+    stiffness[5] = k[2];
+}
+
+static void add_stiffness(const double stiffness[6], double *triangle)
+{
     for (int i = 0; i < 3; i++) {
         for (int j = 0; j <= i; j++) {
             triangle[(3 + i) * (4 + i) / 2 + 3 + j] += stiffness[packed[i][j]];
+        }
+    }
+}
+
+static void hold_stiffness(const tw_energy_hold *hold, const double *d, double *triangle)
+{
+    double stiffness[6];
+    if (hold->link_count == 0) {
+        springs_stiffness(hold, stiffness);
+        add_stiffness(stiffness, triangle);
+    }
+    for (int i = 0; i < hold->link_count; i++) {
+        const tw_energy_link *link = &hold->link[i];
+        double over, unit[3];
+        double length = link_over(link, d, &over, unit);
+        double force = link->force_N + link->stiffness * over;
+        if (force > 0.0) {
+            stiffness_along(unit, link->stiffness, length > 0.0 ? force / length : 0.0, stiffness);
+            add_stiffness(stiffness, triangle);
         }
     }
 }
@@ -259,6 +313,37 @@ static void fix_unknown(tw_blocktri *matrix, size_t block, int direction)
     }
 }
 
+/* Cut a direction of a clamp out of the matrix by projecting it: P A P + n n^T with P = I - n n^T, n in the clamp's three. */
+static void fix_direction(tw_blocktri *matrix, size_t block, const double n[3])
+{
+    double *triangle = matrix->diagonal + TW_BLOCKTRI_TRIANGLE * block;
+    double *coupling = matrix->coupling + TW_BLOCKTRI_COUPLING * block;
+    double whole[BLOCK] = {0.0, 0.0, 0.0, n[0], n[1], n[2]}, at[BLOCK];
+    for (int i = 0; i < BLOCK; i++) {
+        at[i] = 0.0;
+        for (int j = 3; j < BLOCK; j++) {
+            int row = i > j ? i : j, column = i > j ? j : i;
+            at[i] += triangle[row * (row + 1) / 2 + column] * whole[j];
+        }
+    }
+    double both = tw_dot(n, at + 3) + 1.0;
+    for (int i = 0; i < BLOCK; i++) {
+        for (int j = 0; j <= i; j++) {
+            triangle[i * (i + 1) / 2 + j] += both * whole[i] * whole[j] - whole[i] * at[j] - at[i] * whole[j];
+        }
+    }
+    for (int j = 0; j < 3; j++) {
+        double part = n[0] * coupling[9 + j] + n[1] * coupling[12 + j] + n[2] * coupling[15 + j];
+        for (int i = 0; i < 3; i++) {
+            coupling[9 + 3 * i + j] -= n[i] * part;
+        }
+    }
+    for (int k = 0; k < BLOCK && block + 1 < matrix->block_count; k++) {
+        double *row = coupling + TW_BLOCKTRI_COUPLING + 3 * k;
+        tw_axpy(row, -tw_dot(n, row), n, row);
+    }
+}
+
 void tw_energy_hessian(const tw_energy *energy, const double *x, double floor_N, tw_blocktri *matrix)
 {
     double aa[6], ab[6], bb[6];
@@ -275,6 +360,9 @@ void tw_energy_hessian(const tw_energy *energy, const double *x, double floor_N,
             if (hold->fixed[i]) {
                 fix_unknown(matrix, hold->block, i);
             }
+        }
+        if (hold->guided) {
+            fix_direction(matrix, hold->block, hold->guide);
         }
     }
 }
@@ -346,17 +434,18 @@ static void hold_bound(const tw_energy *energy, const tw_energy_hold *hold, cons
 {
     const double *d = x + BLOCK * hold->block + 3;
     const double *load = energy->load + BLOCK * hold->block + 3;
-    double place[3], over, unit[3];
+    double place[3], own[3], over, unit[3];
     tw_axpy(hold->place, 1.0, d, place);
     tw_sum_add(route, tw_dot(load, place));
-    if (hold->kind == TW_HOLD_HANGER) {
-        link_over(hold, d, &over, unit);
-        parts->link_excess = fmax(parts->link_excess, over / hold->link_m);
-        tw_sum_add(route, -hold->link_force_N * fmax(over, 0.0));
+    for (int i = 0; i < hold->link_count; i++) {
+        const tw_energy_link *link = &hold->link[i];
+        link_over(link, d, &over, unit);
+        parts->link_excess = fmax(parts->link_excess, over / link->length_m);
+        tw_sum_add(route, -link->force_N * fmax(over, 0.0));
     }
-    for (int i = 0; i < 2; i++) {
-        double move = hold->offset[i] + d[i];
-        tw_sum_add(stored, 0.5 * hold->stiffness[i] * move * move);
+    springs_moved(hold, d, own);
+    for (int i = 0; i < 3; i++) {
+        tw_sum_add(stored, 0.5 * hold->stiffness[i] * own[i] * own[i]);
     }
 }
 

@@ -142,15 +142,16 @@ void tw_piece_position(const tw_material *material, const tw_piece *piece, doubl
     tw_axpy(piece->start, 1.0, displacement, position);
 }
 
-int tw_piece_turns(const tw_piece *piece, double *s)
+int tw_piece_turns(const tw_piece *piece, const tw_route_leg *leg, double *s)
 {
-    *s = piece->load[0] != 0.0 ? piece->tension[0] / piece->load[0] : -1.0;
+    double rate = tw_route_rate(leg, piece->load);
+    *s = rate != 0.0 ? tw_route_rate(leg, piece->tension) / rate : -1.0;
     return *s > 0.0 && *s < piece->length_m;
 }
 
 /* Newton on the station, kept inside a bracket that bisection would halve. */
-double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double x0,
-                           double x1, double station_m)
+double tw_piece_at_station(const tw_material *material, const tw_piece *piece, const tw_route_leg *leg, double s0, double s1,
+                           double x0, double x1, double station_m)
 {
     double run = x1 - x0;
     double low = s0, high = s1;
@@ -159,7 +160,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
         double r[3], t[3];
         s = s >= low && s <= high ? s : 0.5 * (low + high);
         tw_piece_position(material, piece, s, r);
-        double miss = r[0] - station_m;
+        double miss = tw_route_station(leg, r) - station_m;
         if ((miss <= 0.0) == (run >= 0.0)) {
             low = s;
         } else {
@@ -167,7 +168,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
         }
         tw_piece_tension(piece, s, t);
         double size = tw_norm(t);
-        double step = miss * size / (t[0] * tw_material_stretch(material, size));
+        double step = miss * size / (tw_route_rate(leg, t) * tw_material_stretch(material, size));
         s -= step;
         if (!(fabs(step) > 1e-8 * (s1 - s0))) { /* quadratic: the next step would be rounding */
             break;

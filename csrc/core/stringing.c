@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "hold.h"
+#include "route.h"
 #include "uniform.h"
 #include "vector.h"
 
@@ -32,7 +33,7 @@ static void hang_plumb(strung *line)
         const tw_support *support = &line->project->supports[j];
         line->lifted[j] = 0.0;
         line->swing[3 * j] = line->swing[3 * j + 1] = 0.0;
-        line->swing[3 * j + 2] = support->hold == TW_HOLD_HANGER ? -support->hanger_length_m : 0.0;
+        line->swing[3 * j + 2] = -tw_hold_drop(support);
     }
 }
 
@@ -77,7 +78,7 @@ static double follow_holds(strung *line, double share)
     for (size_t j = 0; j <= line->span_count; j++) {
         const tw_support *support = &line->project->supports[j];
         double F[3] = {0.0, 0.0, support->hold == TW_HOLD_HANGER ? 0.5 * support->hanger_weight_N : 0.0};
-        double swing[3];
+        double swing[3], ahead[2];
         if (j > 0) {
             tw_axpy(F, 1.0, line->pull + 3 * (j - 1), F);
             F[2] += weight * line->length_m[j - 1];
@@ -90,7 +91,8 @@ static double follow_holds(strung *line, double share)
             F[0] = F[1] = 0.0;
             F[2] = 1.0;
         }
-        tw_hold_swing(support, F, 0.0, swing);
+        tw_route_ahead(line->project, j, ahead);
+        tw_hold_swing(support, ahead, F, 0.0, swing);
         tw_axpy(swing, -1.0, line->swing + 3 * j, swing);
         moved = fmax(moved, tw_norm(swing));
         tw_axpy(line->swing + 3 * j, share, swing, line->swing + 3 * j);
