@@ -5,6 +5,8 @@
 #include "expect.h"
 #include "vector.h"
 
+static const double STRAIGHT[2] = {1.0, 0.0};
+
 static tw_case CASE;
 
 static const tw_support *holds(void)
@@ -33,14 +35,14 @@ static void test_swing_is_the_slope_of_the_energy(double soft)
         const tw_support *support = &holds()[draw % 4];
         double F[3], swing[3];
         draw_force(&seed, F);
-        tw_hold_swing(support, F, soft, swing);
+        tw_hold_swing(support, STRAIGHT, F, soft, swing);
         for (int i = 0; i < 3; i++) {
             double up[3], down[3];
             tw_copy(F, up);
             tw_copy(F, down);
             up[i] += h;
             down[i] -= h;
-            double slope = (tw_hold_energy(support, up, soft) - tw_hold_energy(support, down, soft)) / (2.0 * h);
+            double slope = (tw_hold_energy(support, STRAIGHT, up, soft) - tw_hold_energy(support, STRAIGHT, down, soft)) / (2.0 * h);
             CHECK_NEAR(swing[i], slope, 1e-8);
         }
     }
@@ -54,15 +56,15 @@ static void test_flexibility_is_minus_the_slope_of_the_swing(double soft)
         const tw_support *support = &holds()[draw % 4];
         double F[3], block[9] = {0.0};
         draw_force(&seed, F);
-        tw_hold_flexibility(support, F, soft, 1.0, block);
+        tw_hold_flexibility(support, STRAIGHT, F, soft, 1.0, block);
         for (int j = 0; j < 3; j++) {
             double up[3], down[3], at_up[3], at_down[3];
             tw_copy(F, up);
             tw_copy(F, down);
             up[j] += h;
             down[j] -= h;
-            tw_hold_swing(support, up, soft, at_up);
-            tw_hold_swing(support, down, soft, at_down);
+            tw_hold_swing(support, STRAIGHT, up, soft, at_up);
+            tw_hold_swing(support, STRAIGHT, down, soft, at_down);
             for (int i = 0; i < 3; i++) {
                 CHECK_NEAR(block[3 * i + j], -(at_up[i] - at_down[i]) / (2.0 * h), 1e-10);
             }
@@ -78,13 +80,13 @@ static void test_flexibility_is_positive_semidefinite_and_added_with_its_sign(vo
         double F[3], v[3], block[9] = {0.0};
         draw_force(&seed, F);
         draw_force(&seed, v);
-        tw_hold_flexibility(support, F, 0.0, 1.0, block);
+        tw_hold_flexibility(support, STRAIGHT, F, 0.0, 1.0, block);
         double work = 0.0;
         for (int i = 0; i < 9; i++) {
             work += v[i / 3] * block[i] * v[i % 3];
         }
         CHECK(work >= -1e-9);
-        tw_hold_flexibility(support, F, 0.0, -1.0, block);
+        tw_hold_flexibility(support, STRAIGHT, F, 0.0, -1.0, block);
         for (int i = 0; i < 9; i++) {
             CHECK(block[i] == 0.0);
         }
@@ -96,12 +98,12 @@ static void test_hanger_hangs_along_its_force_at_its_own_length(void)
     const tw_support *hanger = &holds()[1];
     const double down[3] = {0.0, 0.0, 800.0}, aslant[3] = {300.0, 0.0, 400.0};
     double swing[3];
-    tw_hold_swing(hanger, down, 0.0, swing);
+    tw_hold_swing(hanger, STRAIGHT, down, 0.0, swing);
     CHECK(swing[0] == 0.0 && swing[1] == 0.0 && swing[2] == -2.5);
-    tw_hold_swing(hanger, aslant, 0.0, swing);
+    tw_hold_swing(hanger, STRAIGHT, aslant, 0.0, swing);
     CHECK_NEAR(swing[0], -1.5, 1e-15);
     CHECK_NEAR(swing[2], -2.0, 1e-15);
-    CHECK_NEAR(tw_hold_energy(hanger, aslant, 0.0), -2.5 * 500.0, 1e-12);
+    CHECK_NEAR(tw_hold_energy(hanger, STRAIGHT, aslant, 0.0), -2.5 * 500.0, 1e-12);
 }
 
 /* Rounded off, the energy stays below the exact one, by at most soft l: D stays a lower bound. */
@@ -112,11 +114,11 @@ static void test_a_slack_hanger_is_rounded_off_from_below(void)
     for (double soft = 1e-3; soft < 1e3; soft *= 10.0) {
         double F[3], none[3] = {0.0, 0.0, 0.0}, swing[3], block[9] = {0.0};
         draw_force(&seed, F);
-        double below = tw_hold_energy(hanger, F, 0.0) - tw_hold_energy(hanger, F, soft);
+        double below = tw_hold_energy(hanger, STRAIGHT, F, 0.0) - tw_hold_energy(hanger, STRAIGHT, F, soft);
         CHECK(below >= 0.0 && below <= 2.5 * soft);
-        tw_hold_swing(hanger, none, soft, swing);
+        tw_hold_swing(hanger, STRAIGHT, none, soft, swing);
         CHECK(tw_norm(swing) == 0.0);
-        tw_hold_flexibility(hanger, none, soft, 1.0, block);
+        tw_hold_flexibility(hanger, STRAIGHT, none, soft, 1.0, block);
         CHECK_REL(block[0], 2.5 / soft, 1e-14);
     }
 }
@@ -126,11 +128,11 @@ static void test_without_force_nothing_swings(void)
     const double none[3] = {0.0, 0.0, 0.0};
     for (int j = 0; j < 4; j++) {
         double swing[3] = {1.0, 1.0, 1.0}, block[9] = {0.0};
-        tw_hold_swing(&holds()[j], none, 0.0, swing);
+        tw_hold_swing(&holds()[j], STRAIGHT, none, 0.0, swing);
         CHECK(tw_norm(swing) == 0.0);
-        tw_hold_flexibility(&holds()[j], none, 0.0, 1.0, block);
+        tw_hold_flexibility(&holds()[j], STRAIGHT, none, 0.0, 1.0, block);
         CHECK(isfinite(block[0]) && block[8] == 0.0);
-        CHECK(tw_hold_energy(&holds()[j], none, 0.0) == 0.0);
+        CHECK(tw_hold_energy(&holds()[j], STRAIGHT, none, 0.0) == 0.0);
     }
 }
 
@@ -138,14 +140,14 @@ static void test_post_moves_by_force_over_stiffness_and_anchor_not_at_all(void)
 {
     const double F[3] = {6e3, -2e3, 9e3};
     double swing[3];
-    tw_hold_swing(&holds()[2], F, 0.0, swing);
+    tw_hold_swing(&holds()[2], STRAIGHT, F, 0.0, swing);
     CHECK_NEAR(swing[0], -0.02, 1e-16);
     CHECK_NEAR(swing[1], 0.02, 1e-16);
     CHECK(swing[2] == 0.0);
-    tw_hold_swing(&holds()[3], F, 0.0, swing);
+    tw_hold_swing(&holds()[3], STRAIGHT, F, 0.0, swing);
     CHECK(swing[0] == 0.0 && swing[1] != 0.0);
-    tw_hold_swing(&holds()[0], F, 0.0, swing);
-    CHECK(tw_norm(swing) == 0.0 && tw_hold_energy(&holds()[0], F, 0.0) == 0.0);
+    tw_hold_swing(&holds()[0], STRAIGHT, F, 0.0, swing);
+    CHECK(tw_norm(swing) == 0.0 && tw_hold_energy(&holds()[0], STRAIGHT, F, 0.0) == 0.0);
 }
 
 static void test_attachment_is_the_support(void)
