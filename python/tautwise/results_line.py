@@ -1,7 +1,7 @@
 """Where a line hangs and how hard it pulls: the settled line in one condition, and in all of them.
 
 SI throughout, the unit in the name. Axes: x along the route (station), y across it (positive to the left when looking
-ahead), z up (elevation). Nothing here computes an equilibrium; :mod:`tautwise.solve` fills these records from the core.
+ahead), z up (elevation); of a route that turns, x is east and y north. Nothing here computes an equilibrium; :mod:`tautwise.solve` fills these records from the core.
 """
 
 from __future__ import annotations
@@ -99,8 +99,11 @@ class SpanState(Record):
 class SupportState(Record):
     """What the line does to one support: forces in N, along positive ahead, across positive to the left.
 
-    `down_N` is positive downwards; negative is uplift. `swing_deg` is a hanger's angle from the vertical, else None.
-    `position_m` is where the line is held: the lower end of a hanger.
+    At an angle point, ahead halves the angle between the spans' directions, so that `across_N` is along the bisector.
+    `down_N` is positive downwards; negative is uplift. `swing_deg` is a hanger's angle from the vertical, else None;
+    `swing_along_deg` is the same as seen from the side, positive ahead, and `swing_across_deg` as seen along the line,
+    positive to the left. `station_m` is where the support stands. `position_m` is where the line is held, the lower end
+    of a hanger: (station, offset, elevation), or (east, north, elevation) where supports are given so.
     """
 
     name: str
@@ -109,6 +112,9 @@ class SupportState(Record):
     down_N: float
     resultant_N: float
     swing_deg: float | None
+    swing_along_deg: float | None
+    swing_across_deg: float | None
+    station_m: float
     position_m: tuple[float, float, float]
 
     def __repr__(self) -> str:
@@ -118,11 +124,15 @@ class SupportState(Record):
 
 @dataclass(frozen=True, slots=True)
 class MarkState(Record):
-    """A place fixed on the line (a mark or a point load): natural length from the first support, tension, position."""
+    """A place fixed on the line (a mark or a point load): natural length from the first support, tension, position.
+
+    `station_m` is where it is along the route now; `position_m` as of a support.
+    """
 
     name: str
     at_length_m: float
     tension_N: float
+    station_m: float
     position_m: tuple[float, float, float]
 
     def __repr__(self) -> str:
@@ -244,7 +254,7 @@ class Equilibrium(Record):
 
         stations = np.asarray(station, dtype=np.float64)
         found = self._line().at(stations.ravel())
-        flat = {name: np.asarray(values).reshape(stations.shape) for name, values in found.items() if name[:3] != "pos"}
+        flat = {name: np.asarray(values).reshape(stations.shape) for name, values in found.items() if name not in ("position_m", "station_m")}
         return Places(stations, position_m=np.asarray(found["position_m"]).reshape((*stations.shape, 3)), **flat)
 
     def shape(self, points: int = 200) -> dict[str, Floats]:

@@ -12,10 +12,12 @@ from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, 
 
 _WEIGHT = {"oneOf": [{"required": ["weight"]}, {"required": ["mass"]}]}
 _STIFFNESS = {"oneOf": [{"required": ["stiffness"]}, {"required": ["modulus", "area"]}]}
+_ELEVATION = {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]}
+_PLACE = {"oneOf": [{"required": ["station"]}, {"required": ["east", "north"]}]}
 _GIVEN_ONCE = {
     "Line": {"allOf": [_WEIGHT, _STIFFNESS]},
     "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
-    "Support": {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]},
+    "Support": {"allOf": [_ELEVATION, _PLACE]},
     "Wind": {"oneOf": [{"required": ["pressure"]}, {"required": ["speed"]}]},
     "Load": {"oneOf": [{"required": ["force"]}, {"required": ["per_length"]}]},
     "Mark": {"oneOf": [{"required": ["at"]}, {"required": ["at_length"]}]},
@@ -56,12 +58,12 @@ def project_schema() -> dict[str, Any]:
 
 
 def _without_null(value: Any) -> Any:
-    """Drop the null that optional attributes allow: TOML has none."""
+    """Drop the null that optional attributes allow, for TOML has none, and the NaN of what is worked out where missing."""
     if isinstance(value, list):
         return [_without_null(part) for part in value]
     if not isinstance(value, dict):
         return value
-    kept = {key: _without_null(part) for key, part in value.items() if not (key == "default" and part is None)}
+    kept = {key: _without_null(part) for key, part in value.items() if not (key == "default" and (part is None or part != part))}
     options = kept.get("anyOf")
     if isinstance(options, list) and {"type": "null"} in options:
         options = [option for option in options if option != {"type": "null"}]
