@@ -54,7 +54,7 @@ def _loops(line: Equilibrium) -> list[str]:
 def _slack_strings(project: Project, line: Equilibrium) -> list[str]:
     """V hangers whose line pushes so far aside that one string hangs slack.
 
-    With l the length of a string and s the spread, both are taut while |across| <= s / (2 l) of the force in the hanger.
+    Of strings of length l with a spread s both are taut while |across| <= s / (2 l) of the force in the hanger.
     """
     found = []
     for support, state in zip(project.supports, line.supports, strict=False):
@@ -64,8 +64,6 @@ def _slack_strings(project: Project, line: Equilibrium) -> list[str]:
         carried = hypot(state.along_N, state.across_N, state.down_N - 0.5 * support.hanger_weight_N)
         if carried > 0.0 and abs(state.across_N) > spread / (2.0 * length) * carried:
             side, other = ("right", "left") if state.across_N > 0.0 else ("left", "right")
-            found.append(
-                f"the line pushes to the {other} at {support.name!r} in {line.name!r}: the {other} string of its V is slack "
-                f"and the {side} one carries alone"
-            )
+            head = f"the line pushes to the {other} at {support.name!r} in {line.name!r}"
+            found.append(f"{head}: the {other} string of its V is slack, and the {side} one carries alone")
     return found

@@ -125,7 +125,7 @@ def _supports(project: Project) -> Iterator[Slip]:
 
 def _turns(project: Project) -> Iterator[Slip]:
     places = [support.plan_m for support in project.supports]
-    for number, (before, at, after) in enumerate(zip(places, places[1:], places[2:]), start=1):
+    for number, (before, at, after) in enumerate(zip(places, places[1:], places[2:], strict=False), start=1):
         turn = math.atan2(after[1] - at[1], after[0] - at[0]) - math.atan2(at[1] - before[1], at[0] - before[0])
         degrees = abs(math.degrees(math.remainder(turn, math.tau)))
         if project.turns and degrees > TURN_MOST_DEG:

@@ -1,7 +1,8 @@
 """Where a line hangs and how hard it pulls: the settled line in one condition, and in all of them.
 
 SI throughout, the unit in the name. Axes: x along the route (station), y across it (positive to the left when looking
-ahead), z up (elevation); of a route that turns, x is east and y north. Nothing here computes an equilibrium; :mod:`tautwise.solve` fills these records from the core.
+ahead), z up (elevation); of a route that turns, x is east and y north. Nothing here computes an equilibrium;
+:mod:`tautwise.solve` fills these records from the core.
 """
 
 from __future__ import annotations
@@ -254,7 +255,8 @@ class Equilibrium(Record):
 
         stations = np.asarray(station, dtype=np.float64)
         found = self._line().at(stations.ravel())
-        flat = {name: np.asarray(values).reshape(stations.shape) for name, values in found.items() if name not in ("position_m", "station_m")}
+        others = {name: values for name, values in found.items() if name not in ("position_m", "station_m")}
+        flat = {name: np.asarray(values).reshape(stations.shape) for name, values in others.items()}
         return Places(stations, position_m=np.asarray(found["position_m"]).reshape((*stations.shape, 3)), **flat)
 
     def shape(self, points: int = 200) -> dict[str, Floats]:

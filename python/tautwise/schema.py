@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Any
 
 from pydantic import Field
@@ -57,13 +58,17 @@ def project_schema() -> dict[str, Any]:
     return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
 
 
+def _is_nothing(value: Any) -> bool:
+    return value is None or (isinstance(value, float) and math.isnan(value))
+
+
 def _without_null(value: Any) -> Any:
-    """Drop the null that optional attributes allow, for TOML has none, and the NaN of what is worked out where missing."""
+    """Drop the null that optional attributes allow, as TOML has none, and the NaN of what is worked out."""
     if isinstance(value, list):
         return [_without_null(part) for part in value]
     if not isinstance(value, dict):
         return value
-    kept = {key: _without_null(part) for key, part in value.items() if not (key == "default" and (part is None or part != part))}
+    kept = {key: _without_null(part) for key, part in value.items() if key != "default" or not _is_nothing(part)}
     options = kept.get("anyOf")
     if isinstance(options, list) and {"type": "null"} in options:
         options = [option for option in options if option != {"type": "null"}]

@@ -207,8 +207,8 @@ def _mark_lines(found: Equilibrium, *, turns: bool) -> list[str]:
         length_column("elevation", [mark.position_m[2] for mark in marks]),
     )
     first = 0 if turns else 1  # the x of a straight route is its station
-    rows = tuple((m.name, m.at_length_m, m.tension_N, m.station_m, *m.position_m[first:]) for m in marks)
-    return Table(columns, rows).lines()
+    rows: list[Row] = [(m.name, m.at_length_m, m.tension_N, m.station_m, *m.position_m[first:]) for m in marks]
+    return Table(columns, tuple(rows)).lines()
 
 
 def _bracket_words(found: Equilibrium) -> str:

@@ -49,7 +49,8 @@ class Route:
         if not self.turning:
             return np.eye(3)
         beside = [self.direction(k) for k in (support - 1, support) if 0 <= k < len(self.places) - 1]
-        x, y = sum(beside) / math.hypot(*sum(beside))
+        both = np.sum(beside, axis=0)
+        x, y = both / math.hypot(*both)
         return np.array([[x, y, 0.0], [-y, x, 0.0], [0.0, 0.0, 1.0]])
 
 

@@ -58,7 +58,7 @@ class Support:
         return np.asarray(self.axes.T @ self.hanging(own)[1][:3, :3] @ self.axes)
 
     def support_function(self, force: Array) -> float:
-        """Of a hanger, J: the least that F . (clamp - support) can be, with its sign turned; its kink at 0 is blurred."""
+        """Of a hanger, J: minus the least that F . (clamp - support) can be; its kink at 0 is blurred."""
         own, none = np.append(self.axes @ force, self.blur_N), np.array([0.0, 0.0, 0.0, self.blur_N])
         return float(none @ self.hanging(none)[0] - own @ self.hanging(own)[0])
 

@@ -141,7 +141,7 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
 
 
 def support_state(settled: Settled, support: int) -> dict[str, float]:
-    """Force of line and hold on a support in its axes, N, and the angles of a hanger from the vertical, rad, else NaN."""
+    """Force of line and hold on a support in its axes, N, and the angles of a hanger from the vertical, else NaN."""
     at = settled.section.supports[support]
     force = at.axes @ settled.hold_forces[support]
     swing = [math.nan] * 3
