@@ -21,7 +21,7 @@ PACKAGE = ROOT / "python" / "tautwise"
 CORE_LAYERS = (
     {"alloc", "status", "sum", "vector"},
     {"line", "couple", "blocktri"},
-    {"check", "material", "load", "hold"},
+    {"check", "material", "load", "hold", "route", "vee"},
     {"span", "uniform"},
     {"section", "stringing"},
     {"ground", "energy", "history"},

@@ -36,11 +36,13 @@ static const field support_fields[] = {
     F(tw_support, elevation_m, NAN),
     F(tw_support, height_m, NAN),
     F(tw_support, hanger_length_m, 0.0),
+    F(tw_support, hanger_spread_m, 0.0),
     F(tw_support, hanger_weight_N, 0.0),
     F(tw_support, sheave_friction, NAN),
     F(tw_support, hanger_wind_area_m2, 0.0),
     F(tw_support, stiffness_along_N_per_m, NAN),
     F(tw_support, stiffness_across_N_per_m, NAN),
+    F(tw_support, stiffness_vertical_N_per_m, NAN),
     F(tw_support, capacity_along_N, NAN),
     F(tw_support, capacity_across_N, NAN),
     F(tw_support, capacity_down_N, NAN),
@@ -127,6 +129,9 @@ static const field support_state_fields[] = {
     F(tw_support_state, down_N, NAN),
     F(tw_support_state, resultant_N, NAN),
     F(tw_support_state, swing_rad, NAN),
+    F(tw_support_state, swing_along_rad, NAN),
+    F(tw_support_state, swing_across_rad, NAN),
+    F(tw_support_state, station_m, NAN),
 };
 const field_table tw_support_state_table = TABLE(support_state_fields);
 
@@ -134,6 +139,7 @@ static const field mark_state_fields[] = {
     F(tw_mark_state, at_length_m, NAN),
     F(tw_mark_state, tension_N, NAN),
     F(tw_mark_state, tension_beyond_N, NAN),
+    F(tw_mark_state, station_m, NAN),
 };
 const field_table tw_mark_state_table = TABLE(mark_state_fields);
 

@@ -5,22 +5,24 @@
 
 #include "vector.h"
 
-/* Arrays length_m (n), position_m (n, 3), tension_N (n) to be filled. */
+/* Arrays length_m (n), station_m (n), position_m (n, 3), tension_N (n) to be filled. */
 typedef struct places {
-    PyObject *length, *position, *tension;
-    double *s, *r, *t;
+    PyObject *length, *station, *position, *tension;
+    double *s, *x, *r, *t;
 } places;
 
 static int places_create(npy_intp count, places *out)
 {
     npy_intp shape[2] = {count, 3};
     out->length = PyArray_SimpleNew(1, &count, NPY_DOUBLE);
+    out->station = PyArray_SimpleNew(1, &count, NPY_DOUBLE);
     out->position = PyArray_SimpleNew(2, shape, NPY_DOUBLE);
     out->tension = PyArray_SimpleNew(1, &count, NPY_DOUBLE);
-    if (!out->length || !out->position || !out->tension) {
+    if (!out->length || !out->station || !out->position || !out->tension) {
         return -1;
     }
     out->s = PyArray_DATA((PyArrayObject *)out->length);
+    out->x = PyArray_DATA((PyArrayObject *)out->station);
     out->r = PyArray_DATA((PyArrayObject *)out->position);
     out->t = PyArray_DATA((PyArrayObject *)out->tension);
     return 0;
@@ -30,11 +32,12 @@ static PyObject *places_dict(places *in, int failed)
 {
     if (failed) {
         Py_XDECREF(in->length);
+        Py_XDECREF(in->station);
         Py_XDECREF(in->position);
         Py_XDECREF(in->tension);
         return NULL;
     }
-    return Py_BuildValue("{s:N,s:N,s:N}", "length_m", in->length, "position_m", in->position, "tension_N", in->tension);
+    return Py_BuildValue("{s:N,s:N,s:N,s:N}", "length_m", in->length, "station_m", in->station, "position_m", in->position, "tension_N", in->tension);
 }
 
 static void place_at(const tw_section *section, double s, places *out, size_t i)
@@ -43,6 +46,7 @@ static void place_at(const tw_section *section, double s, places *out, size_t i)
     out->s[i] = s;
     tw_section_at(section, s, out->r + 3 * i, tension);
     out->t[i] = tw_norm(tension);
+    out->x[i] = tw_section_station(section, s, out->r + 3 * i);
 }
 
 /* Points evenly along the natural line, `points` a span and the end. */
@@ -66,7 +70,7 @@ static void station_points(const tw_section *section, const double *stations, si
         if (tw_section_at_station(section, stations[i], &s) == TW_OK) {
             place_at(section, s, out, i);
         } else {
-            out->s[i] = out->t[i] = out->r[3 * i] = out->r[3 * i + 1] = out->r[3 * i + 2] = NAN;
+            out->s[i] = out->x[i] = out->t[i] = out->r[3 * i] = out->r[3 * i + 1] = out->r[3 * i + 2] = NAN;
         }
     }
 }

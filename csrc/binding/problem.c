@@ -7,9 +7,11 @@
 #include "check.h"
 #include "fields.h"
 #include "problem_line.h"
+#include "route.h"
 
 static const char *const hold_names[] = {"anchor", "hanger", "sheave", "post", NULL};
 static const char *const state_names[] = {"initial", "final", "after creep", NULL};
+static const char *const route_names[] = {"straight", "turning", NULL};
 static const char *const place_names[] = {"whole", "station", "length", NULL};
 static const char *const carriage_names[] = {"none", "free", "held", NULL};
 static const char *const frame_names[] = {"span", "route", NULL};
@@ -21,7 +23,7 @@ static const char *const clip_names[] = {"plumb", "lies", NULL};
 static const char *const rule_names[] = {"pull", "tension", "sag", "total_length", "span_lengths", "none", NULL};
 
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
-                                           "stringing", "history", NULL};
+                                           "stringing", "history", "route", NULL};
 static const char *const support_keys[] = {"hold", NULL};
 static const char *const condition_keys[] = {"loads", "ice_share", "state", NULL};
 static const char *const load_keys[] = {"is_point", "is_run", "place", "frame", "vector", "vector_to", "covers",
@@ -39,6 +41,7 @@ void tw_problem_free(problem *in)
         PyMem_Free((void *)in->conditions[c].ice_share);
     }
     PyMem_Free(in->supports);
+    PyMem_Free(in->route);
     PyMem_Free(in->ground);
     PyMem_Free(in->crossings);
     PyMem_Free(in->conditions);
@@ -138,6 +141,21 @@ static int read_supports(PyObject *dict, problem *out)
     out->project.supports = out->supports;
     out->project.support_count = count;
     return 0;
+}
+
+/* A turning route: station_m and offset_m of the supports are plan coordinates, and the stations are measured here. */
+static int read_route(PyObject *dict, problem *out)
+{
+    int route = tw_fields_choice(dict, "route", route_names, 0);
+    if (route == 1) {
+        out->route = room(out->project.support_count, sizeof(double));
+        if (!out->route) {
+            return -1;
+        }
+        tw_route_measure(out->supports, out->project.support_count, out->route);
+        out->project.route_station_m = out->route;
+    }
+    return route < 0 ? -1 : 0;
 }
 
 static PyArrayObject *vector_of(PyObject *dict, const char *key)
@@ -532,7 +550,7 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
         tw_problem_raise("supports", TW_NONE, "count", "at least two supports", range_error);
         return -1;
     }
-    if (read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
+    if (read_route(dict, out) < 0 || read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
         || read_marks(dict, out) < 0 || read_limits(dict, out) < 0
         || read_part(dict, "stringing", read_rule, out) < 0 || read_history(dict, out) < 0) {
         return -1;

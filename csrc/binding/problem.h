@@ -9,6 +9,7 @@
 typedef struct problem {
     tw_project project; /* its arrays are the ones below */
     tw_support *supports;
+    double *route; /* stations of the supports, where the route turns */
     double *ground; /* stations, then elevations */
     tw_crossing *crossings;
     tw_condition *conditions;

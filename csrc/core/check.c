@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "check_rules.h"
+#include "route.h"
 
 enum {
     OPEN_LOW = 1,  /* the low end is excluded */
@@ -33,15 +34,17 @@ static const range line_rules[] = {
 #define SUPPORT(field) #field, offsetof(tw_support, field)
 static const range support_rules[] = {
     {SUPPORT(station_m), -1e7, 1e7, 0, "a station within 10,000 km"},
-    {SUPPORT(offset_m), -1e6, 1e6, 0, "an offset within 1,000 km"},
+    {SUPPORT(offset_m), -1e7, 1e7, 0, "an offset within 10,000 km"},
     {SUPPORT(elevation_m), -2e4, 2e4, 0, "an elevation within 20 km"},
     {SUPPORT(height_m), -2e4, 2e4, OPTIONAL, "a height within 20 km"},
     {SUPPORT(hanger_length_m), 0.0, 1e3, 0, "a hanger length from 0 to 1 km"},
+    {SUPPORT(hanger_spread_m), 0.0, 2e3, 0, "a spread from 0 to 2 km"},
     {SUPPORT(hanger_weight_N), 0.0, 1e7, 0, "a hanger weight from 0 to 1e7 N"},
     {SUPPORT(sheave_friction), 0.0, 1.0, OPTIONAL, "a coefficient of friction from 0 to 1"},
     {SUPPORT(hanger_wind_area_m2), 0.0, 1e3, 0, "a wind area from 0 to 1000 m2"},
     {SUPPORT(stiffness_along_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(stiffness_across_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
+    {SUPPORT(stiffness_vertical_N_per_m), 0.0, 1e15, OPEN_LOW | OPTIONAL | INFINITE, "a stiffness above 0"},
     {SUPPORT(capacity_along_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
     {SUPPORT(capacity_across_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
     {SUPPORT(capacity_down_N), 0.0, 1e12, OPEN_LOW | OPTIONAL, "a capacity above 0"},
@@ -183,12 +186,28 @@ static tw_status check_numbers(const tw_project *p, tw_fault *fault)
     return status;
 }
 
+/* A turn of nearly 180 degrees has no bisector: the axes of the support would be none. */
+static tw_status check_route(const tw_project *p, size_t j, tw_fault *fault)
+{
+    if (!p->route_station_m) {
+        return j == 0 || p->supports[j].station_m > p->supports[j - 1].station_m
+                   ? TW_OK
+                   : fail(fault, "supports", j, "station_m", "stations that grow from support to support");
+    }
+    if (j > 0 && !(p->route_station_m[j] > p->route_station_m[j - 1])) {
+        return fail(fault, "supports", j, "station_m", "another place in plan than the support before it");
+    }
+    return tw_route_turn_cosine(p, j) > -0.9999 ? TW_OK
+                                                : fail(fault, "supports", j, "station_m", "a turn of less than 179 degrees");
+}
+
 static tw_status check_support(const tw_project *p, size_t j, tw_fault *fault)
 {
     const tw_support *support = &p->supports[j];
     int end = j == 0 || j + 1 == p->support_count;
-    if (j > 0 && !(support->station_m > support[-1].station_m)) {
-        return fail(fault, "supports", j, "station_m", "stations that grow from support to support");
+    tw_status status = check_route(p, j, fault);
+    if (status != TW_OK) {
+        return status;
     }
     switch (support->hold) {
     case TW_HOLD_ANCHOR: return TW_OK;
@@ -200,6 +219,9 @@ static tw_status check_support(const tw_project *p, size_t j, tw_fault *fault)
     case TW_HOLD_HANGER:
         if (!(support->hanger_length_m > 0.0)) {
             return fail(fault, "supports", j, "hanger_length_m", "a hanger length above 0");
+        }
+        if (!(support->hanger_spread_m < 2.0 * support->hanger_length_m)) {
+            return fail(fault, "supports", j, "hanger_spread_m", "a spread of less than twice the hanger's length");
         }
         return end ? fail(fault, "supports", j, "hold", "an anchor or a post at the line's ends") : TW_OK;
     case TW_HOLD_SHEAVE:
@@ -222,10 +244,10 @@ static tw_status check_ground(const tw_project *p, tw_fault *fault)
         return fail(fault, "ground", 0, "station_m", "at least two points, or none");
     }
     size_t last = p->ground_count - 1;
-    if (p->ground_count > 0 && !(p->ground_station_m[0] <= p->supports[0].station_m)) {
+    if (p->ground_count > 0 && !(p->ground_station_m[0] <= tw_route_support_station(p, 0))) {
         return fail(fault, "ground", 0, "station_m", "a profile that begins at or before the first support");
     }
-    if (p->ground_count > 0 && !(p->ground_station_m[last] >= p->supports[p->support_count - 1].station_m)) {
+    if (p->ground_count > 0 && !(p->ground_station_m[last] >= tw_route_support_station(p, p->support_count - 1))) {
         return fail(fault, "ground", last, "station_m", "a profile that ends at or beyond the last support");
     }
     return TW_OK;

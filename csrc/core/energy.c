@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "energy_hold.h"
 #include "sum.h"
 #include "vector.h"
 
@@ -68,42 +69,6 @@ static double element_evaluate(const tw_energy *energy, size_t element, const do
     return 0.5 * length * stored;
 }
 
-/* Growth of a hanger's link beyond its length, without cancellation, and the unit vector along it; returns |c - a|. */
-static double link_over(const tw_energy_hold *hold, const double *d, double *over, double unit[3])
-{
-    double link[3];
-    tw_axpy(hold->offset, 1.0, d, link);
-    double length = tw_norm(link);
-    double sum = length + hold->link_m + hold->link_over_m;
-    *over = hold->link_over_m + (2.0 * tw_dot(hold->offset, d) + tw_dot(d, d)) / sum;
-    for (int i = 0; i < 3; i++) {
-        unit[i] = length > 0.0 ? link[i] / length : 0.0;
-    }
-    return length;
-}
-
-/* Energy of a hold at displacement d of its clamp; adds its force to g. */
-static double hold_evaluate(const tw_energy_hold *hold, const double *d, double *g)
-{
-    double stored = 0.0;
-    if (hold->kind == TW_HOLD_HANGER) {
-        double over, unit[3];
-        link_over(hold, d, &over, unit);
-        double force = hold->link_force_N + hold->link_stiffness * over;
-        if (force <= 0.0) {
-            return -0.5 * hold->link_force_N * hold->link_force_N / hold->link_stiffness;
-        }
-        tw_axpy(g, force, unit, g);
-        return over * (hold->link_force_N + 0.5 * hold->link_stiffness * over);
-    }
-    for (int i = 0; i < 2; i++) {
-        double move = hold->offset[i] + d[i];
-        stored += 0.5 * hold->stiffness[i] * move * move;
-        g[i] += hold->stiffness[i] * move;
-    }
-    return stored;
-}
-
 /* Puts the loads on: adds -load.x to the energy and -load to the gradient. */
 static void load_evaluate(const tw_energy *energy, const double *x, double *gradient, tw_sum *potential)
 {
@@ -142,30 +107,13 @@ tw_energy_state tw_energy_evaluate(const tw_energy *energy, const double *x, dou
     for (size_t j = 0; j < energy->hold_count; j++) {
         const tw_energy_hold *hold = &energy->holds[j];
         size_t end = BLOCK * hold->block + 3;
-        tw_sum_add(&potential, hold_evaluate(hold, x + end, gradient + end));
-        for (size_t i = 0; i < 3; i++) {
-            gradient[end + i] = hold->fixed[i] ? 0.0 : gradient[end + i];
-        }
+        tw_sum_add(&potential, tw_energy_hold_evaluate(hold, x + end, gradient + end));
+        tw_energy_hold_release(hold, gradient + end);
     }
     memset(gradient, 0, 3 * sizeof(double));
     state.potential_J = tw_sum_value(&potential);
     state.residual_N = residual_of(gradient, 2 * (energy->element_count + 1));
     return state;
-}
-
-/* Symmetric 3x3 stored as xx xy xz yy yz zz: where row i, column j is. */
-static const int packed[3][3] = {{0, 1, 2}, {1, 3, 4}, {2, 4, 5}};
-
-/* tangent u u^T + across (I - u u^T). */
-static void stiffness_along(const double unit[3], double tangent, double across, double out[6])
-{
-    double along = tangent - across;
-    out[0] = along * unit[0] * unit[0] + across;
-    out[1] = along * unit[0] * unit[1];
-    out[2] = along * unit[0] * unit[2];
-    out[3] = along * unit[1] * unit[1] + across;
-    out[4] = along * unit[1] * unit[2];
-    out[5] = along * unit[2] * unit[2] + across;
 }
 
 /* Second derivatives of the stretch energy at a point of integration, in r'. */
@@ -180,7 +128,7 @@ static void point_stiffness(const tw_material *material, const double a[3], cons
     for (int i = 0; i < 3; i++) {
         slope[i] *= inverse;
     }
-    stiffness_along(slope, tangent, tension * inverse, out);
+    tw_stiffness_along(slope, tangent, tension * inverse, out);
 }
 
 /* Second derivatives of an element's energy in its edges: aa, ab and bb are each symmetric. */
@@ -213,51 +161,17 @@ static void element_scatter(tw_blocktri *matrix, size_t element, const double aa
     for (int i = 0; i < 3; i++) {
         int middle = i * (i + 1) / 2, end = (3 + i) * (4 + i) / 2;
         for (int j = 0; j < 3; j++) {
-            int k = packed[i][j];
+            int k = tw_packed[i][j];
             coupling[3 * i + j] = ab[k] - aa[k];
             coupling[9 + 3 * i + j] = -ab[k];
             block[end + j] = ab[k] - bb[k];
         }
         for (int j = 0; j <= i; j++) {
-            int k = packed[i][j];
+            int k = tw_packed[i][j];
             before[end + 3 + j] += aa[k];
             block[middle + j] = aa[k] - 2.0 * ab[k] + bb[k];
             block[end + 3 + j] = bb[k];
         }
-    }
-}
-
-static void hold_stiffness(const tw_energy_hold *hold, const double *d, double *triangle)
-{
-    double stiffness[6] = {hold->stiffness[0], 0.0, 0.0, hold->stiffness[1], 0.0, 0.0};
-    if (hold->kind == TW_HOLD_HANGER) {
-        double over, unit[3];
-        double length = link_over(hold, d, &over, unit);
-        double force = hold->link_force_N + hold->link_stiffness * over;
-        if (force > 0.0) {
-            stiffness_along(unit, hold->link_stiffness, length > 0.0 ? force / length : 0.0, stiffness);
-        }
-    }
-    for (int i = 0; i < 3; i++) {
-        for (int j = 0; j <= i; j++) {
-            triangle[(3 + i) * (4 + i) / 2 + 3 + j] += stiffness[packed[i][j]];
-        }
-    }
-}
-
-/* Cut a fixed unknown of a clamp out of the matrix: zero row and column, unit diagonal. */
-static void fix_unknown(tw_blocktri *matrix, size_t block, int direction)
-{
-    double *triangle = matrix->diagonal + TW_BLOCKTRI_TRIANGLE * block;
-    double *coupling = matrix->coupling + TW_BLOCKTRI_COUPLING * block;
-    int at = 3 + direction;
-    for (int k = 0; k < BLOCK; k++) {
-        int row = k > at ? k : at, column = k > at ? at : k;
-        triangle[row * (row + 1) / 2 + column] = k == at ? 1.0 : 0.0;
-    }
-    memset(coupling + 3 * at, 0, 3 * sizeof(double));
-    for (int k = 0; k < BLOCK && block + 1 < matrix->block_count; k++) {
-        coupling[TW_BLOCKTRI_COUPLING + 3 * k + direction] = 0.0;
     }
 }
 
@@ -272,12 +186,7 @@ void tw_energy_hessian(const tw_energy *energy, const double *x, double floor_N,
     }
     for (size_t j = 0; j < energy->hold_count; j++) {
         const tw_energy_hold *hold = &energy->holds[j];
-        hold_stiffness(hold, x + BLOCK * hold->block + 3, matrix->diagonal + TW_BLOCKTRI_TRIANGLE * hold->block);
-        for (int i = 0; i < 3; i++) {
-            if (hold->fixed[i]) {
-                fix_unknown(matrix, hold->block, i);
-            }
-        }
+        tw_energy_hold_stiffness(hold, x + BLOCK * hold->block + 3, matrix);
     }
 }
 
@@ -342,32 +251,14 @@ static void span_bound(const tw_energy *energy, const tw_energy_hold *from, cons
     }
 }
 
-/* A clamp's own: springs, what a link has grown by, the work of the loads at the clamp. */
-static void hold_bound(const tw_energy *energy, const tw_energy_hold *hold, const double *x, tw_energy_parts *parts,
-                       tw_sum *stored, tw_sum *route)
-{
-    const double *d = x + BLOCK * hold->block + 3;
-    const double *load = energy->load + BLOCK * hold->block + 3;
-    double place[3], over, unit[3];
-    tw_axpy(hold->place, 1.0, d, place);
-    tw_sum_add(route, tw_dot(load, place));
-    if (hold->kind == TW_HOLD_HANGER) {
-        link_over(hold, d, &over, unit);
-        parts->link_excess = fmax(parts->link_excess, over / hold->link_m);
-        tw_sum_add(route, -hold->link_force_N * fmax(over, 0.0));
-    }
-    for (int i = 0; i < 2; i++) {
-        double move = hold->offset[i] + d[i];
-        tw_sum_add(stored, 0.5 * hold->stiffness[i] * move * move);
-    }
-}
-
 tw_energy_parts tw_energy_bound(const tw_energy *energy, const double *x)
 {
     tw_energy_parts parts = {0.0, 0.0, 0.0, -INFINITY};
     tw_sum stored = {0.0, 0.0}, work = {0.0, 0.0}, route = {0.0, 0.0};
     for (size_t j = 0; j < energy->hold_count; j++) {
-        hold_bound(energy, &energy->holds[j], x, &parts, &stored, &route);
+        const tw_energy_hold *hold = &energy->holds[j];
+        size_t end = BLOCK * hold->block + 3;
+        tw_energy_hold_bound(hold, x + end, energy->load + end, &parts, &stored, &route);
         if (j + 1 < energy->hold_count) {
             span_bound(energy, &energy->holds[j], &energy->holds[j + 1], x, &stored, &work, &route);
         }

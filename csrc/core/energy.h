@@ -7,8 +7,8 @@
  *     r' = (2/l) [(1/2 - xi) a + (1/2 + xi) b]
  * The stretch energy is integrated at the two Gauss points xi = -+1/sqrt(3): with three, stiff stretch and soft bending
  * fight, and the sag converges two orders slower. Loads act consistently, l (q0, 2 (q0 + q1), q1)/6 from end to end.
- * Holds: an anchor is a fixed node; a post adds k_x dx^2/2 + k_y dy^2/2 and is rigid vertically; a hanger is a link of
- * length l that cannot grow and carries no compression, kept by the augmented term
+ * Holds: an anchor or a post adds sum k_i d_i^2/2 in its own axes (route.h) and is fixed where rigid; a hanger is a link, a V
+ * two, of length l that cannot grow and carries no compression, kept by the augmented term
  *     ((F + k e)+^2 - F^2) / (2 k)      e = |c - a| - l,  F: its force in the exact line,  k = 10 (EA + F) / l
  * which is convex in the clamp c and stationary at e = 0 when F is right.
  *
@@ -23,17 +23,25 @@
 #include "blocktri.h"
 #include "section.h"
 
+typedef struct tw_energy_link {
+    double offset[3];    /* clamp less the link's upper end in the start shape, m */
+    double length_m;
+    double over_m;       /* |offset| - length_m */
+    double force_N;      /* F */
+    double stiffness;    /* k, N/m */
+} tw_energy_link;
+
 typedef struct tw_energy_hold {
-    tw_hold kind;
-    size_t block;          /* whose end node is the clamp */
-    int fixed[3];          /* along, across, up */
-    double place[3];       /* clamp in the start shape, from the first support, m */
-    double offset[3];      /* clamp less the point of fixing in the start shape, m */
-    double stiffness[2];   /* post: along, across, N/m; 0 where rigid or no post */
-    double link_m;         /* hanger: length */
-    double link_over_m;    /* hanger: |offset| - link_m */
-    double link_force_N;   /* hanger: F */
-    double link_stiffness; /* hanger: k, N/m */
+    size_t block;        /* whose end node is the clamp */
+    int fixed[3];        /* x, y, up */
+    int guided;          /* 1: neither x nor y is fixed, but the direction `guide` in plan is */
+    double guide[3];     /* unit */
+    double place[3];     /* clamp in the start shape, from the first support, m */
+    double offset[3];    /* clamp less the point of fixing in the start shape, m */
+    double ahead[2];     /* axes of the springs */
+    double stiffness[3]; /* springs: along, across, up, N/m; 0 where rigid or none */
+    int link_count;      /* hanger: 1, or 2 of a V */
+    tw_energy_link link[2];
 } tw_energy_hold;
 
 typedef struct tw_energy {
@@ -59,7 +67,7 @@ typedef struct tw_energy_parts {
     double potential_J; /* datum at the first support: comes from above to the complementary energy */
     double stored_J;    /* stretch of the line and of posts */
     double work_J;      /* of the loads between clamps, from the middle of each chord: free of the datum */
-    double link_excess; /* largest (|c - a| - l) / l of the hangers; <= 0 where none is too long */
+    double link_excess; /* largest (|c - a| - l) / l of the links; <= 0 where none is too long */
 } tw_energy_parts;
 
 /* How many elements a mesh of about `per_span` in each span has; each piece has at least one. */

@@ -6,6 +6,7 @@
 
 #include "alloc.h"
 #include "hold.h"
+#include "route.h"
 #include "sum.h"
 #include "vector.h"
 
@@ -36,6 +37,48 @@ size_t tw_energy_elements(const tw_section *section, size_t per_span)
     return count;
 }
 
+/* A mesh leaves the clamp's place where the exact line has it in the directions that are free, and at the support itself in
+ * those that are not. */
+static void fix_hold(tw_energy_hold *hold, const tw_support *support)
+{
+    double rate[3];
+    tw_hold_springs(support, rate);
+    int hangs = tw_hold_link_m(support) > 0.0;
+    int rigid[3];
+    for (int i = 0; i < 3; i++) {
+        rigid[i] = !hangs && !isfinite(rate[i]);
+        hold->stiffness[i] = hangs || rigid[i] ? 0.0 : rate[i];
+    }
+    int turned = hold->ahead[1] != 0.0 && rigid[0] != rigid[1];
+    hold->guided = turned;
+    hold->fixed[0] = rigid[0] && !turned;
+    hold->fixed[1] = rigid[1] && !turned;
+    hold->fixed[2] = rigid[2];
+    if (turned) {
+        const double own[3] = {rigid[0] ? 1.0 : 0.0, rigid[1] ? 1.0 : 0.0, 0.0};
+        tw_route_out_of_axes(hold->ahead, own, hold->guide);
+    }
+}
+
+static void link_hold(tw_energy_hold *hold, const tw_section *section, size_t j)
+{
+    const tw_support *support = &section->project->supports[j];
+    double end[2][3], tension[2];
+    if (!(tw_hold_link_m(support) > 0.0)) {
+        return;
+    }
+    hold->link_count = tw_hold_strings(support, hold->ahead, section->hold_force + 3 * j, end, tension);
+    double whole = tw_norm(section->hold_force + 3 * j);
+    for (int i = 0; i < hold->link_count; i++) {
+        tw_energy_link *link = &hold->link[i];
+        tw_axpy(hold->offset, -1.0, end[i], link->offset);
+        link->length_m = support->hanger_length_m;
+        link->over_m = tw_norm(link->offset) - link->length_m;
+        link->force_N = tension[i];
+        link->stiffness = link_over_line * (section->stiffness_N + whole) / link->length_m;
+    }
+}
+
 static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j)
 {
     const tw_support *support = &section->project->supports[j];
@@ -43,25 +86,19 @@ static void place_hold(tw_energy_hold *hold, const tw_section *section, size_t j
     const double point[3] = {support->station_m - datum->station_m, support->offset_m - datum->offset_m,
                              support->elevation_m - datum->elevation_m};
     const double zero[3] = {datum->station_m, datum->offset_m, datum->elevation_m};
-    const double stiffness[2] = {support->stiffness_along_N_per_m, support->stiffness_across_N_per_m};
-    double link = tw_hold_link_m(support);
-    hold->kind = link > 0.0 ? TW_HOLD_HANGER : support->hold;
+    hold->ahead[0] = section->ahead[2 * j];
+    hold->ahead[1] = section->ahead[2 * j + 1];
+    fix_hold(hold, support);
     for (int i = 0; i < 3; i++) {
-        int elastic = hold->kind == TW_HOLD_POST && i < 2 && isfinite(stiffness[i]);
-        hold->fixed[i] = hold->kind != TW_HOLD_HANGER && !elastic;
         hold->place[i] = hold->fixed[i] ? point[i] : section->clamp[3 * j + (size_t)i] - zero[i];
         hold->offset[i] = hold->place[i] - point[i];
-        if (elastic) {
-            hold->stiffness[i] = stiffness[i];
-        }
     }
-    if (hold->kind == TW_HOLD_HANGER) {
-        hold->link_m = link;
-        hold->link_over_m = tw_norm(hold->offset) - hold->link_m;
-        hold->link_force_N = tw_norm(section->hold_force + 3 * j);
-        hold->link_stiffness =
-            link_over_line * (section->stiffness_N + hold->link_force_N) / hold->link_m;
+    if (hold->guided) {
+        double astray = tw_dot(hold->guide, hold->offset);
+        tw_axpy(hold->place, -astray, hold->guide, hold->place);
+        tw_axpy(hold->offset, -astray, hold->guide, hold->offset);
     }
+    link_hold(hold, section, j);
 }
 
 /* One element of a span that starts at natural length s of the piece: edges, length, its share of the load. */

@@ -2,6 +2,7 @@
 
 #include <math.h>
 
+#include "route.h"
 #include "vector.h"
 
 enum { TANGENTS = 11 };
@@ -15,6 +16,7 @@ typedef struct top {
 typedef struct stretch {
     const tw_material *material;
     const tw_piece *piece;
+    tw_route_leg leg;
     double s0, s1;
     double x0, x1; /* stations, x0 <= x1 */
     int forward;   /* station grows with s */
@@ -74,7 +76,8 @@ static void offer_place(const stretch *line, const top *t, double s, least *best
 {
     double r[3];
     tw_piece_position(line->material, line->piece, s, r);
-    offer(best, r[2] - t->z0 - t->slope * (r[0] - t->x0), r[0]);
+    double x = tw_route_station(&line->leg, r);
+    offer(best, r[2] - t->z0 - t->slope * (x - t->x0), x);
 }
 
 static double at_station(const stretch *line, double station)
@@ -86,7 +89,7 @@ static double at_station(const stretch *line, double station)
         return line->forward ? line->s1 : line->s0;
     }
     double a = line->forward ? line->x0 : line->x1, b = line->forward ? line->x1 : line->x0;
-    return tw_piece_at_station(line->material, line->piece, line->s0, line->s1, a, b, station);
+    return tw_piece_at_station(line->material, line->piece, &line->leg, line->s0, line->s1, a, b, station);
 }
 
 /* Under a load that varies: every place where the line runs along the top, a greatest clearance among them or not. */
@@ -99,7 +102,8 @@ static void offer_stationary(const stretch *line, const top *t, const double nor
         double r[3];
         if (places[i] > line->s0 && places[i] < line->s1) {
             tw_piece_position(line->material, line->piece, places[i], r);
-            if (r[0] >= from && r[0] <= to) {
+            double x = tw_route_station(&line->leg, r);
+            if (x >= from && x <= to) {
                 offer_place(line, t, places[i], best);
             }
         }
@@ -110,18 +114,19 @@ static void offer_stationary(const stretch *line, const top *t, const double nor
  * of normal . t, which is linear in s: where it grows through zero within the stretch is the least place, otherwise an end. */
 static void judge_top(const stretch *line, const top *t, double from, double to, least *best)
 {
-    const double normal[3] = {-t->slope, 0.0, 1.0};
+    const double normal[3] = {-t->slope * line->leg.ahead[0], -t->slope * line->leg.ahead[1], 1.0};
     double rate = -tw_dot(normal, line->piece->load);
     double at_zero = tw_dot(normal, line->piece->tension);
     double s = rate > 0.0 && !tw_piece_varies(line->piece) ? -at_zero / rate : -1.0;
     if (s > line->s0 && s < line->s1) {
         double r[3];
         tw_piece_position(line->material, line->piece, s, r);
-        if (r[0] >= from && r[0] <= to) {
-            offer(best, r[2] - t->z0 - t->slope * (r[0] - t->x0), r[0]);
+        double x = tw_route_station(&line->leg, r);
+        if (x >= from && x <= to) {
+            offer(best, r[2] - t->z0 - t->slope * (x - t->x0), x);
             return;
         }
-        offer_place(line, t, at_station(line, r[0] < from ? from : to), best);
+        offer_place(line, t, at_station(line, x < from ? from : to), best);
         return;
     }
     if (tw_piece_varies(line->piece)) {
@@ -145,26 +150,29 @@ static double bound(const stretch *line, const double *x, const double *z)
     return near < far ? near : far;
 }
 
-static stretch make_stretch(const tw_material *material, const tw_piece *piece, double s0, double s1)
+static stretch make_stretch(const tw_material *material, const tw_piece *piece, const tw_route_leg *leg, double s0,
+                            double s1)
 {
-    stretch line = {.material = material, .piece = piece, .s0 = s0, .s1 = s1};
-    line.convex = piece->load[0] == 0.0 && piece->load[2] <= 0.0 && piece->tension[0] > 0.0 && piece->ramp[0] == 0.0
-                  && piece->load[2] + piece->length_m * piece->ramp[2] <= 0.0;
+    stretch line = {.material = material, .piece = piece, .leg = *leg, .s0 = s0, .s1 = s1};
+    double level = fabs(tw_route_rate(leg, piece->load)); /* rounding leaves some of it where the leg turns from x */
+    line.convex = level <= 1e-13 * fabs(piece->load[2]) && piece->load[2] <= 0.0 && tw_route_rate(leg, piece->tension) > 0.0
+                  && tw_route_rate(leg, piece->ramp) == 0.0 && piece->load[2] + piece->length_m * piece->ramp[2] <= 0.0;
     double first[3] = {0.0}, last[3] = {0.0};
     tw_piece_position(material, piece, s0, first);
     tw_piece_position(material, piece, s1, last);
-    line.forward = last[0] >= first[0];
-    line.x0 = fmin(first[0], last[0]);
-    line.x1 = fmax(first[0], last[0]);
+    double x0 = tw_route_station(leg, first), x1 = tw_route_station(leg, last);
+    line.forward = x1 >= x0;
+    line.x0 = fmin(x0, x1);
+    line.x1 = fmax(x0, x1);
     line.tangents_per_m = line.x1 > line.x0 ? (TANGENTS - 1) / (line.x1 - line.x0) : 0.0;
     for (int i = 0; line.convex && i < TANGENTS; i++) {
         double r[3], t[3];
         double s = s0 + (s1 - s0) * i / (TANGENTS - 1);
         tw_piece_position(material, piece, s, r);
         tw_piece_tension(piece, s, t);
-        line.tangent_x[i] = r[0];
+        line.tangent_x[i] = tw_route_station(leg, r);
         line.tangent_z[i] = r[2];
-        line.tangent_slope[i] = t[2] / t[0];
+        line.tangent_slope[i] = t[2] / tw_route_rate(leg, t);
     }
     return line;
 }
@@ -227,14 +235,15 @@ int tw_ground_clearance(const tw_section *section, size_t span, size_t crossing,
     if (crossing == TW_NONE && section->project->ground_count < 2) {
         return 0;
     }
+    const tw_route_leg leg = tw_route_leg_of(section->project, span);
     for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
         const tw_piece *piece = &section->pieces[p];
         double turn;
-        int turns = tw_piece_turns(piece, &turn);
-        stretch line = make_stretch(&section->materials[span], piece, 0.0, turns ? turn : piece->length_m);
+        int turns = tw_piece_turns(piece, &leg, &turn);
+        stretch line = make_stretch(&section->materials[span], piece, &leg, 0.0, turns ? turn : piece->length_m);
         judge_stretch(section, &line, crossing, from_m, to_m, &best);
         if (turns) {
-            line = make_stretch(&section->materials[span], piece, turn, piece->length_m);
+            line = make_stretch(&section->materials[span], piece, &leg, turn, piece->length_m);
             judge_stretch(section, &line, crossing, from_m, to_m, &best);
         }
     }

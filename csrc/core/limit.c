@@ -3,6 +3,8 @@
 #include <math.h>
 
 #include "ground.h"
+#include "hold.h"
+#include "route.h"
 #include "vector.h"
 
 double tw_limit_utilisation_most(double value, double most)
@@ -52,18 +54,19 @@ static void judge_clearance(const tw_limit *limit, const tw_section *section, si
 /* Station of the largest tension: it sits at a piece's end. */
 static double tension_station(const tw_section *section, size_t span, double most)
 {
+    const tw_route_leg leg = tw_route_leg_of(section->project, span);
     for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
         const tw_piece *piece = &section->pieces[p];
         double t[3];
         if (tw_norm(piece->tension) >= most * (1.0 - 1e-12)) {
-            return piece->start[0];
+            return tw_route_station(&leg, piece->start);
         }
         tw_piece_tension(piece, piece->length_m, t);
         if (tw_norm(t) >= most * (1.0 - 1e-12) && p + 1 < section->piece_first[span + 1]) {
-            return piece[1].start[0];
+            return tw_route_station(&leg, piece[1].start);
         }
     }
-    return section->clamp[3 * (span + 1)];
+    return tw_route_station(&leg, section->clamp + 3 * (span + 1));
 }
 
 static void judge_tension(const tw_project *project, const tw_limit *limit, const tw_section *section, size_t span,
@@ -136,9 +139,12 @@ static int judge_lifted(const tw_section *section, size_t support, const tw_limi
 {
     const tw_support *at = &section->project->supports[support];
     const double *c = section->clamp + 3 * support;
-    double x = c[0] - at->station_m, y = c[1] - at->offset_m, z = c[2] - at->elevation_m;
-    double length = at->hanger_length_m;
-    if (at->hold != TW_HOLD_HANGER || (z < 0.0 && sqrt(x * x + y * y + z * z) >= length * (1.0 - 1e-6))) {
+    const double swing[3] = {c[0] - at->station_m, c[1] - at->offset_m, c[2] - at->elevation_m};
+    double z = swing[2], away[3];
+    double length = tw_hold_drop(at);
+    if (at->hold != TW_HOLD_HANGER
+        || (z < 0.0
+            && tw_hold_reach(at, section->ahead + 2 * support, swing, away) >= at->hanger_length_m * (1.0 - 1e-6))) {
         return 0;
     }
     double value = fmin(down_N, 0.0);
@@ -166,7 +172,7 @@ static void judge_support(const tw_project *project, const tw_limit *limit, cons
             offer_most(place, component(&state, limit->direction), most);
         }
     }
-    place->station_m = at->station_m;
+    place->station_m = tw_route_support_station(project, support);
 }
 
 static int looks_at_supports(tw_limit_kind kind)

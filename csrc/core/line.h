@@ -1,7 +1,7 @@
 /* line: the plain structs that describe a line, its supports, loading and limits, and what settles out of them.
  *
  * SI throughout, the unit in the name. Axes: x along the route (station), y across it (positive to the left when
- * looking ahead), z up (elevation). Natural length s runs along the unstretched line at the stringing temperature,
+ * looking ahead), z up (elevation); of a route that turns x is east and y north, and route.h says what a station is. Natural length s runs along the unstretched line at the stringing temperature,
  * from the first support. NaN marks an optional number that is not given. Nothing here owns memory unless its
  * comment says so.
  */
@@ -48,17 +48,19 @@ typedef enum tw_hold {
 } tw_hold;
 
 typedef struct tw_support {
-    double station_m;
-    double offset_m;    /* y */
+    double station_m;   /* x: station on a straight route, east on one that turns */
+    double offset_m;    /* y: offset to the left, or north */
     double elevation_m; /* of the point where the hold is fixed */
     double height_m;    /* above the ground profile where given so (elevation follows it when moved); else NaN */
     tw_hold hold;
-    double hanger_length_m;           /* hanger, > 0; link of a swinging sheave, 0: the sheave is fixed */
+    double hanger_length_m;           /* hanger, > 0, of each string; link of a swinging sheave, 0: the sheave is fixed */
+    double hanger_spread_m;           /* hanger only: V, distance between its upper ends, across; 0: a single string */
     double hanger_weight_N;           /* hanger and sheave, >= 0; half of it acts at the clamp */
     double hanger_wind_area_m2;       /* hanger and sheave: drag area of the string (area times drag), half of it at the clamp */
     double sheave_friction;           /* sheave only: mu of T_1 = T_2 e^(mu theta), >= 0; enters the crew's range alone */
-    double stiffness_along_N_per_m;   /* post only; infinity: rigid */
-    double stiffness_across_N_per_m;  /* post only; infinity: rigid */
+    double stiffness_along_N_per_m;   /* anchor or post, in the support's axes (route.h); infinity: rigid, as is an anchor's */
+    double stiffness_across_N_per_m;  /* ... that is 0 or NaN */
+    double stiffness_vertical_N_per_m;/* anchor only */
     double capacity_along_N;          /* capacities: NaN where not given */
     double capacity_across_N;
     double capacity_down_N;
@@ -210,6 +212,7 @@ typedef struct tw_project {
     tw_line line;
     size_t support_count; /* >= 2 */
     const tw_support *supports;
+    const double *route_station_m; /* [support_count] by tw_route_measure where the route turns; NULL: straight */
     size_t ground_count; /* 0, or >= 2 */
     const double *ground_station_m; /* strictly increasing */
     const double *ground_elevation_m;
@@ -277,13 +280,16 @@ typedef struct tw_span_state {
     double small_deflection_sag_m;/* taut-string sag under the same loads and horizontal tension */
 } tw_span_state;
 
-/* Force of the line and hold on the support, and where the line is held. */
+/* Force of the line and hold on the support in its axes (route.h), and where the line is held. */
 typedef struct tw_support_state {
     double along_N;   /* positive ahead */
     double across_N;  /* positive to the left */
     double down_N;    /* positive downwards; negative is uplift */
     double resultant_N;
     double swing_rad; /* of a hanger from the vertical; else NaN */
+    double swing_along_rad;  /* the same, seen from the side: positive ahead */
+    double swing_across_rad; /* seen along the line: positive to the left */
+    double station_m; /* where the support stands */
     double position_m[3];
 } tw_support_state;
 
@@ -291,6 +297,7 @@ typedef struct tw_mark_state {
     double at_length_m; /* natural length from the first support */
     double tension_N;
     double tension_beyond_N; /* just beyond it: the same but where a point load acts */
+    double station_m;
     double position_m[3];
 } tw_mark_state;
 

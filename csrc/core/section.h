@@ -50,6 +50,7 @@ typedef struct tw_section {
     double *clamp;           /* [3 (span_count + 1)] where the line is held; owned */
     double *clamp_load;      /* [3 (span_count + 1)] G_j: load that acts at the clamp itself; owned */
     double *hold_force;      /* [3 (span_count + 1)] force of each hold on the line; owned */
+    double *ahead;           /* [2 (span_count + 1)] axes of each support, see route.h; owned */
     double *load_length_m;   /* [loads of the condition] natural length of each point load, else NaN; owned */
     double *load_from_m;     /* [loads of the condition] natural length where each load begins; owned */
     double *load_to_m;       /* [loads of the condition] and ends; owned */
@@ -94,10 +95,13 @@ tw_status tw_section_solve(tw_section *section, const tw_options *options, int w
 
 /* Natural length from the first support <-> span and length within it. */
 void tw_section_locate(const tw_section *section, double s, size_t *span, double *within);
-/* First natural length at which the line passes a station; TW_ERROR_PLACE when it does not. */
+/* First natural length at which the line passes a station, or the clamp where an angle point skips it; TW_ERROR_PLACE when
+ * there is none. */
 tw_status tw_section_at_station(const tw_section *section, double station_m, double *s);
 /* Position and tension vector at a natural length from the first support; either may be NULL. */
 void tw_section_at(const tw_section *section, double s, double position[3], double tension[3]);
+/* Station of the line's position at a natural length. */
+double tw_section_station(const tw_section *section, double s, const double position[3]);
 
 /* Tension vectors just before and just beyond a place; they differ where a point load acts. */
 void tw_section_beside(const tw_section *section, double s, double before[3], double beyond[3]);

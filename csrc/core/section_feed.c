@@ -252,8 +252,10 @@ static void put_closing(const feed_run *run, size_t r)
     double in[3], out[3];
     double *lower = run->lower + BLOCK * r, *diag = run->diag + BLOCK * r, *upper = run->upper + BLOCK * r;
     double near[9] = {0.0}, far[9] = {0.0}, column[3] = {0.0, 0.0, 0.0};
-    tw_hold_flexibility(&section->project->supports[ends[0]], section->hold_force + 3 * ends[0], section->soft_N, 1.0, near);
-    tw_hold_flexibility(&section->project->supports[ends[1]], section->hold_force + 3 * ends[1], section->soft_N, 1.0, far);
+    tw_hold_flexibility(&section->project->supports[ends[0]], section->ahead + 2 * ends[0], section->hold_force + 3 * ends[0],
+                        section->soft_N, 1.0, near);
+    tw_hold_flexibility(&section->project->supports[ends[1]], section->ahead + 2 * ends[1], section->hold_force + 3 * ends[1],
+                        section->soft_N, 1.0, far);
     const double *q_in = first_piece(section, ends[0])->load, *q_out = last_piece(section, ends[1] - 1)->load;
     end_per_length(run, r, in, out);
     put_block(diag, 1.0, bend);

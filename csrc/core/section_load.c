@@ -4,6 +4,7 @@
 
 #include "hold.h"
 #include "load.h"
+#include "route.h"
 #include "section_load.h"
 #include "vector.h"
 
@@ -327,6 +328,7 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
     for (size_t k = 0; k < section->span_count; k++) {
         section->start_m[k + 1] = section->start_m[k] + length_m[k];
     }
+    tw_route_ahead_all(project, section->ahead);
     tw_status status = place_loads(section, &on);
     if (status != TW_OK) {
         return status;

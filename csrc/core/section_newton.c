@@ -50,7 +50,7 @@ static void balance_holds(tw_section *section, const tw_section_scratch *s)
             double ahead = j < section->span_count ? section->pull[3 * j + (size_t)i] : 0.0;
             F[i] = section->slack[j] ? 0.0 : behind - ahead - section->clamp_load[3 * j + (size_t)i];
         }
-        tw_hold_swing(&section->project->supports[j], F, section->soft_N, s->swing + 3 * j);
+        tw_hold_swing(&section->project->supports[j], section->ahead + 2 * j, F, section->soft_N, s->swing + 3 * j);
     }
 }
 
@@ -110,12 +110,12 @@ static int newton_step(tw_section *section, const tw_section_scratch *s)
         const size_t ends[2] = {section->run_first[r], section->run_first[r + 1]};
         memcpy(diag, block, sizeof block);
         for (int e = 0; e < 2; e++) {
-            tw_hold_flexibility(&section->project->supports[ends[e]], section->hold_force + 3 * ends[e],
-                                section->soft_N, 1.0, diag);
+            tw_hold_flexibility(&section->project->supports[ends[e]], section->ahead + 2 * ends[e],
+                                section->hold_force + 3 * ends[e], section->soft_N, 1.0, diag);
         }
         if (r + 1 < n) {
-            tw_hold_flexibility(&section->project->supports[ends[1]], section->hold_force + 3 * ends[1],
-                                section->soft_N, -1.0, s->off + 9 * r);
+            tw_hold_flexibility(&section->project->supports[ends[1]], section->ahead + 2 * ends[1],
+                                section->hold_force + 3 * ends[1], section->soft_N, -1.0, s->off + 9 * r);
         }
     }
     if (!tw_couple_factor(s->diag, s->off, n)) {

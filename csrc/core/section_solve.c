@@ -35,7 +35,8 @@ static tw_status start_pulls(tw_section *section)
         const tw_support *near = &section->project->supports[k];
         double chord[3], mean[3], p[3], h, v;
         tw_hold_chord(near, near + 1, chord);
-        chord[2] += tw_hold_link_m(near) - tw_hold_link_m(near + 1);
+        chord[2] += tw_hold_drop(near);
+        chord[2] -= tw_hold_drop(near + 1);
         mean_load(section, k, mean);
         double size = tw_norm(mean);
         for (int i = 0; i < 3; i++) {
@@ -88,7 +89,7 @@ static void finish(tw_section *section, const tw_section_scratch *s)
         double a[3];
         tw_hold_attachment(support, a);
         tw_axpy(a, -1.0, datum, a);
-        lower += tw_dot(F, a) + tw_hold_energy(support, F, section->soft_N);
+        lower += tw_dot(F, a) + tw_hold_energy(support, section->ahead + 2 * j, F, section->soft_N);
     }
     for (size_t r = 0; r < s->runs; r++) {
         const double *start = section->clamp + 3 * section->run_first[r];
@@ -165,13 +166,13 @@ static size_t tighten(tw_section *section, const tw_section_scratch *s)
     size_t count = 0;
     place_clamps(section, s);
     for (size_t j = 1; j < section->span_count; j++) {
-        double swing[3];
+        double swing[3], away[3];
         tw_hold_attachment(&section->project->supports[j], swing);
         tw_axpy(section->clamp + 3 * j, -1.0, swing, swing);
-        double size = tw_norm(swing);
+        double size = tw_hold_reach(&section->project->supports[j], section->ahead + 2 * j, swing, away);
         if (section->slack[j] && size > section->project->supports[j].hanger_length_m * (1.0 + 1e-11)) {
             section->slack[j] = 0;
-            tw_axpy(section->pull + 3 * j, force / size, swing, section->pull + 3 * j);
+            tw_axpy(section->pull + 3 * j, force / size, away, section->pull + 3 * j);
             count++;
         }
     }
@@ -204,7 +205,8 @@ static tw_status iterate_slack(tw_section *section, const tw_options *options, t
 static tw_status iterate_hardened(tw_section *section, const tw_options *options, tw_section_scratch *s, double scale)
 {
     for (size_t j = 1; j < section->span_count; j++) {
-        double reach = tw_norm(s->swing + 3 * j);
+        double away[3];
+        double reach = tw_hold_reach(&section->project->supports[j], section->ahead + 2 * j, s->swing + 3 * j, away);
         section->slack[j] = is_hanger(section, j) && reach < section->project->supports[j].hanger_length_m * (1.0 - 1e-4);
     }
     section->soft_N = 0.0;

@@ -2,6 +2,7 @@
 #include <math.h>
 
 #include "hold.h"
+#include "route.h"
 #include "section.h"
 #include "vector.h"
 
@@ -72,35 +73,60 @@ void tw_section_beside(const tw_section *section, double s, double before[3], do
     }
 }
 
-static int passes(const tw_material *material, const tw_piece *piece, double s0, double s1, double station_m, double *s)
+static int passes(const tw_material *material, const tw_piece *piece, const tw_route_leg *leg, double s0, double s1,
+                  double station_m, double *s)
 {
-    double a[3], b[3];
+    double r[3];
     double slack = 1e-9 * (1.0 + fabs(station_m));
-    tw_piece_position(material, piece, s0, a);
-    tw_piece_position(material, piece, s1, b);
-    if (!(station_m >= fmin(a[0], b[0]) - slack && station_m <= fmax(a[0], b[0]) + slack && isfinite(station_m))) {
+    tw_piece_position(material, piece, s0, r);
+    double a = tw_route_station(leg, r);
+    tw_piece_position(material, piece, s1, r);
+    double b = tw_route_station(leg, r);
+    if (!(station_m >= fmin(a, b) - slack && station_m <= fmax(a, b) + slack && isfinite(station_m))) {
         return 0;
     }
-    *s = tw_piece_at_station(material, piece, s0, s1, a[0], b[0], station_m);
+    *s = tw_piece_at_station(material, piece, leg, s0, s1, a, b, station_m);
     return 1;
+}
+
+/* First place of a span that passes a station. */
+static int span_passes(const tw_section *section, size_t span, double station_m, double *s)
+{
+    const tw_route_leg leg = tw_route_leg_of(section->project, span);
+    double passed = section->start_m[span];
+    for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
+        const tw_piece *piece = &section->pieces[p];
+        double turn, at;
+        int turns = tw_piece_turns(piece, &leg, &turn);
+        if (passes(&section->materials[span], piece, &leg, 0.0, turns ? turn : piece->length_m, station_m, &at)
+            || (turns && passes(&section->materials[span], piece, &leg, turn, piece->length_m, station_m, &at))) {
+            *s = passed + at;
+            return 1;
+        }
+        passed += piece->length_m;
+    }
+    return 0;
+}
+
+/* A clamp that stands inside of an angle point ends one leg before the next begins: is the station between? */
+static int clamp_skips(const tw_section *section, size_t support, double station_m)
+{
+    const double *clamp = section->clamp + 3 * support;
+    const tw_route_leg before = tw_route_leg_of(section->project, support - 1);
+    const tw_route_leg after = tw_route_leg_of(section->project, support);
+    return station_m >= tw_route_station(&before, clamp) && station_m <= tw_route_station(&after, clamp);
 }
 
 /* First place of the spans from, ..., to - 1 that passes a station. */
 static tw_status spans_at_station(const tw_section *section, size_t from, size_t to, double station_m, double *s)
 {
-    double passed = section->start_m[from];
     for (size_t k = from; k < to; k++) {
-        const tw_material *material = &section->materials[k];
-        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
-            const tw_piece *piece = &section->pieces[p];
-            double turn, at;
-            int turns = tw_piece_turns(piece, &turn);
-            if (passes(material, piece, 0.0, turns ? turn : piece->length_m, station_m, &at)
-                || (turns && passes(material, piece, turn, piece->length_m, station_m, &at))) {
-                *s = passed + at;
-                return TW_OK;
-            }
-            passed += piece->length_m;
+        if (span_passes(section, k, station_m, s)) {
+            return TW_OK;
+        }
+        if (section->project->route_station_m && k + 1 < section->span_count && clamp_skips(section, k + 1, station_m)) {
+            *s = section->start_m[k + 1];
+            return TW_OK;
         }
     }
     return TW_ERROR_PLACE;
@@ -110,9 +136,19 @@ static tw_status spans_at_station(const tw_section *section, size_t from, size_t
 tw_status tw_section_at_station(const tw_section *section, double station_m, double *s)
 {
     size_t n = section->span_count;
-    size_t k = last_below(section->clamp, 3, n, station_m);
+    const double *route = section->project->route_station_m;
+    size_t k = route ? last_below(route, 1, n, station_m) : last_below(section->clamp, 3, n, station_m);
     tw_status status = spans_at_station(section, k > 0 ? k - 1 : 0, k + 2 < n ? k + 2 : n, station_m, s);
     return status == TW_OK ? status : spans_at_station(section, 0, n, station_m, s);
+}
+
+double tw_section_station(const tw_section *section, double s, const double position[3])
+{
+    size_t span;
+    double within;
+    tw_section_locate(section, s, &span, &within);
+    const tw_route_leg leg = tw_route_leg_of(section->project, span);
+    return tw_route_station(&leg, position);
 }
 
 /* A span's own frame between its present clamps. */
@@ -231,6 +267,7 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     size_t count = section->piece_first[span + 1] - section->piece_first[span];
     const tw_material *material = &section->materials[span];
     const chord_frame frame = chord_of(section, span);
+    const tw_route_leg leg = tw_route_leg_of(section->project, span);
     const double slope = frame.rise / frame.span;
     const double down[3] = {slope * frame.u[0], slope * frame.u[1], -1.0};
     const double left[3] = {-frame.u[1], frame.u[0], 0.0};
@@ -245,33 +282,49 @@ void tw_section_span_state(const tw_section *section, size_t span, tw_span_state
     state->sag_m = fmax(0.0, tw_span_extreme(material, pieces, count, down, frame.start, &at));
     const tw_piece *piece = piece_within(section, span, &at);
     tw_piece_position(material, piece, at, position);
-    state->sag_station_m = position[0];
+    state->sag_station_m = tw_route_station(&leg, position);
     state->slant_sag_m = slant_sag(material, pieces, count, &frame);
     state->blowout_m = fmax(0.0, fmax(tw_span_extreme(material, pieces, count, left, frame.start, &at),
                                       tw_span_extreme(material, pieces, count, right, frame.start, &at)));
     tw_span_extreme(material, pieces, count, fall, frame.start, &at);
     piece = piece_within(section, span, &at);
     tw_piece_position(material, piece, at, position);
-    state->low_station_m = position[0];
+    state->low_station_m = tw_route_station(&leg, position);
     state->low_elevation_m = position[2];
     state->permanent_strain = permanent_strain(section, span, state->horizontal_tension_N);
     state->small_deflection_sag_m = small_deflection_sag(pieces, count, section->length_m[span], frame.span,
                                                          hypot(frame.span, frame.rise), state->horizontal_tension_N);
 }
 
+/* Angles of a hanger from the vertical: its own, and as seen from the side and along the line. */
+static void hanger_swing(const tw_section *section, size_t support, tw_support_state *state)
+{
+    const tw_support *at = &section->project->supports[support];
+    const double *c = section->clamp + 3 * support;
+    const double swing[3] = {c[0] - at->station_m, c[1] - at->offset_m, c[2] - at->elevation_m};
+    double own[3];
+    tw_route_into_axes(section->ahead + 2 * support, swing, own);
+    state->swing_rad = atan2(hypot(swing[0], swing[1]), -swing[2]);
+    state->swing_along_rad = atan2(own[0], -swing[2]);
+    state->swing_across_rad = atan2(own[1], -swing[2]);
+}
+
 void tw_section_support_state(const tw_section *section, size_t support, tw_support_state *state)
 {
     const tw_support *at = &section->project->supports[support];
-    const double *F = section->hold_force + 3 * support;
     int hangs = tw_hold_link_m(at) > 0.0;
+    double F[3];
+    tw_route_into_axes(section->ahead + 2 * support, section->hold_force + 3 * support, F);
     state->along_N = -F[0];
     state->across_N = -F[1];
     state->down_N = F[2] + (hangs ? 0.5 * section->factor_weight * at->hanger_weight_N : 0.0);
     state->resultant_N = sqrt(F[0] * F[0] + F[1] * F[1] + state->down_N * state->down_N);
+    state->station_m = tw_route_support_station(section->project, support);
     tw_copy(section->clamp + 3 * support, state->position_m);
-    const double *c = state->position_m;
-    double aside = hypot(c[0] - at->station_m, c[1] - at->offset_m);
-    state->swing_rad = hangs ? atan2(aside, at->elevation_m - c[2]) : (double)NAN;
+    state->swing_rad = state->swing_along_rad = state->swing_across_rad = (double)NAN;
+    if (hangs) {
+        hanger_swing(section, support, state);
+    }
 }
 
 double tw_section_stored(const tw_section *section)

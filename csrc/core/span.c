@@ -233,18 +233,18 @@ void tw_piece_stationary(const tw_piece *piece, const double direction[3], doubl
     }
 }
 
-int tw_piece_turns(const tw_piece *piece, double *s)
+int tw_piece_turns(const tw_piece *piece, const tw_route_leg *leg, double *s)
 {
     double places[2];
-    const double ahead[3] = {1.0, 0.0, 0.0};
+    const double ahead[3] = {leg->ahead[0], leg->ahead[1], 0.0};
     tw_piece_stationary(piece, ahead, places);
     *s = places[0] >= 0.0 ? places[0] : places[1];
     return *s > 0.0 && *s < piece->length_m;
 }
 
 /* Newton on the station, kept inside a bracket that bisection would halve. */
-double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double x0,
-                           double x1, double station_m)
+double tw_piece_at_station(const tw_material *material, const tw_piece *piece, const tw_route_leg *leg, double s0, double s1,
+                           double x0, double x1, double station_m)
 {
     double run = x1 - x0;
     double low = s0, high = s1;
@@ -253,7 +253,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
         double r[3], t[3];
         s = s >= low && s <= high ? s : 0.5 * (low + high);
         tw_piece_position(material, piece, s, r);
-        double miss = r[0] - station_m;
+        double miss = tw_route_station(leg, r) - station_m;
         if ((miss <= 0.0) == (run >= 0.0)) {
             low = s;
         } else {
@@ -261,7 +261,7 @@ double tw_piece_at_station(const tw_material *material, const tw_piece *piece, d
         }
         tw_piece_tension(piece, s, t);
         double size = tw_norm(t);
-        double step = miss * size / (t[0] * tw_material_stretch(material, size));
+        double step = miss * size / (tw_route_rate(leg, t) * tw_material_stretch(material, size));
         s -= step;
         if (!(fabs(step) > 1e-8 * (s1 - s0))) { /* quadratic: the next step would be rounding */
             break;

@@ -17,6 +17,7 @@
 
 #include "line.h"
 #include "material.h"
+#include "route.h"
 
 typedef struct tw_piece {
     double length_m;   /* natural, >= 0 */
@@ -56,14 +57,14 @@ void tw_piece_position(const tw_material *material, const tw_piece *piece, doubl
 /* Natural lengths within a piece where direction . t = 0, -1 for none: one, or up to two where the load varies. */
 void tw_piece_stationary(const tw_piece *piece, const double direction[3], double places[2]);
 
-/* The place within a piece where the station turns back (t_x = 0): returns 1 and where, or 0. The first of two under a load
- * along the route that varies. */
-int tw_piece_turns(const tw_piece *piece, double *s);
+/* The place within a piece where the station turns back (no tension along the leg): returns 1 and where, or 0. The first of
+ * two under a load along the route that varies. */
+int tw_piece_turns(const tw_piece *piece, const tw_route_leg *leg, double *s);
 
 /* Natural length at which the piece passes a station, between s0 and s1 (stations x0 and x1), where the station grows or
  * falls throughout. */
-double tw_piece_at_station(const tw_material *material, const tw_piece *piece, double s0, double s1, double x0,
-                           double x1, double station_m);
+double tw_piece_at_station(const tw_material *material, const tw_piece *piece, const tw_route_leg *leg, double s0, double s1,
+                           double x0, double x1, double station_m);
 
 /* Hang `count` pieces from `start` with tension `pull` at the span's start: fills tension and start of each piece;
  * writes the end position, the end tension, and the 3x3 flexibility (may be NULL). O(count). */

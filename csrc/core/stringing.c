@@ -5,6 +5,7 @@
 
 #include "hold.h"
 #include "uniform_curved.h"
+#include "route.h"
 #include "uniform.h"
 #include "vector.h"
 
@@ -38,7 +39,7 @@ static void hang_plumb(strung *line)
         const tw_support *support = &line->project->supports[j];
         line->lifted[j] = 0.0;
         line->swing[3 * j] = line->swing[3 * j + 1] = 0.0;
-        line->swing[3 * j + 2] = -tw_hold_link_m(support);
+        line->swing[3 * j + 2] = -tw_hold_drop(support);
     }
 }
 
@@ -86,7 +87,7 @@ static double follow_holds(strung *line, double share)
     for (size_t j = 0; j <= line->span_count; j++) {
         const tw_support *support = &line->project->supports[j];
         double F[3] = {0.0, 0.0, tw_hold_link_m(support) > 0.0 ? 0.5 * support->hanger_weight_N : 0.0};
-        double swing[3];
+        double swing[3], ahead[2];
         if (j > 0) {
             tw_axpy(F, 1.0, line->pull + 3 * (j - 1), F);
             F[2] += weight * line->length_m[j - 1];
@@ -99,7 +100,8 @@ static double follow_holds(strung *line, double share)
             F[0] = F[1] = 0.0;
             F[2] = 1.0;
         }
-        tw_hold_swing(support, F, 0.0, swing);
+        tw_route_ahead(line->project, j, ahead);
+        tw_hold_swing(support, ahead, F, 0.0, swing);
         tw_axpy(swing, -1.0, line->swing + 3 * j, swing);
         moved = fmax(moved, tw_norm(swing));
         tw_axpy(line->swing + 3 * j, share, swing, line->swing + 3 * j);

@@ -11,6 +11,7 @@ static void mark_at(const tw_section *section, double s, tw_mark_state *state)
     state->at_length_m = s;
     tw_section_at(section, s, state->position_m, tension);
     state->tension_N = state->tension_beyond_N = tw_norm(tension);
+    state->station_m = tw_section_station(section, s, state->position_m);
 }
 
 /* A point load: the tension on both its sides. */
@@ -58,7 +59,7 @@ static void report_loads(const tw_section *section, size_t count, tw_settled *ou
 {
     for (size_t i = 0; i < count; i++) {
         if (isnan(section->load_length_m[i])) {
-            const tw_mark_state nowhere = {NAN, NAN, NAN, {NAN, NAN, NAN}};
+            const tw_mark_state nowhere = {NAN, NAN, NAN, NAN, {NAN, NAN, NAN}};
             out->loads[i] = nowhere;
         } else {
             load_at(section, section->load_length_m[i], &out->loads[i]);
@@ -77,6 +78,8 @@ static tw_status report_supports(tw_trial *trial, size_t condition, const tw_sec
         tw_section_support_state(section, j, &out->supports[j]);
         tw_section_support_state(bare, j, &swing);
         out->supports[j].swing_rad = swing.swing_rad;
+        out->supports[j].swing_along_rad = swing.swing_along_rad;
+        out->supports[j].swing_across_rad = swing.swing_across_rad;
     }
     return status;
 }

@@ -5,6 +5,7 @@
 
 #include "alloc.h"
 #include "clock.h"
+#include "route.h"
 #include "settle.h"
 #include "stringing.h"
 #include "window_search.h"
@@ -84,6 +85,7 @@ static void run_free(tw_window_run *run)
 {
     tw_trial_free(run->trial);
     tw_free(run->supports);
+    tw_free(run->route_m);
     tw_free(run->limits);
     tw_free(run->u);
     tw_free(run->masked);
@@ -104,12 +106,14 @@ static tw_status run_create(const tw_project *project, const tw_options *options
     run->best_pull_N = NAN;
     run->deadline = tw_clock_deadline(options->seconds_most);
     run->supports = tw_calloc(project->support_count, sizeof *run->supports);
+    run->route_m = project->route_station_m ? tw_calloc(project->support_count, sizeof(double)) : NULL;
     run->limits = tw_calloc(project->limit_count + 1, sizeof *run->limits);
     run->u = tw_calloc(window->row_count + 1, sizeof(double));
     run->masked = tw_calloc(window->row_count + 1, 1);
     run->judged = tw_calloc(window->row_count + 1, 1);
     run->astray = tw_calloc(window->row_count + 1, sizeof(size_t));
-    if (!run->supports || !run->limits || !run->u || !run->masked || !run->judged || !run->astray) {
+    if (!run->supports || !run->limits || !run->u || !run->masked || !run->judged || !run->astray
+        || (project->route_station_m && !run->route_m)) {
         goto fail;
     }
     memcpy(run->supports, project->supports, project->support_count * sizeof *run->supports);
@@ -118,6 +122,10 @@ static tw_status run_create(const tw_project *project, const tw_options *options
     }
     run->project.supports = run->supports;
     run->project.limits = run->limits;
+    if (run->route_m) {
+        tw_route_measure(run->supports, project->support_count, run->route_m);
+        run->project.route_station_m = run->route_m;
+    }
     run->trial = tw_trial_create(&run->project);
     if (!run->trial) {
         goto fail;

@@ -2,6 +2,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "route.h"
 #include "window_search.h"
 
 static const double FURTHEST_M = 200.0;   /* no relaxation moves a support further */
@@ -192,14 +193,14 @@ static double furthest(const tw_window_run *run, size_t support, tw_relax_kind k
 {
     const tw_project *p = &run->project;
     double most = FURTHEST_M;
-    double x = p->supports[support].station_m;
+    double x = tw_route_support_station(p, support);
     if (kind == TW_RELAX_SUPPORT_HEIGHT) {
         return most;
     }
     if (sign < 0.0 && support > 0) {
-        most = fmin(most, 0.9 * (x - p->supports[support - 1].station_m));
+        most = fmin(most, 0.9 * (x - tw_route_support_station(p, support - 1)));
     } else if (sign > 0.0 && support + 1 < p->support_count) {
-        most = fmin(most, 0.9 * (p->supports[support + 1].station_m - x));
+        most = fmin(most, 0.9 * (tw_route_support_station(p, support + 1) - x));
     }
     if (p->ground_count > 0) {
         most = fmin(most, sign < 0.0 ? x - p->ground_station_m[0] : p->ground_station_m[p->ground_count - 1] - x);
@@ -265,7 +266,7 @@ static void relax_support(tw_window_run *run, size_t support, tw_relax_kind kind
     }
     if (by != 0.0 && run->stop == TW_OK && moved_f(&m, by) <= 1.0) {
         const tw_support *at = &run->supports[support];
-        double to = kind == TW_RELAX_SUPPORT_STATION ? at->station_m : at->elevation_m;
+        double to = kind == TW_RELAX_SUPPORT_STATION ? tw_route_support_station(&run->project, support) : at->elevation_m;
         const tw_window_relax entry = {kind, TW_NONE, support, by, to, m.pull_N};
         w->relax[w->relax_count++] = entry;
     }

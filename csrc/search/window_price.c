@@ -2,6 +2,7 @@
 #include <math.h>
 
 #include "ground.h"
+#include "route.h"
 #include "window_search.h"
 
 static const double MOVE_M = 1e-3;        /* central differences of a support's place */
@@ -23,9 +24,18 @@ void tw_window_move(tw_window_run *run, const tw_support *home, size_t support, 
 {
     tw_support *at = &run->supports[support];
     *at = *home;
+    if (run->route_m) {
+        tw_route_measure(run->supports, run->project.support_count, run->route_m);
+    }
     if (station) {
-        at->station_m += by;
-        double ground = tw_ground_elevation(&run->project, at->station_m);
+        double ahead[2];
+        tw_route_ahead(&run->project, support, ahead); /* of the support at home */
+        at->station_m += by * ahead[0];
+        at->offset_m += by * ahead[1];
+        if (run->route_m) {
+            tw_route_measure(run->supports, run->project.support_count, run->route_m);
+        }
+        double ground = tw_ground_elevation(&run->project, tw_route_support_station(&run->project, support));
         if (!isnan(home->height_m) && !isnan(ground)) {
             at->elevation_m = ground + home->height_m;
         }

@@ -12,6 +12,7 @@ enum { TW_WINDOW_WORKING_MOST = 24 };     /* rows that one call of the optimiser
 typedef struct tw_window_run {
     tw_project project;    /* the user's, with `supports` in the place of its own, so that a support can be moved */
     tw_support *supports;  /* owned */
+    double *route_m;       /* [support_count] stations of `supports` where the route turns, else NULL; owned */
     tw_limit *limits;      /* owned copy, so that an allowance can be changed */
     const tw_options *options;
     tw_optimiser optimiser;
@@ -70,8 +71,8 @@ double tw_window_peak(tw_window_run *run, double low_N, double high_N, double *p
 /* Boundary between a pull where the masked rows hold and one where they do not: the last pull that holds. */
 double tw_window_boundary(tw_window_run *run, double holds_N, double fails_N);
 
-/* Put a support at its home plus a move along the route (station 1) or upwards; one that is given by height follows the
- * ground. */
+/* Put a support at its home plus a move ahead in its own axes (station 1) or upwards; one that is given by height follows
+ * the ground. */
 void tw_window_move(tw_window_run *run, const tw_support *home, size_t support, int station, double by);
 
 void tw_window_prices(tw_window_run *run);

@@ -2,6 +2,7 @@
 #include "alloc_count.h"
 #include "expect.h"
 #include "fixture.h"
+#include "route.h"
 #include "settle.h"
 #include "stringing.h"
 #include "trial.h"
@@ -151,5 +152,9 @@ int main(void)
     limits[0].most = 20e3;
     limits[2].most = 10.0;
     refuse_each_way(&f, window_call, "shut window");
+    double stations[SPANS + 1];
+    tw_route_measure(f.supports, SPANS + 1, stations);
+    f.project.route_station_m = stations;
+    refuse_each_way(&f, window_call, "window of a turning route");
     return check_end("alloc_test");
 }

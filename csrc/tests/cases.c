@@ -83,6 +83,7 @@ static tw_support *add_support(tw_case *c, tw_hold hold, double station_m, doubl
     support->elevation_m = elevation_m;
     support->height_m = ABSENT;
     support->stiffness_along_N_per_m = support->stiffness_across_N_per_m = INFINITY;
+    support->stiffness_vertical_N_per_m = INFINITY;
     support->capacity_along_N = support->capacity_across_N = ABSENT;
     support->capacity_down_N = support->capacity_up_N = ABSENT;
     return support;
@@ -269,7 +270,7 @@ double case_complementary(tw_section *section, const double *pull)
         }
         tw_hold_attachment(support, a);
         tw_axpy(a, -1.0, datum, a);
-        lower += tw_dot(F, a) + tw_hold_energy(support, F, section->soft_N);
+        lower += tw_dot(F, a) + tw_hold_energy(support, section->ahead + 2 * j, F, section->soft_N);
     }
     for (size_t k = 0; k < section->span_count; k++) {
         for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {

@@ -103,7 +103,7 @@ static void test_support_numbers(void)
     tw_support *s = &c.supports[2];
     const number numbers[] = {
         {&s->station_m, -1.1e7, 1.1e7, 0, 0, "supports", "station_m", 2},
-        {&s->offset_m, -1.1e6, 1.1e6, 0, 0, "supports", "offset_m", 2},
+        {&s->offset_m, -1.1e7, 1.1e7, 0, 0, "supports", "offset_m", 2},
         {&s->elevation_m, -2.1e4, 2.1e4, 0, 0, "supports", "elevation_m", 2},
         {&s->height_m, -2.1e4, 2.1e4, 1, 0, "supports", "height_m", 2},
         {&s->hanger_length_m, -1e-9, 1.1e3, 0, 0, "supports", "hanger_length_m", 2},

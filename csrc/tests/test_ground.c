@@ -1,11 +1,14 @@
 /* Clearance against dense sampling of line and profile: drawn profiles, ranges, crossings, lines that bulge up or turn back. */
 #include "ground.h"
+#include "route.h"
 
 #include "cases.h"
 #include "expect.h"
 #include "vector.h"
 
 enum { SAMPLES = 1500 };
+
+static const tw_route_leg STRAIGHT = {0.0, {0.0, 0.0}, {1.0, 0.0}};
 
 static void draw_profile(tw_case *c, double from, double to, double rough, unsigned long long *seed)
 {
@@ -162,7 +165,7 @@ static void test_a_line_that_turns_back(void)
         case_stretch(&c, TW_PLACE_WHOLE, NAN, NAN, -40.0, 0.0, 3.0);
         case_ready(&c);
         tw_section *s = case_hung(&c, 0);
-        CHECK(tw_piece_turns(s->pieces, &turn) == 1);
+        CHECK(tw_piece_turns(s->pieces, &STRAIGHT, &turn) == 1);
         draw_profile(&c, -60.0, 70.0, 5.0, &seed);
         check_clearance(s, 0, TW_NONE, NAN, NAN, 1.0);
         check_clearance(s, 0, TW_NONE, -30.0, -5.0, 1.0);

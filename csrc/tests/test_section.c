@@ -33,7 +33,7 @@ static void check_equilibrium(const tw_section *s, double tolerance)
         }
         CHECK_NEAR(tw_norm(sum), 0.0, 1e-12 * (1.0 + tw_norm(s->hold_force + 3 * j) + tw_norm(s->pull)));
         tw_hold_attachment(&s->project->supports[j], a);
-        tw_hold_swing(&s->project->supports[j], s->hold_force + 3 * j, s->soft_N, swing);
+        tw_hold_swing(&s->project->supports[j], s->ahead + 2 * j, s->hold_force + 3 * j, s->soft_N, swing);
         tw_axpy(a, 1.0, swing, a);
         tw_axpy(a, -1.0, s->clamp + 3 * j, a);
         CHECK_NEAR(tw_norm(a), 0.0, tolerance);

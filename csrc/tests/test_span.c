@@ -6,6 +6,8 @@
 #include "expect.h"
 #include "vector.h"
 
+static const tw_route_leg STRAIGHT = {0.0, {0.0, 0.0}, {1.0, 0.0}};
+
 static const tw_material STEEL = {.stiffness_N = 34.7e6, .strain = 4e-4};
 
 typedef struct drawn {
@@ -198,7 +200,7 @@ static void test_the_station_turns_back_where_the_tension_is_upright(void)
         tw_piece piece = hung(&d);
         double s, t[3];
         double far = d.tension[0] - d.length * d.load[0];
-        CHECK(tw_piece_turns(&piece, &s) == (far * d.tension[0] < 0.0));
+        CHECK(tw_piece_turns(&piece, &STRAIGHT, &s) == (far * d.tension[0] < 0.0));
         if (far * d.tension[0] < 0.0) {
             tw_piece_tension(&piece, s, t);
             CHECK_NEAR(t[0], 0.0, 1e-12 * fabs(d.tension[0]));
@@ -215,7 +217,7 @@ static void test_a_station_is_found_where_the_line_passes_it(void)
         drawn d = draw_piece(&seed);
         tw_piece piece = hung(&d);
         double turn, a[3], b[3], r[3];
-        double s0 = 0.0, s1 = tw_piece_turns(&piece, &turn) ? turn : d.length;
+        double s0 = 0.0, s1 = tw_piece_turns(&piece, &STRAIGHT, &turn) ? turn : d.length;
         if (draw % 2 && s1 < d.length) {
             s0 = turn;
             s1 = d.length;
@@ -224,13 +226,13 @@ static void test_a_station_is_found_where_the_line_passes_it(void)
         tw_piece_position(&STEEL, &piece, s1, b);
         double share = 0.5 + 0.5 * check_draw(&seed);
         double station = a[0] + share * (b[0] - a[0]);
-        double s = tw_piece_at_station(&STEEL, &piece, s0, s1, a[0], b[0], station);
+        double s = tw_piece_at_station(&STEEL, &piece, &STRAIGHT, s0, s1, a[0], b[0], station);
         tw_piece_position(&STEEL, &piece, s, r);
         CHECK(s >= s0 && s <= s1);
         CHECK_NEAR(r[0], station, 1e-11 * (1.0 + d.length));
     }
     tw_piece upright = {.length_m = 5.0, .tension = {0.0, 0.0, -9.0}};
-    CHECK(tw_piece_at_station(&STEEL, &upright, 1.0, 4.0, 0.0, 0.0, 0.0) >= 1.0);
+    CHECK(tw_piece_at_station(&STEEL, &upright, &STRAIGHT, 1.0, 4.0, 0.0, 0.0, 0.0) >= 1.0);
 }
 
 /* No sampled place is further out, and the place given is as far as is said. */

@@ -5,8 +5,10 @@ A table that fails does not hide what is wrong elsewhere: rules between tables l
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
+from itertools import accumulate, pairwise
 from typing import Any, TypeVar
 
 from pydantic import ValidationError
@@ -81,23 +83,49 @@ class Checked:
         return [name if isinstance(name, str) else None for name in written]
 
     def station(self, number: int) -> float | None:
-        """The station of a support, even where something else about it is wrong."""
-        try:
-            return quantity(self.raw("support", number).get("station"), "m")
-        except Refused:
-            return None
+        """The station of a support, even where something else about it is wrong; of a turning route None."""
+        return self._length("support", number, "station")
+
+    def turning(self) -> bool:
+        """Whether supports are given by east and north: one is enough to ask it of all."""
+        rows = [self.raw("support", number) for number in range(self.count("support"))]
+        return any(row.get("east") is not None or row.get("north") is not None for row in rows)
+
+    def plan(self, number: int) -> tuple[float, float] | None:
+        """East and north of a support, even where something else about it is wrong."""
+        east, north = (self._length("support", number, key) for key in ("east", "north"))
+        return None if east is None or north is None else (east, north)
 
     def station_range(self) -> tuple[float, float] | None:
         """Stations of the first and the last support, where both could be read."""
-        if self.count("support") < 2:
+        count = self.count("support")
+        if count < 2:
             return None
-        first, last = self.station(0), self.station(self.count("support") - 1)
+        if self.turning():
+            places = [place for place in map(self.plan, range(count)) if place is not None]
+            return (0.0, stations_in_plan(places)[-1]) if len(places) == count else None
+        first, last = self.station(0), self.station(count - 1)
         return None if first is None or last is None else (first, last)
+
+    def _length(self, table: str, number: int, key: str) -> float | None:
+        try:
+            return quantity(self.raw(table, number).get(key), "m")
+        except Refused:
+            return None
 
     def listed(self, *path: str | int) -> list[str]:
         """The names in a list of names, those that are none left out; empty where there is no list."""
         value = self.raw(*path[:-1]).get(str(path[-1]))
         return [name for name in value if isinstance(name, str)] if isinstance(value, list | tuple) else []
+
+
+def stations_in_plan(places: Sequence[tuple[float, float]]) -> list[float]:
+    """Stations, m, of supports at plan coordinates: distances in plan from one to the next, added up.
+
+    >>> stations_in_plan([(100.0, 50.0), (400.0, 50.0), (400.0, 450.0)])
+    [0.0, 300.0, 700.0]
+    """
+    return [0.0, *accumulate(math.dist(before, after) for before, after in pairwise(places))]
 
 
 def read_tables(document: Document) -> Checked:

@@ -76,16 +76,17 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
     ax = axes_or_new(ax, (10.0, 5.0))
     if own:
         ax.figure.subplots_adjust(**margins(ax, _legend_labels(lines)))
-    shapes = [(line, line.shape(points)["position_m"]) for line in lines]
+    shapes = [(line, _in_profile(line.shape(points))) for line in lines]
     scenery = shapes[0][0]._line().scenery()
     _frame(ax, scenery, shapes)
     if own:
         _fit_page(ax, _legend_labels(lines))
     _draw_ground(ax, scenery)
     _draw_crossings(ax, scenery)
-    _draw_supports(ax, scenery, shapes[0][0])
+    clamps = shapes[0][1][::points]
+    _draw_supports(ax, scenery, clamps)
     if chord:
-        _draw_chords(ax, shapes[0][0])
+        ax.plot(clamps[:, 0], clamps[:, 2], color=FAINT, linewidth=0.8, zorder=3)
     for (line, position), colour, style in zip(shapes, cycle(CURVES), cycle(STYLES)):
         ax.plot(
             position[:, 0],
@@ -102,6 +103,11 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
     _draw_title(ax, scenery.title)
     _draw_legend(ax, own=own)
     return ax
+
+
+def _in_profile(shape: dict[str, Any]) -> Any:
+    """Places along a line with its stations for x, which on a route that turns are no coordinates."""
+    return np.column_stack([shape["station_m"], np.asarray(shape["position_m"])[:, 1:]])
 
 
 def tightest_of(scenery: Scenery, shapes: Sequence[tuple[Equilibrium, Any]]) -> Tightest | None:
@@ -211,23 +217,17 @@ def _ground_between(scenery: Scenery, left: float, right: float, top: float) -> 
     return stations, np.interp(stations, x, z)
 
 
-def _draw_supports(ax: Any, scenery: Scenery, line: Equilibrium) -> None:
+def _draw_supports(ax: Any, scenery: Scenery, clamps: Any) -> None:
     symbols = {"anchor": "s", "hanger": "o", "post": "^", "sheave": "D"}
-    for (name, station, elevation, hold), state in zip(scenery.supports, line.supports, strict=True):
+    for (name, station, elevation, hold), (x, _, z) in zip(scenery.supports, clamps, strict=True):
         if scenery.ground:
             foot = float(np.interp(station, *np.array(scenery.ground).T))
             ax.plot([station, station], [foot, elevation], color=INK, linewidth=2.2, solid_capstyle="butt", zorder=4)
-        x, _, z = state.position_m
         if hold == "hanger":
             ax.plot([station, x], [elevation, z], color=INK, linewidth=1.2, zorder=6)
         ax.plot([x], [z], marker=symbols[hold], color=INK, markerfacecolor="white", markersize=5, zorder=7)
         ax.annotate(plain(name), (station, max(elevation, z)), xytext=(0, 7), textcoords="offset points", ha="center",
                     fontsize=8, color=INK, zorder=7)  # fmt: skip
-
-
-def _draw_chords(ax: Any, line: Equilibrium) -> None:
-    x, _, z = zip(*(state.position_m for state in line.supports), strict=True)
-    ax.plot(x, z, color=FAINT, linewidth=0.8, zorder=3)
 
 
 def _draw_tightest(ax: Any, found: Tightest) -> None:

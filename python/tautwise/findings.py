@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from math import hypot
 from typing import TYPE_CHECKING
 
 from tautwise.columns import force_text, forces_text
@@ -21,7 +22,8 @@ def findings_of(project: Project, conditions: Sequence[Equilibrium], pull: float
     loops = [text for each in conditions for text in _loops(each)]
     slack = slack_words(project, pull)
     lifted = [text for each in conditions for text in _lifted(project, each)]
-    found = [*_broken(project, conditions), *loops, *lifted, *([slack] if slack else [])]
+    strings = [text for each in conditions for text in _slack_strings(project, each)]
+    found = [*_broken(project, conditions), *loops, *lifted, *([slack] if slack else []), *strings]
     head = f"{project.source}: " if project.source else ""
     return tuple(head + text for text in found)
 
@@ -58,3 +60,21 @@ def _loops(line: Equilibrium) -> list[str]:
         for span in line.spans
         if span.sag_m > DEEP_SAG_SHARE * span.span_m
     ]
+
+
+def _slack_strings(project: Project, line: Equilibrium) -> list[str]:
+    """V hangers whose line pushes so far aside that one string hangs slack.
+
+    Of strings of length l with a spread s both are taut while |across| <= s / (2 l) of the force in the hanger.
+    """
+    found = []
+    for support, state in zip(project.supports, line.supports, strict=False):
+        length, spread = support.hanger_length_m, support.hanger_spread_m
+        if not length or not spread:
+            continue
+        carried = hypot(state.along_N, state.across_N, state.down_N - 0.5 * support.hanger_weight_N)
+        if carried > 0.0 and abs(state.across_N) > spread / (2.0 * length) * carried:
+            side, other = ("right", "left") if state.across_N > 0.0 else ("left", "right")
+            head = f"the line pushes to the {other} at {support.name!r} in {line.name!r}"
+            found.append(f"{head}: the {other} string of its V is slack, and the {side} one carries alone")
+    return found

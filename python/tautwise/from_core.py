@@ -16,6 +16,7 @@ _UNIT = re.compile(r"_(?:kg_per_m3|N_per_m|m_per_s|per_K|degC|rad|Pa|N|m2|m)$")
 _PREFIXES = {"hanger_": (), "ice_": ("ice",), "wind_": ("wind",), "capacity_": ("capacity",), "air_": ("wind",)}
 _PREFIXES |= {"sheave_": ()}
 _PREFIXES |= {"factor_": ("factors",)}
+_PLAN: dict[str | int, str] = {"station": "east", "offset": "north"}
 _STRINGING_RULES = {
     "horizontal_tension_N": ("horizontal_tension",),
     "tension": ("tension", "value"),
@@ -36,6 +37,8 @@ def file_path(project: Project, core_path: str) -> KeyPath:
         parts += [*_key(name, inside=bool(parts)), *([int(index)] if index else [])]
     if parts[:1] == ["stringing"] and parts[1:2] in (["value"], ["index"], ["lengths"]):
         return ("stringing", *_stringing_rule(project))
+    if parts[:1] == ["support"] and project.turns:
+        parts = [_PLAN.get(part, part) for part in parts]
     return tuple(parts)
 
 

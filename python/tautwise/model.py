@@ -24,7 +24,7 @@ from typing import TYPE_CHECKING, Any, cast
 
 from pydantic import BaseModel, ConfigDict, PrivateAttr, SerializeAsAny
 
-from tautwise.check import Checked, read_tables
+from tautwise.check import Checked, read_tables, stations_in_plan
 from tautwise.errors import Fault, InputError
 from tautwise.from_core import file_path
 from tautwise.limits import BaseLimit
@@ -131,6 +131,11 @@ class Project(BaseModel):
             problem = f'there is no condition "{shown(name)}"; {did_you_mean(name, names)}'
             raise InputError([Fault(self.source, None, "", problem)])
         return names.index(name)
+
+    @property
+    def turns(self) -> bool:
+        """Whether the route turns in plan: supports are given by east and north."""
+        return self.supports[0].turns
 
     def elevation_m(self, support: Support) -> float:
         """Elevation, m, of the point where a support's hold is fixed."""
@@ -257,11 +262,23 @@ def _values(checked: Checked) -> dict[str, Any]:
         "stringing": checked.stringing,
         "history": checked.history,
         "crossings": tuple(checked.crossings),
-        "supports": tuple(checked.supports),
+        "supports": _with_stations(checked),
         "conditions": tuple(checked.conditions),
         "marks": tuple(checked.marks),
         "limits": tuple(checked.limits),
     }
+
+
+def _with_stations(checked: Checked) -> tuple[Support | None, ...]:
+    """The supports; of a route that turns with their stations, which follow from the plan."""
+    supports = checked.supports
+    if not checked.turning():
+        return tuple(supports)
+    stations = stations_in_plan([support.plan_m for support in supports if support is not None])
+    return tuple(
+        None if support is None else support.model_copy(update={"station_m": station})
+        for support, station in zip(supports, stations, strict=True)
+    )
 
 
 def _digest(sources: list[Source]) -> str:

@@ -43,7 +43,7 @@ class LineOrigin:
         return {**found, "clearance_m": np.asarray(found["position_m"])[:, 2] - self._ground(asked)}
 
     def shape(self, points: int) -> dict[str, Any]:
-        """Length, position and tension along the line, `points` for each span."""
+        """Length, station, position and tension along the line, `points` for each span."""
         from tautwise.solve import errors_of
 
         with errors_of(self.project):

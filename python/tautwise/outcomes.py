@@ -88,7 +88,7 @@ def refuse_slack(project: Project, status: str, text: str, condition: str = "") 
 
 def chords_m(project: Project) -> list[float]:
     """Straight distances, m, from hold to hold."""
-    points = [(s.station_m, s.offset_m, project.elevation_m(s)) for s in project.supports]
+    points = [(*s.plan_m, project.elevation_m(s)) for s in project.supports]
     return [math.dist(before, after) for before, after in pairwise(points)]
 
 

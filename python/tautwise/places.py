@@ -42,7 +42,7 @@ class Places:
     ------
     station_m: as asked for.
     length_m: natural length from the first support.
-    position_m: x, y, z along the last axis.
+    position_m: x, y, z along the last axis; x and y are east and north on a route that turns.
     tension_N: magnitude.
     clearance_m: above the ground profile; NaN where there is none.
     """
@@ -71,7 +71,7 @@ class Origin(Protocol):
         """Length, position, tension and clearance of the line at stations."""
 
     def shape(self, points: int) -> dict[str, Any]:
-        """Length, position and tension along the line, `points` for each span."""
+        """Length, station, position and tension along the line, `points` for each span."""
 
     def scenery(self) -> Scenery:
         """What stands around the line."""

@@ -34,6 +34,7 @@ FACTOR_MOST = 3.0
 ALTITUDE_MOST_M = 5000.0
 WIND_AREA_MOST_M2 = 20.0
 SPAN_MOST_M, HEIGHT_MOST_M = 5000.0, 400.0
+TURN_MOST_DEG = 90.0
 
 
 def warnings_of(project: Project, document: Document) -> tuple[str, ...]:
@@ -125,7 +126,8 @@ def _supports(project: Project) -> Iterator[Slip]:
         span = after.station_m - before.station_m
         if span > SPAN_MOST_M:
             text = f"a span of {span:.4g} m: ft for m, or a zero too many?"
-            yield ("support", number, "station"), text
+            yield ("support", number, "east" if after.turns else "station"), text
+    yield from _turns(project)
     for number, support in enumerate(project.supports):
         if support.wind_area_m2 > WIND_AREA_MOST_M2:
             yield ("support", number, "wind_area"), f"a wind area of {support.wind_area_m2:.4g} m2: cm2 or ft2 for m2?"
@@ -138,6 +140,16 @@ def _supports(project: Project) -> Iterator[Slip]:
         elif height > HEIGHT_MOST_M:
             text = f"the support lies {height:.4g} m above the ground: ft for m, or an elevation for a height?"
             yield ("support", number, key), text
+
+
+def _turns(project: Project) -> Iterator[Slip]:
+    places = [support.plan_m for support in project.supports]
+    for number, (before, at, after) in enumerate(zip(places, places[1:], places[2:], strict=False), start=1):
+        turn = math.atan2(after[1] - at[1], after[0] - at[0]) - math.atan2(at[1] - before[1], at[0] - before[0])
+        degrees = abs(math.degrees(math.remainder(turn, math.tau)))
+        if project.turns and degrees > TURN_MOST_DEG:
+            text = f"the route turns by {degrees:.0f} deg here: east and north mixed up, or supports out of order?"
+            yield ("support", number, "east"), text
 
 
 def _crossings(project: Project) -> Iterator[Slip]:

@@ -1,7 +1,8 @@
 """Where a line hangs and how hard it pulls: the settled line in one condition, and in all of them.
 
 SI throughout, the unit in the name. Axes: x along the route (station), y across it (positive to the left when looking
-ahead), z up (elevation). Nothing here computes an equilibrium; :mod:`tautwise.solve` fills these records from the core.
+ahead), z up (elevation); of a route that turns, x is east and y north. Nothing here computes an equilibrium;
+:mod:`tautwise.solve` fills these records from the core.
 """
 
 from __future__ import annotations
@@ -101,8 +102,11 @@ class SpanState(Record):
 class SupportState(Record):
     """What the line does to one support: forces in N, along positive ahead, across positive to the left.
 
-    `down_N` is positive downwards; negative is uplift. `swing_deg` is a hanger's angle from the vertical, else None.
-    `position_m` is where the line is held: the lower end of a hanger.
+    At an angle point, ahead halves the angle between the spans' directions, so that `across_N` is along the bisector.
+    `down_N` is positive downwards; negative is uplift. `swing_deg` is a hanger's angle from the vertical, else None;
+    `swing_along_deg` is the same as seen from the side, positive ahead, and `swing_across_deg` as seen along the line,
+    positive to the left. `station_m` is where the support stands. `position_m` is where the line is held, the lower end
+    of a hanger: (station, offset, elevation), or (east, north, elevation) where supports are given so.
     """
 
     name: str
@@ -111,6 +115,9 @@ class SupportState(Record):
     down_N: float
     resultant_N: float
     swing_deg: float | None
+    swing_along_deg: float | None
+    swing_across_deg: float | None
+    station_m: float
     position_m: tuple[float, float, float]
 
     def __repr__(self) -> str:
@@ -122,6 +129,7 @@ class SupportState(Record):
 class MarkState(Record):
     """A mark, point load or carriage: natural length from the first support, tension, position.
 
+    `station_m` is where it is along the route now; `position_m` as of a support.
     tension_beyond_N: just beyond the place; other than tension_N, that before it, where a point load acts. Their
         difference is what a held carriage is braked with; a free one has none.
     """
@@ -129,6 +137,7 @@ class MarkState(Record):
     name: str
     at_length_m: float
     tension_N: float
+    station_m: float
     position_m: tuple[float, float, float]
     tension_beyond_N: float
 
@@ -258,7 +267,8 @@ class Equilibrium(Record):
 
         stations = np.asarray(station, dtype=np.float64)
         found = self._line().at(stations.ravel())
-        flat = {name: np.asarray(values).reshape(stations.shape) for name, values in found.items() if name[:3] != "pos"}
+        others = {name: values for name, values in found.items() if name not in ("position_m", "station_m")}
+        flat = {name: np.asarray(values).reshape(stations.shape) for name, values in others.items()}
         return Places(stations, position_m=np.asarray(found["position_m"]).reshape((*stations.shape, 3)), **flat)
 
     def shape(self, points: int = 200) -> dict[str, Floats]:

@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from itertools import pairwise
-
 from tautwise.check import Checked, at_most_one, exactly_one
 from tautwise.faults import example_of
 from tautwise.limits import GROUND, TensionLimit
 from tautwise.rules_curves import expands, is_curved
+from tautwise.rules_route import support_place_rules
 from tautwise.strict import did_you_mean, shown
 from tautwise.tables import CLAMPED, HOLDS, OVER_SHEAVES, Condition, Line, Stringing, Support
 
@@ -17,9 +16,12 @@ _HOLD_KEYS = {
     "length": (("hanger", "sheave"), "the length of its link"),
     "weight": (("hanger", "sheave"), "the weight of its link"),
     "wind_area": (("hanger", "sheave"), "the drag area of its string"),
+    "form": (("hanger",), "the form of its link"),
+    "spread": (("hanger",), "the spread of a V"),
     "friction": (("sheave",), "friction"),
-    "stiffness_along": (("post",), "a spring rate"),
-    "stiffness_across": (("post",), "a spring rate"),
+    "stiffness_along": (("post", "anchor"), "a spring rate"),
+    "stiffness_across": (("post", "anchor"), "a spring rate"),
+    "stiffness_vertical": (("anchor",), "a vertical spring rate"),
 }
 
 
@@ -49,7 +51,7 @@ def support_rules(checked: Checked) -> None:
         if checked.raw("support", number):
             _elevation_rule(checked, number)
             _hold_rules(checked, number)
-    _order_rules(checked)
+    support_place_rules(checked)
     for number in (0, count - 1) if count > 1 else ():
         why = {"hanger": "which would swing away", "sheave": "next to nothing: the line would run off it"}
         hold = checked.raw("support", number).get("hold")
@@ -146,8 +148,10 @@ def _hold_rules(checked: Checked, number: int) -> None:
         return
     for key, (owners, what) in _HOLD_KEYS.items():
         if raw.get(key) is not None and hold not in owners:
-            article = "an" if hold == "anchor" else "a"
-            checked.fault((*path, key), f"{article} {hold} has no {key}; {what} belongs to a {' or a '.join(owners)}")
+            names = " or ".join(_with_article(owner) for owner in owners)
+            checked.fault((*path, key), f"{_with_article(hold)} has no {key}; {what} belongs to {names}")
+    if hold == "hanger":
+        _form_rule(checked, number)
     if hold == "sheave" and raw.get("weight") is not None and raw.get("length") is None:
         problem = "a sheave without a link hangs on nothing that could weigh on the line"
         checked.fault((*path, "weight"), problem, "a length beside it", 'length = "0.6 m"')
@@ -156,16 +160,19 @@ def _hold_rules(checked: Checked, number: int) -> None:
         checked.fault((*path, "length"), "missing", "the length of the hanger", 'length = "1.8 m"')
 
 
-def _order_rules(checked: Checked) -> None:
-    stations = [checked.station(number) for number in range(checked.count("support"))]
-    for number, (before, after) in enumerate(pairwise(stations), start=1):
-        if before is None or after is None or after > before:
-            continue
-        other = shown(checked.names("support")[number - 1] or "the support before")
-        problem = f'out of order: {after:g} m lies before {before:g} m of "{other}"'
-        if after == before:
-            problem = f'two supports at one station, {after:g} m: "{other}" stands there too'
-        checked.fault(("support", number, "station"), problem, "stations that increase")
+def _form_rule(checked: Checked, number: int) -> None:
+    raw = checked.raw("support", number)
+    path = ("support", number)
+    form, spread = raw.get("form", "I"), raw.get("spread")
+    if form == "V" and spread is None:
+        problem = "a V hanger without its spread"
+        checked.fault(path, problem, "the distance between the upper ends of its two strings", 'spread = "4.2 m"')
+    if form != "V" and spread is not None:
+        checked.fault((*path, "spread"), "only a V hanger has a spread", "no spread, or a V", 'form = "V"')
+
+
+def _with_article(word: str) -> str:
+    return f"{'an' if word[0] in 'aeiou' else 'a'} {word}"
 
 
 def _ground_rule(checked: Checked, route: tuple[float, float] | None) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Any
 
 from pydantic import Field
@@ -19,10 +20,12 @@ _STIFFNESS = {
         {"required": ["core", "outer"]},
     ]
 }
+_ELEVATION = {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]}
+_PLACE = {"oneOf": [{"required": ["station"]}, {"required": ["east", "north"]}]}
 _GIVEN_ONCE = {
     "Line": {"allOf": [_WEIGHT, _STIFFNESS]},
     "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
-    "Support": {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]},
+    "Support": {"allOf": [_ELEVATION, _PLACE]},
     "Wind": {"oneOf": [{"required": ["pressure"]}, {"required": ["speed"]}]},
     "Load": {"oneOf": [{"required": ["force"]}, {"required": ["per_length"]}, {"required": ["per_run"]}]},
     "Mark": {"oneOf": [{"required": ["at"]}, {"required": ["at_length"]}]},
@@ -63,13 +66,17 @@ def project_schema() -> dict[str, Any]:
     return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
 
 
+def _is_nothing(value: Any) -> bool:
+    return value is None or (isinstance(value, float) and math.isnan(value))
+
+
 def _without_null(value: Any) -> Any:
-    """Drop the null that optional attributes allow: TOML has none."""
+    """Drop the null that optional attributes allow, as TOML has none, and the NaN of what is worked out."""
     if isinstance(value, list):
         return [_without_null(part) for part in value]
     if not isinstance(value, dict):
         return value
-    kept = {key: _without_null(part) for key, part in value.items() if not (key == "default" and part is None)}
+    kept = {key: _without_null(part) for key, part in value.items() if key != "default" or not _is_nothing(part)}
     options = kept.get("anyOf")
     if isinstance(options, list) and {"type": "null"} in options:
         options = [option for option in options if option != {"type": "null"}]

@@ -260,6 +260,8 @@ def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
         supports = _core.Project(problem).settle(0, pull=pull)["supports"]
     if not supports:
         return -math.inf, math.inf
+    if project.turns:
+        return float(supports[0]["station_m"]), float(supports[-1]["station_m"])
     return float(supports[0]["position_m"][0]), float(supports[-1]["position_m"][0])
 
 

@@ -90,7 +90,7 @@ def _off_percent(small: float | None, exact: float, span: float) -> float | None
 
 
 def _support(name: str, state: Mapping[str, Any]) -> SupportState:
-    swing = finite(state["swing_rad"])
+    swing, along, across = (finite(state[f"swing_{part}rad"]) for part in ("", "along_", "across_"))
     return SupportState(
         name,
         float(state["along_N"]),
@@ -98,6 +98,9 @@ def _support(name: str, state: Mapping[str, Any]) -> SupportState:
         float(state["down_N"]),
         float(state["resultant_N"]),
         None if swing is None else math.degrees(swing),
+        None if along is None else math.degrees(along),
+        None if across is None else math.degrees(across),
+        float(state["station_m"]),
         _point(state["position_m"]),
     )
 
@@ -115,6 +118,7 @@ def _mark(name: str, state: Mapping[str, Any]) -> MarkState:
         name,
         float(state["at_length_m"]),
         float(state["tension_N"]),
+        float(state["station_m"]),
         _point(state["position_m"]),
         float(state["tension_beyond_N"]),
     )

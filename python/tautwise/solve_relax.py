@@ -37,7 +37,8 @@ def _relaxation(project: Project, row: Row) -> Relaxation:
         written = _written(project, key, "1" if share else _dimension(kind), share or to, up=by > 0.0)
     else:
         words, key, to = _support_change(project, row["kind"], row["support"], by, to)
-        written = _written(project, key, "m", to, up=by > 0.0)
+        planned = project.turns and row["kind"] == "support_station"  # the file holds east and north, no station
+        written = None if planned else _written(project, key, "m", to, up=by > 0.0)
     fault = project.core_fault(key, "")
     return Relaxation(
         change=words,

@@ -66,6 +66,7 @@ PLUMB, WHERE_IT_LIES = CLIPS = ("plumb", "where it lies")
 STATES = ("initial", "final", "after creep")
 SECONDS_PER_HOUR = 3600.0
 
+HangerForm = Annotated[str, Choice(("I", "V"))]
 Hold = Annotated[str, Choice(HOLDS)]
 
 
@@ -191,21 +192,41 @@ class Capacity(Table):
 
 
 class Support(Table):
-    """A support: where it stands and how it holds the line."""
+    """A support: where it stands and how it holds the line.
+
+    On a route that turns it is given by east and north, and `station_m` is the distance in plan along the supports.
+    """
 
     name: Name
-    station_m: Coordinate = Field(alias="station")
+    station_m: Coordinate = Field(math.nan, alias="station")
     offset_m: Coordinate = Field(0.0, alias="offset")
+    east_m: Coordinate | None = Field(None, alias="east")
+    north_m: Coordinate | None = Field(None, alias="north")
     given_elevation_m: Elevation | None = Field(None, alias="elevation")
     height_m: Height | None = Field(None, alias="height")
     hold: Hold = "anchor"
     hanger_length_m: HangerLength | None = Field(None, alias="length")
+    hanger_form: HangerForm = Field("I", alias="form")
+    hanger_spread_m: HangerLength | None = Field(None, alias="spread")
     hanger_weight_N: SomeForce = Field(0.0, alias="weight")
     sheave_friction: Friction | None = Field(None, alias="friction")
     wind_area_m2: DragArea = Field(0.0, alias="wind_area")
     stiffness_along_N_per_m: SpringRate | None = Field(None, alias="stiffness_along")
     stiffness_across_N_per_m: SpringRate | None = Field(None, alias="stiffness_across")
+    stiffness_vertical_N_per_m: SpringRate | None = Field(None, alias="stiffness_vertical")
     capacity: Capacity = Capacity()
+
+    @property
+    def turns(self) -> bool:
+        """Whether it is given by east and north."""
+        return self.east_m is not None
+
+    @property
+    def plan_m(self) -> tuple[float, float]:
+        """x and y in plan, m: east and north, or station and offset."""
+        if self.east_m is None or self.north_m is None:
+            return self.station_m, self.offset_m
+        return self.east_m, self.north_m
 
 
 class TensionAt(Table):

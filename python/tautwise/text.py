@@ -98,7 +98,7 @@ def condition_text(found: Equilibrium, project: Project, ink: Ink) -> list[str]:
         return [head, ink.alarm(f"  NOT SETTLED: {found.status_text}")]
     lines = [head, *_span_lines(found), "", *_support_lines(found.supports)]
     if found.marks:
-        lines += ["", *_mark_lines(found)]
+        lines += ["", *_mark_lines(found, turns=project.turns)]
     return [*lines, "", *_stretch_lines(found), f"  {_bracket_words(found)}"]
 
 
@@ -207,17 +207,20 @@ def _support_lines(supports: Sequence[SupportState]) -> list[str]:
     return [*Table(tuple(columns), tuple(rows)).lines(), *note]
 
 
-def _mark_lines(found: Equilibrium) -> list[str]:
+def _mark_lines(found: Equilibrium, *, turns: bool) -> list[str]:
     marks = found.marks
+    plan = [length_column("east", [1e3]), length_column("north", [1e3])] if turns else [length_column("offset", [0.0])]
     columns = (
         text_column("mark"),
         length_column("along natural line", [1e3]),
         force_column("tension", [mark.tension_N for mark in marks]),
         length_column("station", [1e3]),
-        length_column("offset", [0.0]),
+        *plan,
         length_column("elevation", [mark.position_m[2] for mark in marks]),
     )
-    return Table(columns, tuple((m.name, m.at_length_m, m.tension_N, *m.position_m) for m in marks)).lines()
+    first = 0 if turns else 1  # the x of a straight route is its station
+    rows: list[Row] = [(m.name, m.at_length_m, m.tension_N, m.station_m, *m.position_m[first:]) for m in marks]
+    return Table(columns, tuple(rows)).lines()
 
 
 def _bracket_words(found: Equilibrium) -> str:

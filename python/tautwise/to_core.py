@@ -30,6 +30,7 @@ def problem_of(project: Project) -> dict[str, Any]:
         "limits": [_limit(project, limit) for limit in project.limits],
         "stringing": _stringing(project),
         "history": _history(project),
+        "route": "turning" if project.turns else "straight",
     }
 
 
@@ -94,17 +95,19 @@ def _history(project: Project) -> dict[str, Any] | None:
 def _support(project: Project, support: Support) -> dict[str, Any]:
     rigid = math.inf
     return {
-        "station_m": support.station_m,
-        "offset_m": support.offset_m,
+        "station_m": support.plan_m[0],
+        "offset_m": support.plan_m[1],
         "elevation_m": project.elevation_m(support),
         "height_m": support.height_m,
         "hold": support.hold,
         "hanger_length_m": support.hanger_length_m or 0.0,
+        "hanger_spread_m": support.hanger_spread_m or 0.0,
         "hanger_weight_N": support.hanger_weight_N,
         "sheave_friction": support.sheave_friction,
         "hanger_wind_area_m2": support.wind_area_m2,
         "stiffness_along_N_per_m": support.stiffness_along_N_per_m or rigid,
         "stiffness_across_N_per_m": support.stiffness_across_N_per_m or rigid,
+        "stiffness_vertical_N_per_m": support.stiffness_vertical_N_per_m or rigid,
         "capacity_along_N": support.capacity.along_N,
         "capacity_across_N": support.capacity.across_N,
         "capacity_down_N": support.capacity.down_N,

@@ -132,9 +132,9 @@ def lift(settled: Settled, support: int) -> float | None:
     if at.hold != "hanger":
         return None
     link = settled.clamps[support] - at.place
-    if link[2] < 0.0 and float(np.linalg.norm(link)) >= at.hanger_length_m * (1.0 - 1e-6):
+    if link[2] < 0.0 and at.reach_m(settled.clamps[support]) >= at.hanger_length_m * (1.0 - 1e-6):
         return None
-    return float(link[2]) / at.hanger_length_m + 1.0
+    return float(link[2]) / at.drop_m() + 1.0
 
 
 def least_clearance(
@@ -154,22 +154,26 @@ def least_clearance(
 
     def clearance(s: float) -> float:
         place = start + hung.position_at(s)
-        return float(place[2]) - float(np.interp(place[0], stations, elevations))
+        return float(place[2]) - float(np.interp(settled.station(span, place), stations, elevations))
+
+    def passes(s: float) -> float:
+        return settled.station(span, start + hung.position_at(s))
 
     samples = np.linspace(0.0, hung.length_m, 401)
-    passed = start[0] + hung.positions_at(samples)[:, 0]
+    passed = np.array([passes(float(s)) for s in samples])
     edges = [x for x in [low, high, *stations] if low <= x <= high]
     cuts = [
         s
         for x in edges
-        for s in crossings_of(lambda s: start[0] + hung.position_at(s)[0], samples, passed, x)
+        for s in crossings_of(passes, samples, passed, x)
     ]
     places = np.unique(np.concatenate([samples, cuts]))
     found = start + hung.positions_at(places)
-    inside = (found[:, 0] >= low - 1e-9) & (found[:, 0] <= high + 1e-9)
+    along = np.array([settled.station(span, place) for place in found])
+    inside = (along >= low - 1e-9) & (along <= high + 1e-9)
     if not inside.any():
         return None
-    heights = np.where(inside, found[:, 2] - np.interp(found[:, 0], stations, elevations), np.inf)
+    heights = np.where(inside, found[:, 2] - np.interp(along, stations, elevations), np.inf)
     at = int(np.argmin(heights))
     best = float(heights[at])
     for near, far in ((at - 1, at), (at, at + 1)):

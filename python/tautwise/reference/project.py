@@ -11,7 +11,8 @@ import numpy as np
 
 from . import carriage, limits, loads
 from .quadrature import Array, Growing, PieceLoad
-from .section import Section, Settled, Support
+from .route import route_of
+from .section import Section, Settled, Support, settle_section
 from .span import Material, Piece
 from .states import span_state, support_state
 from .stringing import Strung, pull_by_rule, string_to
@@ -36,7 +37,8 @@ class Twin:
     def __init__(self, problem: Mapping[str, Any]):
         self.problem = problem
         self.line = problem["line"]
-        self.supports = [support_of(row) for row in problem["supports"]]
+        self.route = route_of(problem)
+        self.supports = [support_of(row, self.route.axes(j)) for j, row in enumerate(problem["supports"])]
         self.rule = problem["stringing"]
         self._strung: dict[float, Strung] = {}
         self._settled: dict[tuple[int, float | None, bool], Settled] = {}
@@ -101,7 +103,7 @@ class Twin:
             basic = loads.basic(self.line, row, with_addition, k, self.along(k)[:2])
             spans.append(self.pieces(k, float(starts[k]), length, basic, placed, row.get("factor_load", 1.0)))
         clamp_loads = self.clamp_loads(starts, placed, row)
-        return Section(self.material(row["temperature_degC"]), spans, self.supports, clamp_loads)
+        return Section(self.material(row["temperature_degC"]), spans, self.supports, clamp_loads, self.route)
 
     def placed(
         self, load: Mapping[str, Any], lengths: list[float], pull_N: float | None, rolled_m: float | None = None
@@ -210,15 +212,22 @@ def covers(load: Mapping[str, Any], span: int) -> bool:
     return load.get("covers") is None or bool(load["covers"][span])
 
 
-def support_of(row: Mapping[str, Any]) -> Support:
-    """A support from its row of the problem."""
-    stiffness = (row.get("stiffness_along_N_per_m", np.inf), row.get("stiffness_across_N_per_m", np.inf))
+def support_of(row: Mapping[str, Any], axes: Array) -> Support:
+    """A support from its row of the problem; an anchor's rates may be missing, and a post has none upwards."""
+
+    def rate(key: str) -> float:
+        given = row.get(f"stiffness_{key}_N_per_m")
+        return math.inf if given is None else float(given)
+
+    vertical = rate("vertical") if row.get("hold", "anchor") == "anchor" else math.inf
     return Support(
         np.array([row["station_m"], row.get("offset_m", 0.0), row["elevation_m"]], dtype=np.float64),
         row.get("hold", "anchor"),
         row.get("hanger_length_m", 0.0),
         row.get("hanger_weight_N", 0.0),
-        stiffness,
+        (rate("along"), rate("across"), vertical),
+        row.get("hanger_spread_m", 0.0),
+        axes,
     )
 
 
@@ -227,7 +236,7 @@ def length_at_station(settled: Settled, station_m: float) -> float:
     passed = 0.0
     for k, hung in enumerate(settled.spans):
         samples = np.linspace(0.0, hung.length_m, 65)
-        stations = [float(settled.position_at(k, float(s))[0]) - station_m for s in samples]
+        stations = [settled.station(k, settled.position_at(k, float(s))) - station_m for s in samples]
         stations[0] = 0.0 if abs(stations[0]) <= 1e-9 * (1.0 + abs(station_m)) else stations[0]
         stations[-1] = 0.0 if abs(stations[-1]) <= 1e-9 * (1.0 + abs(station_m)) else stations[-1]
         for i in range(64):
@@ -241,8 +250,11 @@ def length_at_station(settled: Settled, station_m: float) -> float:
                     middle = 0.5 * (low + high)
                     if not low < middle < high:
                         break
-                    ahead = (float(settled.position_at(k, middle)[0]) - station_m) * sign > 0.0
+                    ahead = (settled.station(k, settled.position_at(k, middle)) - station_m) * sign > 0.0
                     low, high = (low, middle) if ahead else (middle, high)
                 return passed + 0.5 * (low + high)
         passed += hung.length_m
+        clamp = settled.clamps[k + 1]  # inside of an angle point it ends one span's stations before the next begins
+        if k + 1 < len(settled.spans) and settled.station(k, clamp) <= station_m <= settled.station(k + 1, clamp):
+            return passed
     raise ValueError(f"the line does not pass station {station_m} m")

@@ -9,52 +9,93 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
 from .quadrature import Array, load_at
+from .route import Route
 from .span import Hung, Material, NotSettled, Piece, settle
 
 
 @dataclass(frozen=True)
 class Support:
-    """How the line is held: anchor (fixed), hanger (swinging link) or post (elastic in plan, rigid vertically)."""
+    """How the line is held: anchor or post (fixed or elastic), or hanger (swinging link, or two strings as a V)."""
 
     place: Array
     hold: str = "anchor"
     hanger_length_m: float = 0.0
     hanger_weight_N: float = 0.0
-    stiffness_N_per_m: tuple[float, float] = (np.inf, np.inf)
-    """Along and across the route; posts only."""
+    stiffness_N_per_m: tuple[float, float, float] = (np.inf, np.inf, np.inf)
+    """Along, across and up, in the support's axes; not for hangers."""
+    spread_m: float = 0.0
+    """Between the upper ends of a V, across; 0: a single link."""
+    axes: Array = field(default_factory=lambda: np.eye(3))
+    """Rows: ahead, to the left, up."""
     blur_N: float = 0.0
     """Force below which a hanger's link counts as slack; see settle_section."""
 
     def plumb(self) -> Array:
         """Where the clamp is when nothing pulls it aside."""
-        return np.asarray(self.place - np.array([0.0, 0.0, self.hanger_length_m if self.hold == "hanger" else 0.0]))
+        return np.asarray(self.place - np.array([0.0, 0.0, self.drop_m()]))
+
+    def drop_m(self) -> float:
+        """How far a plumb clamp hangs below its support."""
+        return math.sqrt(self.hanger_length_m**2 - (0.5 * self.spread_m) ** 2) if self.hold == "hanger" else 0.0
 
     def clamp(self, force: Array) -> Array:
-        """Where the clamp is under the force of the hold on the line: a link pulls towards its fixing."""
-        if self.hold == "hanger":
-            return np.asarray(self.place - self.hanger_length_m * force / self.blurred(force))
-        return np.asarray(self.place - self.softness() @ force)
+        """Where the clamp is under the force of the hold on the line."""
+        if self.hold != "hanger":
+            return np.asarray(self.place - self.softness() @ force)
+        own = np.append(self.axes @ force, self.blur_N)
+        return np.asarray(self.place + self.axes.T @ self.hanging(own)[0][:3])
 
     def flexibility(self, force: Array) -> Array:
         """- d clamp / d force, m/N, 3x3."""
         if self.hold != "hanger":
             return self.softness()
-        size = self.blurred(force)
-        return np.asarray(self.hanger_length_m / size * (np.eye(3) - np.outer(force, force) / size**2))
+        own = np.append(self.axes @ force, self.blur_N)
+        return np.asarray(self.axes.T @ self.hanging(own)[1][:3, :3] @ self.axes)
 
-    def blurred(self, force: Array) -> float:
-        """|F| without its kink at 0: sqrt(F^2 + blur^2)."""
-        return math.hypot(float(np.linalg.norm(force)), self.blur_N)
+    def support_function(self, force: Array) -> float:
+        """Of a hanger, J: minus the least that F . (clamp - support) can be; its kink at 0 is blurred."""
+        own, none = np.append(self.axes @ force, self.blur_N), np.array([0.0, 0.0, 0.0, self.blur_N])
+        return float(none @ self.hanging(none)[0] - own @ self.hanging(own)[0])
+
+    def hanging(self, force: Array) -> tuple[Array, Array]:
+        """Clamp from the support and how it gives, in the support's axes; a fourth component blurs the force.
+
+        Each string is tried alone, pulling along the force; it is right where the other is then not too long. Else both
+        are taut, and the clamp is on the circle that is as far from both upper ends, furthest against the force.
+
+        >>> vee = Support(np.zeros(3), "hanger", 5.0, spread_m=6.0)
+        >>> vee.clamp(np.array([0.0, 100.0, 500.0])).tolist()
+        [0.0, 0.0, -4.0]
+        >>> vee.clamp(np.array([0.0, 400.0, 300.0])).tolist()
+        [0.0, -1.0, -3.0]
+        """
+        size = float(np.linalg.norm(force))
+        half = np.array([0.0, 0.5 * self.spread_m, 0.0, 0.0])
+        if size == 0.0:
+            return np.zeros(4), np.zeros((4, 4))
+        for end, other in ((half, -half), (-half, half)):
+            alone = end - self.hanger_length_m * force / size
+            if self.spread_m == 0.0 or float(np.linalg.norm(alone - other)) <= self.hanger_length_m:
+                return alone, self.hanger_length_m / size * (np.eye(4) - np.outer(force, force) / size**2)
+        normal = force * np.array([1.0, 0.0, 1.0, 1.0])
+        size = float(np.linalg.norm(normal))
+        give = np.diag([1.0, 0.0, 1.0, 1.0]) - np.outer(normal, normal) / size**2
+        return -self.drop_m() * normal / size, self.drop_m() / size * give
+
+    def reach_m(self, clamp: Array) -> float:
+        """The longer way from a hanger's upper ends to its clamp."""
+        own = self.axes @ (clamp - self.place)
+        return max(float(np.linalg.norm(own - [0.0, side * self.spread_m, 0.0])) for side in (-0.5, 0.5))
 
     def softness(self) -> Array:
-        """Give of a post, m/N, on the diagonal of a 3x3 matrix."""
-        soft = 1.0 / np.array(self.stiffness_N_per_m) if self.hold == "post" else np.zeros(2)
-        return np.asarray(np.diag([*soft, 0.0]))
+        """Give of a post or an anchor, m/N, 3x3."""
+        soft = np.zeros(3) if self.hold == "hanger" else 1.0 / np.array(self.stiffness_N_per_m)
+        return np.asarray(self.axes.T @ np.diag(soft) @ self.axes)
 
 
 @dataclass(frozen=True)
@@ -65,6 +106,8 @@ class Section:
     spans: Sequence[Sequence[Piece]]
     supports: Sequence[Support]
     clamp_loads: Array
+    route: Route | None = None
+    """None: straight."""
 
 
 @dataclass(frozen=True)
@@ -76,6 +119,11 @@ class Settled:
     clamps: Array
     hold_forces: Array
 
+    def station(self, span: int, place: Array) -> float:
+        """Station of a place of a span's line."""
+        route = self.section.route
+        return float(place[0]) if route is None else route.station(span, place)
+
     def position_at(self, span: int, s: float) -> Array:
         """Place of the line at natural length s of a span."""
         return np.asarray(self.clamps[span] + self.spans[span].position_at(s))
@@ -86,7 +134,7 @@ class Settled:
         for support, force in zip(self.section.supports, self.hold_forces, strict=True):
             total += float(force @ support.place) - 0.5 * float(force @ support.softness() @ force)
             if support.hold == "hanger":
-                total -= support.hanger_length_m * (support.blurred(force) - support.blur_N)
+                total -= support.support_function(force)
         return total
 
     def potential_J(self) -> float:

@@ -155,10 +155,10 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
         "tension_to_N": float(np.linalg.norm(hung.end_tension())),
         "tension_max_N": tension_max(hung),
         "sag_m": sag_of(settled, span),
-        "sag_station_m": float((start + hung.position_at(sag_at))[0]),
+        "sag_station_m": settled.station(span, start + hung.position_at(sag_at)),
         "slant_sag_m": max(0.0, hung.extreme(along_load(chord, total_load(hung)))[0]),
         "blowout_m": max(0.0, hung.extreme(left)[0], hung.extreme(-left)[0]),
-        "low_station_m": float((start + hung.position_at(low_at))[0]),
+        "low_station_m": settled.station(span, start + hung.position_at(low_at)),
         "low_elevation_m": float(start[2]) - low,
         "slope_max": slope_max(hung),
         "small_deflection_sag_m": small_deflection_sag(hung, run, float(chord[2]), horizontal),
@@ -166,17 +166,22 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
 
 
 def support_state(settled: Settled, support: int, weight_factor: float = 1.0) -> dict[str, float]:
-    """Force of line and hold on a support, N, and the angle of a hanger from the vertical, rad, else NaN."""
-    at, force = settled.section.supports[support], settled.hold_forces[support]
-    swing = math.nan
+    """Force of line and hold on a support in its axes, N, and the angles of a hanger from the vertical, else NaN."""
+    at = settled.section.supports[support]
+    force = at.axes @ settled.hold_forces[support]
+    swing = [math.nan] * 3
     if at.hold == "hanger":
-        link = at.place - settled.clamps[support]
-        swing = math.atan2(math.hypot(link[0], link[1]), link[2])
+        x, y, z = at.axes @ (settled.clamps[support] - at.place)
+        swing = [math.atan2(math.hypot(x, y), -z), math.atan2(x, -z), math.atan2(y, -z)]
+    route = settled.section.route
     down = float(force[2]) + (0.5 * weight_factor * at.hanger_weight_N if at.hold == "hanger" else 0.0)
     return {
         "along_N": -float(force[0]),
         "across_N": -float(force[1]),
         "down_N": down,
         "resultant_N": math.sqrt(float(force[0]) ** 2 + float(force[1]) ** 2 + down**2),
-        "swing_rad": swing,
+        "swing_rad": swing[0],
+        "swing_along_rad": swing[1],
+        "swing_across_rad": swing[2],
+        "station_m": float(at.place[0]) if route is None else route.support_station(support),
     }
