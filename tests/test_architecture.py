@@ -23,10 +23,11 @@ CORE_LAYERS = (
     {"line", "couple", "blocktri"},
     {"check", "material", "load", "hold"},
     {"span", "uniform"},
-    {"section", "stringing"},
-    {"ground", "energy"},
+    {"section", "stringing", "wave"},
+    {"ground", "energy", "pulling"},
     {"limit"},
     {"trial"},
+    {"crew"},
 )
 # Nouns that a file exports beside its own name.
 NOUNS = {"line": {"options"}, "span": {"piece"}, "uniform": {"plain"}}

@@ -19,7 +19,10 @@ from .span import Hung, Material, NotSettled, Piece, settle
 
 @dataclass(frozen=True)
 class Support:
-    """How the line is held: anchor (fixed), hanger (swinging link) or post (elastic in plan, rigid vertically)."""
+    """How the line is held: anchor (fixed), hanger (swinging link) or post (elastic in plan, rigid vertically).
+
+    A sheave is fixed, or hangs on a link where it has a length; see :mod:`.sheave` for what runs over it.
+    """
 
     place: Array
     hold: str = "anchor"
@@ -30,21 +33,24 @@ class Support:
     blur_N: float = 0.0
     """Force below which a hanger's link counts as slack; see settle_section."""
 
+    @property
+    def hangs(self) -> bool:
+        """Whether there is a link."""
+        return self.hold in ("hanger", "sheave") and self.hanger_length_m > 0.0
+
     def plumb(self) -> Array:
         """Where the clamp is when nothing pulls it aside."""
-        return np.asarray(
-            self.place - np.array([0.0, 0.0, self.hanger_length_m if self.hold == "hanger" else 0.0])
-        )
+        return np.asarray(self.place - np.array([0.0, 0.0, self.hanger_length_m if self.hangs else 0.0]))
 
     def clamp(self, force: Array) -> Array:
         """Where the clamp is under the force of the hold on the line: a link pulls towards its fixing."""
-        if self.hold == "hanger":
+        if self.hangs:
             return np.asarray(self.place - self.hanger_length_m * force / self.blurred(force))
         return np.asarray(self.place - self.softness() @ force)
 
     def flexibility(self, force: Array) -> Array:
         """- d clamp / d force, m/N, 3x3."""
-        if self.hold != "hanger":
+        if not self.hangs:
             return self.softness()
         size = self.blurred(force)
         return np.asarray(self.hanger_length_m / size * (np.eye(3) - np.outer(force, force) / size**2))
@@ -87,7 +93,7 @@ class Settled:
         total = -sum(span.conjugate_J() for span in self.spans)
         for support, force in zip(self.section.supports, self.hold_forces, strict=True):
             total += float(force @ support.place) - 0.5 * float(force @ support.softness() @ force)
-            if support.hold == "hanger":
+            if support.hangs:
                 total -= support.hanger_length_m * (support.blurred(force) - support.blur_N)
         return total
 

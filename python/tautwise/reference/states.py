@@ -144,10 +144,10 @@ def support_state(settled: Settled, support: int) -> dict[str, float]:
     """Force of line and hold on a support, N, and the angle of a hanger from the vertical, rad, else NaN."""
     at, force = settled.section.supports[support], settled.hold_forces[support]
     swing = math.nan
-    if at.hold == "hanger":
+    if at.hangs:
         link = at.place - settled.clamps[support]
         swing = math.atan2(math.hypot(link[0], link[1]), link[2])
-    down = float(force[2]) + (0.5 * at.hanger_weight_N if at.hold == "hanger" else 0.0)
+    down = float(force[2]) + (0.5 * at.hanger_weight_N if at.hangs else 0.0)
     return {
         "along_N": -float(force[0]),
         "across_N": -float(force[1]),
