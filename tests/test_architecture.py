@@ -23,10 +23,11 @@ CORE_LAYERS = (
     {"line", "couple", "blocktri"},
     {"check", "material", "load", "hold", "route", "vee"},
     {"span", "uniform"},
-    {"section", "stringing"},
-    {"ground", "energy", "history"},
+    {"section", "stringing", "wave"},
+    {"ground", "energy", "history", "pulling"},
     {"limit"},
     {"trial"},
+    {"crew"},
 )
 # Nouns that a file exports beside its own name.
 NOUNS = {"line": {"options"}, "material": {"curve", "part", "permanent"}, "span": {"piece"}, "uniform": {"plain"}}

@@ -209,6 +209,7 @@ static tw_status fill_over(crew_run *run)
 {
     tw_crew *crew = run->crew;
     const tw_section *blocks = run->trial->pulling->blocks;
+    run->bare.supports = run->trial->pulling->supports; /* with lifted hangers held down */
     tw_pulling_over_sheaves(run->section);
     tw_status status = hang_all(run, blocks->length_m, crew->over);
     if (status == TW_OK) {

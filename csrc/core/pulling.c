@@ -34,13 +34,17 @@ tw_pulling *tw_pulling_create(const tw_project *project)
     }
     pulling->project = project;
     pulling->options = tw_options_default();
-    pulling->blocks = tw_section_create(project);
-    pulling->clamped = tw_section_create(project);
+    pulling->held = *project;
+    pulling->supports = tw_calloc(project->support_count, sizeof *pulling->supports);
+    pulling->held.supports = pulling->supports;
+    pulling->blocks = tw_section_create(&pulling->held);
+    pulling->clamped = tw_section_create(&pulling->held);
     pulling->work = tw_calloc(TW_STRINGING_WORK(project), sizeof(double));
-    if (!pulling->blocks || !pulling->clamped || !pulling->work) {
+    if (!pulling->supports || !pulling->blocks || !pulling->clamped || !pulling->work) {
         tw_pulling_free(pulling);
         return NULL;
     }
+    memcpy(pulling->supports, project->supports, project->support_count * sizeof *pulling->supports);
     return pulling;
 }
 
@@ -52,22 +56,41 @@ void tw_pulling_free(tw_pulling *pulling)
     tw_section_free(pulling->blocks);
     tw_section_free(pulling->clamped);
     tw_free(pulling->work);
+    tw_free(pulling->supports);
     tw_free(pulling);
 }
 
 /* `clamps`: what natural length does at the hangers and posts between the anchors. */
-static void set_feeds(tw_section *section, tw_feed clamps)
+static void set_feeds(tw_section *section, const tw_project *project, tw_feed clamps)
 {
     for (size_t j = 0; j <= section->span_count; j++) {
-        int between = j > 0 && j < section->span_count && !tw_pulling_begins(section->project, j);
-        int sheave = section->project->supports[j].hold == TW_HOLD_SHEAVE;
+        int between = j > 0 && j < section->span_count && !tw_pulling_begins(project, j);
+        int sheave = project->supports[j].hold == TW_HOLD_SHEAVE;
         section->feed[j] = !between ? TW_FEED_NONE : sheave ? TW_FEED_SHEAVE : clamps;
     }
 }
 
 void tw_pulling_over_sheaves(tw_section *section)
 {
-    set_feeds(section, TW_FEED_SHEAVE);
+    set_feeds(section, section->project, TW_FEED_SHEAVE);
+}
+
+/* With equal horizontal tension the line would lift these hangers: they become fixed points at their plumb ends. */
+static void hold_down(tw_pulling *pulling, const double *length_m, const double *pull)
+{
+    double weight = pulling->project->line.weight_N_per_m;
+    for (size_t j = 1; j + 1 < pulling->project->support_count; j++) {
+        tw_support *support = &pulling->supports[j];
+        *support = pulling->project->supports[j];
+        double link = tw_hold_link_m(support);
+        double down = pull[3 * j - 1] + weight * length_m[j - 1] - pull[3 * j + 2];
+        if (link > 0.0 && down + 0.5 * support->hanger_weight_N <= 0.0) {
+            support->sheave_friction = support->hold == TW_HOLD_SHEAVE ? support->sheave_friction : (double)NAN;
+            support->hold = TW_HOLD_SHEAVE;
+            support->elevation_m -= link;
+            support->hanger_length_m = 0.0;
+        }
+    }
 }
 
 /* From the spans of equal horizontal tension to those over sheaves, pulled in. */
@@ -77,7 +100,8 @@ static tw_status pull_in(void *data, double pull_N, double *length_m, double *pu
     tw_section *blocks = pulling->blocks;
     size_t n = blocks->span_count;
     int over = pulling->project->stringing.method == TW_METHOD_OVER_SHEAVES;
-    set_feeds(blocks, over ? TW_FEED_SHEAVE : TW_FEED_PLUMB);
+    hold_down(pulling, length_m, pull);
+    set_feeds(blocks, pulling->project, over ? TW_FEED_SHEAVE : TW_FEED_PLUMB);
     for (size_t j = 0; j < n; j++) {
         blocks->feed[j] = tw_pulling_begins(pulling->project, j) ? TW_FEED_WINCH : blocks->feed[j];
         blocks->winch_N[j] = pull_N;
@@ -108,7 +132,7 @@ static tw_status clamp_plumb(tw_pulling *pulling, double *length_m)
 {
     tw_section *clamped = pulling->clamped;
     size_t n = clamped->span_count;
-    set_feeds(clamped, TW_FEED_PLUMB);
+    set_feeds(clamped, pulling->project, TW_FEED_PLUMB);
     tw_status status = tw_section_load(clamped, TW_NONE, pulling->blocks->length_m, NULL, 0);
     if (status != TW_OK) {
         return status;

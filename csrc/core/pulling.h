@@ -6,7 +6,8 @@
  * Clamped plumb, the length between two anchors stays and every span of the section gets the same horizontal tension.
  * The mark of a support on the line moves by the clipping offset
  *     S_plumb,j - S_block,j        natural length from the section's first support, positive ahead.
- * A line that runs over sheaves in service keeps them when it is clamped.
+ * A line that runs over sheaves in service keeps them when it is clamped. A hanger that the line would lift is held down
+ * plumb in both states, as it is on a line strung clamped.
  */
 #ifndef TW_PULLING_H
 #define TW_PULLING_H
@@ -16,6 +17,8 @@
 
 typedef struct tw_pulling {
     const tw_project *project;
+    tw_project held;        /* the same, on the supports below */
+    tw_support *supports;   /* lifted hangers as fixed points; owned */
     tw_section *blocks;     /* as pulled in; owned */
     tw_section *clamped;    /* as clamped; owned */
     double *work;           /* scratch of stringing; owned */

@@ -10,8 +10,8 @@
 enum { HALVINGS_MOST = 40, SIZE = TW_COUPLE_FEED_SIZE, BLOCK = TW_COUPLE_FEED_BLOCK };
 
 static const double BALANCED = 2e-15;       /* relative difference of tensions that rounding leaves */
-static const double AT_FLOOR = 1e-12;       /* below it a step that gains nothing is the last */
-static const double BALANCED_ENOUGH = 1e-10;
+static const double AT_FLOOR = 1e-10;       /* below it closing errors may decide: a step that gains nothing is the last */
+static const double BALANCED_ENOUGH = 3e-10;
 static const double LEAST_SHARE = 1e-3;     /* of a span's end piece, that a step leaves */
 
 /* One solve at work; the arrays lie in section->feed_work and count the spans. */
@@ -93,7 +93,7 @@ static void note_lengths(const feed_run *run)
 }
 
 /* Puts moved_m on the pieces; 0, and leaves them as they are, where a piece would be used up. */
-static int apply_moved(const feed_run *run)
+static int apply_moved(feed_run *run)
 {
     tw_section *section = run->section;
     for (size_t k = 0; k < section->span_count; k++) {
@@ -102,6 +102,7 @@ static int apply_moved(const feed_run *run)
         double first = run->first[k] + in - (one ? out : 0.0), last = run->last[k] - out + (one ? in : 0.0);
         if (!(first >= LEAST_SHARE * fmin(run->first[k], first_piece(section, k)->length_m)
               && last >= LEAST_SHARE * fmin(run->last[k], last_piece(section, k)->length_m))) {
+            run->overran |= !one; /* one piece alone: the line itself runs off */
             return 0;
         }
     }
@@ -328,7 +329,6 @@ static double take_share(feed_run *run, const size_t *run_first, size_t runs, do
     }
     *status = TW_NOT_SETTLED;
     if (!apply_moved(run)) {
-        run->overran = 1;
         memcpy(section->moved_m, run->moved, section->span_count * sizeof(double));
         return INFINITY;
     }

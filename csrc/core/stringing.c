@@ -299,19 +299,41 @@ static tw_status lengths_by_rule(strung *line, double *pull_N)
     return solve_rule(line, low, high, pull_N);
 }
 
+/* A bracket around the pull by another way, from that of equal horizontal tension: the two are not far apart. */
+static tw_status rule_by_way(strung *line, const tw_stringing_way *way, double *pull_N)
+{
+    double near, miss;
+    tw_status status = lengths_by_rule(line, pull_N);
+    line->way = way;
+    if (status == TW_OK) {
+        status = measure(line, *pull_N, &miss);
+    }
+    if (status != TW_OK) {
+        return status;
+    }
+    double from = *pull_N, step = miss > 0.0 ? 1.01 : 1.0 / 1.01;
+    do {
+        near = from;
+        from *= step;
+        step *= step;
+        status = measure(line, from, &miss);
+    } while (status == TW_OK && (miss > 0.0) == (step > 1.0) && from < 1e3 * *pull_N && from > 1e-3 * *pull_N);
+    return status == TW_OK ? solve_rule(line, fmin(near, from), fmax(near, from), pull_N) : status;
+}
+
 tw_status tw_stringing_by(const tw_project *project, const tw_stringing_way *way, double *length_m, double *pull_N,
                           double *work)
 {
     const tw_stringing *rule = &project->stringing;
     tw_curve curve;
     strung line = strung_on(project, length_m, work, &curve);
-    line.way = way;
     if (!isnan(*pull_N) || rule->rule == TW_STRING_PULL) {
         *pull_N = isnan(*pull_N) ? rule->value : *pull_N;
+        line.way = way;
         return string_to(&line, *pull_N);
     }
     return rule->rule == TW_STRING_TENSION || rule->rule == TW_STRING_SAG || rule->rule == TW_STRING_TOTAL_LENGTH
-               ? lengths_by_rule(&line, pull_N)
+               ? rule_by_way(&line, way, pull_N)
                : TW_ERROR_RANGE;
 }
 

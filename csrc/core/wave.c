@@ -4,7 +4,7 @@
 
 #include "vector.h"
 
-enum { STRETCHES_MOST = 4096 };
+enum { HALVINGS_MOST = 60 };
 static const double gravity = 9.80665; /* m/s2, standard */
 
 /* Gauss-Legendre, ten points. */
@@ -21,31 +21,35 @@ static double slowness(const tw_material *material, const tw_piece *piece, doubl
     return sqrt(tw_material_stretch(material, T) / T);
 }
 
-/* |t| changes along a piece at most by q: where half a stretch changes it by no more than a quarter of its least, ten points
- * leave nothing. */
-static size_t stretches(const tw_piece *piece)
+/* |t| changes by q per metre at most: where a stretch changes it by no more than half of its least, ten points leave
+ * nothing. */
+static int is_short(const tw_piece *piece, double from, double to)
 {
     double q2 = tw_dot(piece->load, piece->load);
     double at = q2 > 0.0 ? tw_dot(piece->tension, piece->load) / q2 : 0.0;
     double t[3];
-    tw_piece_tension(piece, fmin(fmax(at, 0.0), piece->length_m), t);
-    double count = ceil(2.0 * sqrt(q2) * piece->length_m / tw_norm(t));
-    return count > 1.0 ? (count < STRETCHES_MOST ? (size_t)count : STRETCHES_MOST) : 1;
+    tw_piece_tension(piece, fmin(fmax(at, from), to), t);
+    return sqrt(q2) * (to - from) <= 0.5 * tw_norm(t);
+}
+
+static double passage(const tw_material *material, const tw_piece *piece, double from, double to, int halvings)
+{
+    double middle = 0.5 * (from + to), half = 0.5 * (to - from), sum = 0.0;
+    if (halvings > 0 && !is_short(piece, from, to)) {
+        return passage(material, piece, from, middle, halvings - 1) + passage(material, piece, middle, to, halvings - 1);
+    }
+    for (int i = 0; i < 5; i++) {
+        sum += half * weight[i] * (slowness(material, piece, middle - half * point[i])
+                                   + slowness(material, piece, middle + half * point[i]));
+    }
+    return sum;
 }
 
 double tw_wave_return_s(const tw_material *material, const tw_piece *pieces, size_t count, double mass_kg_per_m)
 {
     double sum = 0.0;
     for (size_t p = 0; p < count; p++) {
-        size_t parts = stretches(&pieces[p]);
-        double half = 0.5 * pieces[p].length_m / (double)parts;
-        for (size_t k = 0; k < parts; k++) {
-            double middle = half * (double)(2 * k + 1);
-            for (int i = 0; i < 5; i++) {
-                sum += half * weight[i] * (slowness(material, &pieces[p], middle - half * point[i])
-                                           + slowness(material, &pieces[p], middle + half * point[i]));
-            }
-        }
+        sum += passage(material, &pieces[p], 0.0, pieces[p].length_m, HALVINGS_MOST);
     }
     return 2.0 * sqrt(mass_kg_per_m) * sum;
 }

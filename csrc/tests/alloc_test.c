@@ -1,5 +1,6 @@
 /* Every allocation fails in turn: the call says so, leaves nothing behind, and the next one is right to the last byte. */
 #include "alloc_count.h"
+#include "crew.h"
 #include "expect.h"
 #include "fixture.h"
 #include "route.h"
@@ -75,6 +76,24 @@ static tw_status judge_call(const fixture *f, double *answer)
             *answer += verdict.utilisation;
         }
     }
+    tw_trial_free(trial);
+    return status;
+}
+
+/* Strung over sheaves, one of which stays; then the crew's numbers. */
+static tw_status crew_call(const fixture *f, double *answer)
+{
+    tw_trial *trial = tw_trial_create(&f->project);
+    tw_crew *crew = trial ? tw_crew_create(&f->project, 2) : NULL;
+    tw_status status = crew ? tw_trial_string(trial, 20e3) : TW_ERROR_MEMORY;
+    if (status == TW_OK) {
+        crew->temperature_degC[1] = 20.0;
+        status = tw_crew_fill(crew, trial, &f->options);
+    }
+    if (status == TW_OK) {
+        *answer = crew->lengths[1].natural_m + crew->over[0].sag_m + crew->first[1].sag_m + crew->last[0].sag_m;
+    }
+    tw_crew_free(crew);
     tw_trial_free(trial);
     return status;
 }
@@ -156,5 +175,12 @@ int main(void)
     tw_route_measure(f.supports, SPANS + 1, stations);
     f.project.route_station_m = stations;
     refuse_each_way(&f, window_call, "window of a turning route");
+    f.project.route_station_m = NULL;
+    f.project.stringing.method = TW_METHOD_OVER_SHEAVES;
+    f.project.stringing.friction = 0.02;
+    f.supports[2].hold = TW_HOLD_SHEAVE;
+    f.supports[2].sheave_friction = (double)NAN;
+    refuse_each_way(&f, crew_call, "crew");
+    refuse_each_way(&f, settle_call, "settle over a sheave");
     return check_end("alloc_test");
 }

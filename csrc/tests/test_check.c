@@ -181,7 +181,15 @@ static void test_holds(void)
     REFUSED(c.supports[1].hanger_length_m = 0.0, "supports", 1, "hanger_length_m");
     REFUSED(c.supports[0] = c.supports[1]; c.supports[0].station_m = 0.0, "supports", 0, "hold");
     REFUSED(c.project.support_count = 4, "supports", 3, "hold");
-    REFUSED(c.supports[1].hold = TW_HOLD_SHEAVE, "supports", 1, "hold");
+    REFUSED(c.supports[1].hold = (tw_hold)99, "supports", 1, "hold");
+    REFUSED(c.supports[0].hold = TW_HOLD_SHEAVE, "supports", 0, "hold");
+    REFUSED(c.supports[1].hold = TW_HOLD_SHEAVE; c.supports[1].sheave_friction = -0.1, "supports", 1, "sheave_friction");
+    REFUSED(c.supports[1].sheave_friction = 1.1, "supports", 1, "sheave_friction");
+    REFUSED(c.project.stringing.friction = -1e-9, "stringing", TW_NONE, "friction");
+    REFUSED(c.project.stringing.friction = NAN, "stringing", TW_NONE, "friction");
+    REFUSED(c.project.stringing.end_allowance_m = -1e-9, "stringing", TW_NONE, "end_allowance_m");
+    REFUSED(c.project.stringing.method = TW_METHOD_OVER_SHEAVES; c.project.stringing.rule = TW_STRING_SPAN_LENGTHS,
+            "stringing", TW_NONE, "method");
     REFUSED(c.supports[2].stiffness_along_N_per_m = NAN, "supports", 2, "stiffness_along_N_per_m");
     REFUSED(c.supports[2].stiffness_across_N_per_m = NAN, "supports", 2, "stiffness_along_N_per_m");
 }

@@ -13,6 +13,7 @@ from . import carriage, limits, loads
 from .quadrature import Array, Growing, PieceLoad
 from .route import route_of
 from .section import Section, Settled, Support, settle_section
+from .sheave import Feed, begins, lengths_of, run_over
 from .span import Material, Piece
 from .states import span_state, support_state
 from .stringing import Strung, pull_by_rule, string_to
@@ -52,14 +53,56 @@ class Twin:
         """Bare, strung to a horizontal tension."""
         if pull_N not in self._strung:
             reference = self.material(self.rule["temperature_degC"])
-            self._strung[pull_N] = string_to(reference, self.line["weight_N_per_m"], self.supports, pull_N)
+            plumb = string_to(reference, self.line["weight_N_per_m"], self.supports, pull_N)
+            self._strung[pull_N] = self.pulled_in(plumb, pull_N) if self.sheaves_in_play() else plumb
         return self._strung[pull_N]
+
+    def sheaves_in_play(self) -> bool:
+        """Whether the line is strung over sheaves, or runs over one in service."""
+        return self.over_sheaves() or any(support.hold == "sheave" for support in self.supports)
+
+    def over_sheaves(self) -> bool:
+        """Whether the line is pulled in over sheaves and then clamped."""
+        return bool(self.rule.get("method", "clamped") == "over_sheaves")
+
+    def feeds(self, clamps: str, pull_N: float | None = None, drag: int = 0) -> dict[int, Feed]:
+        """What natural length does while the line is strung; `clamps`: at hangers and posts between anchors.
+
+        pull_N: what a winch at each section's first support keeps; None where nothing comes in.
+        """
+        holds = [support.hold for support in self.supports]
+        found = {}
+        for j, row in enumerate(self.problem["supports"][:-1]):
+            if begins(holds, j):
+                if pull_N is not None:
+                    found[j] = Feed("winch", pull_N=pull_N)
+            else:
+                own = row.get("sheave_friction") if holds[j] == "sheave" else None
+                mu = self.rule.get("friction", 0.0) if own is None else own
+                found[j] = Feed("sheave" if holds[j] == "sheave" else clamps, mu, drag)
+        return found
+
+    def pulled_in(self, plumb: Strung, pull_N: float, drag: int = 0) -> Strung:
+        """From spans of equal horizontal tension to those of a line that is pulled in."""
+        clamps = "sheave" if self.over_sheaves() else "plumb"
+        settled = run_over(self.bare(plumb.lengths_m), self.feeds(clamps, pull_N, drag))
+        return Strung(lengths_of(settled), list(settled.spans), list(settled.clamps))
+
+    def bare(self, lengths: list[float]) -> Section:
+        """The bare line at the stringing temperature."""
+        load = np.array([0.0, 0.0, -self.line["weight_N_per_m"]])
+        spans = [[Piece(length, load)] for length in lengths]
+        clamp_loads = self.clamp_loads(np.concatenate([[0.0], np.cumsum(lengths)]), [])
+        return Section(self.material(self.rule["temperature_degC"]), spans, self.supports, clamp_loads)
 
     def lengths_m(self, pull_N: float | None = None) -> list[float]:
         """Natural length of each span."""
         if pull_N is None and self.rule["rule"] == "span_lengths":
             return [float(length) for length in self.rule["lengths_m"]]
-        return self.strung(self.pull_N() if pull_N is None else pull_N).lengths_m
+        lengths = self.strung(self.pull_N() if pull_N is None else pull_N).lengths_m
+        if self.over_sheaves() and self.rule.get("clip", "plumb") == "plumb":
+            return lengths_of(run_over(self.bare(lengths), self.feeds("plumb")))
+        return lengths
 
     def pull_N(self) -> float:
         """The pull of the stringing rule."""
@@ -74,7 +117,11 @@ class Twin:
         """A condition in equilibrium; -1 is the bare line at stringing."""
         key = (condition, pull_N, with_addition)
         if key not in self._settled:
-            self._settled[key] = carriage.settle(self, condition, pull_N, with_addition)
+            service = {j: Feed("sheave") for j, support in enumerate(self.supports) if support.hold == "sheave"}
+            if service:
+                self._settled[key] = run_over(self.section(condition, pull_N, with_addition), service)
+            else:
+                self._settled[key] = carriage.settle(self, condition, pull_N, with_addition)
         return self._settled[key]
 
     def states(self, condition: int, pull_N: float | None = None) -> dict[str, list[dict[str, float]]]:
@@ -177,7 +224,7 @@ class Twin:
         for j, support in enumerate(self.supports):
             span = min(j, len(self.supports) - 2)
             snap = SNAP * float(starts[span + 1] - starts[span])
-            if support.hold == "hanger":
+            if support.hangs:
                 area = self.problem["supports"][j].get("hanger_wind_area_m2", 0.0)
                 own = loads.at_hanger(condition, support.hanger_weight_N, area, self.along(span)[:2])
                 found[j] += self.turned(own, span)

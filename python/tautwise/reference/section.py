@@ -20,7 +20,10 @@ from .span import Hung, Material, NotSettled, Piece, settle
 
 @dataclass(frozen=True)
 class Support:
-    """How the line is held: anchor or post (fixed or elastic), or hanger (swinging link, or two strings as a V)."""
+    """How the line is held: anchor or post (fixed or elastic), or hanger (swinging link, or two strings as a V).
+
+    A sheave is fixed, or hangs on a link where it has a length; see :mod:`.sheave` for what runs over it.
+    """
 
     place: Array
     hold: str = "anchor"
@@ -35,24 +38,29 @@ class Support:
     blur_N: float = 0.0
     """Force below which a hanger's link counts as slack; see settle_section."""
 
+    @property
+    def hangs(self) -> bool:
+        """Whether there is a link."""
+        return self.hold in ("hanger", "sheave") and self.hanger_length_m > 0.0
+
     def plumb(self) -> Array:
         """Where the clamp is when nothing pulls it aside."""
         return np.asarray(self.place - np.array([0.0, 0.0, self.drop_m()]))
 
     def drop_m(self) -> float:
         """How far a plumb clamp hangs below its support."""
-        return math.sqrt(self.hanger_length_m**2 - (0.5 * self.spread_m) ** 2) if self.hold == "hanger" else 0.0
+        return math.sqrt(self.hanger_length_m**2 - (0.5 * self.spread_m) ** 2) if self.hangs else 0.0
 
     def clamp(self, force: Array) -> Array:
         """Where the clamp is under the force of the hold on the line."""
-        if self.hold != "hanger":
+        if not self.hangs:
             return np.asarray(self.place - self.softness() @ force)
         own = np.append(self.axes @ force, self.blur_N)
         return np.asarray(self.place + self.axes.T @ self.hanging(own)[0][:3])
 
     def flexibility(self, force: Array) -> Array:
         """- d clamp / d force, m/N, 3x3."""
-        if self.hold != "hanger":
+        if not self.hangs:
             return self.softness()
         own = np.append(self.axes @ force, self.blur_N)
         return np.asarray(self.axes.T @ self.hanging(own)[1][:3, :3] @ self.axes)
@@ -94,7 +102,7 @@ class Support:
 
     def softness(self) -> Array:
         """Give of a post or an anchor, m/N, 3x3."""
-        soft = np.zeros(3) if self.hold == "hanger" else 1.0 / np.array(self.stiffness_N_per_m)
+        soft = np.zeros(3) if self.hangs else 1.0 / np.array(self.stiffness_N_per_m)
         return np.asarray(self.axes.T @ np.diag(soft) @ self.axes)
 
 
@@ -133,7 +141,7 @@ class Settled:
         total = -sum(span.conjugate_J() for span in self.spans)
         for support, force in zip(self.section.supports, self.hold_forces, strict=True):
             total += float(force @ support.place) - 0.5 * float(force @ support.softness() @ force)
-            if support.hold == "hanger":
+            if support.hangs:
                 total -= support.support_function(force)
         return total
 

@@ -170,11 +170,11 @@ def support_state(settled: Settled, support: int, weight_factor: float = 1.0) ->
     at = settled.section.supports[support]
     force = at.axes @ settled.hold_forces[support]
     swing = [math.nan] * 3
-    if at.hold == "hanger":
+    if at.hangs:
         x, y, z = at.axes @ (settled.clamps[support] - at.place)
         swing = [math.atan2(math.hypot(x, y), -z), math.atan2(x, -z), math.atan2(y, -z)]
     route = settled.section.route
-    down = float(force[2]) + (0.5 * weight_factor * at.hanger_weight_N if at.hold == "hanger" else 0.0)
+    down = float(force[2]) + (0.5 * weight_factor * at.hanger_weight_N if at.hangs else 0.0)
     return {
         "along_N": -float(force[0]),
         "across_N": -float(force[1]),

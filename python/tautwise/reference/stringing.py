@@ -76,12 +76,12 @@ def follow(supports: Sequence[Support], spans: Sequence[Hung]) -> list[Array]:
     """
     clamps = []
     for j, support in enumerate(supports):
-        force = np.array([0.0, 0.0, 0.5 * support.hanger_weight_N if support.hold == "hanger" else 0.0])
+        force = np.array([0.0, 0.0, 0.5 * support.hanger_weight_N if support.hangs else 0.0])
         if j > 0:
             force = force + spans[j - 1].end_tension()
         if j < len(spans):
             force = force - spans[j].pull
-        lifted = support.hold == "hanger" and force[2] <= 0.0
+        lifted = support.hangs and force[2] <= 0.0
         clamps.append(support.plumb() if lifted else support.clamp(force))
     return clamps
 
