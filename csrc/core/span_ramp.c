@@ -4,7 +4,7 @@
 
 #include "vector.h"
 
-static const double FOUR_POINTS = 0.02, EIGHT_POINTS = 0.3; /* greatest x of a panel */
+static const double FOUR_POINTS = 0.04, EIGHT_POINTS = 0.4; /* greatest l/R of a panel */
 enum { HALVINGS_MOST = 40, LOOKS = 16, BISECTIONS = 60 };
 
 /* Gauss-Legendre points and weights on [-1, 1], symmetric. */
@@ -64,16 +64,15 @@ static void add_panel(sums *to, const tw_piece *piece, double from, double lengt
     }
 }
 
-/* |q| l over a lower bound of |t| on the stretch; infinity where that bound is none. */
+/* l/R. */
 static double panel_measure(const tw_piece *piece, double from, double length)
 {
-    double q0[3], q1[3], t[3];
-    tw_axpy(piece->load, from, piece->ramp, q0);
-    tw_axpy(piece->load, from + length, piece->ramp, q1);
+    double q[3], t[3];
+    tw_axpy(piece->load, from + 0.5 * length, piece->ramp, q);
     tw_piece_tension(piece, from + 0.5 * length, t);
-    double met = fmax(tw_norm(q0), tw_norm(q1)) * length;
-    double least = tw_norm(t) - 0.5 * met;
-    return least > 0.0 ? met / least : INFINITY;
+    double change = (sqrt(2.0) - 1.0) * tw_norm(t), size = tw_norm(q);
+    double sum = size + sqrt(size * size + 2.0 * tw_norm(piece->ramp) * change);
+    return change > 0.0 ? length * sum / (2.0 * change) : INFINITY;
 }
 
 static void add_stretch(sums *to, const tw_piece *piece, double from, double length)

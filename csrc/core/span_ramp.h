@@ -1,9 +1,10 @@
 /* span_ramp: pieces whose load grows linearly along them, by Gauss-Legendre quadrature (pure).
  *
  *     t(s) = t0 - q s - r s^2 / 2          q = load at the start, r = ramp
- * Displacement, flexibility and energies are integrals of functions of t, which are analytic but for points of the complex
- * plane about |t|/|q| away. On a panel of length l with x = |q| l / |t| least, n points err by about
- * (4/x)^-2n (Trefethen, SIAM Review 50 (2008) 67-87, theorem 4.5): below 1e-16 for four up to x = 0.02, eight up to 0.3.
+ * Displacement, flexibility and energies are integrals of functions of t, which are analytic where t.t is not 0: at least as
+ * far from a panel's middle as R, where |q| R + |r| R^2 / 2 = (sqrt(2) - 1) |t| with q and t of the middle. On a panel of
+ * length l, n points err by about (4 R / l)^-2n (Trefethen, SIAM Review 50 (2008) 67-87, theorem 4.5): by 1e-16 for four up to
+ * l/R = 0.04, for eight up to 0.4.
  */
 #ifndef TW_SPAN_RAMP_H
 #define TW_SPAN_RAMP_H
