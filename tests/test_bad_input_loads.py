@@ -134,7 +134,7 @@ LOADS = [
     ('{ force = "1 kN", carriage = "held" }', "", "at is missing"),
     ('{ force = "1 kN", carriage = "held", at_length = "9 m" }', "at_length", "no place of the natural"),
     (
-        '{ force = "2 kN", carriage = "free", span = "Middle" }, { force = "2 kN", carriage = "free", span = "Middle" }',
+        f"{LOAD}, {LOAD}",
         "load[1].carriage",
         "a second carriage",
     ),

@@ -11,6 +11,8 @@ import core_cases as cases
 import numpy as np
 import pytest
 
+import tautwise as tw
+from refresh_expected import EXAMPLES
 from tautwise import _core
 
 STIFF = 1e13  # EA, N: strains of 1e-9 and less beside the tolerances
@@ -200,3 +202,22 @@ def test_the_wind_on_a_hanger_s_string_acts_half_at_its_clamp():
     assert total["down_N"] == pytest.approx(15.97 * length + 600.0, rel=1e-9)
     middle = found["supports"][1]
     assert math.tan(middle["swing_rad"]) == pytest.approx(middle["across_N"] / (middle["down_N"] - 300.0), rel=1e-9)
+
+
+# --- the example of unequal ice, by hand
+
+
+def test_ice_on_every_second_span_by_hand():
+    """Sag w L^2 / (8 H) within 1 %; the difference of H pulls a hanger along; iced spans hang lower than all iced."""
+    project = tw.load(EXAMPLES / "unequal_ice.taut.toml")
+    every, second = project.settle("ice on all spans"), project.settle("ice on every second span")
+    weight = 0.86 * 9.80665
+    ice = math.pi * 0.014 * 0.034 * 900.0 * 9.80665
+    for k, span in enumerate(second.spans):
+        load = weight + (ice if k % 2 else 0.0)
+        assert span.sag_m == pytest.approx(load * span.span_m**2 / (8.0 * span.horizontal_tension_N), rel=0.01)
+        assert (span.sag_m > every.spans[k].sag_m) == bool(k % 2)
+    for k in range(1, 10):
+        difference = second.spans[k].horizontal_tension_N - second.spans[k - 1].horizontal_tension_N
+        assert second.supports[k].along_N == pytest.approx(difference, abs=2.0)
+        assert abs(second.supports[k].swing_deg) > abs(every.supports[k].swing_deg)

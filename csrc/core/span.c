@@ -231,6 +231,11 @@ void tw_piece_stationary(const tw_piece *piece, const double direction[3], doubl
     for (int i = 0; i < 2; i++) {
         places[i] = places[i] > 0.0 && places[i] < piece->length_m ? places[i] : -1.0;
     }
+    if (places[1] >= 0.0 && !(places[0] >= 0.0 && places[0] <= places[1])) {
+        double later = places[0];
+        places[0] = places[1];
+        places[1] = later;
+    }
 }
 
 int tw_piece_turns(const tw_piece *piece, const tw_route_leg *leg, double *s)
@@ -238,7 +243,7 @@ int tw_piece_turns(const tw_piece *piece, const tw_route_leg *leg, double *s)
     double places[2];
     const double ahead[3] = {leg->ahead[0], leg->ahead[1], 0.0};
     tw_piece_stationary(piece, ahead, places);
-    *s = places[0] >= 0.0 ? places[0] : places[1];
+    *s = places[0];
     return *s > 0.0 && *s < piece->length_m;
 }
 

@@ -54,7 +54,7 @@ void tw_piece_tension(const tw_piece *piece, double s, double tension[3]);
 /* Position at natural length s from the piece's start. */
 void tw_piece_position(const tw_material *material, const tw_piece *piece, double s, double position[3]);
 
-/* Natural lengths within a piece where direction . t = 0, -1 for none: one, or up to two where the load varies. */
+/* Natural lengths within a piece where direction . t = 0, -1 for none: one, or up to two in order where the load varies. */
 void tw_piece_stationary(const tw_piece *piece, const double direction[3], double places[2]);
 
 /* The place within a piece where the station turns back (no tension along the leg): returns 1 and where, or 0. The first of

@@ -30,10 +30,7 @@ static tw_status section_call(const fixture *f, double *answer)
         status = tw_section_solve(strung, &f->options, 0);
     }
     if (status == TW_OK) {
-        status = tw_section_load(section, 0, lengths_m, strung, 1);
-    }
-    if (status == TW_OK) {
-        status = tw_section_solve(section, &f->options, 0);
+        status = tw_section_hang(section, 0, lengths_m, strung, 1, &f->options, 0);
     }
     if (status == TW_OK) {
         *answer = section->energy_lower_J;
@@ -182,5 +179,12 @@ int main(void)
     f.supports[2].sheave_friction = (double)NAN;
     refuse_each_way(&f, crew_call, "crew");
     refuse_each_way(&f, settle_call, "settle over a sheave");
+    f.project.stringing.method = TW_METHOD_CLAMPED;
+    f.supports[2].hold = TW_HOLD_HANGER;
+    fixture_load(&f, (tw_load){.is_run = 1, .place = TW_PLACE_WHOLE, .from_m = NAN, .to_m = NAN, .vector = {0.0, 0.0, -5.0}});
+    fixture_load(&f, (tw_load){.is_point = 1, .carriage = TW_CARRIAGE_FREE, .carriage_span = 1, .place = TW_PLACE_WHOLE,
+                               .from_m = NAN, .to_m = NAN, .vector = {0.0, 0.0, -800.0}});
+    refuse_each_way(&f, section_call, "run load and carriage");
+    refuse_each_way(&f, settle_call, "settle with a carriage");
     return check_end("alloc_test");
 }
