@@ -38,7 +38,8 @@ from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of
 
 if TYPE_CHECKING:
-    from tautwise.results import Equilibrium, PullWindow, VetReport
+    from tautwise.results import Equilibrium, PullWindow, SurveyFit, VetReport
+    from tautwise.survey import Survey
 
 RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
 
@@ -172,6 +173,18 @@ class Project(BaseModel):
         import tautwise.solve as solve
 
         return solve.vet(self, pull=pull)
+
+    def fit(
+        self,
+        survey: Survey | str | os.PathLike[str],
+        unknown: str = "pull",
+        temperature: float | str | None = None,
+        **options: Any,
+    ) -> SurveyFit:
+        """The line that hangs closest to measured points; parameters and errors as in :func:`tautwise.fit.fit`."""
+        from tautwise.fit import fit
+
+        return fit(self, survey, unknown=unknown, temperature=temperature, **options)
 
     def __repr__(self) -> str:
         counts = (("support", self.supports), ("condition", self.conditions), ("limit", self.limits))

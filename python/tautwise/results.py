@@ -1,6 +1,7 @@
 """All results: frozen records that compare, pickle, print short, and turn into JSON and back without loss."""
 
 from tautwise.places import Places
+from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan, SurveyFit
 from tautwise.results_line import (
     CAUTION,
     Equilibrium,
@@ -27,6 +28,9 @@ __all__ = [
     "Conflict",
     "Equilibrium",
     "FileVerdict",
+    "FittedPoint",
+    "FittedPull",
+    "FittedSpan",
     "LimitState",
     "LowPoint",
     "MarkState",
@@ -39,6 +43,7 @@ __all__ = [
     "SpanState",
     "StrungState",
     "SupportState",
+    "SurveyFit",
     "UtilisationCurve",
     "VetReport",
     "WindowEnd",
