@@ -60,7 +60,7 @@ def fit(
     _refuse_stations(project, points)
     found = _found(project, points, unknown, options)
     if found["status"] != "ok":
-        raise _failure(project, points, unknown, found)
+        raise _failure(project, points, found)
     return _result(project, points, unknown, found)
 
 
@@ -98,11 +98,8 @@ def _refuse_stations(project: Project, points: Survey) -> None:
         raise InputError([*faults[:20], *([points.whole_fault(f"and {more} more such points")] if more > 0 else [])])
 
 
-def _failure(project: Project, points: Survey, unknown: str, found: Mapping[str, Any]) -> Exception:
+def _failure(project: Project, points: Survey, found: Mapping[str, Any]) -> Exception:
     status = found["status"]
-    if status == "undetermined" and not project.line.weight_N_per_m:
-        problem = "without a weight the line hangs straight, and shows no tension"
-        return InputError([project.core_fault("line.weight_N_per_m", problem, "a weight above 0")])
     if status == "undetermined":
         return InputError([_undetermined(project, points, found)])
     head = f"{points.source}: " if points.source else ""
