@@ -426,6 +426,22 @@ def test_ctrl_c_ends_a_fit():
         timer.cancel()
 
 
+def test_a_pull_that_the_points_hardly_show_is_said():
+    """Sag of 4 m known to 1 m."""
+    project, rng = level(pull="24 kN"), np.random.default_rng(18)
+    x = stations_of(project.to_core(), 8)
+    noisy = elevations(project.to_core(), x, 25.0) + rng.normal(0.0, 1.0, x.size)
+    assert any("% only" in warning for warning in project.fit(tw.Survey.of(x, noisy, 25.0)).warnings)
+
+
+def test_too_many_spans_are_not_freed_at_once():
+    supports = [{"name": f"P{j}", "station": f"{20 * j} m", "elevation": "30 m"} for j in range(303)]
+    project = route(support=supports)
+    x = stations_of(project.to_core(), 1)
+    with pytest.raises(tw.InputError, match="points in 302 spans; expected 300 at most"):
+        project.fit(tw.Survey.of(x, np.full(x.size, 29.9), 20.0), unknown="lengths")
+
+
 def test_limits_of_the_search_are_kept():
     project = route()
     x = stations_of(project.to_core(), 2)

@@ -96,7 +96,8 @@ def ford() -> tw.Project:
         (HEADER, "points.csv:1: no points below the header; expected a point on each line, for example "
          "120.0,17.25,18.5"),
         (HEADER + "1,2\n", "points.csv:2: 2 values; expected 3, one for each column of the header"),
-        (HEADER + "1,two,3\n", 'points.csv:2: elevation_m: "two" is not a number; expected a number, for example 17.25'),
+        (HEADER + "1,two,3\n", 'points.csv:2: elevation_m: "two" is not a number; expected a number, for example '
+         "17.25"),
         (HEADER + "1,,3\n", "points.csv:2: elevation_m: an empty value; expected a number, for example 17.25"),
         (HEADER + "1,1_000,3\n", 'points.csv:2: elevation_m: "1_000" is not a number: no underscores within a number; '
          "expected a number, for example 17.25"),
@@ -326,9 +327,7 @@ def test_example_was_measured_on_the_pull_that_is_found(tmp_path):
     assert found.suspicious == ()
     assert found.standard_deviation_m == pytest.approx(0.025, rel=0.4)  # three of its own errors, 1 / sqrt(2 x 28)
     weight = 0.635 * 9.80665  # N/m; a parabola's sag on the slope of the chord, w L c / (8 H), within 1 %
-    for span, (before, after) in zip(
-        found.spans, zip(project.supports, project.supports[1:], strict=False), strict=True
-    ):
+    for span, (before, after) in zip(found.spans, pairwise(project.supports), strict=True):
         run = after.station_m - before.station_m
         chord = (run**2 + (project.elevation_m(after) - project.elevation_m(before)) ** 2) ** 0.5
         assert span.sag_m == pytest.approx(weight * run * chord / (8.0 * found.pull.horizontal_tension_N), rel=0.01)

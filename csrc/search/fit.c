@@ -192,10 +192,16 @@ static tw_status differentiate(fit_run *run, double step)
     if (status != TW_OK) {
         return status;
     }
-    tw_fit_normal_form(&run->normal, run->jacobian, run->residual, run->model.row_count);
-    size_t unknown = tw_fit_normal_factor(&run->normal, 0.0, run->least);
-    if (unknown > 0) {
-        run->fit->undetermined = run->model.unknown == TW_FIT_LENGTHS ? run->model.span[unknown - 1] : TW_NONE;
+    size_t unknown;
+    status = tw_fit_normal_form(&run->model, &run->normal, run->jacobian, run->residual);
+    if (status == TW_OK) {
+        status = tw_fit_normal_factor(&run->model, &run->normal, 0.0, run->least, &unknown);
+    }
+    if (status != TW_OK) {
+        return status;
+    }
+    if (unknown != TW_NONE) {
+        run->fit->undetermined = run->model.unknown == TW_FIT_LENGTHS ? run->model.span[unknown] : TW_NONE;
         return TW_UNDETERMINED;
     }
     tw_fit_normal_solve(&run->normal, run->normal.gradient, run->step);
@@ -220,10 +226,13 @@ static tw_status descend(fit_run *run, double *damping, int *moved)
         if (run->fit->steps >= run->model.options->evaluations_most) {
             return TW_EVALUATION_LIMIT;
         }
-        tw_fit_normal_factor(&run->normal, *damping, 0.0);
-        tw_fit_normal_solve(&run->normal, run->normal.gradient, run->step);
-        set_trial(run);
-        tw_status status = try_point(run, 0, moved);
+        size_t unknown;
+        tw_status status = tw_fit_normal_factor(&run->model, &run->normal, *damping, 0.0, &unknown);
+        if (status == TW_OK && unknown == TW_NONE) {
+            tw_fit_normal_solve(&run->normal, run->normal.gradient, run->step);
+            set_trial(run);
+            status = try_point(run, 0, moved);
+        }
         if (status != TW_OK) {
             return status;
         }
@@ -346,10 +355,12 @@ static tw_status publish_values(fit_run *run)
 }
 
 /* From the inverse of the normal matrix, column by column. */
-static void publish_covariance(fit_run *run, double variance)
+static tw_status publish_covariance(fit_run *run, double variance)
 {
     size_t n = run->model.unknown_count;
-    for (size_t u = 0; u < n; u++) {
+    tw_status status = TW_OK;
+    for (size_t u = 0; status == TW_OK && u < n; u++) {
+        status = tw_fit_clock(&run->model);
         memset(run->trial, 0, n * sizeof(double));
         run->trial[u] = -1.0;
         tw_fit_normal_solve(&run->normal, run->trial, run->step);
@@ -357,6 +368,10 @@ static void publish_covariance(fit_run *run, double variance)
             run->fit->covariance[u * n + v] = run->step[v] * run->rate[u] * run->rate[v] * variance;
         }
     }
+    if (status != TW_OK) {
+        memset(run->fit->covariance, 0, n * n * sizeof(double));
+    }
+    return status;
 }
 
 /* j A^-1 j for one row j of the derivatives. */
@@ -403,7 +418,7 @@ static tw_status publish(fit_run *run, tw_status status)
         return lengths;
     }
     if (status == TW_OK) {
-        publish_covariance(run, sigma * sigma);
+        status = publish_covariance(run, sigma * sigma);
     }
     publish_rows(run, status == TW_OK);
     run->fit->chi2 = run->square / (sigma * sigma);

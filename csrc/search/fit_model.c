@@ -140,6 +140,11 @@ static tw_status place_at(const tw_section *section, double station_m, double po
     return isfinite(position[0] + position[1] + position[2]) ? TW_OK : TW_NOT_FINITE;
 }
 
+tw_status tw_fit_clock(const tw_fit_model *model)
+{
+    return tw_clock_check(model->options, model->deadline);
+}
+
 tw_status tw_fit_residuals(tw_fit_model *model, const double *q, double *out)
 {
     size_t offsets = 0;
@@ -152,7 +157,7 @@ tw_status tw_fit_residuals(tw_fit_model *model, const double *q, double *out)
         const tw_observation *seen = &model->seen[i];
         const tw_section *section;
         double position[3];
-        status = tw_clock_check(model->options, model->deadline);
+        status = tw_fit_clock(model);
         if (status == TW_OK) {
             status = tw_trial_section(model->trial, model->condition[i], model->options, &section);
         }

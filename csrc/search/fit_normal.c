@@ -5,13 +5,18 @@
 
 #include "fit_search.h"
 
-void tw_fit_normal_form(tw_fit_normal *normal, const double *jacobian, const double *residual, size_t rows)
+tw_status tw_fit_normal_form(const tw_fit_model *model, tw_fit_normal *normal, const double *jacobian,
+                             const double *residual)
 {
-    size_t n = normal->count;
+    size_t n = normal->count, rows = model->row_count;
     memset(normal->matrix, 0, n * n * sizeof(double));
     memset(normal->gradient, 0, n * sizeof(double));
     for (size_t r = 0; r < rows; r++) {
         const double *row = jacobian + r * n;
+        tw_status status = tw_fit_clock(model);
+        if (status != TW_OK) {
+            return status;
+        }
         for (size_t i = 0; i < n; i++) {
             normal->gradient[i] += row[i] * residual[r];
             for (size_t j = 0; row[i] != 0.0 && j <= i; j++) {
@@ -28,13 +33,20 @@ void tw_fit_normal_form(tw_fit_normal *normal, const double *jacobian, const dou
             normal->matrix[i * n + j] = i == j ? 1.0 : both > 0.0 ? normal->matrix[i * n + j] / both : 0.0;
         }
     }
+    return TW_OK;
 }
 
-size_t tw_fit_normal_factor(tw_fit_normal *normal, double damping, double least)
+tw_status tw_fit_normal_factor(const tw_fit_model *model, tw_fit_normal *normal, double damping, double least,
+                               size_t *unknown)
 {
     size_t n = normal->count;
+    *unknown = TW_NONE;
     for (size_t i = 0; i < n; i++) {
         double *row = normal->factor + i * n;
+        tw_status status = tw_fit_clock(model);
+        if (status != TW_OK) {
+            return status;
+        }
         for (size_t j = 0; j <= i; j++) {
             const double *other = normal->factor + j * n;
             double sum = normal->matrix[i * n + j] + (i == j ? damping : 0.0);
@@ -42,12 +54,13 @@ size_t tw_fit_normal_factor(tw_fit_normal *normal, double damping, double least)
                 sum -= row[k] * other[k];
             }
             if (i == j && !(sum > 0.0 && sqrt(sum) * normal->scale[i] > least)) {
-                return i + 1;
+                *unknown = i;
+                return TW_OK;
             }
             row[j] = i == j ? sqrt(sum) : sum / other[j];
         }
     }
-    return 0;
+    return TW_OK;
 }
 
 void tw_fit_normal_solve(const tw_fit_normal *normal, const double *g, double *x)

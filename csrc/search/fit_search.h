@@ -46,6 +46,9 @@ tw_status tw_fit_residuals(tw_fit_model *model, const double *q, double *out);
 /* The same, derived by each unknown: out [row_count][unknown_count], central differences of +-step; q is restored. */
 tw_status tw_fit_derivatives(tw_fit_model *model, double *q, double step, double *out);
 
+/* Whether to go on: the clock and the poll. */
+tw_status tw_fit_clock(const tw_fit_model *model);
+
 /* Where to begin: each span as a parabola through its points; for the pull one parabola's pull through all. */
 void tw_fit_start(const tw_fit_model *model, double *q);
 
@@ -58,9 +61,12 @@ typedef struct tw_fit_normal {
     double *gradient; /* [count] J^T r */
 } tw_fit_normal;
 
-void tw_fit_normal_form(tw_fit_normal *normal, const double *jacobian, const double *residual, size_t rows);
-/* 0, or the unknown (from 1) that the others determine or no row shows: its pivot is below least, in J's unit. */
-size_t tw_fit_normal_factor(tw_fit_normal *normal, double damping, double least);
+/* Both ask the model's clock. unknown: one whose pivot is not above least, in J's unit: the others determine it, or no row
+ * shows it; TW_NONE where the factor is there. */
+tw_status tw_fit_normal_form(const tw_fit_model *model, tw_fit_normal *normal, const double *jacobian,
+                             const double *residual);
+tw_status tw_fit_normal_factor(const tw_fit_model *model, tw_fit_normal *normal, double damping, double least,
+                               size_t *unknown);
 /* x = -(A + damping)^-1 g for any g [count]; x may be g. */
 void tw_fit_normal_solve(const tw_fit_normal *normal, const double *g, double *x);
 

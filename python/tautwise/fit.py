@@ -26,6 +26,8 @@ if TYPE_CHECKING:
     from tautwise.model import Project
 
 UNKNOWNS = ("pull", "lengths")
+SPANS_MOST = 300
+"""Natural lengths that are freed at once: their covariances fill a square."""
 INNER = 1e-3
 """As in the core: points this close to a support, as a share of the span, tell of no span."""
 
@@ -58,6 +60,8 @@ def fit(
         raise InputError([Fault(None, None, "unknown", f"{described(unknown)} is not known", "pull or lengths")])
     points = survey_from(survey, temperature)
     _refuse_stations(project, points)
+    if unknown == "lengths" and (spans := sum(count > 0 for count in _counts(project, points))) > SPANS_MOST:
+        raise InputError([points.whole_fault(f"points in {spans} spans", f"{SPANS_MOST} at most, a section at a time")])
     found = _found(project, points, unknown, options)
     if found["status"] != "ok":
         raise _failure(project, points, found)
@@ -143,15 +147,16 @@ def _result(project: Project, points: Survey, unknown: str, found: Mapping[str, 
     residuals = [r for r in (*found["residuals_m"], *found["offset_residuals_m"]) if r is not None]
     deviation = None if points.has_sigmas or variance is None else math.sqrt(variance)
     spans = _spans(project, points, found, states, variance, factor)
+    pull = _pull(found, variance, factor) if unknown == "pull" else None
     return SurveyFit(
         program=program(), project=project.title, input_sha256=project.input_sha256, survey=points.source,
         survey_sha256=points.sha256, unknown=unknown, temperature_degC=project.stringing.temperature_degC,
-        pull=_pull(found, variance, factor) if unknown == "pull" else None, spans=spans, points=listed,
+        pull=pull, spans=spans, points=listed,
         temperatures_degC=temperatures, measurements=count, unknowns=unknowns, sigmas_given=points.has_sigmas,
         rms_m=math.sqrt(math.fsum(r * r for r in residuals) / len(residuals)), chi2=found["chi2"],
         standard_deviation_m=deviation, confidence=CONFIDENCE, factor=factor, gap_relative=gap,
         step_relative=found["step_relative"], steps=found["steps"], evaluations=found["evaluations"],
-        warnings=findings_of(points, spans, listed, found["chi2"], left), caution=CAUTION, origin=project,
+        warnings=findings_of(points, pull, spans, listed, found["chi2"], left), caution=CAUTION, origin=project,
     )  # fmt: skip
 
 

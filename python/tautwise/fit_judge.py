@@ -10,12 +10,13 @@ from tautwise.columns import plural
 from tautwise.student import THREE_SIGMA, chi_square_exceeded, two_sided
 
 if TYPE_CHECKING:
-    from tautwise.results_fit import FittedPoint, FittedSpan
+    from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan
     from tautwise.survey import Survey
 
 UNSEEN_M = 1e-6  # no survey sees a micrometre: residuals below are rounding
 RARE = 1e-3
 NAMED = 3
+WIDE = 0.2
 
 
 def deviations(points: Survey, found: Mapping[str, Any], left: int) -> list[tuple[float | None, bool]]:
@@ -68,7 +69,12 @@ def _deviation(
 
 
 def findings_of(
-    points: Survey, spans: Sequence[FittedSpan], listed: Sequence[FittedPoint], chi2: float, left: int
+    points: Survey,
+    pull: FittedPull | None,
+    spans: Sequence[FittedSpan],
+    listed: Sequence[FittedPoint],
+    chi2: float,
+    left: int,
 ) -> tuple[str, ...]:
     """What deserves a second look, a sentence each."""
     found = [*_far_off(listed), *_not_measured(spans)]
@@ -82,7 +88,7 @@ def findings_of(
             f"the points lie {wider:.1f} times as far off as their sigmas say: the line differs from the project, "
             "or the intervals are too narrow"
         )
-    return (*found, *_blown(points, listed))
+    return (*found, *_hardly_known(pull), *_blown(listed))
 
 
 def _far_off(listed: Sequence[FittedPoint]) -> list[str]:
@@ -104,7 +110,19 @@ def _not_measured(spans: Sequence[FittedSpan]) -> list[str]:
     return [f"no points in {names}: the natural length there is that of the one pull that fits all points best"]
 
 
-def _blown(points: Survey, listed: Sequence[FittedPoint]) -> list[str]:
+def _hardly_known(pull: FittedPull | None) -> list[str]:
+    """Intervals are those of the linearised problem: sag goes by 1 / pull, so wide ones are lopsided in truth."""
+    if pull is None or pull.high_N is None:
+        return []
+    share = pull.high_N / pull.horizontal_tension_N - 1.0
+    if share < WIDE:
+        return []
+    return [
+        f"the pull is known to {100.0 * share:.0f} % only: the ends of so wide an interval are rough, the upper too low"
+    ]
+
+
+def _blown(listed: Sequence[FittedPoint]) -> list[str]:
     """Offsets that lean to one side by more than three times their mean's own standard error."""
     off = [point.offset_residual_m for point in listed if point.offset_residual_m is not None]
     if len(off) < 4:
