@@ -299,6 +299,17 @@ def test_a_hundred_times_the_sigma_is_a_hundred_times_the_error():
     assert small.standard_deviation_m is None
 
 
+def test_half_the_sigma_counts_as_four_points():
+    project, rng = level(), np.random.default_rng(19)
+    x = stations_of(project.to_core(), 4)
+    z = elevations(project.to_core(), x, 25.0) + rng.normal(0.0, SIGMA_M, x.size)
+    sure = project.fit(tw.Survey.of(x, z, 25.0, sigmas_m=[0.02, 0.01, 0.02, 0.02]))
+    copied = project.fit(tw.Survey.of([*x, *[x[1]] * 3], [*z, *[z[1]] * 3], 25.0, sigmas_m=0.02))
+    assert sure.pull.horizontal_tension_N == pytest.approx(copied.pull.horizontal_tension_N, rel=1e-10)
+    assert sure.pull.standard_error_N == pytest.approx(copied.pull.standard_error_N, rel=1e-9)
+    assert sure.chi2 == pytest.approx(copied.chi2, rel=1e-9)
+
+
 def test_points_of_several_days_fit_one_line():
     """Each temperature has its own shape; taken for one, they do not fit."""
     project = route()

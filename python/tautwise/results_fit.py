@@ -10,7 +10,16 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, ClassVar, cast
 
 from tautwise.as_built import as_built, paste_lines
-from tautwise.columns import Table, force_column, forces_text, length_column, number_column, plural, text_column
+from tautwise.columns import (
+    Table,
+    force_column,
+    force_text,
+    forces_text,
+    length_column,
+    number_column,
+    plural,
+    text_column,
+)
 from tautwise.errors import TautwiseError
 from tautwise.records import Record
 from tautwise.results_line import clipped, pandas_module
@@ -211,17 +220,15 @@ def pull_words(found: SurveyFit) -> str:
 
     >>> from types import SimpleNamespace
     >>> pull_words(SimpleNamespace(pull=FittedPull(20e3, 100.0, 19.8e3, 20.2e3)))
-    'pull 20.00 kN +/- 0.20 kN'
+    'pull 20.000 kN +/- 0.200 kN'
     """
     pull = found.pull
     if pull is None:
         return f"natural lengths of {plural(sum(span.measured for span in found.spans), 'span')}"
     if pull.high_N is None:
-        (value,), unit = forces_text(pull.horizontal_tension_N)
-        return f"pull {value} {unit}"
-    half = pull.high_N - pull.horizontal_tension_N
-    decimals = 2 if half >= 10.0 or half == 0.0 else 3
-    return f"pull {pull.horizontal_tension_N / 1e3:.{decimals}f} kN +/- {half / 1e3:.{decimals}f} kN"
+        return f"pull {force_text(pull.horizontal_tension_N)}"
+    (value, half), unit = forces_text(pull.horizontal_tension_N, pull.high_N - pull.horizontal_tension_N)
+    return f"pull {value} {unit} +/- {half} {unit}"
 
 
 def fitted_table(found: SurveyFit) -> Table:
