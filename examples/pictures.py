@@ -28,7 +28,18 @@ def draw(file: Path) -> list[Path]:
     for name, ax in pictures.items():
         ax.figure.savefig(OUT / name, dpi=120)
         plt.close(ax.figure)
+    survey = file.with_name(f"{stem}_survey.csv")
+    if survey.exists():
+        pictures[f"{stem}_fit.png"] = draw_fit(project, survey, OUT / f"{stem}_fit.png")
     return [OUT / name for name in pictures]
+
+
+def draw_fit(project: tw.Project, survey: Path, picture: Path) -> object:
+    """The picture of the line that fits a survey."""
+    ax = project.fit(survey).plot()
+    ax.figure.savefig(picture, dpi=120)
+    plt.close(ax.figure)
+    return ax
 
 
 def main() -> None:

@@ -12,7 +12,7 @@ from typing import Any
 import pytest
 
 import tautwise as tw
-from refresh_expected import COMMANDS, ENDING, EXAMPLES, example_names, expected_file, printed
+from refresh_expected import COMMANDS, ENDING, EXAMPLES, commands_of, example_names, expected_file, printed
 from tautwise import _core
 
 NUMBER = re.compile(r"(?<![\w.])[+-]?\d+(?:\.\d+)?(?:e[+-]?\d+)?(?![\w])")
@@ -37,7 +37,7 @@ def test_prints_what_is_expected(name, command):
 @pytest.mark.parametrize("name", example_names())
 def test_every_file_of_an_example_is_known(name):
     files = {path.name for path in EXAMPLES.glob(f"{name}.*.expected.txt")}
-    assert files == {expected_file(name, command).name for command in COMMANDS}
+    assert files == {expected_file(name, command).name for command in commands_of(name)}
 
 
 @pytest.mark.parametrize("name", example_names())

@@ -13,6 +13,7 @@
 #include "problem.h"
 #include "report.h"
 #include "run.h"
+#include "survey.h"
 #include "trial.h"
 #include "window.h"
 
@@ -468,6 +469,57 @@ static PyObject *project_sheet(PyObject *object, PyObject *args, PyObject *keywo
     return result;
 }
 
+/* Takes `unknown` out of the keywords, "pull" where it is missing. */
+static int take_unknown(PyObject *keywords, PyObject **rest, tw_fit_unknown *unknown)
+{
+    static const char *const names[] = {"pull", "lengths", NULL};
+    *rest = keywords ? PyDict_Copy(keywords) : PyDict_New();
+    int word = *rest ? tw_fields_choice(*rest, "unknown", names, TW_FIT_PULL) : -1;
+    if (word < 0 || (PyDict_GetItemString(*rest, "unknown") && PyDict_DelItemString(*rest, "unknown") < 0)) {
+        Py_CLEAR(*rest);
+        return -1;
+    }
+    *unknown = (tw_fit_unknown)word;
+    return 0;
+}
+
+static PyObject *run_fit(project_object *self, const survey *points, tw_fit_unknown unknown, tw_options *options)
+{
+    run_state run;
+    PyObject *result = NULL;
+    tw_fit *fit = tw_fit_create(&self->problem.project, points->observations, points->count, unknown);
+    if (!fit) {
+        return PyErr_NoMemory();
+    }
+    tw_run_begin(&run, options);
+    tw_status status = tw_fit_search(&self->problem.project, points->observations, points->count, unknown, options, fit);
+    tw_run_end(&run);
+    if (!run.raised) {
+        result = status < 0 ? raise_status(self, status) : tw_survey_answer(fit);
+    }
+    tw_fit_free(fit);
+    return result;
+}
+
+static PyObject *project_fit(PyObject *object, PyObject *args, PyObject *keywords)
+{
+    project_object *self = (project_object *)object;
+    PyObject *given, *rest = NULL, *result = NULL;
+    tw_fit_unknown unknown;
+    tw_options options;
+    survey points = {0};
+    if (!PyArg_ParseTuple(args, "O!:fit", &PyDict_Type, &given) || take_unknown(keywords, &rest, &unknown) < 0) {
+        return NULL;
+    }
+    if (tw_run_options(rest, self->range_error, &options) == 0
+        && tw_survey_read(given, &self->problem.project, self->range_error, &points) == 0) {
+        result = run_fit(self, &points, unknown, &options);
+    }
+    tw_survey_free(&points);
+    Py_DECREF(rest);
+    return result;
+}
+
 static PyMethodDef project_methods[] = {
     {"string", (PyCFunction)(void (*)(void))project_string, METH_VARARGS | METH_KEYWORDS,
      "string(*, pull=None) -> dict with horizontal_tension_N and lengths_m, one per span."},
@@ -483,6 +535,8 @@ static PyMethodDef project_methods[] = {
      "window(**options) -> dict of the pretension window. On Ctrl-C the KeyboardInterrupt carries .best."},
     {"sheet", (PyCFunction)(void (*)(void))project_sheet, METH_VARARGS | METH_KEYWORDS,
      "sheet(temperatures, *, pull=None, **options) -> dict of what a crew needs, at the temperatures in degC."},
+    {"fit", (PyCFunction)(void (*)(void))project_fit, METH_VARARGS | METH_KEYWORDS,
+     "fit(points, *, unknown=\"pull\", **options) -> dict of the line that fits measured points; points: dict of arrays."},
     {NULL, NULL, 0, NULL},
 };
 

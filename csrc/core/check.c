@@ -103,6 +103,15 @@ static const range limit_rules[] = {
     {LIMIT(to_m), -1e7, 1e7, OPTIONAL, "a station within 10,000 km"},
 };
 
+#define OBSERVATION(field) #field, offsetof(tw_observation, field)
+static const range observation_rules[] = {
+    {OBSERVATION(station_m), -1e7, 1e7, 0, "a station within 10,000 km"},
+    {OBSERVATION(elevation_m), -2e4, 2e4, 0, "an elevation within 20 km"},
+    {OBSERVATION(offset_m), -1e6, 1e6, OPTIONAL, "an offset within 1,000 km"},
+    {OBSERVATION(sigma_m), 0.0, 1e3, OPEN_LOW | OPTIONAL, "a standard deviation above 0, up to 1 km"},
+    {OBSERVATION(temperature_degC), -273.15, 2000.0, 0, "a temperature from -273.15 to 2000 degC"},
+};
+
 #define OPTION(field) #field, offsetof(tw_options, field)
 static const range option_rules[] = {
     {OPTION(gap_relative), 0.0, 1.0, OPEN_LOW, "a gap above 0, up to 1"},
@@ -440,6 +449,28 @@ tw_status tw_check_project(const tw_project *project, tw_fault *fault)
         status = check_limit(project, i, fault);
     }
     return status == TW_OK ? check_stringing(project, fault) : status;
+}
+
+tw_status tw_check_observations(const tw_project *project, const tw_observation *observations, size_t count,
+                                tw_fault *fault)
+{
+    double first = project->supports[0].station_m, last = project->supports[project->support_count - 1].station_m;
+    memset(fault, 0, sizeof *fault);
+    if (count < 1) {
+        return fail(fault, "observations", TW_NONE, "count", "at least one point");
+    }
+    tw_status status = CHECK_ROWS(observation_rules, "observations", observations, count);
+    for (size_t i = 0; status == TW_OK && i < count; i++) {
+        const tw_observation *seen = &observations[i];
+        if (!(seen->station_m >= first && seen->station_m <= last)) {
+            status = fail(fault, "observations", i, "station_m", "a station from the first support to the last");
+        } else if (isnan(seen->sigma_m) != isnan(observations[0].sigma_m)) {
+            status = fail(fault, "observations", i, "sigma_m", "a standard deviation of every point, or of none");
+        } else if (project->line.expansion_per_K * (seen->temperature_degC - project->stringing.temperature_degC) <= -0.5) {
+            status = fail(fault, "observations", i, "temperature_degC", "a thermal strain above -0.5");
+        }
+    }
+    return status;
 }
 
 tw_status tw_check_options(const tw_options *options, tw_fault *fault)

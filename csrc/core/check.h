@@ -16,6 +16,9 @@ typedef struct tw_fault {
 tw_status tw_check_pull(const tw_project *project, double pull_N, tw_fault *fault);
 
 tw_status tw_check_project(const tw_project *project, tw_fault *fault);
+/* Observations of a survey on a project that holds; the table is "observations". */
+tw_status tw_check_observations(const tw_project *project, const tw_observation *observations, size_t count,
+                                tw_fault *fault);
 tw_status tw_check_options(const tw_options *options, tw_fault *fault);
 
 #endif

@@ -233,6 +233,15 @@ typedef struct tw_project {
     tw_history_rule history;
 } tw_project;
 
+/* A place measured on the hanging line, bare and in still air. */
+typedef struct tw_observation {
+    double station_m;
+    double elevation_m;
+    double offset_m;         /* NaN: not measured */
+    double sigma_m;          /* standard deviation of each coordinate; NaN in every observation, or in none */
+    double temperature_degC; /* of the line */
+} tw_observation;
+
 /* What a poll callback returns: 0 to go on, anything else to cancel. Called often; it should look at the clock first. */
 typedef int (*tw_poll)(void *data);
 

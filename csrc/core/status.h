@@ -19,6 +19,7 @@
     X(TW_OUT_OF_REACH, 9, "out_of_reach", "no natural length satisfies the stringing rule")                     \
     X(TW_UNDECIDED, 10, "undecided", "a limit finds nothing of the line to look at")                            \
     X(TW_OVER_SHEAVE, 11, "over_sheave", "a load fixed on the line would run over a sheave")                    \
+    X(TW_UNDETERMINED, 14, "undetermined", "the points measured do not determine what is unknown")                \
     X(TW_ERROR_MEMORY, -1, "error_memory", "out of memory")                                                     \
     X(TW_ERROR_RANGE, -2, "error_range", "an input is outside its range")                                       \
     X(TW_ERROR_PLACE, -3, "error_place", "a place is not on the line")                                          \

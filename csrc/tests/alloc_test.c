@@ -2,6 +2,7 @@
 #include "alloc_count.h"
 #include "crew.h"
 #include "expect.h"
+#include "fit.h"
 #include "fixture.h"
 #include "route.h"
 #include "settle.h"
@@ -112,6 +113,24 @@ static tw_status window_call(const fixture *f, double *answer)
     return status;
 }
 
+static tw_status fit_call(const fixture *f, double *answer)
+{
+    tw_observation seen[4];
+    const double stations[4] = {1125.0, 1450.0, 1500.0, 1800.0}, elevations[4] = {121.0, 118.0, 119.0, 125.0};
+    for (int i = 0; i < 4; i++) {
+        const tw_observation one = {stations[i], elevations[i], i == 1 ? 0.0 : (double)NAN, 0.5, i < 2 ? 10.0 : 20.0};
+        seen[i] = one;
+    }
+    tw_fit *fit = tw_fit_create(&f->project, seen, 4, TW_FIT_LENGTHS);
+    tw_status status = fit ? tw_fit_search(&f->project, seen, 4, TW_FIT_LENGTHS, &f->options, fit) : TW_ERROR_MEMORY;
+    CHECK(fit == NULL || fit->status == status);
+    if (status == TW_OK) {
+        *answer = fit->value[0] + fit->chi2;
+    }
+    tw_fit_free(fit);
+    return status;
+}
+
 /* Refuse the first allocation (and refused_most - 1 more), then the second, and so on until the call needs none of them. */
 static void refuse_in_turn(const fixture *f, call run, size_t refused_most, const char *name)
 {
@@ -165,6 +184,7 @@ int main(void)
     refuse_each_way(&f, settle_call, "settle");
     refuse_each_way(&f, judge_call, "judge");
     refuse_each_way(&f, window_call, "open window");
+    refuse_each_way(&f, fit_call, "fit");
     limits[0].most = 20e3;
     limits[2].most = 10.0;
     refuse_each_way(&f, window_call, "shut window");

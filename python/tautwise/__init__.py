@@ -33,8 +33,10 @@ if TYPE_CHECKING:
         SettleReport,
         SpanState,
         SupportState,
+        SurveyFit,
         VetReport,
     )
+    from tautwise.survey import Survey, read_survey
 
     __version__: str
 
@@ -58,8 +60,10 @@ _HOMES = {
         "SettleReport",
         "SpanState",
         "SupportState",
+        "SurveyFit",
         "VetReport",
     ),
+    "survey": ("Survey", "read_survey"),
 }
 _HOME_OF = {name: module for module, names in _HOMES.items() for name in names}
 
@@ -79,11 +83,14 @@ __all__ = [
     "SpanState",
     "SpanStates",
     "SupportState",
+    "Survey",
+    "SurveyFit",
     "TautwiseError",
     "VetReport",
     "__version__",
     "load",
     "natural_length",
+    "read_survey",
     "settle_spans",
 ]
 

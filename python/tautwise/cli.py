@@ -251,6 +251,54 @@ def sheet(files: Sequence[str], temperatures: Sequence[str], pull: str | None, a
 
 
 @commands.command()
+@click.argument("file", metavar="FILE")
+@click.argument("survey", metavar="SURVEY")
+@click.option("--unknown", type=click.Choice(["pull", "lengths"]), default="pull", show_default=True,
+              help="One pull of the whole line, or one natural length for each span.")  # fmt: skip
+@click.option("--temperature", metavar="TEMPERATURE", help='Of the line, such as "18 degC", where the survey has none.')
+@click.option("--write", "target", metavar="NEW", help="Write the project as built to this file.")
+@click.option("--force", is_flag=True, help="Overwrite a file that is there.")
+@json_option
+def fit(
+    file: str, survey: str, unknown: str, temperature: str | None, target: str | None, force: bool, as_json: bool
+) -> int:
+    """Find the pull or the natural lengths of a line from points measured on it.
+
+    SURVEY is a CSV file with columns station_m, elevation_m (or _ft) and, where measured, temperature_degC, offset_m,
+    sigma_m, point, date: a point on each line, of the bare line in still air.
+    """
+    from tautwise.as_built import as_built_text
+    from tautwise.fit import fit as search
+
+    (project,) = _loaded([file])
+    refusal = "" if target is None else not_to_be_written(target, force=force)
+    if refusal:
+        _tell([refusal])
+        return BAD_INPUT
+    found = search(project, survey, unknown=unknown, temperature=temperature)
+    if target is not None:
+        text = as_built_text(found, project, target)
+        try:
+            write_whole(target, text, force=force)
+        except FileExistsError:
+            _tell([there_already(target)])
+            return BAD_INPUT
+        except OSError as error:
+            _tell([f"{target}: cannot be written: {error.strerror}"])
+            return FAILED
+    if as_json:
+        _print_documents([found])
+    else:
+        from tautwise.text_fit import fit_text
+
+        _print_texts([fit_text(found, project, _ink(), target, temperature)])
+    if target is not None:
+        _tell([f"Wrote {target}."])
+    _tell(f"warning: {text}" for text in found.warnings)
+    return DONE
+
+
+@commands.command()
 @json_option
 def schema(as_json: bool) -> int:
     """Print the JSON Schema of the project file, for editors and checks (always JSON)."""

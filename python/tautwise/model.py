@@ -40,8 +40,9 @@ from tautwise.tables import Condition, Crossing, History, Line, Mark, Stringing,
 from tautwise.to_core import problem_of
 
 if TYPE_CHECKING:
-    from tautwise.results import CrewSheet, Equilibrium, PullWindow, VetReport
+    from tautwise.results import CrewSheet, Equilibrium, PullWindow, SurveyFit, VetReport
     from tautwise.solve_sheet import Temperatures
+    from tautwise.survey import Survey
 
 RULES = (
     line_rules,
@@ -203,6 +204,18 @@ class Project(BaseModel):
         from tautwise.solve_sheet import sheet
 
         return sheet(self, temperatures_degC, pull=pull)
+
+    def fit(
+        self,
+        survey: Survey | str | os.PathLike[str],
+        unknown: str = "pull",
+        temperature: float | str | None = None,
+        **options: Any,
+    ) -> SurveyFit:
+        """The line that hangs closest to measured points; parameters and errors as in :func:`tautwise.fit.fit`."""
+        from tautwise.fit import fit
+
+        return fit(self, survey, unknown=unknown, temperature=temperature, **options)
 
     def __repr__(self) -> str:
         counts = (("support", self.supports), ("condition", self.conditions), ("limit", self.limits))

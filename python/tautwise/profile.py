@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import csv
 from bisect import bisect_right
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -10,6 +9,7 @@ from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
+from tautwise.csvlines import CsvLines, numbered_lines
 from tautwise.errors import Fault, InputError
 from tautwise.reader import Document, Source, inside_folder, read_text
 from tautwise.strict import Refused, described, did_you_mean, shown, strict_float
@@ -18,7 +18,6 @@ from tautwise.units import quantity
 CSV_BYTES_MOST = 16_000_000
 CSV_POINTS_MOST = 500_000
 POINTS_MOST = 10_000
-FAULTS_MOST = 20
 
 _COLUMNS = {"station_m": 1.0, "elevation_m": 1.0, "station_ft": 0.3048, "elevation_ft": 0.3048}
 _HEADER = "station_m,elevation_m"
@@ -118,16 +117,11 @@ def _point(document: Document, number: int, point: Any, faults: list[Fault]) -> 
     return values[0], values[1]
 
 
-class _Csv:
+class _Csv(CsvLines):
     """Reads one CSV file, gathering its faults."""
 
-    def __init__(self, name: str) -> None:
-        self.name = name
-        self.faults: list[Fault] = []
-
     def read(self, text: str, profile: str) -> Ground:
-        lines = text.split("\n")
-        numbered = [(number, line) for number, line in enumerate(lines, start=1) if line.strip()]
+        numbered = numbered_lines(text)
         header_line, header = numbered[0]
         columns = self.header(header_line, header)
         if len(numbered) - 1 > CSV_POINTS_MOST:
@@ -155,22 +149,6 @@ class _Csv:
         self.fault(number, problem, "the columns station_m and elevation_m (or _ft)", _HEADER)
         return []
 
-    def rows(self, numbered: Sequence[tuple[int, str]]) -> list[tuple[int, list[str]]]:
-        read = ((number, self.row(number, line)) for number, line in numbered)
-        return [(number, row) for number, row in read if row is not None]
-
-    def row(self, number: int, line: str) -> list[str] | None:
-        # Each line is a reader of its own, so that a lone quote cannot swallow the lines after it.
-        try:
-            found = list(csv.reader([line], strict=True))
-        except csv.Error:
-            found = []
-        if len(found) != 1 or line.count('"') % 2:
-            wrong = "a quote that is not closed on its line" if '"' in line else "characters that are no row"
-            self.fault(number, wrong, "plain numbers", "120.0,4.5")
-            return None
-        return found[0]
-
     def point(self, number: int, row: list[str], columns: list[str]) -> tuple[float, float]:
         values = {"station": float("nan"), "elevation": float("nan")}
         if len(row) != 2:
@@ -189,15 +167,3 @@ class _Csv:
             if after <= before:
                 problem = f"station {after:g} m does not lie beyond the one before it, {before:g} m"
                 self.fault(number, problem, "stations that increase")
-
-    def fault(self, line: int, problem: str, expected: str = "", example: str = "") -> None:
-        self.faults.append(Fault(self.name, line, "", problem, expected, example))
-
-    def give_up(self) -> None:
-        if not self.faults:
-            return
-        kept = sorted(self.faults, key=lambda fault: fault.line or 0)[:FAULTS_MOST]
-        more = len(self.faults) - len(kept)
-        if more:
-            kept.append(Fault(self.name, kept[-1].line, "", f"and {more} more faults of this file"))
-        raise InputError(kept)

@@ -1,6 +1,7 @@
 """All results: frozen records that compare, pickle, print short, and turn into JSON and back without loss."""
 
 from tautwise.places import Places
+from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan, SurveyFit
 from tautwise.results_line import (
     CAUTION,
     Equilibrium,
@@ -33,6 +34,9 @@ __all__ = [
     "CrewTemperature",
     "Equilibrium",
     "FileVerdict",
+    "FittedPoint",
+    "FittedPull",
+    "FittedSpan",
     "LimitState",
     "LowPoint",
     "MarkState",
@@ -46,6 +50,7 @@ __all__ = [
     "SpanState",
     "StrungState",
     "SupportState",
+    "SurveyFit",
     "UtilisationCurve",
     "VetReport",
     "WindowEnd",

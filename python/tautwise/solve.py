@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 import os
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from numbers import Real
 from typing import TYPE_CHECKING, Any, NoReturn
@@ -165,6 +165,46 @@ def core_of(project: Project) -> _core.Project:
     """
     with errors_of(project):
         return _core.Project(project.to_core())
+
+
+def settled_bare(
+    project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float]
+) -> tuple[list[dict[str, Any]], float]:
+    """The spans of the bare line on natural lengths at the stringing temperature, and the widest bracket there and at
+    other temperatures.
+
+    Raises
+    ------
+    NotSettledError: no equilibrium within tolerance at one of them.
+    """
+    strung = project.stringing.temperature_degC
+    every = (strung, *dict.fromkeys(each for each in temperatures_degC if each != strung))
+    core = _bare_core(project, lengths_m, every)
+    found = []
+    for index, degrees in enumerate(every):
+        with errors_of(project, math.inf, f"the line at {degrees:g} degC"):
+            found.append(core.settle(index))
+        if found[-1]["status"] != "ok":
+            raise NotSettledError(f"the line at {degrees:g} degC: {found[-1]['status_text']}", found[-1]["status"])
+    return found[0]["spans"], max(abs(each["gap_relative"]) for each in found)
+
+
+def shape_bare(
+    project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float], points: int
+) -> list[Any]:
+    """Positions along the bare line on natural lengths, at each temperature; `points` for each span."""
+    core = _bare_core(project, lengths_m, temperatures_degC)
+    with errors_of(project, math.inf):
+        return [core.shape(index, points)["position_m"] for index in range(len(temperatures_degC))]
+
+
+def _bare_core(project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float]) -> _core.Project:
+    rule = {
+        "temperature_degC": project.stringing.temperature_degC, "rule": "span_lengths", "lengths_m": list(lengths_m)
+    }  # fmt: skip
+    bare = [{"temperature_degC": each} for each in temperatures_degC]
+    problem = {**project.to_core(), "conditions": bare, "marks": [], "limits": [], "stringing": rule}
+    return _core.Project(problem)
 
 
 def program() -> str:

@@ -19,12 +19,18 @@ from pathlib import Path
 EXAMPLES = Path(__file__).resolve().parents[2] / "examples"
 ENDING = ".taut.toml"
 COMMANDS = ("settle", "window", "vet")
+SURVEY = "_survey.csv"  # beside a project file: points measured on its line, for the command fit
 ANSWERS = (0, 1)  # exit codes that come with an answer
 
 
 def example_names() -> list[str]:
     """Names of the example projects."""
     return sorted(path.name.removesuffix(ENDING) for path in EXAMPLES.glob(f"*{ENDING}"))
+
+
+def commands_of(name: str) -> tuple[str, ...]:
+    """The commands that an example shows."""
+    return (*COMMANDS, "fit") if (EXAMPLES / (name + SURVEY)).exists() else COMMANDS
 
 
 def expected_file(name: str, command: str) -> Path:
@@ -38,7 +44,8 @@ def printed(name: str, command: str, *options: str) -> tuple[int, str, str]:
 
     out, err = io.StringIO(), io.StringIO()
     with contextlib.chdir(EXAMPLES), contextlib.redirect_stdout(out), contextlib.redirect_stderr(err):
-        code = run([command, name + ENDING, *options])
+        survey = [name + SURVEY] if command == "fit" else []
+        code = run([command, name + ENDING, *survey, *options])
     return code, out.getvalue(), err.getvalue()
 
 
@@ -63,7 +70,7 @@ def main(names: Sequence[str]) -> int:
     if unknown:
         sys.stderr.write(f"no such example: {', '.join(sorted(unknown))}; there are {', '.join(example_names())}\n")
         return 2
-    done = [refresh(name, command) for name in names or example_names() for command in COMMANDS]
+    done = [refresh(name, command) for name in names or example_names() for command in commands_of(name)]
     return 0 if all(done) else 1
 
 
