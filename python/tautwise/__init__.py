@@ -14,6 +14,7 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from tautwise.catalogue import sizes
     from tautwise.errors import (
         Fault,
         InputError,
@@ -34,10 +35,13 @@ if TYPE_CHECKING:
         SupportState,
         VetReport,
     )
+    from tautwise.rulepacks import RulePack, rule_packs
+    from tautwise.size_records import Size
 
     __version__: str
 
 _HOMES = {
+    "catalogue": ("sizes",),
     "errors": (
         "Fault",
         "InputError",
@@ -58,6 +62,8 @@ _HOMES = {
         "SupportState",
         "VetReport",
     ),
+    "rulepacks": ("RulePack", "rule_packs"),
+    "size_records": ("Size",),
 }
 _HOME_OF = {name: module for module, names in _HOMES.items() for name in names}
 
@@ -70,9 +76,11 @@ __all__ = [
     "NotSettledError",
     "Project",
     "PullWindow",
+    "RulePack",
     "SearchCancelled",
     "SettleReport",
     "ShutWindowError",
+    "Size",
     "SpanState",
     "SpanStates",
     "SupportState",
@@ -81,7 +89,9 @@ __all__ = [
     "__version__",
     "load",
     "natural_length",
+    "rule_packs",
     "settle_spans",
+    "sizes",
 ]
 
 

@@ -19,6 +19,8 @@ from tautwise.files import ENDING, not_to_be_written, there_already, unfolded, w
 from tautwise.strict import inert
 
 if TYPE_CHECKING:
+    from datetime import date
+
     from tautwise.model import Project
     from tautwise.records import Record
     from tautwise.text import Ink
@@ -69,6 +71,7 @@ class Commands(click.Group):
 
 
 json_option = click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of text.")
+sources_option = click.option("--sources", is_flag=True, help="Also print where the numbers come from.")
 pull_option = click.option("--pull", metavar="FORCE", help='String to this pull instead, such as "20 kN".')
 files_argument = click.argument("files", nargs=-1, required=True, metavar="FILE...")
 
@@ -124,8 +127,9 @@ def start(file: str, force: bool, as_json: bool) -> int:
 @commands.command()
 @files_argument
 @pull_option
+@sources_option
 @json_option
-def settle(files: Sequence[str], pull: str | None, as_json: bool) -> int:
+def settle(files: Sequence[str], pull: str | None, sources: bool, as_json: bool) -> int:
     """Find where the line hangs and how hard it pulls, in every condition.
 
     With several files, --json prints a list of documents.
@@ -134,11 +138,13 @@ def settle(files: Sequence[str], pull: str | None, as_json: bool) -> int:
 
     done, failed = _each(_loaded(files), lambda project: settle_report(project, pull=pull))
     if as_json:
-        _print_documents([report for _, report in done], many=len(files) > 1)
+        _print_documents([_sourced(report, project, sources) for project, report in done], many=len(files) > 1)
     else:
         from tautwise.text import settle_text
 
-        _print_texts(settle_text(report, project, _ink(), pull) for project, report in done)
+        _print_texts(
+            [*settle_text(report, project, _ink(), pull), *_source_lines(project, sources)] for project, report in done
+        )
     for project, report in done:
         _tell(f"warning: {text}" for text in report.warnings[len(project.warnings) :])
         head = f"{project.source}: " if project.source else ""
@@ -149,8 +155,9 @@ def settle(files: Sequence[str], pull: str | None, as_json: bool) -> int:
 
 @commands.command()
 @files_argument
+@sources_option
 @json_option
-def window(files: Sequence[str], as_json: bool) -> int:
+def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
     """Find the pulls that keep every limit, and the pull to specify.
 
     Ctrl-C ends the search, says what it had found and exits with 3. With several files, --json prints a list of
@@ -164,11 +171,11 @@ def window(files: Sequence[str], as_json: bool) -> int:
             _tell([f"warning: {project.source}: no [[limit]], so every pull is in the window"])
     done, failed = _each(projects, lambda project: search(project))
     if as_json:
-        _print_documents([found for _, found in done], many=len(files) > 1)
+        _print_documents([_sourced(found, project, sources) for project, found in done], many=len(files) > 1)
     else:
         from tautwise.text_limits import window_text
 
-        _print_texts(window_text(found, project, _ink()) for project, found in done)
+        _print_texts([*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done)
     _tell(failed)
     if not all(found.open for _, found in done):
         return FAILS
@@ -178,13 +185,16 @@ def window(files: Sequence[str], as_json: bool) -> int:
 @commands.command()
 @files_argument
 @click.option("--every", is_flag=True, help="A row for each limit and condition, not only the worst condition.")
+@click.option("--on", "day", metavar="DATE", help="Judge waivers as of this day instead of today, as in 2027-06-30.")
 @pull_option
+@sources_option
 @json_option
-def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> int:
+def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, sources: bool, as_json: bool) -> int:
     """Check every limit in every condition; takes files and folders.
 
     In a folder, every file that ends in .taut.toml is checked.
     """
+    today = _day(day)
     projects = _loaded(unfolded(files))
     from tautwise.errors import NotSettledError
     from tautwise.findings import slack_finding
@@ -194,7 +204,7 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
 
     def judged(project: Project) -> VetReport:
         try:
-            report = check(project, pull=pull, every=every)
+            report = check(project, pull=pull, every=every, today=today)
         except NotSettledError as error:
             _tell([str(error)])
             return undecided(project, str(error), pull=pull)
@@ -202,7 +212,8 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
         return report
 
     done, _ = _each(projects, judged)
-    report = VetReport.of((file for _, each in done for file in each.files), done[0][1].program)
+    verdicts = (_sourced(file, project, sources) for project, each in done for file in each.files)
+    report = VetReport.of(verdicts, done[0][1].program)
     for project in projects:
         if not project.limits:
             _tell([f"warning: {project.source}: no [[limit]], so there is nothing to vet"])
@@ -211,10 +222,65 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
     else:
         from tautwise.text_limits import vet_text
 
-        _print_texts([vet_text(report, projects, _ink())])
+        lines = [line for project in projects for line in _source_lines(project, sources)]
+        _print_texts([[*vet_text(report, projects, _ink()), *lines]])
     if report.holds:
         return DONE
-    return FAILS if any(limit.status == "fails" for limit in report.limits) else FAILED
+    return FAILS if any(limit.word == "fails" for limit in report.limits) else FAILED
+
+
+@commands.command()
+@click.argument("text", nargs=-1, metavar="[TEXT]...")
+@click.option("--kind", help='Sizes of this kind only, such as "ACSR", "steel strand" or "wire rope".')
+@click.option("--diameter", metavar="RANGE", help='Such as ">= 10 mm", "10 mm to 16 mm" or "12 mm".')
+@click.option("--strength", metavar="RANGE", help='Breaking strength, such as ">= 50 kN".')
+@click.option("--catalogue", multiple=True, metavar="FILE", help="A file of your own sizes; may be given repeatedly.")
+@click.option("--sources", is_flag=True, help="Each value with its own unit, its source and how sure it is.")
+@click.option("--csv", "as_csv", is_flag=True, help="Print CSV, in SI.")
+@json_option
+def sizes(
+    text: Sequence[str],
+    kind: str | None,
+    diameter: str | None,
+    strength: str | None,
+    catalogue: Sequence[str],
+    sources: bool,
+    as_csv: bool,
+    as_json: bool,
+) -> int:
+    """List the sizes of the catalogue, or those that TEXT names.
+
+    TEXT is a whole name, or words that a name holds.
+    """
+    from tautwise.catalogue import sizes as listed
+    from tautwise.size_records import SizeList
+    from tautwise.text_catalogue import sizes_csv, sizes_text
+
+    wanted = " ".join(text)
+    found = listed(wanted or None, kind=kind, diameter=diameter, strength=strength, catalogue=catalogue)
+    if as_json:
+        _print_documents([SizeList(found)])
+    elif as_csv:
+        _print(sizes_csv(found))
+    else:
+        _print_texts([sizes_text(found, _ink(), sources=sources, ropes=not wanted and not kind)])
+    return DONE
+
+
+@commands.command()
+@click.argument("names", nargs=-1, metavar="[NAME]...")
+@json_option
+def rules(names: Sequence[str], as_json: bool) -> int:
+    """List the rule packs, or print those named in words, with their sources."""
+    from tautwise.rulepacks import RulePackList, packs_of
+    from tautwise.text_catalogue import pack_text, rules_text
+
+    packs = packs_of(names)
+    if as_json:
+        _print_documents([packs[0] if len(names) == 1 else RulePackList(packs)])
+    else:
+        _print_texts([pack_text(each, _ink()) for each in packs] if names else [rules_text(packs, _ink())])
+    return DONE
 
 
 @commands.command()
@@ -314,6 +380,40 @@ def _each(projects: Iterable[Project], work: Callable[[Project], T]) -> tuple[li
     if faults:
         raise InputError(dict.fromkeys(faults))
     return done, failed
+
+
+def _day(text: str | None) -> date | None:
+    """The day that an option gives."""
+    if text is None:
+        return None
+    from tautwise.errors import Fault, InputError
+    from tautwise.strict import Refused
+    from tautwise.waivers import Day
+
+    try:
+        return Day().read(text)
+    except Refused as refused:
+        raise InputError([Fault(None, None, "on", refused.problem, Day.words, Day.example)]) from None
+
+
+def _sourced(result: T, project: Project, asked: bool) -> T:
+    """A result with where its numbers come from, where asked for."""
+    if not asked:
+        return result
+    from dataclasses import replace
+
+    from tautwise.sources import sources_of
+
+    return replace(result, sources=sources_of(project))  # type: ignore[type-var]
+
+
+def _source_lines(project: Project, asked: bool) -> list[str]:
+    """The same in words."""
+    if not asked:
+        return []
+    from tautwise.sources import sources_lines, sources_of
+
+    return ["", _ink().strong("Where the numbers come from"), *sources_lines(sources_of(project))]
 
 
 def _ink() -> Ink:

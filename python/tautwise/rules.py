@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from itertools import pairwise
 
+from tautwise.additions import FAILED, size_rules
 from tautwise.check import Checked, at_most_one, exactly_one
 from tautwise.faults import example_of
 from tautwise.limits import GROUND, TensionLimit
@@ -24,10 +25,12 @@ def line_rules(checked: Checked) -> None:
     """Weight or mass, stiffness or modulus and area, and what the conditions and limits need."""
     if not isinstance(checked.document.tables.get("line"), dict):
         return
-    exactly_one(checked, ("line",), Line, ("weight", "mass"))
+    told = size_rules(checked)
+    if told == FAILED:
+        return
+    if not told:
+        _weight_and_stiffness(checked)
     raw = checked.raw("line")
-    if exactly_one(checked, ("line",), Line, ("stiffness", "modulus")) == "modulus" and raw.get("area") is None:
-        checked.fault(("line",), "modulus is given without area", "both, or stiffness", 'area = "150 mm^2"')
     _needed_by_conditions(checked)
     for number, limit in enumerate(checked.limits):
         if isinstance(limit, TensionLimit) and limit.share is not None and raw.get("breaking_strength") is None:
@@ -89,6 +92,13 @@ def stringing_rules(checked: Checked) -> None:
     if isinstance(lengths, tuple) and len(lengths) != spans:
         problem = f"{len(lengths)} natural lengths for {spans} span{'s' if spans != 1 else ''}"
         checked.fault(("stringing", "natural_length"), problem, "one for each span, or one for the whole line")
+
+
+def _weight_and_stiffness(checked: Checked) -> None:
+    exactly_one(checked, ("line",), Line, ("weight", "mass"))
+    given = exactly_one(checked, ("line",), Line, ("stiffness", "modulus"))
+    if given == "modulus" and checked.raw("line").get("area") is None:
+        checked.fault(("line",), "modulus is given without area", "both, or stiffness", 'area = "150 mm^2"')
 
 
 def _needed_by_conditions(checked: Checked) -> None:

@@ -9,11 +9,12 @@ from pydantic import Field
 from tautwise.check import MOST
 from tautwise.limits import Limit
 from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support
+from tautwise.waivers import Waiver
 
 _WEIGHT = {"oneOf": [{"required": ["weight"]}, {"required": ["mass"]}]}
 _STIFFNESS = {"oneOf": [{"required": ["stiffness"]}, {"required": ["modulus", "area"]}]}
 _GIVEN_ONCE = {
-    "Line": {"allOf": [_WEIGHT, _STIFFNESS]},
+    "Line": {"anyOf": [{"required": ["size"]}, {"allOf": [_WEIGHT, _STIFFNESS]}]},
     "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
     "Support": {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]},
     "Wind": {"oneOf": [{"required": ["pressure"]}, {"required": ["speed"]}]},
@@ -37,6 +38,7 @@ class ProjectFile(Head):
     condition: tuple[Condition, ...] = Field(min_length=1, max_length=MOST["condition"])
     mark: tuple[Mark, ...] = Field((), max_length=MOST["mark"])
     limit: tuple[Limit, ...] = Field((), max_length=MOST["limit"])
+    waiver: tuple[Waiver, ...] = Field((), max_length=MOST["waiver"])
 
 
 def project_schema() -> dict[str, Any]:

@@ -63,6 +63,8 @@ class Line(Table):
     """The line itself, bare: per natural metre at the stringing temperature."""
 
     name: Name | None = None
+    size: Annotated[str, Words("the name of a size", "Drake ACSR")] | None = None
+    catalogue: tuple[Annotated[str, Words("a file name", "my_sizes.csv")], ...] = ()
     diameter_m: PositiveLength | None = Field(None, alias="diameter")
     area_m2: Area | None = Field(None, alias="area")
     given_weight_N_per_m: PositiveForcePerLength | None = Field(None, alias="weight")
@@ -223,3 +225,11 @@ class Head(Table):
 
     format: Annotated[str, Choice(("tautwise 1",))] = "tautwise 1"
     title: Annotated[str, Words("a title", "Inlet crossing")] = ""
+    rules: Any = Field(
+        None,
+        json_schema_extra={
+            "type": "array",
+            "items": {"anyOf": [{"type": "string"}, {"type": "object", "required": ["pack"]}]},
+            "examples": [["nesc-250b-heavy", "nesc-261h"]],
+        },
+    )
