@@ -23,6 +23,7 @@ from tautwise.size_records import Size, SizeValue
 from tautwise.sources import NOT_STATED, SourceLine
 from tautwise.strict import Refused, described, did_you_mean, nearest, shown
 from tautwise.tables import Condition
+from tautwise.units import number_and_unit, read_unit
 
 if TYPE_CHECKING:
     from tautwise.check import Checked
@@ -151,8 +152,9 @@ def _origin(document: Document, value: SizeValue, given: str | None, line: Mappi
 
 
 def _with_si(value: SizeValue) -> str:
-    si = f"{value.value:.6g} {value.unit}".replace("1/K", "/ K")
-    return value.written if value.written == si else f"{value.written} = {si}"
+    if read_unit(number_and_unit(value.written)[1]).factor == 1:
+        return value.written
+    return f"{value.written} = {value.value:.6g} {value.unit}".replace("1/K", "/ K")
 
 
 def _catalogue_files(document: Document, given: Any) -> list[tuple[Size, ...]] | None:

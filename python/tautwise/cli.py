@@ -19,8 +19,6 @@ from tautwise.files import ENDING, not_to_be_written, there_already, unfolded, w
 from tautwise.strict import inert
 
 if TYPE_CHECKING:
-    from datetime import date
-
     from tautwise.model import Project
     from tautwise.records import Record
     from tautwise.text import Ink
@@ -135,10 +133,11 @@ def settle(files: Sequence[str], pull: str | None, sources: bool, as_json: bool)
     With several files, --json prints a list of documents.
     """
     from tautwise.solve import settle_report
+    from tautwise.sources import with_sources
 
     done, failed = _each(_loaded(files), lambda project: settle_report(project, pull=pull))
     if as_json:
-        _print_documents([_sourced(report, project, sources) for project, report in done], many=len(files) > 1)
+        _print_documents([with_sources(report, project, sources) for project, report in done], many=len(files) > 1)
     else:
         from tautwise.text import settle_text
 
@@ -165,17 +164,20 @@ def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
     """
     projects = _loaded(files)
     from tautwise.solve import window as search
+    from tautwise.sources import with_sources
 
     for project in projects:
         if not project.limits:
             _tell([f"warning: {project.source}: no [[limit]], so every pull is in the window"])
     done, failed = _each(projects, lambda project: search(project))
     if as_json:
-        _print_documents([_sourced(found, project, sources) for project, found in done], many=len(files) > 1)
+        _print_documents([with_sources(found, project, sources) for project, found in done], many=len(files) > 1)
     else:
         from tautwise.text_limits import window_text
 
-        _print_texts([*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done)
+        _print_texts(
+            [*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done
+        )
     _tell(failed)
     if not all(found.open for _, found in done):
         return FAILS
@@ -194,7 +196,10 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
 
     In a folder, every file that ends in .taut.toml is checked.
     """
-    today = _day(day)
+    from tautwise.sources import with_sources
+    from tautwise.waivers import day_of
+
+    options = {} if day is None else {"today": day_of(day)}
     projects = _loaded(unfolded(files))
     from tautwise.errors import NotSettledError
     from tautwise.findings import slack_finding
@@ -204,7 +209,7 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
 
     def judged(project: Project) -> VetReport:
         try:
-            report = check(project, pull=pull, every=every, today=today)
+            report = check(project, pull=pull, every=every, **options)
         except NotSettledError as error:
             _tell([str(error)])
             return undecided(project, str(error), pull=pull)
@@ -212,7 +217,7 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
         return report
 
     done, _ = _each(projects, judged)
-    verdicts = (_sourced(file, project, sources) for project, each in done for file in each.files)
+    verdicts = (with_sources(file, project, sources) for project, each in done for file in each.files)
     report = VetReport.of(verdicts, done[0][1].program)
     for project in projects:
         if not project.limits:
@@ -238,16 +243,7 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
 @click.option("--sources", is_flag=True, help="Each value with its own unit, its source and how sure it is.")
 @click.option("--csv", "as_csv", is_flag=True, help="Print CSV, in SI.")
 @json_option
-def sizes(
-    text: Sequence[str],
-    kind: str | None,
-    diameter: str | None,
-    strength: str | None,
-    catalogue: Sequence[str],
-    sources: bool,
-    as_csv: bool,
-    as_json: bool,
-) -> int:
+def sizes(text: Sequence[str], sources: bool, as_csv: bool, as_json: bool, **asked: Any) -> int:
     """List the sizes of the catalogue, or those that TEXT names.
 
     TEXT is a whole name, or words that a name holds.
@@ -256,14 +252,13 @@ def sizes(
     from tautwise.size_records import SizeList
     from tautwise.text_catalogue import sizes_csv, sizes_text
 
-    wanted = " ".join(text)
-    found = listed(wanted or None, kind=kind, diameter=diameter, strength=strength, catalogue=catalogue)
+    found = listed(" ".join(text) or None, **asked)
     if as_json:
         _print_documents([SizeList(found)])
     elif as_csv:
         _print(sizes_csv(found))
     else:
-        _print_texts([sizes_text(found, _ink(), sources=sources, ropes=not wanted and not kind)])
+        _print_texts([sizes_text(found, _ink(), sources=sources, ropes=not text and not asked["kind"])])
     return DONE
 
 
@@ -382,38 +377,11 @@ def _each(projects: Iterable[Project], work: Callable[[Project], T]) -> tuple[li
     return done, failed
 
 
-def _day(text: str | None) -> date | None:
-    """The day that an option gives."""
-    if text is None:
-        return None
-    from tautwise.errors import Fault, InputError
-    from tautwise.strict import Refused
-    from tautwise.waivers import Day
-
-    try:
-        return Day().read(text)
-    except Refused as refused:
-        raise InputError([Fault(None, None, "on", refused.problem, Day.words, Day.example)]) from None
-
-
-def _sourced(result: T, project: Project, asked: bool) -> T:
-    """A result with where its numbers come from, where asked for."""
-    if not asked:
-        return result
-    from dataclasses import replace
-
-    from tautwise.sources import sources_of
-
-    return replace(result, sources=sources_of(project))  # type: ignore[type-var]
-
-
 def _source_lines(project: Project, asked: bool) -> list[str]:
-    """The same in words."""
-    if not asked:
-        return []
+    """Where the numbers come from, in words, where asked for."""
     from tautwise.sources import sources_lines, sources_of
 
-    return ["", _ink().strong("Where the numbers come from"), *sources_lines(sources_of(project))]
+    return ["", _ink().strong("Where the numbers come from"), *sources_lines(sources_of(project))] if asked else []
 
 
 def _ink() -> Ink:

@@ -160,7 +160,10 @@ def value_sources(raw: Mapping[str, Any], row: Mapping[str, Any], prefix: str) -
         if name is not None:
             source = raw["source"][name]
             text = raw[PRESSURE]["words"] if value == f"{{{PRESSURE}}}" else str(value)
-            yield SourceLine(f"{head}{path}", text, clause_of(source), source["confidence"])
+            if text.startswith("{"):
+                yield SourceLine(f"{head}{path}", text.strip("{}"), "asked for", "")
+            else:
+                yield SourceLine(f"{head}{path}", text, clause_of(source), source["confidence"])
 
 
 def leaves(row: Mapping[str, Any], at: str = "") -> Iterator[tuple[str, Any]]:

@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, TypeVar
 
 from tautwise.columns import Table, text_column
 from tautwise.records import Record
@@ -12,6 +12,8 @@ from tautwise.records import Record
 if TYPE_CHECKING:
     from tautwise.model import Project
     from tautwise.tables import Condition
+
+T = TypeVar("T")
 
 NOT_STATED = "not stated"
 
@@ -46,6 +48,11 @@ class SourceLine(Record):
 def sources_of(project: Project) -> tuple[SourceLine, ...]:
     """Every value of the project's size and rule packs, then its waivers, then the methods that its results use."""
     return (*project.origins, *_waivers(project), *_methods(project))
+
+
+def with_sources(result: T, project: Project, asked: bool = True) -> T:
+    """A result with where its numbers come from, where asked for."""
+    return replace(result, sources=sources_of(project)) if asked else result  # type: ignore[type-var]
 
 
 def sources_lines(sources: Sequence[SourceLine]) -> list[str]:

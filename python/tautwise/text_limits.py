@@ -48,7 +48,8 @@ if TYPE_CHECKING:
 def window_text(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     """The window with what governs it and the pull to specify, or what shuts it and the changes that open it."""
     body = _open_lines(window, project, ink) if window.open else _shut_lines(window, project, ink)
-    return [*heading(project, ink), *body, *caution(window.caution, ink)]
+    note = ["", "Waivers are not applied here: these are the pulls that keep every limit."] if project.waivers else []
+    return [*heading(project, ink), *body, *note, *caution(window.caution, ink)]
 
 
 def vet_text(report: VetReport, projects: Sequence[Project], ink: Ink) -> list[str]:
@@ -303,6 +304,7 @@ def _verdict_head(file: FileVerdict, ink: Ink) -> str:
         every = f" in all {rows} rows," if rows > len(limits) else ""
         waived = {limit.id for limit in file.limits if limit.word == WAIVED}
         kept = f"{len(limits) - len(waived)} of {count} kept, {len(waived)} waived" if waived else f"{count} kept"
+        every = f", in {rows} rows," if every and waived else every
         return ink.strong(f"HOLDS: {kept}{every} {pull}".rstrip(", "))
     failing = [limit.id for limit in file.limits if limit.word == FAILS]
     if not failing:
@@ -313,7 +315,7 @@ def _verdict_head(file: FileVerdict, ink: Ink) -> str:
 
 
 def _governing_lines(limits: Sequence[LimitState]) -> list[str]:
-    worst = limits[0]
+    worst = next((limit for limit in limits if limit.word != WAIVED), limits[0])
     lines = []
     if worst.status != UNDECIDED:
         place = f", {worst.place}" if worst.place else ""

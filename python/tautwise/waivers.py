@@ -11,6 +11,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Annotated, Any
 
+from tautwise.errors import Fault, InputError
 from tautwise.fields import Kind, Name, Prose, Words
 from tautwise.results_vet import FAILS, LimitState, WaiverState
 from tautwise.strict import Refused, described, did_you_mean, shown
@@ -47,6 +48,19 @@ class Day(Kind):
     def json_schema(self) -> dict[str, Any]:
         """A date as JSON writes it."""
         return {"type": "string", "format": "date", "examples": [self.example]}
+
+
+def day_of(text: str) -> datetime.date:
+    """The day of an option.
+
+    Raises
+    ------
+    InputError: it is none.
+    """
+    try:
+        return Day().read(text)
+    except Refused as refused:
+        raise InputError([Fault(None, None, "on", refused.problem, Day.words, Day.example)]) from None
 
 
 class Waiver(Table):
