@@ -64,7 +64,7 @@ class Catalogue:
         >>> Catalogue.of().find("a475 3/8IN ehs")[0].name
         'A475 3/8 in EHS'
         """
-        text = SIZE_WORDS.read(name)
+        text = SIZE_WORDS.read(name.strip())
         key = name_key(text)
         found = [size for size in self.sizes if key in map(name_key, (size.name, *size.aliases))]
         if found:

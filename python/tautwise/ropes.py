@@ -129,7 +129,7 @@ def _row(construction: str, core: str) -> Factors:
 
 def _computed(row: Factors, d: float, grade: int) -> Size:
     """Values rounded as they are written, so that a row can be checked by hand."""
-    given = [("diameter", f"{d:.10g} mm", d * 1e-3, "m", "the name")]
+    given = [("diameter", *_written(d, "mm", "m"), "the name")]
     if row.C is not None:
         given.append(("area", *_written(row.C * d * d, "mm^2", "m^2"), f"C d^2 with C = {row.C:.3f}; {row.source}"))
     if row.W is not None:
