@@ -126,7 +126,7 @@ def test_acsr_of_b232(word):
     ("stranding", "share", "size"), [("26/7", 6.16, "Drake"), ("54/7", 7.71, "Cardinal"), ("6/1", 6.0, "Swan")]
 )
 def test_acsr_moduli_agree_with_the_mixture_rule(stranding, share, size):
-    """G13: E = (55 m + 190) / (m + 1) within 6.5 % (6/1: 79 beside 74.3 GPa), expansion within 2 %; m is Al over steel."""
+    """G13: E = (55 m + 190) / (m + 1) within 6.5 % (6/1: 79 beside 74.3 GPa), expansion within 2 %; m: Al over steel."""
     found = one(size)
     assert stranding in found.value("modulus").source
     assert found.modulus_Pa == pytest.approx((55 * share + 190) / (share + 1) * 1e9, rel=0.065)
@@ -194,8 +194,8 @@ def test_every_size_is_plausible(kind):
 def assert_plausible(size: Size) -> None:
     """By hand: medium-hard copper breaks under 3.7 km of itself, the strongest steel wire under 28 km.
 
-    Aluminium alone has 2.7 g/cm3, copper 8.9. Strands fill 35 % to all of their circle. Fibre cores and grease add up to
-    25 % to steel's 7.85 g/cm3.
+    Aluminium alone has 2.7 g/cm3, copper 8.9. Strands fill 35 % to all of their circle. Fibre cores and grease add up
+    to 25 % to steel's 7.85 g/cm3.
     """
     if size.weight_N_per_m is not None and size.breaking_strength_N is not None:
         assert 3.5e3 < size.breaking_strength_N / size.weight_N_per_m < 30e3

@@ -77,6 +77,16 @@ def test_go_95_temperatures_and_share():
     ]
 
 
+def test_go_95_sag_from_a_size_and_a_pack_alone():
+    """A1 (seen): No. 0 copper, 300 ft, half its strength under the heavy load; 5.30 ft at 60 degF, bare, +-0.05 ft."""
+    bare = [{"name": "bare", "temperature": "60 degF"}]
+    made = project(["go-95-heavy"], {"size": "GO 95 copper 0 MHD"}, condition=bare)
+    window = made.window()
+    assert (window.high.limit, window.high.condition) == ("go-95-heavy-tension", "go-95-heavy load")
+    state = made.settle("bare", pull=window.high.horizontal_tension_N)
+    assert state.spans[0].sag_m / FOOT_M == pytest.approx(5.30, abs=0.05)
+
+
 def test_heavy_district_on_the_published_conductor():
     """D1: 795 kcmil 26/7, ice alone 2.094 lb/ft, with wind and the constant 2.509 (seen), each to 0.001."""
     down, across = loads_lbf_per_ft(project(["nesc-250b-heavy"]), "nesc-250b-heavy load")

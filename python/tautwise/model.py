@@ -49,6 +49,9 @@ if TYPE_CHECKING:
 RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
 
 
+TABLES = ("title", "line", "ground", "crossing", "support", "stringing", "condition", "mark", "limit")
+
+
 class Project(BaseModel):
     """A checked project; frozen, SI inside.
 
@@ -214,8 +217,7 @@ class Project(BaseModel):
 Project.__signature__ = inspect.Signature(  # the keys of a file, which are not the fields of the model
     [
         inspect.Parameter(key, inspect.Parameter.KEYWORD_ONLY, default=None, annotation=Any)
-        for key in ("title", "line", "ground", "crossing", "support", "stringing", "condition", "mark", "limit",
-                    "waiver", "rules")
+        for key in (*TABLES, "waiver", "rules")
     ]
 )
 

@@ -133,9 +133,7 @@ def window(project: Project, **options: Any) -> PullWindow:
     return replace(answer, warnings=project.warnings)
 
 
-def vet(
-    project: Project, *, pull: Pull = None, every: bool = False, today: datetime.date | None = None
-) -> VetReport:
+def vet(project: Project, *, pull: Pull = None, every: bool = False, today: datetime.date | None = None) -> VetReport:
     """Every limit of a project, for its stringing or for a given pull.
 
     Parameters
