@@ -126,7 +126,7 @@ def test_acsr_of_b232(word):
     ("stranding", "share", "size"), [("26/7", 6.16, "Drake"), ("54/7", 7.71, "Cardinal"), ("6/1", 6.0, "Swan")]
 )
 def test_acsr_moduli_agree_with_the_mixture_rule(stranding, share, size):
-    """G13: E = (55 m + 190) / (m + 1) within 6.5 % (6/1: 79 beside 74.3 GPa), expansion within 2 %; m: Al over steel."""
+    """G13: (55 m + 190) / (m + 1) within 6.5 % (6/1: 79 beside 74.3 GPa), expansion within 2 %; m: Al over steel."""
     found = one(size)
     assert stranding in found.value("modulus").source
     assert found.modulus_Pa == pytest.approx((55 * share + 190) / (share + 1) * 1e9, rel=0.065)

@@ -221,6 +221,22 @@ def test_the_list_of_packs(capsys):
 # --- in a project
 
 
+def test_the_schema_takes_what_the_reader_does():
+    jsonschema = pytest.importorskip("jsonschema")
+    from tautwise.schema import project_schema
+
+    validator = jsonschema.Draft202012Validator(project_schema())
+    supports = [{**each, "hold": "anchor"} for each in SUPPORTS]
+    good = {"format": "tautwise 1", "line": {"size": "Drake", "catalogue": ["own.csv"]}, "support": supports,
+            "stringing": {"temperature": "15 degC"}, "rules": ["go-95-heavy", {"pack": "go-95-light", "as": "x"}],
+            "waiver": [{"limit": "x", "reason": "y", "until": "2027-06-30"}]}  # fmt: skip
+    assert [error.message for error in validator.iter_errors(good)] == []
+    for key, value in (("rules", ["go-95-hevy"]), ("rules", [{"as": "x"}]), ("line", {"sise": "Drake"}),
+                       ("waiver", [{"limit": "x", "until": "2027-06-30"}]), ("rules", None)):  # fmt: skip
+        bad = {name: part for name, part in {**good, key: value}.items() if part is not None}
+        assert list(validator.iter_errors(bad)), key
+
+
 def test_entries_of_the_project_win_and_the_result_says_so(tmp_path):
     text = """\
 format = "tautwise 1"

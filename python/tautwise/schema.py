@@ -8,6 +8,7 @@ from pydantic import Field
 
 from tautwise.check import MOST
 from tautwise.limits import Limit
+from tautwise.rulepacks import pack_names
 from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support
 from tautwise.waivers import Waiver
 
@@ -35,7 +36,7 @@ class ProjectFile(Head):
     crossing: tuple[Crossing, ...] = Field((), max_length=MOST["crossing"])
     support: tuple[Support, ...] = Field(min_length=2, max_length=MOST["support"])
     stringing: Stringing
-    condition: tuple[Condition, ...] = Field(min_length=1, max_length=MOST["condition"])
+    condition: tuple[Condition, ...] = Field((), min_length=1, max_length=MOST["condition"])
     mark: tuple[Mark, ...] = Field((), max_length=MOST["mark"])
     limit: tuple[Limit, ...] = Field((), max_length=MOST["limit"])
     waiver: tuple[Waiver, ...] = Field((), max_length=MOST["waiver"])
@@ -54,6 +55,10 @@ def project_schema() -> dict[str, Any]:
     for name, rule in _GIVEN_ONCE.items():
         schema["$defs"][name].update(rule)
     schema["required"] = ["format", *schema["required"]]
+    schema["anyOf"] = [{"required": ["condition"]}, {"required": ["rules"]}]
+    packs = {"type": "string", "enum": list(pack_names())}
+    using = {"type": "object", "required": ["pack"], "properties": {"pack": packs}}
+    schema["properties"]["rules"]["items"] = {"anyOf": [packs, using]}
     return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
 
 

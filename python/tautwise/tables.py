@@ -229,7 +229,6 @@ class Head(Table):
         None,
         json_schema_extra={
             "type": "array",
-            "items": {"anyOf": [{"type": "string"}, {"type": "object", "required": ["pack"]}]},
             "examples": [["nesc-250b-heavy", "nesc-261h"]],
         },
     )
