@@ -450,6 +450,7 @@ def test_a_line_is_whole_with_the_users_area(tmp_path):
         ("Drake,ACSR", "=MY ROPE,ACSR", '4: name: "=MY ROPE" is the name of another size too, in line 3'),
         ("Drake,ACSR,28.1,468 mm^2,1.6,,140", "Drake,ACSR,,,,,", '4: name: "Drake" has no value'),
         ("certificate 7", "certi\x1bficate", "3: source: "),
+        ("certificate 7", 'certificate 7"', "3: a quote that is not closed on its line"),
     ],
 )
 def test_bad_rows_are_refused_with_their_line(tmp_path, old, new, problem):

@@ -329,6 +329,17 @@ def test_a_missing_pack_is_refused_at_its_line(tmp_path):
     assert (fault.file, fault.line) == (str(file), 4)
 
 
+def test_a_fault_of_a_packs_limit_stands_at_the_packs_line(tmp_path):
+    line = "[line]\nweight = '1 N/m'\ndiameter = '20 mm'\nstiffness = '9 MN'\nexpansion = '1e-5 / K'\n"
+    supports = "".join(f"[[support]]\nname = '{n}'\nstation = '{n} m'\nelevation = '9 m'\n" for n in (0, 90))
+    file = tmp_path / "p.taut.toml"
+    head = 'format = "tautwise 1"\nrules = [\n  "nesc-250b-light",\n  "go-95-heavy",\n]\n'
+    file.write_text(f"{head}{line}{supports}[stringing]\ntemperature = '15 degC'\n", encoding="utf-8")
+    with pytest.raises(InputError) as caught:
+        tw.load(file)
+    assert [(fault.file, fault.line) for fault in caught.value.faults] == [(str(file), 4)]
+
+
 def test_a_limit_of_a_pack_says_what_the_line_lacks():
     line = {"weight": "10 N/m", "diameter": "20 mm", "stiffness": "20 MN", "expansion": "1e-5 / K"}
     faults = refusal(["go-95-heavy"], line=line)
