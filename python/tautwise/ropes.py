@@ -2,7 +2,7 @@
 
 A name is ``CONSTRUCTION CORE DIAMETER GRADE``, as in "6x19 steel core 16 mm 1770": diameter d with its unit, grade R
 in N/mm2. Mass W d^2 / 100 (kg/m), metallic area C d^2 (mm2), least breaking force K d^2 R / 1000 (kN), d in mm, the
-factors W, C, K of the construction and core (EN 12385-4; K. Feyrer, Wire Ropes, table 1.9).
+factors W, C, K of the construction and core (EN 12385; K. Feyrer, Wire Ropes, table 1.9).
 """
 
 from __future__ import annotations
