@@ -253,7 +253,7 @@ CASES = {
                         'the text "hot" where a list is needed', "a list", ""),
     "table for a text": ('title = "Inlet"', "title = { a = 1 }", 0, "title", "a table where a title is needed",
                          "a title", 'title = "Inlet crossing"'),
-    "catalogue": ('diameter = "16 mm"', 'size = "x"\ndiameter = "16 mm"', 0, "line.size", "catalogue", "", ""),
+    "size": ('diameter = "16 mm"', 'size = "x"\ndiameter = "16 mm"', 0, "line.size", 'no size "x"', "", ""),
     "arrange": ("[[mark]]", "[arrange]\npolish = false\n[[mark]]", 0, "arrange", "not available in this", "", ""),
 }  # fmt: skip
 

@@ -169,17 +169,9 @@ def test_a_limit_that_no_pull_keeps_has_its_own_heading():
 def test_the_signature_names_the_keys():
     names = list(inspect.signature(tw.Project).parameters)
     assert names == [
-        "title",
-        "line",
-        "ground",
-        "crossing",
-        "support",
-        "stringing",
-        "history",
-        "condition",
-        "mark",
-        "limit",
-    ]
+        "title", "line", "ground", "crossing", "support", "stringing", "history", "condition", "mark", "limit",
+        "waiver", "rules",
+    ]  # fmt: skip
 
 
 def test_arrays_of_spans_are_frozen():

@@ -345,7 +345,8 @@ def test_the_schema_describes_the_file():
     json.dumps(schema)
     assert schema["additionalProperties"] is False
     assert all(table["additionalProperties"] is False for table in schema["$defs"].values())
-    assert schema["required"] == ["format", "line", "support", "stringing", "condition"]
+    assert schema["required"] == ["format", "line", "support", "stringing"]
+    assert schema["anyOf"] == [{"required": ["condition"]}, {"required": ["rules"]}]
     weight = schema["$defs"]["Line"]["properties"]["weight"]
     assert weight["type"] == "string"
     assert weight["examples"] == ["11.9 N/m"]

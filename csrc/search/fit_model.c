@@ -51,9 +51,7 @@ static size_t gather_conditions(tw_fit_model *model)
             c++;
         }
         if (c == found) {
-            const tw_condition still = {.temperature_degC = model->seen[i].temperature_degC,
-                                        .wind_speed_m_per_s = (double)NAN};
-            model->conditions[found++] = still;
+            model->conditions[found++] = tw_line_bare(model->seen[i].temperature_degC);
         }
         model->condition[i] = c;
     }

@@ -14,6 +14,7 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from tautwise.catalogue import sizes
     from tautwise.errors import (
         Fault,
         InputError,
@@ -36,11 +37,14 @@ if TYPE_CHECKING:
         SurveyFit,
         VetReport,
     )
+    from tautwise.rulepacks import RulePack, rule_packs
+    from tautwise.size_records import Size
     from tautwise.survey import Survey, read_survey
 
     __version__: str
 
 _HOMES = {
+    "catalogue": ("sizes",),
     "errors": (
         "Fault",
         "InputError",
@@ -64,6 +68,8 @@ _HOMES = {
         "VetReport",
     ),
     "survey": ("Survey", "read_survey"),
+    "rulepacks": ("RulePack", "rule_packs"),
+    "size_records": ("Size",),
 }
 _HOME_OF = {name: module for module, names in _HOMES.items() for name in names}
 
@@ -77,9 +83,11 @@ __all__ = [
     "NotSettledError",
     "Project",
     "PullWindow",
+    "RulePack",
     "SearchCancelled",
     "SettleReport",
     "ShutWindowError",
+    "Size",
     "SpanState",
     "SpanStates",
     "SupportState",
@@ -91,7 +99,9 @@ __all__ = [
     "load",
     "natural_length",
     "read_survey",
+    "rule_packs",
     "settle_spans",
+    "sizes",
 ]
 
 

@@ -22,8 +22,9 @@ from tautwise.reader import ARRAYS, Document
 from tautwise.strict import Refused, described, did_you_mean, nearest, shown
 from tautwise.tables import Condition, Crossing, GroundTable, Head, History, Line, Mark, Stringing, Support, Table
 from tautwise.units import quantity
+from tautwise.waivers import Waiver
 
-MOST = {"crossing": 2000, "support": 2000, "condition": 500, "mark": 2000, "limit": 500}
+MOST = {"crossing": 2000, "support": 2000, "condition": 500, "mark": 2000, "limit": 500, "waiver": 500}
 LOADS_MOST = 2000
 TOP_TABLES = ("line", "ground", "stringing", "history")
 TOP_KEYS = (*keys_of(Head), "include", *TOP_TABLES, *ARRAYS)
@@ -47,6 +48,7 @@ class Checked:
     conditions: list[Condition | None] = field(default_factory=list)
     marks: list[Mark | None] = field(default_factory=list)
     limits: list[BaseLimit | None] = field(default_factory=list)
+    waivers: list[Waiver | None] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
     misspelt: set[KeyPath] = field(default_factory=set)
 
@@ -143,6 +145,7 @@ def read_tables(document: Document) -> Checked:
     checked.conditions = _array(checked, "condition", Condition)
     checked.marks = _array(checked, "mark", Mark)
     checked.limits = [_limit(checked, number) for number in _numbers(checked, "limit")]
+    checked.waivers = _array(checked, "waiver", Waiver)
     _unique_names(checked)
     if document.incomplete:
         there = [fault for fault in checked.faults if fault.problem != "missing" or fault in document.faults]

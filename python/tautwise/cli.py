@@ -69,6 +69,7 @@ class Commands(click.Group):
 
 
 json_option = click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of text.")
+sources_option = click.option("--sources", is_flag=True, help="Also print where the numbers come from.")
 pull_option = click.option("--pull", metavar="FORCE", help='String to this pull instead, such as "20 kN".')
 files_argument = click.argument("files", nargs=-1, required=True, metavar="FILE...")
 
@@ -124,21 +125,25 @@ def start(file: str, force: bool, as_json: bool) -> int:
 @commands.command()
 @files_argument
 @pull_option
+@sources_option
 @json_option
-def settle(files: Sequence[str], pull: str | None, as_json: bool) -> int:
+def settle(files: Sequence[str], pull: str | None, sources: bool, as_json: bool) -> int:
     """Find where the line hangs and how hard it pulls, in every condition.
 
     With several files, --json prints a list of documents.
     """
     from tautwise.solve import settle_report
+    from tautwise.sources import with_sources
 
     done, failed = _each(_loaded(files), lambda project: settle_report(project, pull=pull))
     if as_json:
-        _print_documents([report for _, report in done], many=len(files) > 1)
+        _print_documents([with_sources(report, project, sources) for project, report in done], many=len(files) > 1)
     else:
         from tautwise.text import settle_text
 
-        _print_texts(settle_text(report, project, _ink(), pull) for project, report in done)
+        _print_texts(
+            [*settle_text(report, project, _ink(), pull), *_source_lines(project, sources)] for project, report in done
+        )
     for project, report in done:
         _tell(f"warning: {text}" for text in report.warnings[len(project.warnings) :])
         head = f"{project.source}: " if project.source else ""
@@ -149,8 +154,9 @@ def settle(files: Sequence[str], pull: str | None, as_json: bool) -> int:
 
 @commands.command()
 @files_argument
+@sources_option
 @json_option
-def window(files: Sequence[str], as_json: bool) -> int:
+def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
     """Find the pulls that keep every limit, and the pull to specify.
 
     Ctrl-C ends the search, says what it had found and exits with 3. With several files, --json prints a list of
@@ -158,17 +164,20 @@ def window(files: Sequence[str], as_json: bool) -> int:
     """
     projects = _loaded(files)
     from tautwise.solve import window as search
+    from tautwise.sources import with_sources
 
     for project in projects:
         if not project.limits:
             _tell([f"warning: {project.source}: no [[limit]], so every pull is in the window"])
     done, failed = _each(projects, lambda project: search(project))
     if as_json:
-        _print_documents([found for _, found in done], many=len(files) > 1)
+        _print_documents([with_sources(found, project, sources) for project, found in done], many=len(files) > 1)
     else:
         from tautwise.text_limits import window_text
 
-        _print_texts(window_text(found, project, _ink()) for project, found in done)
+        _print_texts(
+            [*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done
+        )
     _tell(failed)
     if not all(found.open for _, found in done):
         return FAILS
@@ -178,13 +187,19 @@ def window(files: Sequence[str], as_json: bool) -> int:
 @commands.command()
 @files_argument
 @click.option("--every", is_flag=True, help="A row for each limit and condition, not only the worst condition.")
+@click.option("--on", "day", metavar="DATE", help="Judge waivers as of this day instead of today, as in 2027-06-30.")
 @pull_option
+@sources_option
 @json_option
-def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> int:
+def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, sources: bool, as_json: bool) -> int:
     """Check every limit in every condition; takes files and folders.
 
     In a folder, every file that ends in .taut.toml is checked.
     """
+    from tautwise.sources import with_sources
+    from tautwise.waivers import day_of
+
+    options = {} if day is None else {"today": day_of(day)}
     projects = _loaded(unfolded(files))
     from tautwise.errors import NotSettledError
     from tautwise.findings import slack_finding
@@ -194,7 +209,7 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
 
     def judged(project: Project) -> VetReport:
         try:
-            report = check(project, pull=pull, every=every)
+            report = check(project, pull=pull, every=every, **options)
         except NotSettledError as error:
             _tell([str(error)])
             return undecided(project, str(error), pull=pull)
@@ -202,7 +217,8 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
         return report
 
     done, _ = _each(projects, judged)
-    report = VetReport.of((file for _, each in done for file in each.files), done[0][1].program)
+    verdicts = (with_sources(file, project, sources) for project, each in done for file in each.files)
+    report = VetReport.of(verdicts, done[0][1].program)
     for project in projects:
         if not project.limits:
             _tell([f"warning: {project.source}: no [[limit]], so there is nothing to vet"])
@@ -211,10 +227,55 @@ def vet(files: Sequence[str], every: bool, pull: str | None, as_json: bool) -> i
     else:
         from tautwise.text_limits import vet_text
 
-        _print_texts([vet_text(report, projects, _ink())])
+        lines = [line for project in projects for line in _source_lines(project, sources)]
+        _print_texts([[*vet_text(report, projects, _ink()), *lines]])
     if report.holds:
         return DONE
-    return FAILS if any(limit.status == "fails" for limit in report.limits) else FAILED
+    return FAILS if any(limit.word == "fails" for limit in report.limits) else FAILED
+
+
+@commands.command()
+@click.argument("text", nargs=-1, metavar="[TEXT]...")
+@click.option("--kind", help='Sizes of this kind only, such as "ACSR", "steel strand" or "wire rope".')
+@click.option("--diameter", metavar="RANGE", help='Such as ">= 10 mm", "10 mm to 16 mm" or "12 mm".')
+@click.option("--strength", metavar="RANGE", help='Breaking strength, such as ">= 50 kN".')
+@click.option("--catalogue", multiple=True, metavar="FILE", help="A file of your own sizes; may be given repeatedly.")
+@click.option("--sources", is_flag=True, help="Each value with its own unit, its source and how sure it is.")
+@click.option("--csv", "as_csv", is_flag=True, help="Print CSV, in SI.")
+@json_option
+def sizes(text: Sequence[str], sources: bool, as_csv: bool, as_json: bool, **asked: Any) -> int:
+    """List the sizes of the catalogue, or those that TEXT names.
+
+    TEXT is a whole name, or words that a name holds.
+    """
+    from tautwise.catalogue import sizes as listed
+    from tautwise.size_records import SizeList
+    from tautwise.text_catalogue import sizes_csv, sizes_text
+
+    found = listed(" ".join(text) or None, **asked)
+    if as_json:
+        _print_documents([SizeList(found)])
+    elif as_csv:
+        _print(sizes_csv(found))
+    else:
+        _print_texts([sizes_text(found, _ink(), sources=sources, ropes=not text and not asked["kind"])])
+    return DONE
+
+
+@commands.command()
+@click.argument("names", nargs=-1, metavar="[NAME]...")
+@json_option
+def rules(names: Sequence[str], as_json: bool) -> int:
+    """List the rule packs, or print those named in words, with their sources."""
+    from tautwise.rulepacks import RulePackList, packs_of
+    from tautwise.text_catalogue import pack_text, rules_text
+
+    packs = packs_of(names)
+    if as_json:
+        _print_documents([packs[0] if len(names) == 1 else RulePackList(packs)])
+    else:
+        _print_texts([pack_text(each, _ink()) for each in packs] if names else [rules_text(packs, _ink())])
+    return DONE
 
 
 @commands.command()
@@ -395,6 +456,13 @@ def _each(projects: Iterable[Project], work: Callable[[Project], T]) -> tuple[li
     if faults:
         raise InputError(dict.fromkeys(faults))
     return done, failed
+
+
+def _source_lines(project: Project, asked: bool) -> list[str]:
+    """Where the numbers come from, in words, where asked for."""
+    from tautwise.sources import sources_lines, sources_of
+
+    return ["", _ink().strong("Where the numbers come from"), *sources_lines(sources_of(project))] if asked else []
 
 
 def _ink() -> Ink:

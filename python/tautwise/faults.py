@@ -16,7 +16,6 @@ from tautwise.reader import Document
 from tautwise.strict import described, nearest, shown
 
 NOT_YET = {
-    "size": "the catalogue of lines is not available in this version; give diameter, weight, stiffness and strength",
     "arrange": "arranging supports is not available in this version",
     "sweep": "sweeps are not available in this version",
 }
@@ -35,6 +34,7 @@ LISTS = {
     "conditions": '["hot"]',
     "supports": '["West mast"]',
     "spans": '["West mast"]',
+    "catalogue": '["my_sizes.csv"]',
 }
 NAMES = {"condition": "hot", "conditions": "hot", "crossing": "channel", "mark": "marker ball", "load": "trolley"}
 

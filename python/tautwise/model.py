@@ -15,6 +15,7 @@
 
 from __future__ import annotations
 
+import datetime
 import hashlib
 import inspect
 import json
@@ -24,20 +25,25 @@ from typing import TYPE_CHECKING, Any, cast
 
 from pydantic import BaseModel, ConfigDict, PrivateAttr, SerializeAsAny
 
+from tautwise.additions import add_to
 from tautwise.check import Checked, read_tables, stations_in_plan
 from tautwise.errors import Fault, InputError
 from tautwise.from_core import file_path
+from tautwise.keylines import Path as KeyPath
 from tautwise.limits import BaseLimit
 from tautwise.plausible import warnings_of
 from tautwise.profile import Ground
-from tautwise.reader import Document, Source, read_project
+from tautwise.reader import Document, Source, read_project, shown_path
 from tautwise.rules import line_rules, place_rules, stringing_rules, support_rules
 from tautwise.rules_curves import curve_rules, history_rules
 from tautwise.rules_loading import limit_rules, mark_rules
 from tautwise.rules_loads import condition_rules
+from tautwise.size_records import Size
+from tautwise.sources import SourceLine
 from tautwise.strict import described, did_you_mean, shown
 from tautwise.tables import Condition, Crossing, History, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of
+from tautwise.waivers import Waiver
 
 if TYPE_CHECKING:
     from tautwise.results import CrewSheet, Equilibrium, PullWindow, SurveyFit, VetReport
@@ -57,6 +63,9 @@ RULES = (
 )
 
 
+TABLES = ("title", "line", "ground", "crossing", "support", "stringing", "history", "condition", "mark", "limit")
+
+
 class Project(BaseModel):
     """A checked project; frozen, SI inside.
 
@@ -69,11 +78,13 @@ class Project(BaseModel):
     ----------
     title: of the project, possibly empty.
     line, ground (or None), stringing, history: the tables.
-    supports, crossings, conditions, marks, limits: the arrays of tables, in the order of the file.
+    supports, crossings, conditions, marks, limits, waivers: the arrays of tables, in the order of the file; conditions
+        and limits of rule packs follow.
     source: the project file as the user named it; None for keyword arguments.
-    input_sha256: the SHA-256 of the file. With included files or a ground profile: of the lines "HASH  NAME" of all of
-        them, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
-    warnings: values that can be read but are hardly meant, one line each.
+    input_sha256: the SHA-256 of the file. With included files, a ground profile or files of sizes: of the lines
+        "HASH  NAME" of all of them, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
+    warnings: values that can be read but are hardly meant, and which of two sizes or rules was taken, one line each.
+    origins: where each value of its size and its rule packs comes from.
 
     Raises
     ------
@@ -92,6 +103,7 @@ class Project(BaseModel):
     conditions: tuple[Condition, ...]
     marks: tuple[Mark, ...]
     limits: tuple[SerializeAsAny[BaseLimit], ...]
+    waivers: tuple[Waiver, ...]
     source: str | None
     input_sha256: str
     _document: Document = PrivateAttr()
@@ -108,15 +120,33 @@ class Project(BaseModel):
         return project
 
     def _fill(self, document: Document) -> None:
+        added = add_to(document)
         values = _checked_values(document)
         BaseModel.__init__(self, **values)
         self._document = document
-        self._warnings = warnings_of(self, document)
+        self._warnings = (*added.notes, *warnings_of(self, document))
 
     @property
     def warnings(self) -> tuple[str, ...]:
-        """Values that can be read but are hardly meant, one line each."""
+        """Values that can be read but are hardly meant, and what was taken instead of what; one line each."""
         return self._warnings
+
+    @property
+    def origins(self) -> tuple[SourceLine, ...]:
+        """Where each value of the size and the rule packs comes from."""
+        added = self._document.additions
+        return tuple(added.origins) if added else ()
+
+    @property
+    def size(self) -> Size | None:
+        """The size that [line] names, or None."""
+        added = self._document.additions
+        return added.size if added else None
+
+    def place(self, path: KeyPath) -> str:
+        """File and line of a key, or its path where there is no file."""
+        file, line = self._document.where(path)
+        return f"{file}:{line}" if file else shown_path(path, self._document.tables)
 
     def condition_index(self, name: str) -> int:
         """The number of a condition, from 0.
@@ -187,11 +217,14 @@ class Project(BaseModel):
 
         return solve.window(self, **options)
 
-    def vet(self, pull: float | str | None = None) -> VetReport:
-        """Every limit in every condition, for the given stringing; `pull` as in `settle`."""
+    def vet(self, pull: float | str | None = None, today: datetime.date | None = None) -> VetReport:
+        """Every limit in every condition, for the given stringing; `pull` as in `settle`.
+
+        Waivers are judged for the day `today`, by default the day it is.
+        """
         import tautwise.solve as solve
 
-        return solve.vet(self, pull=pull)
+        return solve.vet(self, pull=pull, today=today)
 
     def sheet(self, temperatures_degC: Temperatures = None, pull: float | str | None = None) -> CrewSheet:
         """What a crew needs to string the line: lengths to cut, sags by temperature, clipping offsets, return waves.
@@ -228,18 +261,7 @@ class Project(BaseModel):
 Project.__signature__ = inspect.Signature(  # the keys of a file, which are not the fields of the model
     [
         inspect.Parameter(key, inspect.Parameter.KEYWORD_ONLY, default=None, annotation=Any)
-        for key in (
-            "title",
-            "line",
-            "ground",
-            "crossing",
-            "support",
-            "stringing",
-            "history",
-            "condition",
-            "mark",
-            "limit",
-        )
+        for key in (*TABLES, "waiver", "rules")
     ]
 )
 
@@ -279,6 +301,7 @@ def _values(checked: Checked) -> dict[str, Any]:
         "conditions": tuple(checked.conditions),
         "marks": tuple(checked.marks),
         "limits": tuple(checked.limits),
+        "waivers": tuple(checked.waivers),
     }
 
 

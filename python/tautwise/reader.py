@@ -14,18 +14,21 @@ import stat
 import tomllib
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from tautwise.errors import Fault, InputError
 from tautwise.keylines import Path as KeyPath
 from tautwise.keylines import TooMuch, scan
 from tautwise.strict import described, nearest, shown
 
+if TYPE_CHECKING:
+    from tautwise.additions import Additions
+
 FORMAT = "tautwise 1"
 FILE_BYTES_MOST = 1_000_000
 INCLUDE_DEPTH_MOST = 8
 INCLUDE_FILES_MOST = 32
-ARRAYS = ("crossing", "support", "condition", "mark", "limit")
+ARRAYS = ("crossing", "support", "condition", "mark", "limit", "waiver")
 
 _BARE_QUANTITY = re.compile(r"=\s*([+-]?[0-9.][0-9.eE+-]*\s*[A-Za-z%/\N{DEGREE SIGN}][^,#\]}]*)")
 _PLACE = re.compile(r"\s*\(at (?:line ([0-9]+), column [0-9]+|end of document)\)$")
@@ -59,6 +62,7 @@ class Document:
     sources: the files read, the project file first.
     faults: what is already known to be wrong.
     incomplete: an included file could not be read, so that what is missing may stand there.
+    additions: what a size and rule packs added to the tables; None before they did.
     """
 
     tables: dict[str, Any]
@@ -68,6 +72,7 @@ class Document:
     sources: list[Source] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
     incomplete: bool = False
+    additions: Additions | None = None
 
     def where(self, path: KeyPath) -> tuple[str | None, int | None]:
         """File and line of a key, or of the nearest table around it.

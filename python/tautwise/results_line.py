@@ -24,6 +24,7 @@ from tautwise.columns import (
 from tautwise.errors import NotSettledError, TautwiseError
 from tautwise.places import Origin, Places
 from tautwise.records import Record
+from tautwise.sources import SourceLine
 
 if TYPE_CHECKING:
     import numpy as np
@@ -313,7 +314,7 @@ class SettleReport(Record):
     """All conditions of a project, settled for one stringing; the document of ``settle --json``.
 
     `program` and `nlopt` are the versions in use, `input_sha256` the hash of the project file; `warnings` say what is
-    hardly meant, first in the input, then in what came out.
+    hardly meant, first in the input, then in what came out. `sources` say where the numbers come from, where asked for.
     """
 
     FORMAT: ClassVar[str] = "tautwise-settle 1"
@@ -326,6 +327,7 @@ class SettleReport(Record):
     stringing: StrungState
     conditions: tuple[Equilibrium, ...]
     warnings: tuple[str, ...] = ()
+    sources: tuple[SourceLine, ...] = ()
 
     @property
     def settled(self) -> bool:

@@ -9,11 +9,21 @@ from typing import Any, ClassVar
 from tautwise.columns import NOTHING, Column, Table, number_column, plural, text_column
 from tautwise.records import Record
 from tautwise.results_line import CAUTION, clipped, pandas_module
+from tautwise.sources import SourceLine
 
 HOLDS = "holds"
 FAILS = "fails"
 UNDECIDED = "undecided"
-_RANK = {FAILS: 0, UNDECIDED: 1, HOLDS: 2}
+WAIVED = "waived"  # only a word for people: the status stays "fails"
+_RANK = {FAILS: 0, UNDECIDED: 1, WAIVED: 2, HOLDS: 3}
+
+
+@dataclass(frozen=True, slots=True)
+class WaiverState(Record):
+    """Why a limit may fail, and until which day, "2027-06-30"."""
+
+    reason: str
+    until: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,6 +38,7 @@ class LimitState(Record):
     value, allowed, margin: in `unit` ("m", "N", "deg", or "1" for a slope); margin is what is to spare.
     utilisation: share of the limit that is used; it holds while <= 1.
     side: "least" or "most", which side of `allowed` is right. reason: why it is undecided.
+    waiver: of a limit that fails and may; None otherwise.
     """
 
     id: str
@@ -45,11 +56,21 @@ class LimitState(Record):
     side: str | None = None
     why: str | None = None
     reason: str | None = None
+    waiver: WaiverState | None = None
+
+    @property
+    def word(self) -> str:
+        """The status as people read it: a failing limit with a waiver is "waived"."""
+        return WAIVED if self.waiver is not None else self.status
 
 
 @dataclass(frozen=True, slots=True)
 class FileVerdict(Record):
-    """The limits of one project, worst first; `file` is its name, `pull_N` the pull it was judged at."""
+    """The limits of one project, worst first; `file` is its name, `pull_N` the pull it was judged at.
+
+    It holds if every limit holds or is waived. `findings`: waivers that are expired or excuse nothing. `sources`: where
+    its numbers come from, where asked for.
+    """
 
     file: str
     holds: bool
@@ -57,6 +78,8 @@ class FileVerdict(Record):
     project: str = ""
     input_sha256: str | None = None
     pull_N: float | None = None
+    findings: tuple[str, ...] = ()
+    sources: tuple[SourceLine, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, repr=False)
@@ -91,9 +114,11 @@ class VetReport(Record):
         return pandas_module().DataFrame(rows)
 
     def _head(self) -> str:
-        failing = sum(limit.status != HOLDS for limit in self.limits)
+        failing = sum(limit.word not in (HOLDS, WAIVED) for limit in self.limits)
+        waived = sum(limit.word == WAIVED for limit in self.limits)
         count = plural(len(self.limits), "limit")
-        return f"VetReport: {count}, all hold" if self.holds else f"VetReport: {failing} of {count} do not hold"
+        more = f" but {waived} waived" if waived else ""
+        return f"VetReport: {count}, all hold{more}" if self.holds else f"VetReport: {failing} of {count} do not hold"
 
     def __repr__(self) -> str:
         return clipped(self._head(), limit_table(self.limits).lines())
@@ -103,8 +128,16 @@ class VetReport(Record):
 
 
 def worst_first(limits: Iterable[LimitState]) -> tuple[LimitState, ...]:
-    """Failing limits first, then undecided ones, then by how far they are used."""
-    return tuple(sorted(limits, key=lambda limit: (_RANK[limit.status], -(limit.utilisation or 0.0))))
+    """Failing limits first, then undecided ones, then waived ones, then by how far they are used."""
+    return tuple(sorted(limits, key=lambda limit: (_RANK[limit.word], -(limit.utilisation or 0.0))))
+
+
+def worst_of_each(limits: Iterable[LimitState]) -> tuple[LimitState, ...]:
+    """Of each limit the worst row, from rows that are worst first."""
+    worst: dict[str, LimitState] = {}
+    for limit in limits:
+        worst.setdefault(limit.id, limit)
+    return tuple(worst.values())
 
 
 def limit_table(limits: Iterable[LimitState]) -> Table:
@@ -126,7 +159,7 @@ def limit_table(limits: Iterable[LimitState]) -> Table:
 def _row(limit: LimitState) -> tuple[float | str | None, ...]:
     numbers = shown_values(limit.unit, limit.allowed, limit.value, limit.allowed, limit.margin)
     used = None if limit.utilisation is None else 100.0 * limit.utilisation
-    return (limit.id, limit.status.upper() if limit.status == FAILS else limit.status, used, *numbers,
+    return (limit.id, limit.word.upper() if limit.word == FAILS else limit.word, used, *numbers,
             limit.condition, limit.place)  # fmt: skip
 
 

@@ -12,6 +12,7 @@ from typing import Any, ClassVar, Protocol
 from tautwise.columns import Table, cut, force_column, force_format, force_text, number_column, text_column
 from tautwise.errors import ShutWindowError
 from tautwise.records import Record
+from tautwise.sources import SourceLine
 
 OPEN_ENDED = "none"
 AT_LEAST, NEVER = "at least", "never"
@@ -146,6 +147,7 @@ class PullWindow(Record):
     conflict, relax: of a shut window, the limits that exclude one another and the smallest single changes that open it.
     pulls_N, curves: utilisation of each limit in each condition over the pulls.
     verified: the answer was settled again, each condition with its bracket, `gap_relative` the widest of them.
+    warnings: what is hardly meant in the input. sources: where its numbers come from, where asked for.
     """
 
     FORMAT: ClassVar[str] = "tautwise-window 1"
@@ -173,6 +175,8 @@ class PullWindow(Record):
     nlopt: str
     caution: str
     origin: WindowOrigin | None = field(default=None, compare=False, repr=False)
+    warnings: tuple[str, ...] = ()
+    sources: tuple[SourceLine, ...] = ()
 
     def require_open(self) -> PullWindow:
         """The same window.

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from tautwise.additions import FAILED, size_rules
 from tautwise.check import Checked, at_most_one, exactly_one
 from tautwise.faults import example_of
 from tautwise.limits import GROUND, TensionLimit
@@ -29,11 +30,12 @@ def line_rules(checked: Checked) -> None:
     """Weight or mass, stiffness or modulus and area, and what the conditions and limits need."""
     if not isinstance(checked.document.tables.get("line"), dict):
         return
-    exactly_one(checked, ("line",), Line, ("weight", "mass"))
+    told = size_rules(checked)
+    if told == FAILED:
+        return
+    if not told:
+        _weight_and_stiffness(checked)
     raw = checked.raw("line")
-    given = None if is_curved(raw) else exactly_one(checked, ("line",), Line, ("stiffness", "modulus"))
-    if given == "modulus" and raw.get("area") is None:
-        checked.fault(("line",), "modulus is given without area", "both, or stiffness", 'area = "150 mm^2"')
     _needed_by_conditions(checked)
     for number, limit in enumerate(checked.limits):
         if isinstance(limit, TensionLimit) and limit.share is not None and raw.get("breaking_strength") is None:
@@ -111,6 +113,14 @@ def _method_rules(checked: Checked) -> None:
     if over and isinstance(raw.get("natural_length"), list):
         problem = "a length of each span leaves nothing to run over the sheaves"
         checked.fault(("stringing", "natural_length"), problem, "one for the whole line", 'natural_length = "1850 m"')
+
+
+def _weight_and_stiffness(checked: Checked) -> None:
+    raw = checked.raw("line")
+    exactly_one(checked, ("line",), Line, ("weight", "mass"))
+    given = None if is_curved(raw) else exactly_one(checked, ("line",), Line, ("stiffness", "modulus"))
+    if given == "modulus" and raw.get("area") is None:
+        checked.fault(("line",), "modulus is given without area", "both, or stiffness", 'area = "150 mm^2"')
 
 
 def _needed_by_conditions(checked: Checked) -> None:

@@ -9,7 +9,9 @@ from pydantic import Field
 
 from tautwise.check import MOST
 from tautwise.limits import Limit
+from tautwise.rulepacks import pack_names
 from tautwise.tables import Condition, Crossing, GroundTable, Head, History, Line, Mark, Stringing, Support
+from tautwise.waivers import Waiver
 
 _WEIGHT = {"oneOf": [{"required": ["weight"]}, {"required": ["mass"]}]}
 _STIFFNESS = {
@@ -23,7 +25,7 @@ _STIFFNESS = {
 _ELEVATION = {"oneOf": [{"required": ["elevation"]}, {"required": ["height"]}]}
 _PLACE = {"oneOf": [{"required": ["station"]}, {"required": ["east", "north"]}]}
 _GIVEN_ONCE = {
-    "Line": {"allOf": [_WEIGHT, _STIFFNESS]},
+    "Line": {"anyOf": [{"required": ["size"]}, {"allOf": [_WEIGHT, _STIFFNESS]}]},
     "GroundTable": {"oneOf": [{"required": ["profile"]}, {"required": ["points"]}]},
     "Support": {"allOf": [_ELEVATION, _PLACE]},
     "Wind": {"oneOf": [{"required": ["pressure"]}, {"required": ["speed"]}]},
@@ -45,9 +47,10 @@ class ProjectFile(Head):
     support: tuple[Support, ...] = Field(min_length=2, max_length=MOST["support"])
     stringing: Stringing
     history: History | None = None
-    condition: tuple[Condition, ...] = Field(min_length=1, max_length=MOST["condition"])
+    condition: tuple[Condition, ...] = Field((), min_length=1, max_length=MOST["condition"])
     mark: tuple[Mark, ...] = Field((), max_length=MOST["mark"])
     limit: tuple[Limit, ...] = Field((), max_length=MOST["limit"])
+    waiver: tuple[Waiver, ...] = Field((), max_length=MOST["waiver"])
 
 
 def project_schema() -> dict[str, Any]:
@@ -63,6 +66,10 @@ def project_schema() -> dict[str, Any]:
     for name, rule in _GIVEN_ONCE.items():
         schema["$defs"][name].update(rule)
     schema["required"] = ["format", *schema["required"]]
+    schema["anyOf"] = [{"required": ["condition"]}, {"required": ["rules"]}]
+    packs = {"type": "string", "enum": list(pack_names())}
+    using = {"type": "object", "required": ["pack"], "properties": {"pack": packs}}
+    schema["properties"]["rules"]["items"] = {"anyOf": [packs, using]}
     return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
 
 

@@ -6,10 +6,12 @@ key of the project file that is meant.
 
 from __future__ import annotations
 
+import datetime
 import math
 import os
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
+from dataclasses import replace
 from numbers import Real
 from typing import TYPE_CHECKING, Any, NoReturn
 
@@ -29,13 +31,14 @@ from tautwise.results import (
     StrungState,
     VetReport,
 )
-from tautwise.results_vet import HOLDS
+from tautwise.results_vet import HOLDS, WAIVED, worst_of_each
 from tautwise.solve_limits import limit_states, window_of
 from tautwise.solve_line import conditions_of, equilibrium_of
 from tautwise.solve_places import LENGTHS, OFF_THE_LINE, beyond_faults, off_faults, places_of
 from tautwise.solve_relax import relaxations_of
 from tautwise.strict import Refused
 from tautwise.units import quantity
+from tautwise.waivers import WaiverBook
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -127,14 +130,16 @@ def window(project: Project, **options: Any) -> PullWindow:
     if found["status"] not in ("ok", "shut") or (found["open"] and not found["verified"] and options.get("verify", 1)):
         raise _undecided(project, found)
     relax = relaxations_of(project, found["relax"])
-    return window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core), relax)
+    answer = window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core), relax)
+    return replace(answer, warnings=project.warnings)
 
 
-def vet(project: Project, *, pull: Pull = None, every: bool = False) -> VetReport:
+def vet(project: Project, *, pull: Pull = None, every: bool = False, today: datetime.date | None = None) -> VetReport:
     """Every limit of a project, for its stringing or for a given pull.
 
     Parameters
     ----------
+    today: the day for which waivers are judged; None is the day it is.
     every: a row for each limit and condition, instead of one for each limit with its worst condition.
     """
     newtons = pull_of(project, pull)
@@ -146,8 +151,10 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False) -> VetRepor
         refuse_slack(project, "slack", _core.STATUS["slack"])
     if any(row["reason"] == OFF_THE_LINE for row in rows):
         refuse_places(project, newtons)
-    limits = limit_states(project, rows, every=every, reason=_reasons(project, newtons))
-    return _verdict(project, limits, strung(project, pull=pull).horizontal_tension_N)
+    book = WaiverBook(project, today or datetime.date.today())
+    states = limit_states(project, rows, every=True, reason=_reasons(project, newtons), excused=book.excused)
+    limits = states if every else worst_of_each(states)
+    return _verdict(project, limits, strung(project, pull=pull).horizontal_tension_N, tuple(book.findings(states)))
 
 
 def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
@@ -305,10 +312,13 @@ def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
     return float(supports[0]["position_m"][0]), float(supports[-1]["position_m"][0])
 
 
-def _verdict(project: Project, limits: tuple[LimitState, ...], pull: float | None) -> VetReport:
-    holds = all(limit.status == HOLDS for limit in limits)
+def _verdict(
+    project: Project, limits: tuple[LimitState, ...], pull: float | None, findings: tuple[str, ...] = ()
+) -> VetReport:
+    holds = all(limit.word in (HOLDS, WAIVED) for limit in limits)
     name = os.fspath(project.source or project.title)
-    return VetReport.of([FileVerdict(name, holds, limits, project.title, project.input_sha256, pull)], program())
+    verdict = FileVerdict(name, holds, limits, project.title, project.input_sha256, pull, findings)
+    return VetReport.of([verdict], program())
 
 
 def _reasons(project: Project, pull: float | None) -> Callable[[Mapping[str, Any] | None], str | None]:

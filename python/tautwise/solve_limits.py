@@ -45,15 +45,20 @@ def kind_of(limit: BaseLimit) -> str:
 
 
 def limit_states(
-    project: Project, rows: Sequence[Row], *, every: bool, reason: Callable[[Row | None], str | None] = lambda row: None
+    project: Project,
+    rows: Sequence[Row],
+    *,
+    every: bool,
+    reason: Callable[[Row | None], str | None] = lambda row: None,
+    excused: Callable[[LimitState], LimitState] = lambda state: state,
 ) -> tuple[LimitState, ...]:
     """The judged limits, worst first: one row for each limit, or one for each limit and condition.
 
-    `reason` says why a row is undecided; it is asked with None for a limit that has no row.
+    `reason` says why a row is undecided; it is asked with None for a limit that has no row. `excused` puts a waiver in.
     """
     states: list[LimitState] = []
     for index, limit in enumerate(project.limits):
-        own = [_limit_state(project, limit, row, reason) for row in rows if row["limit"] == index]
+        own = [excused(_limit_state(project, limit, row, reason)) for row in rows if row["limit"] == index]
         own = own or [_unjudged(limit, reason(None))]
         states += own if every else worst_first(own)[:1]
     return worst_first(states)

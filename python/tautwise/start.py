@@ -9,7 +9,10 @@ START_TEXT = """\
 format = "tautwise 1"
 title  = "Inlet crossing"
 
+# rules = ["nesc-250b-heavy"]         # conditions and limits of published rules: `tautwise rules` lists them
+
 [line]                                # bare, per metre of unstretched line
+# size = "A475 1/2 in EHS"            # or a size of the catalogue, `tautwise sizes`; what is given here overrides it
 name = "19-wire strand, 16 mm"
 diameter = "16 mm"
 area = "150 mm^2"

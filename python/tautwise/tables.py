@@ -107,6 +107,8 @@ class Line(Table):
     """
 
     name: Name | None = None
+    size: Annotated[str, Words("the name of a size", "Drake ACSR")] | None = None
+    catalogue: tuple[Annotated[str, Words("a file name", "my_sizes.csv")], ...] = ()
     diameter_m: PositiveLength | None = Field(None, alias="diameter")
     area_m2: Area | None = Field(None, alias="area")
     given_weight_N_per_m: PositiveForcePerLength | None = Field(None, alias="weight")
@@ -361,3 +363,10 @@ class Head(Table):
 
     format: Annotated[str, Choice(("tautwise 1",))] = "tautwise 1"
     title: Annotated[str, Words("a title", "Inlet crossing")] = ""
+    rules: Any = Field(
+        None,
+        json_schema_extra={
+            "type": "array",
+            "examples": [["nesc-250b-heavy", "nesc-261h"]],
+        },
+    )

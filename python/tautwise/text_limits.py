@@ -19,8 +19,8 @@ from tautwise.columns import (
 )
 from tautwise.results_vet import (
     FAILS,
-    HOLDS,
     UNDECIDED,
+    WAIVED,
     FileVerdict,
     LimitState,
     VetReport,
@@ -48,7 +48,8 @@ if TYPE_CHECKING:
 def window_text(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     """The window with what governs it and the pull to specify, or what shuts it and the changes that open it."""
     body = _open_lines(window, project, ink) if window.open else _shut_lines(window, project, ink)
-    return [*heading(project, ink), *body, *caution(window.caution, ink)]
+    note = ["", "Waivers are not applied here: these are the pulls that keep every limit."] if project.waivers else []
+    return [*heading(project, ink), *body, *note, *caution(window.caution, ink)]
 
 
 def vet_text(report: VetReport, projects: Sequence[Project], ink: Ink) -> list[str]:
@@ -281,10 +282,11 @@ def _near(window: PullWindow, each: Relaxation, divisor: float, decimals: int) -
 
 def _verdict_lines(file: FileVerdict, ink: Ink) -> list[str]:
     lines = [_verdict_head(file, ink)]
+    findings = [f"Look again: {text}" for text in file.findings]
     if not file.limits:
-        return lines
+        return [*lines, *findings]
     lines += ["", *(_accented(line, ink) for line in limit_table(file.limits).lines())]
-    return [*lines, "", *_governing_lines(file.limits)]
+    return [*lines, "", *_governing_lines(file.limits), *_waived_lines(file.limits), *findings]
 
 
 def _accented(line: str, ink: Ink) -> str:
@@ -300,17 +302,20 @@ def _verdict_head(file: FileVerdict, ink: Ink) -> str:
     count, rows = plural(len(limits), "limit"), len(file.limits)
     if file.holds:
         every = f" in all {rows} rows," if rows > len(limits) else ""
-        return ink.strong(f"HOLDS: {count} kept{every} {pull}".rstrip(", "))
-    failing = [limit.id for limit in file.limits if limit.status == FAILS]
+        waived = {limit.id for limit in file.limits if limit.word == WAIVED}
+        kept = f"{len(limits) - len(waived)} of {count} kept, {len(waived)} waived" if waived else f"{count} kept"
+        every = f", in {rows} rows," if every and waived else every
+        return ink.strong(f"HOLDS: {kept}{every} {pull}".rstrip(", "))
+    failing = [limit.id for limit in file.limits if limit.word == FAILS]
     if not failing:
-        unjudged = {limit.id for limit in file.limits if limit.status != HOLDS}
+        unjudged = {limit.id for limit in file.limits if limit.word == UNDECIDED}
         return ink.alarm(f"UNDECIDED: {len(unjudged)} of {count} could not be judged {pull}".rstrip())
     every = f" ({len(failing)} of {rows} rows)," if rows > len(limits) else ""
     return ink.alarm(f"FAILS: {len(set(failing))} of {count} not kept{every} {pull}".rstrip(", "))
 
 
 def _governing_lines(limits: Sequence[LimitState]) -> list[str]:
-    worst = limits[0]
+    worst = next((limit for limit in limits if limit.word != WAIVED), limits[0])
     lines = []
     if worst.status != UNDECIDED:
         place = f", {worst.place}" if worst.place else ""
@@ -322,8 +327,17 @@ def _governing_lines(limits: Sequence[LimitState]) -> list[str]:
     return [*lines, *(f"Undecided: {reason}" for reason in reasons)]
 
 
+def _waived_lines(limits: Sequence[LimitState]) -> list[str]:
+    """Which limits may fail, until when and why."""
+    return [
+        f"Waived until {limit.waiver.until}: {limit.id} in {limit.condition}. {' '.join(limit.waiver.reason.split())}"
+        for limit in limits
+        if limit.waiver is not None
+    ]
+
+
 def _files_head(report: VetReport, ink: Ink) -> str:
-    failing = sum(any(limit.status == FAILS for limit in file.limits) for file in report.files)
+    failing = sum(any(limit.word == FAILS for limit in file.limits) for file in report.files)
     unjudged = sum(not file.holds for file in report.files) - failing
     count = plural(len(report.files), "file")
     if failing:

@@ -12,7 +12,7 @@ import numpy as np
 from . import carriage, limits, loads
 from .quadrature import Array, Growing, PieceLoad
 from .route import route_of
-from .section import Section, Settled, Support, settle_section
+from .section import Section, Settled, Support
 from .sheave import Feed, begins, lengths_of, run_over
 from .span import Material, Piece
 from .states import span_state, support_state
@@ -92,8 +92,8 @@ class Twin:
         """The bare line at the stringing temperature."""
         load = np.array([0.0, 0.0, -self.line["weight_N_per_m"]])
         spans = [[Piece(length, load)] for length in lengths]
-        clamp_loads = self.clamp_loads(np.concatenate([[0.0], np.cumsum(lengths)]), [])
-        return Section(self.material(self.rule["temperature_degC"]), spans, self.supports, clamp_loads)
+        clamp_loads = self.clamp_loads(np.concatenate([[0.0], np.cumsum(lengths)]), [], {})
+        return Section(self.material(self.rule["temperature_degC"]), spans, self.supports, clamp_loads, self.route)
 
     def lengths_m(self, pull_N: float | None = None) -> list[float]:
         """Natural length of each span."""
