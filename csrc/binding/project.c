@@ -6,6 +6,7 @@
 
 #include "answer.h"
 #include "check.h"
+#include "curves.h"
 #include "fields.h"
 #include "module.h"
 #include "places.h"
@@ -261,7 +262,7 @@ static PyObject *judged_row(const tw_verdict *verdict, size_t limit, size_t cond
 /* Judges one row and appends it; -1 and raises. */
 static int append_judged(PyObject *list, tw_trial *trial, size_t limit, size_t condition, tw_options *options)
 {
-    tw_verdict verdict = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN};
+    tw_verdict verdict = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN, NAN, {NAN, NAN, NAN}};
     run_state run;
     tw_run_begin(&run, options);
     tw_status status = tw_trial_judge(trial, limit, condition, options, &verdict);
@@ -338,6 +339,27 @@ static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywo
     }
     tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
     PyObject *result = status == TW_OK ? tw_places_along(section, (size_t)points) : raise_status(self, status);
+    tw_trial_free(trial);
+    return result;
+}
+
+static PyObject *project_curve(PyObject *object, PyObject *args, PyObject *keywords)
+{
+    project_object *self = (project_object *)object;
+    Py_ssize_t condition;
+    double shift[3] = {0.0, 0.0, 0.0}, pull;
+    tw_options options;
+    const tw_section *section = NULL;
+    if (!PyArg_ParseTuple(args, "n|(ddd):curve", &condition, &shift[0], &shift[1], &shift[2])
+        || condition_index(self, condition) < 0 || split_keywords(self, keywords, &pull, &options) < 0) {
+        return NULL;
+    }
+    tw_trial *trial = tw_trial_create(&self->problem.project);
+    if (!trial) {
+        return PyErr_NoMemory();
+    }
+    tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
+    PyObject *result = status == TW_OK ? tw_curves_along(section, shift) : raise_status(self, status);
     tw_trial_free(trial);
     return result;
 }
@@ -430,6 +452,8 @@ static PyMethodDef project_methods[] = {
      "judge(*, pull=None, **options) -> list of dicts, one per limit and condition it applies to."},
     {"shape", (PyCFunction)(void (*)(void))project_shape, METH_VARARGS | METH_KEYWORDS,
      "shape(condition, points=200, *, pull=None) -> dict of arrays along the exact line, points a span."},
+    {"curve", (PyCFunction)(void (*)(void))project_curve, METH_VARARGS | METH_KEYWORDS,
+     "curve(condition, shift=(0, 0, 0), *, pull=None) -> array (arcs, 14): the exact line as another project's `curves`."},
     {"at", (PyCFunction)(void (*)(void))project_at, METH_VARARGS | METH_KEYWORDS,
      "at(condition, stations, *, pull=None) -> dict of arrays at the stations; NaN where the line does not pass."},
     {"window", (PyCFunction)(void (*)(void))project_window, METH_VARARGS | METH_KEYWORDS,

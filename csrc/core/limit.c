@@ -3,6 +3,7 @@
 #include <math.h>
 
 #include "ground.h"
+#include "spacing.h"
 #include "vector.h"
 
 double tw_limit_utilisation_most(double value, double most)
@@ -49,6 +50,18 @@ static void judge_clearance(const tw_limit *limit, const tw_section *section, si
     }
 }
 
+static void judge_spacing(const tw_limit *limit, const tw_section *section, size_t span, const tw_curve *other,
+                          tw_verdict *place)
+{
+    tw_spacing found;
+    if (other && tw_spacing_least(section, span, other, &found)) {
+        offer_least(place, found.distance_m, limit->least, 1.0);
+        place->station_m = found.position[0];
+        place->other_at_m = found.other_at_m;
+        tw_copy(found.other_position, place->other_position_m);
+    }
+}
+
 /* Station of the largest tension: it sits at a piece's end. */
 static double tension_station(const tw_section *section, size_t span, double most)
 {
@@ -76,13 +89,15 @@ static void judge_tension(const tw_project *project, const tw_limit *limit, cons
     place->station_m = tension_station(section, span, value);
 }
 
+/* other: the line to keep from, of a spacing. */
 static void judge_span(const tw_project *project, const tw_limit *limit, const tw_section *section, size_t span,
-                       tw_verdict *place)
+                       const tw_curve *other, tw_verdict *place)
 {
     tw_span_state state;
     switch (limit->kind) {
     case TW_LIMIT_CLEARANCE: judge_clearance(limit, section, span, place); return;
     case TW_LIMIT_TENSION: judge_tension(project, limit, section, span, place); return;
+    case TW_LIMIT_SPACING: judge_spacing(limit, section, span, other, place); return;
     case TW_LIMIT_SAG:
         tw_section_span_state(section, span, &state);
         if (!isnan(limit->most)) {
@@ -169,18 +184,32 @@ static void judge_support(const tw_project *project, const tw_limit *limit, cons
     place->station_m = at->station_m;
 }
 
+/* The other line of a spacing in a condition; NULL where there is none. */
+static const tw_curve *curve_of(const tw_project *project, size_t limit, size_t condition)
+{
+    size_t row = limit * project->condition_count + condition;
+    size_t curve = project->curve_count > 0 ? project->limit_curve[row] : TW_NONE;
+    return curve < project->curve_count ? &project->curves[curve] : NULL;
+}
+
 static int looks_at_supports(tw_limit_kind kind)
 {
     return kind == TW_LIMIT_SUPPORT_LOAD || kind == TW_LIMIT_UPLIFT || kind == TW_LIMIT_SWING;
 }
 
-tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_section *section, const tw_section *bare)
+tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condition, const tw_section *section,
+                          const tw_section *bare)
 {
     const tw_limit *rule = &project->limits[limit];
     const unsigned char *covers = project->limit_covers + limit * project->support_count;
+    const tw_curve *other = curve_of(project, limit, condition);
     int supports = looks_at_supports(rule->kind);
     size_t count = supports ? project->support_count : section->span_count;
-    const tw_verdict nowhere = {.span = TW_NONE, .support = TW_NONE, .station_m = (double)NAN};
+    const tw_verdict nowhere = {.span = TW_NONE,
+                                .support = TW_NONE,
+                                .station_m = (double)NAN,
+                                .other_at_m = (double)NAN,
+                                .other_position_m = {(double)NAN, (double)NAN, (double)NAN}};
     tw_verdict worst = nowhere;
     for (size_t k = 0; k < count; k++) {
         tw_verdict place = nowhere;
@@ -192,7 +221,7 @@ tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_sect
             judge_support(project, rule, section, bare, k, &place);
         } else {
             place.span = k;
-            judge_span(project, rule, section, k, &place);
+            judge_span(project, rule, section, k, other, &place);
         }
         if (place.judged && (!worst.judged || !(place.utilisation <= worst.utilisation))) {
             worst = place;

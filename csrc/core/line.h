@@ -116,7 +116,8 @@ typedef enum tw_limit_kind {
     TW_LIMIT_SWING,
     TW_LIMIT_SAG,
     TW_LIMIT_CATENARY_CONSTANT,
-    TW_LIMIT_SLOPE
+    TW_LIMIT_SLOPE,
+    TW_LIMIT_SPACING
 } tw_limit_kind;
 
 typedef enum tw_direction {
@@ -129,7 +130,7 @@ typedef enum tw_direction {
 
 typedef struct tw_limit {
     tw_limit_kind kind;
-    double least;           /* clearance m, uplift N, sag m; NaN: none */
+    double least;           /* clearance m, uplift N, sag m, spacing m; NaN: none */
     double most;            /* tension N, support load N, swing rad, sag m, catenary constant m, slope (rise over run); NaN: none */
     double share;           /* of breaking strength (tension) or of capacity (support load); NaN: none */
     size_t crossing;        /* clearance: index, or TW_NONE for the ground */
@@ -137,6 +138,20 @@ typedef struct tw_limit {
     double to_m;
     tw_direction direction; /* support load */
 } tw_limit;
+
+/* A stretch of another line, natural length at_m[0] to at_m[1], as a cubic with these ends and derivatives. */
+typedef struct tw_arc {
+    double at_m[2];        /* natural length from the other line's first support; the second above the first */
+    double position[2][3]; /* m, in this line's axes */
+    double slope[2][3];    /* d position / d natural length */
+} tw_arc;
+
+/* Another line, hung in a condition of its own: arcs that join end to end. */
+typedef struct tw_curve {
+    size_t arc_count; /* >= 1 */
+    const tw_arc *arcs;
+    const double *reach; /* [2 arc_count - 1], m: what tw_curve_reach found */
+} tw_curve;
 
 /* The whole problem. Arrays are borrowed and must outlive every call. */
 typedef struct tw_project {
@@ -158,7 +173,11 @@ typedef struct tw_project {
     const tw_limit *limits;
     const unsigned char *limit_applies; /* [limit_count][condition_count]: the limit is judged in the condition */
     const unsigned char *limit_covers;  /* [limit_count][support_count]: it looks at the support, or at the span that
-                                           starts there (tension, sag, slope, catenary constant, clearance) */
+                                           starts there (tension, sag, slope, catenary constant, clearance, spacing) */
+    size_t curve_count;                 /* 0 where no limit is a spacing */
+    const tw_curve *curves;
+    const size_t *limit_curve;          /* [limit_count][condition_count]: of a spacing, the curve to keep from in the
+                                           condition, else TW_NONE; NULL where curve_count is 0 */
     tw_stringing stringing;
 } tw_project;
 

@@ -1,0 +1,262 @@
+#include "spacing.h"
+
+#include <math.h>
+
+#include "curve.h"
+#include "vector.h"
+
+static const double STRAIGHT = 1e-3;   /* reaches over the distance: below it two stretches are compared at once */
+static const double FINEST_M = 1e-7;   /* reaches that need not be smaller, however near the lines */
+static const double SQUARE = 1e-14;    /* cosine of the angle to the line that is a right one */
+enum { SAMPLES = 5, STEPS_MOST = 80 };
+
+/* A stretch of this line, within one piece. */
+typedef struct stretch {
+    double s[2];           /* natural length within the piece */
+    double place[2][3];
+    double tension[2][3];
+    double reach;
+} stretch;
+
+/* A stretch of the other line: several arcs, or a part of one. */
+typedef struct range {
+    size_t node, first, last;
+    double u[2];          /* shares of the arc; used where there is one */
+    double place[2][3];
+    double reach;
+} range;
+
+typedef struct search {
+    const tw_material *material;
+    const tw_piece *piece; /* of this line */
+    const tw_curve *other;
+    tw_spacing *least;
+} search;
+
+static double clamp(double value)
+{
+    return fmin(fmax(value, 0.0), 1.0);
+}
+
+double tw_spacing_of_chords(const double a0[3], const double a1[3], const double b0[3], const double b1[3])
+{
+    double d1[3], d2[3], r[3];
+    tw_axpy(a1, -1.0, a0, d1);
+    tw_axpy(b1, -1.0, b0, d2);
+    tw_axpy(a0, -1.0, b0, r);
+    double a = tw_dot(d1, d1), e = tw_dot(d2, d2), f = tw_dot(d2, r), c = tw_dot(d1, r), b = tw_dot(d1, d2);
+    double det = a * e - b * b;
+    double s = det > 1e-14 * a * e ? clamp((b * f - c * e) / det) : 0.0;
+    double t = e > 0.0 ? (b * s + f) / e : 0.0;
+    if (t < 0.0 || t > 1.0 || !(det > 1e-14 * a * e)) {
+        t = clamp(t);
+        s = a > 0.0 ? clamp((b * t - c) / a) : 0.0;
+        t = e > 0.0 ? clamp((b * s + f) / e) : 0.0;
+    }
+    tw_axpy(r, s, d1, r);
+    tw_axpy(r, -t, d2, r);
+    return tw_norm(r);
+}
+
+/* A stretch bends one way, so it stays within the triangle of its chord and its end tangents, whose apex is no further than
+ * half the chord times the tangent of the larger angle; where it bends far, no further than half its length. */
+static void set_reach(const search *run, stretch *a)
+{
+    double chord[3], steepest = 0.0;
+    tw_axpy(a->place[1], -1.0, a->place[0], chord);
+    double length = tw_norm(chord);
+    double natural = a->s[1] - a->s[0];
+    double stretched = fmax(tw_norm(a->tension[0]), tw_norm(a->tension[1]));
+    a->reach = 0.5 * natural * tw_material_stretch(run->material, stretched);
+    for (int i = 0; i < 2; i++) {
+        const double *t = a->tension[i];
+        const double cross[3] = {chord[1] * t[2] - chord[2] * t[1], chord[2] * t[0] - chord[0] * t[2],
+                                 chord[0] * t[1] - chord[1] * t[0]};
+        double along = tw_dot(chord, t);
+        steepest = fmax(steepest, along > 0.0 ? tw_norm(cross) / along : INFINITY);
+    }
+    if (steepest <= 1.0) {
+        a->reach = fmin(a->reach, 0.5 * length * steepest);
+    }
+}
+
+static void set_end(const search *run, stretch *a, int end, double s)
+{
+    a->s[end] = s;
+    tw_piece_position(run->material, run->piece, s, a->place[end]);
+    tw_piece_tension(run->piece, s, a->tension[end]);
+}
+
+static stretch half_stretch(const search *run, const stretch *whole, int half)
+{
+    stretch a = *whole;
+    set_end(run, &a, 1 - half, 0.5 * (whole->s[0] + whole->s[1]));
+    set_reach(run, &a);
+    return a;
+}
+
+static range half_range(const search *run, const range *whole, int half)
+{
+    const tw_arc *arcs = run->other->arcs;
+    range b = *whole;
+    if (whole->last - whole->first == 1) {
+        b.u[1 - half] = 0.5 * (whole->u[0] + whole->u[1]);
+        tw_curve_at(&arcs[b.first], b.u[1 - half], b.place[1 - half], NULL, NULL);
+        b.reach = tw_curve_arc_reach(&arcs[b.first], b.u[0], b.u[1]);
+        return b;
+    }
+    size_t middle = whole->first + (whole->last - whole->first) / 2;
+    b.node = half ? whole->node + 2 * (middle - whole->first) : whole->node + 1;
+    b.first = half ? middle : whole->first;
+    b.last = half ? whole->last : middle;
+    tw_copy(arcs[middle].position[0], b.place[1 - half]);
+    b.reach = run->other->reach[b.node];
+    return b;
+}
+
+/* Share of the arc, within the range, that is nearest to a point: Newton on the slope of the distance, kept in a bracket. */
+static double nearest(const tw_arc *arc, const range *b, const double point[3], double place[3])
+{
+    double low = b->u[0], high = b->u[1];
+    double chord[3], off[3], slope[3], bend[3];
+    tw_axpy(b->place[1], -1.0, b->place[0], chord);
+    tw_axpy(point, -1.0, b->place[0], off);
+    double square = tw_dot(chord, chord);
+    double u = low + (high - low) * (square > 0.0 ? clamp(tw_dot(off, chord) / square) : 0.5);
+    for (int i = 0; i < STEPS_MOST; i++) {
+        tw_curve_at(arc, u, place, slope, bend);
+        tw_axpy(place, -1.0, point, off);
+        double rise = tw_dot(slope, off);
+        double rate = tw_dot(slope, slope) + tw_dot(bend, off);
+        if (rise == 0.0 || (rise > 0.0 && u <= b->u[0]) || (rise < 0.0 && u >= b->u[1])) {
+            break;
+        }
+        low = rise < 0.0 ? u : low;
+        high = rise > 0.0 ? u : high;
+        double next = rate > 0.0 ? fmin(fmax(u - rise / rate, b->u[0]), b->u[1]) : 0.5 * (low + high);
+        next = next >= low && next <= high ? next : 0.5 * (low + high);
+        if (!(fabs(next - u) > 1e-15)) {
+            break;
+        }
+        u = next;
+    }
+    return u;
+}
+
+/* f'(s) of the header, times T/L, and 0 within rounding; keeps the place where it is the nearest so far. */
+static double judge_at(search *run, const range *b, double s)
+{
+    const tw_arc *arc = &run->other->arcs[b->first];
+    double place[3], other[3], off[3], t[3];
+    tw_piece_position(run->material, run->piece, s, place);
+    double u = nearest(arc, b, place, other);
+    tw_axpy(place, -1.0, other, off);
+    double distance = tw_norm(off);
+    if (distance < run->least->distance_m) {
+        run->least->distance_m = distance;
+        run->least->other_at_m = arc->at_m[0] + u * (arc->at_m[1] - arc->at_m[0]);
+        tw_copy(place, run->least->position);
+        tw_copy(other, run->least->other_position);
+    }
+    tw_piece_tension(run->piece, s, t);
+    double rise = tw_dot(t, off);
+    return fabs(rise) > SQUARE * distance * tw_norm(t) ? rise : 0.0;
+}
+
+/* f' is below 0 at s0 and above 0 at s1: the Illinois rule, with a bisection now and then. */
+static void judge_between(search *run, const range *b, double s0, double f0, double s1, double f1)
+{
+    double width = s1 - s0;
+    int side = 0;
+    for (int i = 0; i < STEPS_MOST && s1 - s0 > 1e-15 * (fabs(s1) + width); i++) {
+        double s = i % 5 == 4 ? 0.5 * (s0 + s1) : s0 + (s1 - s0) * (f0 / (f0 - f1));
+        s = s > s0 && s < s1 ? s : 0.5 * (s0 + s1);
+        double f = judge_at(run, b, s);
+        if (f == 0.0 || s <= s0 || s >= s1) {
+            return;
+        }
+        if (f < 0.0) {
+            s0 = s;
+            f0 = f;
+            f1 *= side < 0 ? 0.5 : 1.0;
+            side = -1;
+        } else {
+            s1 = s;
+            f1 = f;
+            f0 *= side > 0 ? 0.5 : 1.0;
+            side = 1;
+        }
+    }
+}
+
+static void judge_pair(search *run, const stretch *a, const range *b)
+{
+    double before = 0.0;
+    for (int i = 0; i < SAMPLES; i++) {
+        double s = a->s[0] + (a->s[1] - a->s[0]) * i / (SAMPLES - 1);
+        double f = judge_at(run, b, s);
+        if (i > 0 && before < 0.0 && f > 0.0) {
+            judge_between(run, b, a->s[0] + (a->s[1] - a->s[0]) * (i - 1) / (SAMPLES - 1), before, s, f);
+        }
+        before = f;
+    }
+}
+
+static double chord_distance(const stretch *a, const range *b)
+{
+    return tw_spacing_of_chords(a->place[0], a->place[1], b->place[0], b->place[1]);
+}
+
+/* chords: their distance. The half with the nearer chords comes first; what cannot be nearer than found is left out. */
+static void judge_stretches(search *run, const stretch *a, const range *b, double chords)
+{
+    double found = run->least->distance_m;
+    if (found <= TW_SPACING_TOUCH || chords - a->reach - b->reach >= found) {
+        return;
+    }
+    int nearly_straight = a->reach + b->reach <= fmax(FINEST_M, STRAIGHT * chords);
+    if (b->last - b->first == 1 && nearly_straight) {
+        judge_pair(run, a, b);
+        return;
+    }
+    double distance[2];
+    int halve_other = b->reach > a->reach || nearly_straight;
+    stretch as[2] = {*a, *a};
+    range bs[2] = {*b, *b};
+    for (int half = 0; half < 2; half++) {
+        if (halve_other) {
+            bs[half] = half_range(run, b, half);
+        } else {
+            as[half] = half_stretch(run, a, half);
+        }
+        distance[half] = chord_distance(&as[half], &bs[half]);
+    }
+    int nearer = distance[1] < distance[0];
+    judge_stretches(run, &as[nearer], &bs[nearer], distance[nearer]);
+    judge_stretches(run, &as[1 - nearer], &bs[1 - nearer], distance[1 - nearer]);
+}
+
+int tw_spacing_least(const tw_section *section, size_t span, const tw_curve *other, tw_spacing *least)
+{
+    tw_spacing found = {.distance_m = INFINITY};
+    const tw_arc *arcs = other->arcs;
+    range whole = {.node = 0, .first = 0, .last = other->arc_count, .u = {0.0, 1.0}, .reach = other->reach[0]};
+    tw_copy(arcs[0].position[0], whole.place[0]);
+    tw_copy(arcs[other->arc_count - 1].position[1], whole.place[1]);
+    for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
+        search run = {&section->material, &section->pieces[p], other, &found};
+        stretch a;
+        if (!(run.piece->length_m > 0.0)) {
+            continue;
+        }
+        set_end(&run, &a, 0, 0.0);
+        set_end(&run, &a, 1, run.piece->length_m);
+        set_reach(&run, &a);
+        judge_stretches(&run, &a, &whole, chord_distance(&a, &whole));
+    }
+    if (found.distance_m < INFINITY) {
+        *least = found;
+        return 1;
+    }
+    return 0;
+}
