@@ -109,17 +109,17 @@ int tw_curves_read_limit(PyObject *row, size_t limit, problem *out)
     return result;
 }
 
-PyObject *tw_curves_along(const tw_section *section, const double shift[3])
+PyObject *tw_curves_along(const tw_section *section)
 {
     npy_intp shape[2] = {0, ARC_NUMBERS};
     Py_BEGIN_ALLOW_THREADS
-    shape[0] = (npy_intp)tw_curve_arcs(section, shift, NULL);
+    shape[0] = (npy_intp)tw_curve_arcs(section, NULL);
     Py_END_ALLOW_THREADS
     PyObject *array = PyArray_SimpleNew(2, shape, NPY_DOUBLE);
     if (array) {
         tw_arc *arcs = PyArray_DATA((PyArrayObject *)array);
         Py_BEGIN_ALLOW_THREADS
-        tw_curve_arcs(section, shift, arcs);
+        tw_curve_arcs(section, arcs);
         Py_END_ALLOW_THREADS
     }
     return array;

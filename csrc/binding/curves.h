@@ -16,6 +16,6 @@ int tw_curves_read_limit(PyObject *row, size_t limit, problem *out);
 void tw_curves_free(problem *in);
 
 /* The hung line as an array (arcs, 14): natural lengths, positions and slopes of each arc's two ends. */
-PyObject *tw_curves_along(const tw_section *section, const double shift[3]);
+PyObject *tw_curves_along(const tw_section *section);
 
 #endif

@@ -347,11 +347,11 @@ static PyObject *project_curve(PyObject *object, PyObject *args, PyObject *keywo
 {
     project_object *self = (project_object *)object;
     Py_ssize_t condition;
-    double shift[3] = {0.0, 0.0, 0.0}, pull;
+    double pull;
     tw_options options;
     const tw_section *section = NULL;
-    if (!PyArg_ParseTuple(args, "n|(ddd):curve", &condition, &shift[0], &shift[1], &shift[2])
-        || condition_index(self, condition) < 0 || split_keywords(self, keywords, &pull, &options) < 0) {
+    if (!PyArg_ParseTuple(args, "n:curve", &condition) || condition_index(self, condition) < 0
+        || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
     tw_trial *trial = tw_trial_create(&self->problem.project);
@@ -359,7 +359,7 @@ static PyObject *project_curve(PyObject *object, PyObject *args, PyObject *keywo
         return PyErr_NoMemory();
     }
     tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-    PyObject *result = status == TW_OK ? tw_curves_along(section, shift) : raise_status(self, status);
+    PyObject *result = status == TW_OK ? tw_curves_along(section) : raise_status(self, status);
     tw_trial_free(trial);
     return result;
 }
@@ -453,7 +453,7 @@ static PyMethodDef project_methods[] = {
     {"shape", (PyCFunction)(void (*)(void))project_shape, METH_VARARGS | METH_KEYWORDS,
      "shape(condition, points=200, *, pull=None) -> dict of arrays along the exact line, points a span."},
     {"curve", (PyCFunction)(void (*)(void))project_curve, METH_VARARGS | METH_KEYWORDS,
-     "curve(condition, shift=(0, 0, 0), *, pull=None) -> array (arcs, 14): the exact line as another project's `curves`."},
+     "curve(condition, *, pull=None) -> array (arcs, 14): the exact line as another project's `curves`."},
     {"at", (PyCFunction)(void (*)(void))project_at, METH_VARARGS | METH_KEYWORDS,
      "at(condition, stations, *, pull=None) -> dict of arrays at the stations; NaN where the line does not pass."},
     {"window", (PyCFunction)(void (*)(void))project_window, METH_VARARGS | METH_KEYWORDS,

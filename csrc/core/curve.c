@@ -18,12 +18,10 @@ static double arc_length(const tw_piece *piece, double s)
     return fmax(fmin(step, BEND_MOST * radius), piece->length_m / ARCS_MOST);
 }
 
-static void arc_end(const tw_section *section, const tw_piece *piece, double s, const double shift[3], double position[3],
-                    double slope[3])
+static void arc_end(const tw_section *section, const tw_piece *piece, double s, double position[3], double slope[3])
 {
     double t[3];
     tw_piece_position(&section->material, piece, s, position);
-    tw_axpy(position, 1.0, shift, position);
     tw_piece_tension(piece, s, t);
     double size = tw_norm(t);
     double factor = size > 0.0 ? tw_material_stretch(&section->material, size) / size : 0.0;
@@ -33,8 +31,7 @@ static void arc_end(const tw_section *section, const tw_piece *piece, double s, 
 }
 
 /* Arcs of one piece; the first begins where the one before ended, to the last bit. */
-static size_t piece_arcs(const tw_section *section, const tw_piece *piece, double passed, const double shift[3], tw_arc *arcs,
-                         const double *joint)
+static size_t piece_arcs(const tw_section *section, const tw_piece *piece, double passed, tw_arc *arcs, const double *joint)
 {
     size_t count = 0;
     double s = 0.0;
@@ -45,8 +42,8 @@ static size_t piece_arcs(const tw_section *section, const tw_piece *piece, doubl
             tw_arc *arc = &arcs[count];
             arc->at_m[0] = passed + s;
             arc->at_m[1] = passed + next;
-            arc_end(section, piece, s, shift, arc->position[0], arc->slope[0]);
-            arc_end(section, piece, next, shift, arc->position[1], arc->slope[1]);
+            arc_end(section, piece, s, arc->position[0], arc->slope[0]);
+            arc_end(section, piece, next, arc->position[1], arc->slope[1]);
             if (joint) {
                 tw_copy(joint, arc->position[0]);
             }
@@ -58,7 +55,7 @@ static size_t piece_arcs(const tw_section *section, const tw_piece *piece, doubl
     return count;
 }
 
-size_t tw_curve_arcs(const tw_section *section, const double shift[3], tw_arc *arcs)
+size_t tw_curve_arcs(const tw_section *section, tw_arc *arcs)
 {
     size_t count = 0;
     double passed = 0.0;
@@ -66,7 +63,7 @@ size_t tw_curve_arcs(const tw_section *section, const double shift[3], tw_arc *a
         const tw_piece *piece = &section->pieces[p];
         if (passed + piece->length_m > passed) {
             const double *joint = arcs && count > 0 ? arcs[count - 1].position[1] : NULL;
-            count += piece_arcs(section, piece, passed, shift, arcs ? arcs + count : NULL, joint);
+            count += piece_arcs(section, piece, passed, arcs ? arcs + count : NULL, joint);
         }
         passed += piece->length_m;
     }

@@ -11,8 +11,8 @@
 #include "line.h"
 #include "section.h"
 
-/* Arcs of a hung section, moved by `shift` into another line's axes; returns their number. arcs NULL: count them only. */
-size_t tw_curve_arcs(const tw_section *section, const double shift[3], tw_arc *arcs);
+/* Arcs of a hung section, in its own axes; returns their number. arcs NULL: count them only. */
+size_t tw_curve_arcs(const tw_section *section, tw_arc *arcs);
 
 /* Place at a share u of an arc, 0 to 1; slope: d place / du, curvature: d2 place / du2; either may be NULL. */
 void tw_curve_at(const tw_arc *arc, double u, double place[3], double slope[3], double curvature[3]);

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
-from typing import Any, TypeVar
+from typing import TYPE_CHECKING, Any, TypeVar
 
 from pydantic import ValidationError
 
@@ -20,6 +20,9 @@ from tautwise.reader import ARRAYS, Document
 from tautwise.strict import Refused, described, did_you_mean, nearest, shown
 from tautwise.tables import Condition, Crossing, GroundTable, Head, Line, Mark, Stringing, Support, Table
 from tautwise.units import quantity
+
+if TYPE_CHECKING:
+    from tautwise.model import Project
 
 MOST = {"crossing": 2000, "support": 2000, "condition": 500, "mark": 2000, "limit": 500}
 LOADS_MOST = 2000
@@ -44,6 +47,7 @@ class Checked:
     conditions: list[Condition | None] = field(default_factory=list)
     marks: list[Mark | None] = field(default_factory=list)
     limits: list[BaseLimit | None] = field(default_factory=list)
+    others: dict[int, Project] = field(default_factory=dict)
     faults: list[Fault] = field(default_factory=list)
     misspelt: set[KeyPath] = field(default_factory=set)
 

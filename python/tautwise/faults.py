@@ -28,6 +28,7 @@ TABLES = {
     "tension": '{ support = "West mast", value = "20 kN" }',
     "sag": '{ from = "West mast", to = "East mast", value = "6.7 m" }',
     "load": '{ force = "2 kN", at = "75 m" }',
+    "shift": '{ offset = "1.5 m" }',
 }
 LISTS = {
     "load": f"[ {TABLES['load']} ]",

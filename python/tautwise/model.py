@@ -28,6 +28,7 @@ from tautwise.check import Checked, read_tables
 from tautwise.errors import Fault, InputError
 from tautwise.from_core import file_path
 from tautwise.limits import BaseLimit
+from tautwise.others import other_rules
 from tautwise.plausible import warnings_of
 from tautwise.profile import Ground
 from tautwise.reader import Document, Source, read_project
@@ -38,9 +39,10 @@ from tautwise.tables import Condition, Crossing, Line, Mark, Stringing, Support
 from tautwise.to_core import problem_of
 
 if TYPE_CHECKING:
+    from tautwise.neighbours import Neighbour
     from tautwise.results import Equilibrium, PullWindow, VetReport
 
-RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules)
+RULES = (line_rules, support_rules, place_rules, stringing_rules, condition_rules, mark_rules, limit_rules, other_rules)
 
 
 class Project(BaseModel):
@@ -58,7 +60,7 @@ class Project(BaseModel):
     supports, crossings, conditions, marks, limits: the arrays of tables, in the order of the file.
     source: the project file as the user named it; None for keyword arguments.
     input_sha256: the SHA-256 of the file. With included files or a ground profile: of the lines "HASH  NAME" of all of
-        them, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
+        them, and of those of the lines that a spacing keeps from, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
     warnings: values that can be read but are hardly meant, one line each.
 
     Raises
@@ -81,6 +83,8 @@ class Project(BaseModel):
     input_sha256: str
     _document: Document = PrivateAttr()
     _warnings: tuple[str, ...] = PrivateAttr(default=())
+    _others: dict[int, Project] = PrivateAttr(default_factory=dict)
+    _neighbours: dict[tuple[str, str], Any] = PrivateAttr(default_factory=dict)
 
     def __init__(self, **tables: Any) -> None:
         document = Document(_without_none(tables), sources=[_keyword_source(tables)])
@@ -93,9 +97,11 @@ class Project(BaseModel):
         return project
 
     def _fill(self, document: Document) -> None:
-        values = _checked_values(document)
+        values, others = _checked_values(document)
         BaseModel.__init__(self, **values)
         self._document = document
+        self._others = others
+        self._neighbours = {}
         self._warnings = warnings_of(self, document)
 
     @property
@@ -125,9 +131,34 @@ class Project(BaseModel):
         ground = cast(Ground, self.ground)  # a height without a ground profile is refused when read
         return ground.elevation(support.station_m) + cast(float, support.height_m)
 
-    def to_core(self) -> dict[str, Any]:
-        """The problem as ``tautwise._core.Project`` takes it: plain values in SI, names resolved to indices."""
-        return problem_of(self)
+    @property
+    def others(self) -> dict[int, Project]:
+        """The projects that spacings keep from, by the number of the limit."""
+        return self._others
+
+    def neighbour(self, number: int, condition: str) -> Neighbour:
+        """The line that the spacing with a number keeps from, settled in a condition of its own; settled once.
+
+        Raises
+        ------
+        NotSettledError: it has no equilibrium within tolerance; the message names its file.
+        """
+        other = self._others[number]
+        key = (other.source or "", condition)
+        if key not in self._neighbours:
+            from tautwise.neighbours import neighbour_of
+
+            self._neighbours[key] = neighbour_of(other, condition)
+        return cast("Neighbour", self._neighbours[key])
+
+    def to_core(self, judging: bool = True) -> dict[str, Any]:
+        """The problem as ``tautwise._core.Project`` takes it: plain values in SI, names resolved to indices.
+
+        Parameters
+        ----------
+        judging: False leaves out other lines, which then need not be settled, and with them the spacings.
+        """
+        return problem_of(self, judging)
 
     def core_fault(self, path: str, problem: str, expected: str = "") -> Fault:
         """A fault that the core found (path such as ``supports[2].hanger_length_m``), at the key in the file."""
@@ -203,13 +234,14 @@ def load(path: str | os.PathLike[str]) -> Project:
     return Project._of(read_project(path))
 
 
-def _checked_values(document: Document) -> dict[str, Any]:
+def _checked_values(document: Document) -> tuple[dict[str, Any], dict[int, Project]]:
     checked = read_tables(document)
     for rule in () if document.incomplete else RULES:  # what they look for may stand in the file that is not there
         rule(checked)
     if checked.faults:
         raise InputError(checked.faults)
-    return _values(checked) | {"source": document.name, "input_sha256": _digest(document.sources)}
+    values = _values(checked) | {"source": document.name, "input_sha256": _digest(document.sources)}
+    return values, checked.others
 
 
 def _values(checked: Checked) -> dict[str, Any]:

@@ -59,6 +59,7 @@ class Document:
     sources: the files read, the project file first.
     faults: what is already known to be wrong.
     incomplete: an included file could not be read, so that what is missing may stand there.
+    above: the projects for which this one is read, as resolved paths.
     """
 
     tables: dict[str, Any]
@@ -68,6 +69,7 @@ class Document:
     sources: list[Source] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
     incomplete: bool = False
+    above: tuple[Path, ...] = ()
 
     def where(self, path: KeyPath) -> tuple[str | None, int | None]:
         """File and line of a key, or of the nearest table around it.
@@ -109,12 +111,13 @@ class Document:
             self.index[(*path[:-1], key, *old[length:])] = self.index[old]
 
 
-def read_project(path: str | os.PathLike[str]) -> Document:
+def read_project(path: str | os.PathLike[str], above: tuple[Path, ...] = ()) -> Document:
     """Read a project file and all that it includes.
 
     Parameters
     ----------
     path: the file; TOML in UTF-8, at most 1 MB.
+    above: the projects for which it is read.
 
     Returns
     -------
@@ -127,7 +130,7 @@ def read_project(path: str | os.PathLike[str]) -> Document:
     name = os.fspath(path)
     reader = _Reader(name)
     tables, index = reader.file(Path(name), name, ())
-    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults, reader.incomplete)
+    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults, reader.incomplete, above)
 
 
 def read_text(path: Path, name: str, bytes_most: int) -> tuple[str, Source]:

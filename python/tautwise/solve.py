@@ -117,7 +117,7 @@ def window(project: Project, **options: Any) -> PullWindow:
     NotSettledError: the search ended without an answer that could be verified.
     SearchCancelled: Ctrl-C; its `best` is what had been found, or None.
     """
-    core = core_of(project)
+    core = core_of(project, judging=True)
     with errors_of(project):
         try:
             found = core.window(**options)
@@ -137,7 +137,7 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False) -> VetRepor
     every: a row for each limit and condition, instead of one for each limit with its worst condition.
     """
     newtons = pull_of(project, pull)
-    core = core_of(project)
+    core = core_of(project, judging=True)
     require_places(project, core, newtons)
     with errors_of(project, newtons, AS_STRUNG):
         rows = core.judge(pull=newtons)
@@ -155,15 +155,17 @@ def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
     return _verdict(project, limit_states(project, (), every=False, reason=lambda row: reason), given)
 
 
-def core_of(project: Project) -> _core.Project:
-    """The problem in the core.
+def core_of(project: Project, *, judging: bool = False) -> _core.Project:
+    """The problem in the core; only for `judging` with the other lines that spacings keep from.
 
     Raises
     ------
     InputError: a number is outside its range; the fault names the key of the project file.
+    NotSettledError: another line could not be settled.
     """
+    problem = project.to_core(judging)
     with errors_of(project):
-        return _core.Project(project.to_core())
+        return _core.Project(problem)
 
 
 def program() -> str:
@@ -254,7 +256,7 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
 def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
     """First and last station, m, of the line as strung, bare: posts lean."""
     bare = {"temperature_degC": project.stringing.temperature_degC}
-    problem = {**project.to_core(), "conditions": [bare], "marks": [], "limits": []}
+    problem = {**project.to_core(judging=False), "conditions": [bare], "marks": [], "limits": []}
     with errors_of(project, pull, AS_STRUNG):
         supports = _core.Project(problem).settle(0, pull=pull)["supports"]
     if not supports:
@@ -304,8 +306,7 @@ def _settled(
 
 
 def _has_stringing(project: Project) -> bool:
-    rule = project.stringing
-    return any((rule.horizontal_tension_N, rule.tension, rule.sag, rule.natural_length_m))
+    return project.stringing.has_rule
 
 
 def _condition_index(project: Project, condition: str | None) -> int:

@@ -166,6 +166,11 @@ class Stringing(Table):
     natural_length_m: Annotated[Any, Lengths()] = Field(None, alias="natural_length")
     tolerance: Tolerance = 0.0
 
+    @property
+    def has_rule(self) -> bool:
+        """Whether the file says how hard to pull."""
+        return any((self.horizontal_tension_N, self.tension, self.sag, self.natural_length_m))
+
 
 class Ice(Table):
     """A sleeve of ice: radial thickness and density."""
