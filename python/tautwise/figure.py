@@ -85,8 +85,6 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
     _draw_ground(ax, scenery)
     _draw_crossings(ax, scenery)
     _draw_supports(ax, scenery, shapes[0][0])
-    for (label, places), style in zip(others.items(), cycle(STYLES)):
-        ax.plot(*places.T, color=FAINT, linestyle=style, linewidth=1.0, zorder=4.5, label=plain(label))
     if chord:
         _draw_chords(ax, shapes[0][0])
     for (line, position), colour, style in zip(shapes, cycle(CURVES), cycle(STYLES)):
@@ -99,6 +97,8 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
             label=plain(line.name),
             zorder=5,
         )
+    for (label, places), style in zip(others.items(), cycle(STYLES)):
+        ax.plot(*places.T, color=FAINT, linestyle=style, linewidth=1.0, zorder=4.5, label=plain(label))
     tightest = tightest_of(scenery, shapes)
     if tightest:
         _draw_tightest(ax, tightest)

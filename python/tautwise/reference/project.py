@@ -11,6 +11,7 @@ import numpy as np
 
 from . import limits, loads
 from .quadrature import Array
+from .spacing import Beside
 from .section import Section, Settled, Support, settle_section
 from .span import Material, Piece
 from .states import span_state, support_state
@@ -174,10 +175,18 @@ class Twin:
                         if rule["kind"] == "swing"
                         else self.settle(c, pull_N)
                     )
-                    verdict = limits.judge(self.problem, i, self.settle(c, pull_N), bare)
+                    settled = self.settle(c, pull_N)
+                    verdict = limits.judge(self.problem, i, settled, bare, self.beside(rule, c))
                     if verdict is not None:
                         found[i, c] = verdict
         return found
+
+    def beside(self, rule: Mapping[str, Any], condition: int) -> Beside | None:
+        """The line that a spacing keeps from: `others` of the problem lists (problem, condition, shift)."""
+        if rule["kind"] != "spacing":
+            return None
+        problem, other_condition, shift = self.problem["others"][rule["curves"][condition]]
+        return Beside(Twin(problem).settle(other_condition), np.asarray(shift, dtype=np.float64))
 
     def worst(self, pull_N: float) -> float:
         """The greatest utilisation of all limits at a pull; 0 without any."""
