@@ -13,7 +13,7 @@ void tw_curves_free(problem *in)
 {
     for (size_t k = 0; in->curves && k < in->project.curve_count; k++) {
         PyMem_Free((void *)in->curves[k].arcs);
-        PyMem_Free((void *)in->curves[k].reach);
+        PyMem_Free((void *)in->curves[k].bows);
     }
     PyMem_Free(in->curves);
     PyMem_Free(in->limit_curve);
@@ -36,12 +36,12 @@ static int read_curve(PyObject *given, tw_curve *out)
     if (array && PyArray_NDIM(array) == 2 && PyArray_DIM(array, 1) == ARC_NUMBERS && PyArray_DIM(array, 0) > 0) {
         size_t count = (size_t)PyArray_DIM(array, 0);
         tw_arc *arcs = PyMem_Malloc(count * sizeof *arcs);
-        double *reach = PyMem_Malloc((2 * count - 1) * sizeof *reach);
+        tw_bow *bows = PyMem_Malloc((2 * count - 1) * sizeof *bows);
         out->arcs = arcs;
-        out->reach = reach;
-        if (arcs && reach) {
+        out->bows = bows;
+        if (arcs && bows) {
             memcpy(arcs, PyArray_DATA(array), count * sizeof *arcs);
-            tw_curve_reach(arcs, 0, 0, count, reach);
+            tw_curve_bows(arcs, 0, 0, count, bows);
             out->arc_count = count;
             result = 0;
         } else {

@@ -87,37 +87,76 @@ void tw_curve_at(const tw_arc *arc, double u, double place[3], double slope[3], 
     }
 }
 
-double tw_curve_off_chord(const double point[3], const double a[3], const double b[3])
+void tw_curve_off_chord(const double point[3], const double a[3], const double b[3], double off[3])
 {
-    double chord[3], off[3];
+    double chord[3], along[3];
     tw_axpy(b, -1.0, a, chord);
-    tw_axpy(point, -1.0, a, off);
+    tw_axpy(point, -1.0, a, along);
     double square = tw_dot(chord, chord);
-    double share = square > 0.0 ? fmin(fmax(tw_dot(off, chord) / square, 0.0), 1.0) : 0.0;
-    tw_axpy(off, -share, chord, off);
-    return tw_norm(off);
+    double share = square > 0.0 ? fmin(fmax(tw_dot(along, chord) / square, 0.0), 1.0) : 0.0;
+    tw_axpy(along, -share, chord, off);
 }
 
-double tw_curve_arc_reach(const tw_arc *arc, double u0, double u1)
+double tw_curve_reach(const tw_bow *bow)
 {
-    double a[3], b[3], out[3], in[3];
+    return tw_norm(bow->toward) + bow->rest;
+}
+
+tw_bow tw_curve_arc_bow(const tw_arc *arc, double u0, double u1)
+{
+    double a[3], b[3], out[3], in[3], off[2][3], apart[3];
     tw_curve_at(arc, u0, a, out, NULL);
     tw_curve_at(arc, u1, b, in, NULL);
     tw_axpy(a, (u1 - u0) / 3.0, out, out);
     tw_axpy(b, -(u1 - u0) / 3.0, in, in);
-    return fmax(tw_curve_off_chord(out, a, b), tw_curve_off_chord(in, a, b));
+    tw_curve_off_chord(out, a, b, off[0]);
+    tw_curve_off_chord(in, a, b, off[1]);
+    tw_axpy(off[1], -1.0, off[0], apart);
+    tw_bow bow = {.rest = 0.5 * tw_norm(apart)};
+    tw_axpy(off[0], 0.5, apart, bow.toward);
+    return bow;
 }
 
-void tw_curve_reach(const tw_arc *arcs, size_t node, size_t first, size_t last, double *reach)
+/* What a bow's direction holds of a vector, and the rest of it. */
+static double resolved(const double direction[3], const double vector[3], double *rest)
+{
+    double across[3];
+    double along = tw_dot(direction, vector);
+    tw_axpy(vector, -along, direction, across);
+    *rest += tw_norm(across) + fmax(-along, 0.0);
+    return fmax(along, 0.0);
+}
+
+/* Two runs that meet at `bend` off the chord of both: the directions of all three are nearly one. */
+static tw_bow joined(const double bend[3], const tw_bow *left, const tw_bow *right)
+{
+    double direction[3], bent = 0.0, rests[2] = {left->rest, right->rest};
+    tw_axpy(bend, 0.5, left->toward, direction);
+    tw_axpy(direction, 0.5, right->toward, direction);
+    double size = tw_norm(direction);
+    for (int i = 0; i < 3; i++) {
+        direction[i] = size > 0.0 ? direction[i] / size : 0.0;
+    }
+    double along = fmax(resolved(direction, left->toward, &rests[0]), resolved(direction, right->toward, &rests[1]));
+    along += resolved(direction, bend, &bent);
+    tw_bow bow = {.rest = bent + fmax(rests[0], rests[1])};
+    for (int i = 0; i < 3; i++) {
+        bow.toward[i] = along * direction[i];
+    }
+    return bow;
+}
+
+void tw_curve_bows(const tw_arc *arcs, size_t node, size_t first, size_t last, tw_bow *bows)
 {
     size_t middle = first + (last - first) / 2;
     if (last - first == 1) {
-        reach[node] = tw_curve_arc_reach(&arcs[first], 0.0, 1.0);
+        bows[node] = tw_curve_arc_bow(&arcs[first], 0.0, 1.0);
         return;
     }
+    double bend[3];
     size_t left = node + 1, right = node + 2 * (middle - first);
-    tw_curve_reach(arcs, left, first, middle, reach);
-    tw_curve_reach(arcs, right, middle, last, reach);
-    double bend = tw_curve_off_chord(arcs[middle].position[0], arcs[first].position[0], arcs[last - 1].position[1]);
-    reach[node] = bend + fmax(reach[left], reach[right]);
+    tw_curve_bows(arcs, left, first, middle, bows);
+    tw_curve_bows(arcs, right, middle, last, bows);
+    tw_curve_off_chord(arcs[middle].position[0], arcs[first].position[0], arcs[last - 1].position[1], bend);
+    bows[node] = joined(bend, &bows[left], &bows[right]);
 }

@@ -17,14 +17,17 @@ size_t tw_curve_arcs(const tw_section *section, tw_arc *arcs);
 /* Place at a share u of an arc, 0 to 1; slope: d place / du, curvature: d2 place / du2; either may be NULL. */
 void tw_curve_at(const tw_arc *arc, double u, double place[3], double slope[3], double curvature[3]);
 
-/* Distance of a point from the straight stretch a to b. */
-double tw_curve_off_chord(const double point[3], const double a[3], const double b[3]);
+/* What leads from the nearest place of the straight stretch a to b to a point. */
+void tw_curve_off_chord(const double point[3], const double a[3], const double b[3], double off[3]);
 
-/* How far an arc goes from its chord between two of its shares, at most: a cubic stays within its four control points. */
-double tw_curve_arc_reach(const tw_arc *arc, double u0, double u1);
+/* How far a stretch goes from its chord, at most, m. */
+double tw_curve_reach(const tw_bow *bow);
 
-/* The same for whole runs of arcs, halved again and again: reach [2 count - 1], of arcs `first` to `last` - 1 at `node`; its
+/* The bow of an arc between two of its shares: a cubic stays within its four control points. */
+tw_bow tw_curve_arc_bow(const tw_arc *arc, double u0, double u1);
+
+/* The bows of whole runs of arcs, halved again and again: bows [2 count - 1], of arcs `first` to `last` - 1 at `node`; its
  * halves are at node + 1 and node + 2 (middle - first), middle = first + (last - first) / 2. Call with node 0, 0, count. */
-void tw_curve_reach(const tw_arc *arcs, size_t node, size_t first, size_t last, double *reach);
+void tw_curve_bows(const tw_arc *arcs, size_t node, size_t first, size_t last, tw_bow *bows);
 
 #endif

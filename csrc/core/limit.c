@@ -50,11 +50,18 @@ static void judge_clearance(const tw_limit *limit, const tw_section *section, si
     }
 }
 
-static void judge_spacing(const tw_limit *limit, const tw_section *section, size_t span, const tw_curve *other,
+/* What a spacing keeps from, and the distance that matters no more. */
+typedef struct keep_from {
+    const tw_curve *other;
+    double below_m;
+} keep_from;
+
+/* Only where it is nearer than in the spans before. */
+static void judge_spacing(const tw_limit *limit, const tw_section *section, size_t span, const keep_from *spaced,
                           tw_verdict *place)
 {
     tw_spacing found;
-    if (other && tw_spacing_least(section, span, other, &found)) {
+    if (spaced->other && tw_spacing_least(section, span, spaced->other, spaced->below_m, &found)) {
         offer_least(place, found.distance_m, limit->least, 1.0);
         place->station_m = found.position[0];
         place->other_at_m = found.other_at_m;
@@ -89,15 +96,14 @@ static void judge_tension(const tw_project *project, const tw_limit *limit, cons
     place->station_m = tension_station(section, span, value);
 }
 
-/* other: the line to keep from, of a spacing. */
 static void judge_span(const tw_project *project, const tw_limit *limit, const tw_section *section, size_t span,
-                       const tw_curve *other, tw_verdict *place)
+                       const keep_from *spaced, tw_verdict *place)
 {
     tw_span_state state;
     switch (limit->kind) {
     case TW_LIMIT_CLEARANCE: judge_clearance(limit, section, span, place); return;
     case TW_LIMIT_TENSION: judge_tension(project, limit, section, span, place); return;
-    case TW_LIMIT_SPACING: judge_spacing(limit, section, span, other, place); return;
+    case TW_LIMIT_SPACING: judge_spacing(limit, section, span, spaced, place); return;
     case TW_LIMIT_SAG:
         tw_section_span_state(section, span, &state);
         if (!isnan(limit->most)) {
@@ -221,7 +227,8 @@ tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condit
             judge_support(project, rule, section, bare, k, &place);
         } else {
             place.span = k;
-            judge_span(project, rule, section, k, other, &place);
+            const keep_from spaced = {other, worst.judged ? worst.value : INFINITY};
+            judge_span(project, rule, section, k, &spaced, &place);
         }
         if (place.judged && (!worst.judged || !(place.utilisation <= worst.utilisation))) {
             worst = place;

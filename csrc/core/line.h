@@ -146,11 +146,18 @@ typedef struct tw_arc {
     double slope[2][3];    /* d position / d natural length */
 } tw_arc;
 
+/* How a stretch of line goes from its chord: each of its places is one of the chord's, and a share of `toward`, and no more
+ * than `rest` in any direction. */
+typedef struct tw_bow {
+    double toward[3]; /* m */
+    double rest;      /* m */
+} tw_bow;
+
 /* Another line, hung in a condition of its own: arcs that join end to end. */
 typedef struct tw_curve {
     size_t arc_count; /* >= 1 */
     const tw_arc *arcs;
-    const double *reach; /* [2 arc_count - 1], m: what tw_curve_reach found */
+    const tw_bow *bows; /* [2 arc_count - 1]: what tw_curve_bows found */
 } tw_curve;
 
 /* The whole problem. Arrays are borrowed and must outlive every call. */

@@ -6,8 +6,9 @@
 #include "vector.h"
 
 static const double STRAIGHT = 1e-3;   /* reaches over the distance: below it two stretches are compared at once */
-static const double FINEST_M = 1e-7;   /* reaches that need not be smaller, however near the lines */
+static const double FINEST_M = 1e-5;   /* reaches that need not be smaller, however near the lines */
 static const double SQUARE = 1e-14;    /* cosine of the angle to the line that is a right one */
+static const double NOTHING_M = 1e-13; /* gain of a further step that is none */
 enum { SAMPLES = 5, STEPS_MOST = 80 };
 
 /* A stretch of this line, within one piece. */
@@ -15,7 +16,7 @@ typedef struct stretch {
     double s[2];           /* natural length within the piece */
     double place[2][3];
     double tension[2][3];
-    double reach;
+    tw_bow bow;
 } stretch;
 
 /* A stretch of the other line: several arcs, or a part of one. */
@@ -23,7 +24,7 @@ typedef struct range {
     size_t node, first, last;
     double u[2];          /* shares of the arc; used where there is one */
     double place[2][3];
-    double reach;
+    tw_bow bow;
 } range;
 
 typedef struct search {
@@ -38,7 +39,7 @@ static double clamp(double value)
     return fmin(fmax(value, 0.0), 1.0);
 }
 
-double tw_spacing_of_chords(const double a0[3], const double a1[3], const double b0[3], const double b1[3])
+void tw_spacing_of_chords(const double a0[3], const double a1[3], const double b0[3], const double b1[3], double off[3])
 {
     double d1[3], d2[3], r[3];
     tw_axpy(a1, -1.0, a0, d1);
@@ -54,29 +55,35 @@ double tw_spacing_of_chords(const double a0[3], const double a1[3], const double
         t = e > 0.0 ? clamp((b * s + f) / e) : 0.0;
     }
     tw_axpy(r, s, d1, r);
-    tw_axpy(r, -t, d2, r);
-    return tw_norm(r);
+    tw_axpy(r, -t, d2, off);
 }
 
-/* A stretch bends one way, so it stays within the triangle of its chord and its end tangents, whose apex is no further than
- * half the chord times the tangent of the larger angle; where it bends far, no further than half its length. */
-static void set_reach(const search *run, stretch *a)
+/* Where a stretch bends one way, it stays within the triangle of its chord and its end tangents, whose apex is no further
+ * than half the chord times the tangent of the larger angle, and lies to the side to which its tangents leave the chord;
+ * where it bends far, it goes no further than half its length. */
+static void set_bow(const search *run, stretch *a)
 {
-    double chord[3], steepest = 0.0;
+    double chord[3], side[2][3], apart[3], steepest = 0.0;
     tw_axpy(a->place[1], -1.0, a->place[0], chord);
-    double length = tw_norm(chord);
-    double natural = a->s[1] - a->s[0];
+    double square = tw_dot(chord, chord);
     double stretched = fmax(tw_norm(a->tension[0]), tw_norm(a->tension[1]));
-    a->reach = 0.5 * natural * tw_material_stretch(run->material, stretched);
+    double most = 0.5 * (a->s[1] - a->s[0]) * tw_material_stretch(run->material, stretched);
     for (int i = 0; i < 2; i++) {
-        const double *t = a->tension[i];
-        const double cross[3] = {chord[1] * t[2] - chord[2] * t[1], chord[2] * t[0] - chord[0] * t[2],
-                                 chord[0] * t[1] - chord[1] * t[0]};
-        double along = tw_dot(chord, t);
-        steepest = fmax(steepest, along > 0.0 ? tw_norm(cross) / along : INFINITY);
+        double along = tw_dot(chord, a->tension[i]);
+        tw_axpy(a->tension[i], square > 0.0 ? -along / square : 0.0, chord, side[i]);
+        double size = tw_norm(side[i]);
+        double angle = along > 0.0 ? size * sqrt(square) / along : INFINITY;
+        steepest = fmax(steepest, angle);
+        for (int k = 0; k < 3; k++) {
+            side[i][k] *= size > 0.0 ? (i ? -1.0 : 1.0) / size : 0.0;
+        }
     }
-    if (steepest <= 1.0) {
-        a->reach = fmin(a->reach, 0.5 * length * steepest);
+    double height = 0.5 * sqrt(square) * steepest;
+    int flat = steepest <= 1.0 && height <= most;
+    tw_axpy(side[1], -1.0, side[0], apart);
+    a->bow.rest = flat ? 0.5 * height * tw_norm(apart) : most;
+    for (int k = 0; k < 3; k++) {
+        a->bow.toward[k] = flat ? height * (side[0][k] + 0.5 * apart[k]) : 0.0;
     }
 }
 
@@ -91,7 +98,7 @@ static stretch half_stretch(const search *run, const stretch *whole, int half)
 {
     stretch a = *whole;
     set_end(run, &a, 1 - half, 0.5 * (whole->s[0] + whole->s[1]));
-    set_reach(run, &a);
+    set_bow(run, &a);
     return a;
 }
 
@@ -102,7 +109,7 @@ static range half_range(const search *run, const range *whole, int half)
     if (whole->last - whole->first == 1) {
         b.u[1 - half] = 0.5 * (whole->u[0] + whole->u[1]);
         tw_curve_at(&arcs[b.first], b.u[1 - half], b.place[1 - half], NULL, NULL);
-        b.reach = tw_curve_arc_reach(&arcs[b.first], b.u[0], b.u[1]);
+        b.bow = tw_curve_arc_bow(&arcs[b.first], b.u[0], b.u[1]);
         return b;
     }
     size_t middle = whole->first + (whole->last - whole->first) / 2;
@@ -110,7 +117,7 @@ static range half_range(const search *run, const range *whole, int half)
     b.first = half ? middle : whole->first;
     b.last = half ? whole->last : middle;
     tw_copy(arcs[middle].position[0], b.place[1 - half]);
-    b.reach = run->other->reach[b.node];
+    b.bow = run->other->bows[b.node];
     return b;
 }
 
@@ -143,36 +150,38 @@ static double nearest(const tw_arc *arc, const range *b, const double point[3], 
     return u;
 }
 
-/* f'(s) of the header, times T/L, and 0 within rounding; keeps the place where it is the nearest so far. */
-static double judge_at(search *run, const range *b, double s)
+/* f'(s) of the header over the distance and the stretch: the cosine of the angle to the line, 0 within rounding. Keeps the
+ * place where it is the nearest so far. */
+static double judge_at(search *run, const range *b, double s, double *distance)
 {
     const tw_arc *arc = &run->other->arcs[b->first];
     double place[3], other[3], off[3], t[3];
     tw_piece_position(run->material, run->piece, s, place);
     double u = nearest(arc, b, place, other);
     tw_axpy(place, -1.0, other, off);
-    double distance = tw_norm(off);
-    if (distance < run->least->distance_m) {
-        run->least->distance_m = distance;
+    *distance = tw_norm(off);
+    if (*distance < run->least->distance_m) {
+        run->least->distance_m = *distance;
         run->least->other_at_m = arc->at_m[0] + u * (arc->at_m[1] - arc->at_m[0]);
         tw_copy(place, run->least->position);
         tw_copy(other, run->least->other_position);
     }
     tw_piece_tension(run->piece, s, t);
-    double rise = tw_dot(t, off);
-    return fabs(rise) > SQUARE * distance * tw_norm(t) ? rise : 0.0;
+    double rise = tw_dot(t, off), square = *distance * tw_norm(t);
+    return fabs(rise) > SQUARE * square ? rise / square : 0.0;
 }
 
-/* f' is below 0 at s0 and above 0 at s1: the Illinois rule, with a bisection now and then. */
+/* f' is below 0 at s0 and above 0 at s1: the Illinois rule, with a bisection now and then, until nothing is left to gain. */
 static void judge_between(search *run, const range *b, double s0, double f0, double s1, double f1)
 {
-    double width = s1 - s0;
     int side = 0;
-    for (int i = 0; i < STEPS_MOST && s1 - s0 > 1e-15 * (fabs(s1) + width); i++) {
+    for (int i = 0; i < STEPS_MOST && s1 - s0 > 1e-15 * fabs(s1); i++) {
+        double distance;
         double s = i % 5 == 4 ? 0.5 * (s0 + s1) : s0 + (s1 - s0) * (f0 / (f0 - f1));
         s = s > s0 && s < s1 ? s : 0.5 * (s0 + s1);
-        double f = judge_at(run, b, s);
-        if (f == 0.0 || s <= s0 || s >= s1) {
+        double cosine = judge_at(run, b, s, &distance);
+        double f = cosine * distance;
+        if (fabs(cosine) * (s1 - s0) <= NOTHING_M || s <= s0 || s >= s1) {
             return;
         }
         if (f < 0.0) {
@@ -194,7 +203,8 @@ static void judge_pair(search *run, const stretch *a, const range *b)
     double before = 0.0;
     for (int i = 0; i < SAMPLES; i++) {
         double s = a->s[0] + (a->s[1] - a->s[0]) * i / (SAMPLES - 1);
-        double f = judge_at(run, b, s);
+        double distance;
+        double f = judge_at(run, b, s, &distance) * distance;
         if (i > 0 && before < 0.0 && f > 0.0) {
             judge_between(run, b, a->s[0] + (a->s[1] - a->s[0]) * (i - 1) / (SAMPLES - 1), before, s, f);
         }
@@ -202,59 +212,69 @@ static void judge_pair(search *run, const stretch *a, const range *b)
     }
 }
 
-static double chord_distance(const stretch *a, const range *b)
+/* Distance of the chords of a pair, and a distance that none between its stretches is below. */
+static double least_possible(const stretch *a, const range *b, double *chords)
 {
-    return tw_spacing_of_chords(a->place[0], a->place[1], b->place[0], b->place[1]);
+    double off[3];
+    tw_spacing_of_chords(a->place[0], a->place[1], b->place[0], b->place[1], off);
+    *chords = tw_norm(off);
+    if (!(*chords > 0.0)) {
+        return 0.0;
+    }
+    double mine = fmin(0.0, tw_dot(off, a->bow.toward)), theirs = fmax(0.0, tw_dot(off, b->bow.toward));
+    return *chords + (mine - theirs) / *chords - a->bow.rest - b->bow.rest;
 }
 
-/* chords: their distance. The half with the nearer chords comes first; what cannot be nearer than found is left out. */
-static void judge_stretches(search *run, const stretch *a, const range *b, double chords)
+/* The half that may be nearer comes first; what cannot be nearer than found is left out. */
+static void judge_stretches(search *run, const stretch *a, const range *b, double possible, double chords)
 {
     double found = run->least->distance_m;
-    if (found <= TW_SPACING_TOUCH || chords - a->reach - b->reach >= found) {
+    if (found <= TW_SPACING_TOUCH || possible >= found - TW_SPACING_NEARER) {
         return;
     }
-    int nearly_straight = a->reach + b->reach <= fmax(FINEST_M, STRAIGHT * chords);
+    double mine = tw_curve_reach(&a->bow), theirs = tw_curve_reach(&b->bow);
+    int nearly_straight = mine + theirs <= fmax(FINEST_M, STRAIGHT * chords);
     if (b->last - b->first == 1 && nearly_straight) {
         judge_pair(run, a, b);
         return;
     }
-    double distance[2];
-    int halve_other = b->reach > a->reach || nearly_straight;
+    double bound[2], distance[2];
     stretch as[2] = {*a, *a};
     range bs[2] = {*b, *b};
     for (int half = 0; half < 2; half++) {
-        if (halve_other) {
+        if (theirs > mine || nearly_straight) {
             bs[half] = half_range(run, b, half);
         } else {
             as[half] = half_stretch(run, a, half);
         }
-        distance[half] = chord_distance(&as[half], &bs[half]);
+        bound[half] = least_possible(&as[half], &bs[half], &distance[half]);
     }
-    int nearer = distance[1] < distance[0];
-    judge_stretches(run, &as[nearer], &bs[nearer], distance[nearer]);
-    judge_stretches(run, &as[1 - nearer], &bs[1 - nearer], distance[1 - nearer]);
+    int nearer = bound[1] < bound[0];
+    judge_stretches(run, &as[nearer], &bs[nearer], bound[nearer], distance[nearer]);
+    judge_stretches(run, &as[1 - nearer], &bs[1 - nearer], bound[1 - nearer], distance[1 - nearer]);
 }
 
-int tw_spacing_least(const tw_section *section, size_t span, const tw_curve *other, tw_spacing *least)
+int tw_spacing_least(const tw_section *section, size_t span, const tw_curve *other, double below_m, tw_spacing *least)
 {
-    tw_spacing found = {.distance_m = INFINITY};
+    tw_spacing found = {.distance_m = below_m};
     const tw_arc *arcs = other->arcs;
-    range whole = {.node = 0, .first = 0, .last = other->arc_count, .u = {0.0, 1.0}, .reach = other->reach[0]};
+    range whole = {.node = 0, .first = 0, .last = other->arc_count, .u = {0.0, 1.0}, .bow = other->bows[0]};
     tw_copy(arcs[0].position[0], whole.place[0]);
     tw_copy(arcs[other->arc_count - 1].position[1], whole.place[1]);
     for (size_t p = section->piece_first[span]; p < section->piece_first[span + 1]; p++) {
         search run = {&section->material, &section->pieces[p], other, &found};
         stretch a;
+        double chords;
         if (!(run.piece->length_m > 0.0)) {
             continue;
         }
         set_end(&run, &a, 0, 0.0);
         set_end(&run, &a, 1, run.piece->length_m);
-        set_reach(&run, &a);
-        judge_stretches(&run, &a, &whole, chord_distance(&a, &whole));
+        set_bow(&run, &a);
+        double possible = least_possible(&a, &whole, &chords);
+        judge_stretches(&run, &a, &whole, possible, chords);
     }
-    if (found.distance_m < INFINITY) {
+    if (found.distance_m < below_m) {
         *least = found;
         return 1;
     }
