@@ -16,9 +16,9 @@ from tautwise.fields import (
     Coordinate,
     Distance,
     Kind,
+    Measure,
     Name,
     PositiveForce,
-    PositiveLength,
     Prose,
     Sag,
     Share,
@@ -151,7 +151,7 @@ class ConditionPairs(Kind):
     @staticmethod
     def _name(name: Words, key: Any, other: Any) -> str:
         try:
-            return name.read(other)
+            return str(name.read(other))
         except Refused as refused:
             raise Refused(f"{shown(str(key))}: {refused.problem}") from None
 
@@ -169,7 +169,7 @@ class SpacingLimit(BaseLimit):
 
     kind: Literal["spacing"]
     other: Annotated[str, Words("a project file", "upper_wire.taut.toml")]
-    least: PositiveLength
+    least: Annotated[float, Measure("m", "1.2 m", above=0.0)]
     other_condition: Name | None = None
     other_conditions: Annotated[Any, ConditionPairs()] = None
     shift: Shift = Shift()
@@ -177,7 +177,8 @@ class SpacingLimit(BaseLimit):
 
     def other_condition_for(self, name: str) -> str:
         """The other line's condition beside one of this line: its own, one for all, or that of the same name."""
-        return dict(self.other_conditions or ()).get(name, self.other_condition or name)
+        pairs: dict[str, str] = dict(self.other_conditions or ())
+        return pairs.get(name, self.other_condition or name)
 
 
 Limit = Annotated[

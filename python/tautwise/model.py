@@ -59,8 +59,9 @@ class Project(BaseModel):
     line, ground (or None), stringing: the tables.
     supports, crossings, conditions, marks, limits: the arrays of tables, in the order of the file.
     source: the project file as the user named it; None for keyword arguments.
-    input_sha256: the SHA-256 of the file. With included files or a ground profile: of the lines "HASH  NAME" of all of
-        them, and of those of the lines that a spacing keeps from, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
+    input_sha256: the SHA-256 of the file. With included files, a ground profile, or projects that a spacing keeps from:
+        of the lines "HASH  NAME" of all of them, as ``sha256sum`` prints them. For keyword arguments: of their
+        canonical JSON.
     warnings: values that can be read but are hardly meant, one line each.
 
     Raises
@@ -262,7 +263,8 @@ def _digest(sources: list[Source]) -> str:
     if len(sources) == 1:
         return sources[0].sha256
     folder = Path(sources[0].name).parent
-    lines = (f"{source.sha256}  {os.path.relpath(source.name, folder)}\n" for source in sources)
+    names = (os.path.relpath(source.name, folder) if source.name else "" for source in sources)
+    lines = (f"{source.sha256}  {name}\n" for source, name in zip(sources, names, strict=True))
     return hashlib.sha256("".join(lines).encode()).hexdigest()
 
 

@@ -58,9 +58,9 @@ def neighbour_of(project: Project, condition: str) -> Neighbour:
     InputError: its natural lengths leave it slack, or the like, at the keys of its file.
     NotSettledError: no equilibrium within tolerance.
     """
-    from tautwise.solve import core_of, settle
+    from tautwise.solve import line_core_of, settle
 
     settled: Any = settle(project, condition)
     lengths = [span.natural_length_m for span in settled.spans]
-    arcs = core_of(project).curve(project.condition_index(condition))
+    arcs = line_core_of(project).curve(project.condition_index(condition))
     return Neighbour(arcs, tuple(support.name for support in project.supports), tuple(accumulate(lengths)))

@@ -55,10 +55,10 @@ class LineOrigin:
         return scenery_of(self.project, self.condition)
 
     def _problem(self) -> Any:
-        from tautwise.solve import core_of
+        from tautwise.solve import line_core_of
 
         if self._core is None:
-            self._core = core_of(self.project)
+            self._core = line_core_of(self.project)
         return self._core
 
     def _ground(self, stations: Any) -> Any:
@@ -85,7 +85,7 @@ class Judge:
         from tautwise.solve import core_of, errors_of
 
         if self._core is None:
-            self._core = core_of(self.project, judging=True)
+            self._core = core_of(self.project)
         limits, conditions = self.project.limits, self.project.conditions
         try:
             with errors_of(self.project, pull_N):

@@ -98,7 +98,7 @@ def _pull_rule(checked: Checked, path: KeyPath, other: Project) -> None:
 
 
 def _condition_rule(checked: Checked, number: int, limit: SpacingLimit, other: Project) -> None:
-    """Conditions that exist: of this line on the left of `other_conditions`, of the other on its right and elsewhere."""
+    """Conditions that exist: of this line left in `other_conditions`, of the other right there and elsewhere."""
     path: KeyPath = ("limit", number)
     here = [name for name in checked.names("condition") if name]
     there = [condition.name for condition in other.conditions]
@@ -120,4 +120,5 @@ def _condition_rule(checked: Checked, number: int, limit: SpacingLimit, other: P
         if name in here and name not in pairs and name not in there:
             problem = f'the other line has no condition "{shown(name)}"; its conditions are {listed}'
             expected = "other_condition, or other_conditions with one for each of this line"
-            checked.fault((*path, "other"), problem, expected, f'other_conditions = {{ "{shown(name)}" = {listed.split(", ")[0]} }}')
+            example = f'other_conditions = {{ "{shown(name)}" = "{shown(there[0])}" }}'
+            checked.fault((*path, "other"), problem, expected, example)

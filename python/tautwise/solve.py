@@ -59,7 +59,7 @@ def settle(project: Project, condition: str | None = None, *, pull: Pull = None,
     """
     index = _condition_index(project, condition)
     newtons = pull_of(project, pull)
-    core = core_of(project)
+    core = line_core_of(project)
     require_places(project, core, newtons)
     found = _settled(project, core, index, newtons, options)
     if not found.settled:
@@ -71,7 +71,7 @@ def settle(project: Project, condition: str | None = None, *, pull: Pull = None,
 def settle_all(project: Project, *, pull: Pull = None, **options: Any) -> tuple[Equilibrium, ...]:
     """The equilibrium in every condition, in the order of the file; one that does not settle says so in its status."""
     newtons = pull_of(project, pull)
-    core = core_of(project)
+    core = line_core_of(project)
     require_places(project, core, newtons)
     return tuple(_settled(project, core, index, newtons, options) for index in range(len(project.conditions)))
 
@@ -96,7 +96,7 @@ def strung(project: Project, *, pull: Pull = None) -> StrungState:
     """The line as strung: the pull and the natural length of each span."""
     newtons = pull_of(project, pull)
     with errors_of(project, newtons, AS_STRUNG):
-        found = core_of(project).string(pull=newtons)
+        found = line_core_of(project).string(pull=newtons)
     return StrungState(
         project.stringing.temperature_degC,
         finite(found["horizontal_tension_N"]),
@@ -117,7 +117,7 @@ def window(project: Project, **options: Any) -> PullWindow:
     NotSettledError: the search ended without an answer that could be verified.
     SearchCancelled: Ctrl-C; its `best` is what had been found, or None.
     """
-    core = core_of(project, judging=True)
+    core = core_of(project)
     with errors_of(project):
         try:
             found = core.window(**options)
@@ -137,7 +137,7 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False) -> VetRepor
     every: a row for each limit and condition, instead of one for each limit with its worst condition.
     """
     newtons = pull_of(project, pull)
-    core = core_of(project, judging=True)
+    core = core_of(project)
     require_places(project, core, newtons)
     with errors_of(project, newtons, AS_STRUNG):
         rows = core.judge(pull=newtons)
@@ -155,15 +155,22 @@ def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
     return _verdict(project, limit_states(project, (), every=False, reason=lambda row: reason), given)
 
 
-def core_of(project: Project, *, judging: bool = False) -> _core.Project:
-    """The problem in the core; only for `judging` with the other lines that spacings keep from.
+def core_of(project: Project) -> _core.Project:
+    """The problem in the core, with the other lines that spacings keep from.
 
     Raises
     ------
     InputError: a number is outside its range; the fault names the key of the project file.
     NotSettledError: another line could not be settled.
     """
-    problem = project.to_core(judging)
+    problem = project.to_core()
+    with errors_of(project):
+        return _core.Project(problem)
+
+
+def line_core_of(project: Project) -> _core.Project:
+    """As `core_of`, without other lines and spacings: all that it takes to settle the line."""
+    problem = project.to_core(judging=False)
     with errors_of(project):
         return _core.Project(problem)
 
@@ -245,7 +252,7 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
     InputError: always.
     """
     if pull is not None or _has_stringing(project):
-        require_places(project, core_of(project), pull)
+        require_places(project, line_core_of(project), pull)
         faults = off_faults(project, *_strung_range(project, pull))
     else:
         faults = beyond_faults(project, math.fsum(chords_m(project)), "about its length")

@@ -11,8 +11,8 @@ import numpy as np
 
 from . import limits, loads
 from .quadrature import Array
-from .spacing import Beside
 from .section import Section, Settled, Support, settle_section
+from .spacing import Beside
 from .span import Material, Piece
 from .states import span_state, support_state
 from .stringing import Strung, pull_by_rule, string_to

@@ -1,4 +1,4 @@
-"""The least distance in space between a span and another line: dense samples, then golden section within golden section."""
+"""The least distance in space between a span and another line: samples, then golden section in golden section."""
 
 from __future__ import annotations
 
@@ -27,16 +27,19 @@ class Beside:
 
 def least_spacing(settled: Settled, span: int, beside: Beside) -> float:
     """The least distance, m, of a span from every span of the other line."""
-    hung, start = settled.spans[span], settled.clamps[span]
+    mine, length_m = curve_of(settled, span), settled.spans[span].length_m
+    others = range(len(beside.settled.spans))
     return min(
-        least_distance(
-            lambda s: start + hung.position_at(s),
-            hung.length_m,
-            lambda u, other=other, origin=origin: origin + other.position_at(u),
-            other.length_m,
-        )
-        for other, origin in zip(beside.settled.spans, beside.settled.clamps + beside.shift, strict=False)
+        least_distance(mine, length_m, curve_of(beside.settled, k, beside.shift), beside.settled.spans[k].length_m)
+        for k in others
     )
+
+
+def curve_of(settled: Settled, span: int, shift: Array | None = None) -> Callable[[float], Array]:
+    """Position on a span, m, as a function of the natural length from its start."""
+    hung, start = settled.spans[span], settled.clamps[span]
+    moved = start if shift is None else start + shift
+    return lambda s: np.asarray(moved + hung.position_at(s))
 
 
 def least_distance(
