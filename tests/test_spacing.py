@@ -57,7 +57,7 @@ def test_the_same_line_beside_itself(offset):
 
 @pytest.mark.parametrize("rise", [0.3, 5.0])
 def test_the_same_line_above_itself(rise):
-    """Least where the line is steepest: from the lower line's end to the nearest place above, by Irvine's closed form."""
+    """Least where it is steepest, from the lower end to the nearest place above: by Irvine's closed form."""
     weight, stiffness, length = 15.97, 34.7e6, 300.8
     row = spacing(level(), level(), (0.0, 0.0, rise))
     pull = _core.Project(level()).settle(0)["spans"][0]["horizontal_tension_N"]

@@ -94,7 +94,7 @@ def test_conditions_of_the_same_name(tmp_path):
     ],
 )
 def test_conditions_that_are_chosen(tmp_path, keys, lower, upper):
-    """The nearest is the cold lower line beside the hot upper one; at mid-span nearly 2 m and the difference of sags."""
+    """Mid-span is the nearest, but for hot beside cold: nearly 2 m and the difference of the sags."""
     project = tw.load(written(tmp_path, with_keys(*keys)))
     other = tw.load(tmp_path / "upper.taut.toml")
     sags = project.settle(lower).spans[0].sag_m, other.settle(upper).spans[0].sag_m
