@@ -24,7 +24,7 @@ CORE_LAYERS = (
     {"check", "material", "load", "hold"},
     {"span", "uniform"},
     {"section", "stringing"},
-    {"ground", "energy", "curve", "spacing"},
+    {"ground", "energy", "course", "spacing"},
     {"limit"},
     {"trial"},
 )

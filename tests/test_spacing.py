@@ -21,12 +21,12 @@ NEAR = 1e-9
 
 def beside(problem, other, shift=(0.0, 0.0, 0.0), *, condition=0, least=1.0, **keys):
     """A problem with a spacing from another one's line in one of its conditions, in every condition of ours."""
-    curve = _core.Project(other).curve(condition)
+    curve = _core.Project(other).course(condition)
     curve[:, 2:8] += np.tile(shift, 2)
     told = copy.deepcopy(problem)
-    limit = cases.limit("spacing", least=least, curves=[0] * len(told["conditions"]), **keys)
+    limit = cases.limit("spacing", least=least, courses=[0] * len(told["conditions"]), **keys)
     told["limits"] = [*told["limits"], cases.complete(limit, len(told["conditions"]), len(told["supports"]))]
-    told["curves"] = [curve]
+    told["courses"] = [curve]
     return told
 
 
@@ -260,14 +260,14 @@ def test_spans_that_are_covered():
     assert spacing(mine, other, covers=[False] * 3)["status"] == "undecided"
 
 
-# --- curves
+# --- courses
 
 
 @pytest.mark.parametrize("slack", [0.9999, 1.0005, 1.05, 1.8])
 def test_arcs_are_good_to_their_promise(slack):
     """Middles of the arcs against the exact line, from bar-tight to hanging deep: 1e-10 m and rounding."""
     problem = level(length=300.0 * slack)
-    arcs = _core.Project(problem).curve(0)
+    arcs = _core.Project(problem).course(0)
     at, _ = on_line(problem)
     bend = ((arcs[:, 1] - arcs[:, 0]) / 8.0)[:, None] * (arcs[:, 8:11] - arcs[:, 11:14])
     middle = 0.5 * (arcs[:, 2:5] + arcs[:, 5:8]) + bend
@@ -287,15 +287,15 @@ def test_arcs_are_good_to_their_promise(slack):
 )
 def test_curves_that_are_none(change, error):
     told = beside(level(), level(), (0.0, 2.0, 0.0))
-    told["curves"] = [change(told["curves"][0])]
+    told["courses"] = [change(told["courses"][0])]
     with pytest.raises(error):
         _core.Project(told)
 
 
-@pytest.mark.parametrize("curves", [None, [None], [1], [0, 0], 5])
-def test_a_spacing_needs_its_curve(curves):
+@pytest.mark.parametrize("courses", [None, [None], [1], [0, 0], 5])
+def test_a_spacing_needs_its_curve(courses):
     told = beside(level(), level(), (0.0, 2.0, 0.0))
-    told["limits"][0]["curves"] = curves
+    told["limits"][0]["courses"] = courses
     with pytest.raises((_core.RangeError, ValueError, TypeError)):
         _core.Project(told)
 

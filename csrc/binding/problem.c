@@ -5,7 +5,7 @@
 #include <string.h>
 
 #include "check.h"
-#include "curves.h"
+#include "courses.h"
 #include "fields.h"
 
 static const char *const hold_names[] = {"anchor", "hanger", "sheave", "post", NULL};
@@ -17,12 +17,12 @@ static const char *const direction_names[] = {"along", "across", "down", "up", "
 static const char *const rule_names[] = {"pull", "tension", "sag", "total_length", "span_lengths", "none", NULL};
 
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
-                                           "stringing", "curves", NULL};
+                                           "stringing", "courses", NULL};
 static const char *const support_keys[] = {"hold", NULL};
 static const char *const condition_keys[] = {"loads", NULL};
 static const char *const load_keys[] = {"is_point", "place", "frame", "vector", NULL};
 static const char *const mark_keys[] = {"place", NULL};
-static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", "curves", NULL};
+static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", "courses", NULL};
 static const char *const stringing_keys[] = {"rule", "index", "lengths_m", NULL};
 
 void tw_problem_free(problem *in)
@@ -37,7 +37,7 @@ void tw_problem_free(problem *in)
     PyMem_Free(in->applies);
     PyMem_Free(in->covers);
     PyMem_Free(in->lengths);
-    tw_curves_free(in);
+    tw_courses_free(in);
     memset(in, 0, sizeof *in);
 }
 
@@ -334,7 +334,7 @@ static int read_limit(PyObject *row, size_t index, problem *out)
     if (read_flags(row, "applies", out->applies + index * conditions, conditions) < 0) {
         return -1;
     }
-    if (tw_curves_read_limit(row, index, out) < 0) {
+    if (tw_courses_read_limit(row, index, out) < 0) {
         return -1;
     }
     return read_flags(row, "covers", out->covers + index * supports, supports);
@@ -350,7 +350,7 @@ static int read_limits(PyObject *dict, problem *out)
     out->project.limit_count = count;
     out->project.limit_applies = out->applies;
     out->project.limit_covers = out->covers;
-    out->project.limit_curve = out->limit_curve;
+    out->project.limit_course = out->limit_course;
     return 0;
 }
 
@@ -443,7 +443,7 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
         return -1;
     }
     if (read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
-        || read_marks(dict, out) < 0 || tw_curves_read(dict, out) < 0 || read_limits(dict, out) < 0
+        || read_marks(dict, out) < 0 || tw_courses_read(dict, out) < 0 || read_limits(dict, out) < 0
         || read_part(dict, "stringing", read_rule, out) < 0) {
         return -1;
     }

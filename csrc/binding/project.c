@@ -6,7 +6,7 @@
 
 #include "answer.h"
 #include "check.h"
-#include "curves.h"
+#include "courses.h"
 #include "fields.h"
 #include "module.h"
 #include "places.h"
@@ -343,14 +343,14 @@ static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywo
     return result;
 }
 
-static PyObject *project_curve(PyObject *object, PyObject *args, PyObject *keywords)
+static PyObject *project_course(PyObject *object, PyObject *args, PyObject *keywords)
 {
     project_object *self = (project_object *)object;
     Py_ssize_t condition;
     double pull;
     tw_options options;
     const tw_section *section = NULL;
-    if (!PyArg_ParseTuple(args, "n:curve", &condition) || condition_index(self, condition) < 0
+    if (!PyArg_ParseTuple(args, "n:course", &condition) || condition_index(self, condition) < 0
         || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
@@ -359,7 +359,7 @@ static PyObject *project_curve(PyObject *object, PyObject *args, PyObject *keywo
         return PyErr_NoMemory();
     }
     tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-    PyObject *result = status == TW_OK ? tw_curves_along(section) : raise_status(self, status);
+    PyObject *result = status == TW_OK ? tw_courses_along(section) : raise_status(self, status);
     tw_trial_free(trial);
     return result;
 }
@@ -452,8 +452,8 @@ static PyMethodDef project_methods[] = {
      "judge(*, pull=None, **options) -> list of dicts, one per limit and condition it applies to."},
     {"shape", (PyCFunction)(void (*)(void))project_shape, METH_VARARGS | METH_KEYWORDS,
      "shape(condition, points=200, *, pull=None) -> dict of arrays along the exact line, points a span."},
-    {"curve", (PyCFunction)(void (*)(void))project_curve, METH_VARARGS | METH_KEYWORDS,
-     "curve(condition, *, pull=None) -> array (arcs, 14): the exact line as another project's `curves`."},
+    {"course", (PyCFunction)(void (*)(void))project_course, METH_VARARGS | METH_KEYWORDS,
+     "course(condition, *, pull=None) -> array (arcs, 14): the exact line as another project's `courses`."},
     {"at", (PyCFunction)(void (*)(void))project_at, METH_VARARGS | METH_KEYWORDS,
      "at(condition, stations, *, pull=None) -> dict of arrays at the stations; NaN where the line does not pass."},
     {"window", (PyCFunction)(void (*)(void))project_window, METH_VARARGS | METH_KEYWORDS,

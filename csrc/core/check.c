@@ -268,20 +268,20 @@ static tw_status check_clearance(const tw_project *p, size_t i, tw_fault *fault)
     return TW_OK;
 }
 
-static tw_status check_curve(const tw_curve *curve, size_t index, tw_fault *fault)
+static tw_status check_course(const tw_course *course, size_t index, tw_fault *fault)
 {
-    for (size_t i = 0; i < curve->arc_count; i++) {
-        const tw_arc *arc = &curve->arcs[i];
+    for (size_t i = 0; i < course->arc_count; i++) {
+        const tw_arc *arc = &course->arcs[i];
         int right = isfinite(arc->at_m[0]) && arc->at_m[1] > arc->at_m[0] && isfinite(arc->at_m[1]);
         for (int k = 0; k < 6; k++) {
             right &= fabs(arc->position[k / 3][k % 3]) <= 1e8 && fabs(arc->slope[k / 3][k % 3]) <= 1e3;
             right &= i == 0 || k >= 3 || arc->position[0][k] == arc[-1].position[1][k];
         }
         if (!right) {
-            return fail(fault, "curves", index, "arcs", "finite arcs along the line that join end to end");
+            return fail(fault, "courses", index, "arcs", "finite arcs along the line that join end to end");
         }
     }
-    return curve->arc_count > 0 ? TW_OK : fail(fault, "curves", index, "arcs", "at least one arc");
+    return course->arc_count > 0 ? TW_OK : fail(fault, "courses", index, "arcs", "at least one arc");
 }
 
 /* A distance to keep, and a line to keep it from wherever the limit is judged. */
@@ -293,8 +293,8 @@ static tw_status check_spacing(const tw_project *p, size_t i, tw_fault *fault)
     }
     for (size_t c = 0; c < p->condition_count; c++) {
         size_t row = i * p->condition_count + c;
-        if (p->limit_applies[row] && (p->curve_count == 0 || p->limit_curve[row] >= p->curve_count)) {
-            return fail(fault, "limits", i, "curves", "another line's curve for every condition of the limit");
+        if (p->limit_applies[row] && (p->course_count == 0 || p->limit_course[row] >= p->course_count)) {
+            return fail(fault, "limits", i, "courses", "another line's course for every condition of the limit");
         }
     }
     return TW_OK;
@@ -412,8 +412,8 @@ tw_status tw_check_project(const tw_project *project, tw_fault *fault)
             status = fail(fault, "crossings", k, "to_m", "a station beyond from");
         }
     }
-    for (size_t i = 0; status == TW_OK && i < project->curve_count; i++) {
-        status = check_curve(&project->curves[i], i, fault);
+    for (size_t i = 0; status == TW_OK && i < project->course_count; i++) {
+        status = check_course(&project->courses[i], i, fault);
     }
     for (size_t i = 0; status == TW_OK && i < project->limit_count; i++) {
         status = check_limit(project, i, fault);

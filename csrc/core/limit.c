@@ -52,7 +52,7 @@ static void judge_clearance(const tw_limit *limit, const tw_section *section, si
 
 /* What a spacing keeps from, and the distance that matters no more. */
 typedef struct keep_from {
-    const tw_curve *other;
+    const tw_course *other;
     double below_m;
 } keep_from;
 
@@ -191,11 +191,11 @@ static void judge_support(const tw_project *project, const tw_limit *limit, cons
 }
 
 /* The other line of a spacing in a condition; NULL where there is none. */
-static const tw_curve *curve_of(const tw_project *project, size_t limit, size_t condition)
+static const tw_course *course_of(const tw_project *project, size_t limit, size_t condition)
 {
     size_t row = limit * project->condition_count + condition;
-    size_t curve = project->curve_count > 0 ? project->limit_curve[row] : TW_NONE;
-    return curve < project->curve_count ? &project->curves[curve] : NULL;
+    size_t course = project->course_count > 0 ? project->limit_course[row] : TW_NONE;
+    return course < project->course_count ? &project->courses[course] : NULL;
 }
 
 static int looks_at_supports(tw_limit_kind kind)
@@ -208,7 +208,7 @@ tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condit
 {
     const tw_limit *rule = &project->limits[limit];
     const unsigned char *covers = project->limit_covers + limit * project->support_count;
-    const tw_curve *other = curve_of(project, limit, condition);
+    const tw_course *other = course_of(project, limit, condition);
     int supports = looks_at_supports(rule->kind);
     size_t count = supports ? project->support_count : section->span_count;
     const tw_verdict nowhere = {.span = TW_NONE,

@@ -154,11 +154,11 @@ typedef struct tw_bow {
 } tw_bow;
 
 /* Another line, hung in a condition of its own: arcs that join end to end. */
-typedef struct tw_curve {
+typedef struct tw_course {
     size_t arc_count; /* >= 1 */
     const tw_arc *arcs;
-    const tw_bow *bows; /* [2 arc_count - 1]: what tw_curve_bows found */
-} tw_curve;
+    const tw_bow *bows; /* [2 arc_count - 1]: what tw_course_bows found */
+} tw_course;
 
 /* The whole problem. Arrays are borrowed and must outlive every call. */
 typedef struct tw_project {
@@ -181,10 +181,10 @@ typedef struct tw_project {
     const unsigned char *limit_applies; /* [limit_count][condition_count]: the limit is judged in the condition */
     const unsigned char *limit_covers;  /* [limit_count][support_count]: it looks at the support, or at the span that
                                            starts there (tension, sag, slope, catenary constant, clearance, spacing) */
-    size_t curve_count;                 /* 0 where no limit is a spacing */
-    const tw_curve *curves;
-    const size_t *limit_curve;          /* [limit_count][condition_count]: of a spacing, the curve to keep from in the
-                                           condition, else TW_NONE; NULL where curve_count is 0 */
+    size_t course_count;                 /* 0 where no limit is a spacing */
+    const tw_course *courses;
+    const size_t *limit_course;          /* [limit_count][condition_count]: of a spacing, the course to keep from in the
+                                           condition, else TW_NONE; NULL where course_count is 0 */
     tw_stringing stringing;
 } tw_project;
 

@@ -2,7 +2,7 @@
 
 #include <math.h>
 
-#include "curve.h"
+#include "course.h"
 #include "vector.h"
 
 static const double STRAIGHT = 1e-3;   /* reaches over the distance: below it two stretches are compared at once */
@@ -30,7 +30,7 @@ typedef struct range {
 typedef struct search {
     const tw_material *material;
     const tw_piece *piece; /* of this line */
-    const tw_curve *other;
+    const tw_course *other;
     tw_spacing *least;
 } search;
 
@@ -108,8 +108,8 @@ static range half_range(const search *run, const range *whole, int half)
     range b = *whole;
     if (whole->last - whole->first == 1) {
         b.u[1 - half] = 0.5 * (whole->u[0] + whole->u[1]);
-        tw_curve_at(&arcs[b.first], b.u[1 - half], b.place[1 - half], NULL, NULL);
-        b.bow = tw_curve_arc_bow(&arcs[b.first], b.u[0], b.u[1]);
+        tw_course_at(&arcs[b.first], b.u[1 - half], b.place[1 - half], NULL, NULL);
+        b.bow = tw_course_arc_bow(&arcs[b.first], b.u[0], b.u[1]);
         return b;
     }
     size_t middle = whole->first + (whole->last - whole->first) / 2;
@@ -131,7 +131,7 @@ static double nearest(const tw_arc *arc, const range *b, const double point[3], 
     double square = tw_dot(chord, chord);
     double u = low + (high - low) * (square > 0.0 ? clamp(tw_dot(off, chord) / square) : 0.5);
     for (int i = 0; i < STEPS_MOST; i++) {
-        tw_curve_at(arc, u, place, slope, bend);
+        tw_course_at(arc, u, place, slope, bend);
         tw_axpy(place, -1.0, point, off);
         double rise = tw_dot(slope, off);
         double rate = tw_dot(slope, slope) + tw_dot(bend, off);
@@ -232,7 +232,7 @@ static void judge_stretches(search *run, const stretch *a, const range *b, doubl
     if (found <= TW_SPACING_TOUCH || possible >= found - TW_SPACING_NEARER) {
         return;
     }
-    double mine = tw_curve_reach(&a->bow), theirs = tw_curve_reach(&b->bow);
+    double mine = tw_course_reach(&a->bow), theirs = tw_course_reach(&b->bow);
     int nearly_straight = mine + theirs <= fmax(FINEST_M, STRAIGHT * chords);
     if (b->last - b->first == 1 && nearly_straight) {
         judge_pair(run, a, b);
@@ -254,7 +254,7 @@ static void judge_stretches(search *run, const stretch *a, const range *b, doubl
     judge_stretches(run, &as[1 - nearer], &bs[1 - nearer], bound[1 - nearer], distance[1 - nearer]);
 }
 
-int tw_spacing_least(const tw_section *section, size_t span, const tw_curve *other, double below_m, tw_spacing *least)
+int tw_spacing_least(const tw_section *section, size_t span, const tw_course *other, double below_m, tw_spacing *least)
 {
     tw_spacing found = {.distance_m = below_m};
     const tw_arc *arcs = other->arcs;

@@ -6,7 +6,7 @@
  * than what was found, and the stretches are nearly straight beside their distance, the least of
  *     f(s) = min_u |a(s) - b(u)|^2 / 2,   f'(s) = a'(s) . (a(s) - b(u(s)))
  * lies at an end or where f' turns from falling to rising: bracketed and found by safeguarded steps. a is the exact line, b
- * the other's cubic arcs (see curve).
+ * the other's cubic arcs (see course).
  */
 #ifndef TW_SPACING_H
 #define TW_SPACING_H
@@ -29,7 +29,7 @@ typedef struct tw_spacing {
 
 /* Least distance of a span where it is less than `below_m` (infinity: any). Returns 0, and writes nothing, where it is not,
  * and where the span has no length. */
-int tw_spacing_least(const tw_section *section, size_t span, const tw_curve *other, double below_m, tw_spacing *least);
+int tw_spacing_least(const tw_section *section, size_t span, const tw_course *other, double below_m, tw_spacing *least);
 
 /* What leads from the straight stretch b0 to b1 to a0 to a1 where they are closest (C. Ericson, Real-Time Collision
  * Detection, 2005, 5.1.9). */

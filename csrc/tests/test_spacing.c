@@ -6,7 +6,7 @@
 
 #include "cases.h"
 #include "check.h"
-#include "curve.h"
+#include "course.h"
 #include "expect.h"
 #include "limit.h"
 #include "vector.h"
@@ -16,19 +16,19 @@ static tw_arc arcs[ARCS_MOST];
 static tw_bow bows[2 * ARCS_MOST];
 
 /* Arcs of a section, moved. */
-static tw_curve curve_of(const tw_section *s, double x, double y, double z)
+static tw_course course_of(const tw_section *s, double x, double y, double z)
 {
     const double by[3] = {x, y, z};
-    size_t count = tw_curve_arcs(s, NULL);
+    size_t count = tw_course_arcs(s, NULL);
     CHECK(count > 0 && count <= ARCS_MOST);
-    CHECK(tw_curve_arcs(s, arcs) == count);
+    CHECK(tw_course_arcs(s, arcs) == count);
     for (size_t i = 0; i < count; i++) {
         tw_axpy(arcs[i].position[0], 1.0, by, arcs[i].position[0]);
         tw_axpy(arcs[i].position[1], 1.0, by, arcs[i].position[1]);
     }
-    tw_curve_bows(arcs, 0, 0, count, bows);
-    const tw_curve curve = {count, arcs, bows};
-    return curve;
+    tw_course_bows(arcs, 0, 0, count, bows);
+    const tw_course course = {count, arcs, bows};
+    return course;
 }
 
 static tw_section *make_span(tw_case *c, double span_m, double rise_m, double length_m)
@@ -40,7 +40,7 @@ static tw_section *make_span(tw_case *c, double span_m, double rise_m, double le
 }
 
 /* f is bent 1e-7 of itself by a coarse grid, and never below the search's answer. */
-static double brute(const tw_section *s, const tw_curve *other, size_t samples)
+static double brute(const tw_section *s, const tw_course *other, size_t samples)
 {
     double least = INFINITY, total = 0.0, r[3], place[3], off[3];
     for (size_t k = 0; k < s->span_count; k++) {
@@ -50,7 +50,7 @@ static double brute(const tw_section *s, const tw_curve *other, size_t samples)
         tw_section_at(s, total * (double)i / (double)samples, r, NULL);
         for (size_t j = 0; j < other->arc_count; j++) {
             for (int u = 0; u <= 2; u++) {
-                tw_curve_at(&other->arcs[j], 0.5 * u, place, NULL, NULL);
+                tw_course_at(&other->arcs[j], 0.5 * u, place, NULL, NULL);
                 tw_axpy(r, -1.0, place, off);
                 least = fmin(least, tw_norm(off));
             }
@@ -59,7 +59,7 @@ static double brute(const tw_section *s, const tw_curve *other, size_t samples)
     return least;
 }
 
-static double least_of(const tw_section *s, const tw_curve *other)
+static double least_of(const tw_section *s, const tw_course *other)
 {
     double least = INFINITY;
     for (size_t k = 0; k < s->span_count; k++) {
@@ -83,7 +83,7 @@ static double chords(const double a0[3], const double a1[3], const double b0[3],
 static double off_chord(const double point[3], const double a[3], const double b[3])
 {
     double off[3];
-    tw_curve_off_chord(point, a, b, off);
+    tw_course_off_chord(point, a, b, off);
     return tw_norm(off);
 }
 
@@ -124,11 +124,11 @@ static void test_arcs_follow_the_line(void)
     case_ready(&c);
     tw_section *s = case_hung(&c, c.project.condition_count - 1);
     CHECK(s != NULL);
-    tw_curve curve = curve_of(s, 0.0, 0.0, 0.0);
+    tw_course course = course_of(s, 0.0, 0.0, 0.0);
     double worst = 0.0;
-    for (size_t i = 0; i < curve.arc_count; i++) {
+    for (size_t i = 0; i < course.arc_count; i++) {
         double r[3], place[3];
-        tw_curve_at(&arcs[i], 0.5, place, NULL, NULL);
+        tw_course_at(&arcs[i], 0.5, place, NULL, NULL);
         tw_section_at(s, 0.5 * (arcs[i].at_m[0] + arcs[i].at_m[1]), r, NULL);
         tw_axpy(r, -1.0, place, r);
         worst = fmax(worst, tw_norm(r));
@@ -142,21 +142,21 @@ static void test_arcs_follow_the_line(void)
 
 /* Every arc lies within the bow of every run that holds it, in any direction n: no place of it goes further along n than
  * the chord's ends, its share of the bow and the rest. */
-static void check_bow(const tw_curve *curve, size_t node, size_t first, size_t last, const double n[3])
+static void check_bow(const tw_course *course, size_t node, size_t first, size_t last, const double n[3])
 {
-    const tw_bow *bow = &curve->bows[node];
-    const double *a = curve->arcs[first].position[0], *b = curve->arcs[last - 1].position[1];
+    const tw_bow *bow = &course->bows[node];
+    const double *a = course->arcs[first].position[0], *b = course->arcs[last - 1].position[1];
     double most = fmax(tw_dot(n, a), tw_dot(n, b)) + fmax(0.0, tw_dot(n, bow->toward)) + bow->rest;
     for (size_t i = first; i < last; i++) {
         double place[3];
-        tw_curve_at(&curve->arcs[i], 0.37, place, NULL, NULL);
+        tw_course_at(&course->arcs[i], 0.37, place, NULL, NULL);
         CHECK(tw_dot(n, place) <= most + 1e-12);
-        CHECK(off_chord(place, a, b) <= tw_curve_reach(bow) + 1e-12);
+        CHECK(off_chord(place, a, b) <= tw_course_reach(bow) + 1e-12);
     }
     if (last - first > 1) {
         size_t middle = first + (last - first) / 2;
-        check_bow(curve, node + 1, first, middle, n);
-        check_bow(curve, node + 2 * (middle - first), middle, last, n);
+        check_bow(course, node + 1, first, middle, n);
+        check_bow(course, node + 2 * (middle - first), middle, last, n);
     }
 }
 
@@ -166,14 +166,14 @@ static void test_bows_hold_what_they_say(void)
     unsigned long long seed = 3;
     case_route(&c);
     tw_section *s = case_hung(&c, 0);
-    tw_curve curve = curve_of(s, 0.0, 0.0, 0.0);
+    tw_course course = course_of(s, 0.0, 0.0, 0.0);
     for (int k = 0; k < 6; k++) {
         double n[3] = {0.1 * check_draw(&seed), check_draw(&seed), check_draw(&seed)};
         double size = tw_norm(n);
         for (int i = 0; i < 3; i++) {
             n[i] /= size;
         }
-        check_bow(&curve, 0, 0, curve.arc_count, n);
+        check_bow(&course, 0, 0, course.arc_count, n);
     }
     tw_section_free(s);
 }
@@ -183,11 +183,11 @@ static void test_the_same_line_beside_itself(void)
     tw_case c;
     tw_section *s = make_span(&c, 300.0, 12.0, 301.5);
     for (double y = 1e-3; y < 100.0; y *= 7.0) {
-        tw_curve curve = curve_of(s, 0.0, y, 0.0);
-        CHECK_NEAR(least_of(s, &curve), y, 2.0 * TW_SPACING_NEARER);
+        tw_course course = course_of(s, 0.0, y, 0.0);
+        CHECK_NEAR(least_of(s, &course), y, 2.0 * TW_SPACING_NEARER);
     }
-    tw_curve curve = curve_of(s, 0.0, 0.0, 0.0);
-    CHECK(least_of(s, &curve) <= TW_SPACING_TOUCH);
+    tw_course course = course_of(s, 0.0, 0.0, 0.0);
+    CHECK(least_of(s, &course) <= TW_SPACING_TOUCH);
     tw_section_free(s);
 }
 
@@ -205,8 +205,8 @@ static void test_drawn_pairs(void)
         double slack = 1.0005 + 0.05 * (1.0 + check_draw(&seed));
         tw_section *s = make_span(&c, span, rise, hypot(span, rise) * slack);
         CHECK(s != NULL);
-        tw_curve curve = curve_of(other, -300.0 + 300.0 * check_draw(&seed), 20.0 * check_draw(&seed), 40.0 * check_draw(&seed));
-        double found = least_of(s, &curve), sampled = brute(s, &curve, 200);
+        tw_course course = course_of(other, -300.0 + 300.0 * check_draw(&seed), 20.0 * check_draw(&seed), 40.0 * check_draw(&seed));
+        double found = least_of(s, &course), sampled = brute(s, &course, 200);
         CHECK(found <= sampled + 1e-12);
         /* Half a step of each grid: 200 samples of at most 420 m, halves of arcs of at most 4 m. */
         CHECK(sampled - found <= 1.05 + 1.0);
@@ -221,10 +221,10 @@ static void test_a_line_that_hangs_folded(void)
     tw_case c;
     tw_section *s = make_span(&c, 1.0, 0.0, 80.0);
     CHECK(s != NULL);
-    tw_curve curve = curve_of(s, 3.0, 0.0, 0.0);
-    CHECK(curve.arc_count < 2000);
-    double sampled = brute(s, &curve, 200);
-    double found = least_of(s, &curve);
+    tw_course course = course_of(s, 3.0, 0.0, 0.0);
+    CHECK(course.arc_count < 2000);
+    double sampled = brute(s, &course, 200);
+    double found = least_of(s, &course);
     CHECK(found <= sampled && sampled - found < 0.05);
     CHECK_NEAR(found, 2.0, 0.01); /* its right leg beside the other's left one */
     tw_section_free(s);
@@ -235,29 +235,29 @@ static void test_no_length(void)
     tw_case c;
     tw_spacing found;
     tw_section *s = make_span(&c, 300.0, 0.0, 300.5);
-    tw_curve curve = curve_of(s, 0.0, 1.0, 0.0);
+    tw_course course = course_of(s, 0.0, 1.0, 0.0);
     for (size_t p = 0; p < s->piece_count; p++) {
         s->pieces[p].length_m = 0.0;
     }
-    CHECK(tw_spacing_least(s, 0, &curve, INFINITY, &found) == 0);
+    CHECK(tw_spacing_least(s, 0, &course, INFINITY, &found) == 0);
     tw_section_free(s);
 }
 
-/* The limit: value, place, and how much of it is used; none where there is no curve for the condition. */
+/* The limit: value, place, and how much of it is used; none where there is no course for the condition. */
 static void test_limit(void)
 {
     tw_case c;
     tw_fault fault;
     size_t rows[2] = {0, TW_NONE};
     tw_section *s = make_span(&c, 300.0, 0.0, 300.8);
-    tw_curve curve = curve_of(s, 0.0, 4.0, 0.0);
+    tw_course course = course_of(s, 0.0, 4.0, 0.0);
     case_condition(&c, 40.0);
     case_limit(&c, TW_LIMIT_SPACING, 3.0, NAN);
     c.applies[0] = 1;
     case_ready(&c);
-    c.project.curves = &curve;
-    c.project.curve_count = 1;
-    c.project.limit_curve = rows;
+    c.project.courses = &course;
+    c.project.course_count = 1;
+    c.project.limit_course = rows;
     CHECK(tw_check_project(&c.project, &fault) == TW_OK);
     tw_verdict v = tw_limit_judge(&c.project, 0, 0, s, s);
     CHECK(v.judged == 1 && v.span == 0 && v.support == TW_NONE);
@@ -267,9 +267,9 @@ static void test_limit(void)
     CHECK_NEAR(v.other_position_m[0], v.station_m, 1e-6);
     CHECK(v.other_at_m >= 0.0 && v.other_at_m <= 300.8);
     CHECK(tw_limit_judge(&c.project, 0, 1, s, s).judged == 0);
-    c.project.curve_count = 0;
+    c.project.course_count = 0;
     CHECK(tw_limit_judge(&c.project, 0, 0, s, s).judged == 0);
-    CHECK(tw_check_project(&c.project, &fault) == TW_ERROR_RANGE && strcmp(fault.field, "curves") == 0);
+    CHECK(tw_check_project(&c.project, &fault) == TW_ERROR_RANGE && strcmp(fault.field, "courses") == 0);
     tw_section_free(s);
 }
 
@@ -285,12 +285,12 @@ static void test_what_is_refused(void)
     tw_case c;
     size_t rows[1] = {0};
     tw_section *s = make_span(&c, 300.0, 0.0, 300.8);
-    tw_curve curve = curve_of(s, 0.0, 4.0, 0.0);
+    tw_course course = course_of(s, 0.0, 4.0, 0.0);
     tw_limit *limit = case_limit(&c, TW_LIMIT_SPACING, 3.0, NAN);
     case_ready(&c);
-    c.project.curves = &curve;
-    c.project.curve_count = 1;
-    c.project.limit_curve = rows;
+    c.project.courses = &course;
+    c.project.course_count = 1;
+    c.project.limit_course = rows;
     limit->least = 0.0;
     expect_refused(&c, "limits", "least");
     limit->least = 3.0;
@@ -298,18 +298,18 @@ static void test_what_is_refused(void)
     expect_refused(&c, "limits", "least");
     limit->most = NAN;
     rows[0] = 1;
-    expect_refused(&c, "limits", "curves");
+    expect_refused(&c, "limits", "courses");
     rows[0] = 0;
-    curve.arc_count = 0;
-    expect_refused(&c, "curves", "arcs");
-    curve.arc_count = 3;
+    course.arc_count = 0;
+    expect_refused(&c, "courses", "arcs");
+    course.arc_count = 3;
     arcs[1].position[0][2] += 1e-6;
-    expect_refused(&c, "curves", "arcs");
+    expect_refused(&c, "courses", "arcs");
     arcs[1].position[0][2] = arcs[0].position[1][2];
     arcs[2].at_m[1] = arcs[2].at_m[0];
-    expect_refused(&c, "curves", "arcs");
+    expect_refused(&c, "courses", "arcs");
     arcs[2].at_m[1] = NAN;
-    expect_refused(&c, "curves", "arcs");
+    expect_refused(&c, "courses", "arcs");
     tw_section_free(s);
 }
 

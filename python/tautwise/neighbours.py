@@ -1,4 +1,4 @@
-"""Another project's line, settled in one of its conditions, as the curve that a spacing keeps from."""
+"""Another project's line, settled in one of its conditions, as the course that a spacing keeps from."""
 
 from __future__ import annotations
 
@@ -62,5 +62,5 @@ def neighbour_of(project: Project, condition: str) -> Neighbour:
 
     settled: Any = settle(project, condition)
     lengths = [span.natural_length_m for span in settled.spans]
-    arcs = line_core_of(project).curve(project.condition_index(condition))
+    arcs = line_core_of(project).course(project.condition_index(condition))
     return Neighbour(arcs, tuple(support.name for support in project.supports), tuple(accumulate(lengths)))

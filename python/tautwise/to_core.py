@@ -33,7 +33,7 @@ def problem_of(project: Project, judging: bool = True) -> dict[str, Any]:
         "conditions": [_condition(condition) for condition in project.conditions],
         "marks": [_place(mark.at_m, mark.at_length_m) for mark in project.marks],
         "limits": limits,
-        "curves": _curves(project, limits, judging),
+        "courses": _courses(project, limits, judging),
         "stringing": _stringing(project),
     }
 
@@ -139,20 +139,20 @@ def _limit(project: Project, limit: BaseLimit) -> dict[str, Any]:
     return core
 
 
-def _curves(project: Project, limits: list[dict[str, Any]], judging: bool) -> list[Any]:
+def _courses(project: Project, limits: list[dict[str, Any]], judging: bool) -> list[Any]:
     """The other lines that spacings keep from; their numbers go into the rows of the limits."""
-    curves: list[Any] = []
+    courses: list[Any] = []
     for number, (limit, row) in enumerate(zip(project.limits, limits, strict=True)):
         if not isinstance(limit, SpacingLimit):
             continue
         row["applies"] = [judging and applies for applies in row["applies"]]
-        row["curves"] = [None] * len(project.conditions)
+        row["courses"] = [None] * len(project.conditions)
         for index, condition in enumerate(project.conditions):
             if row["applies"][index]:
                 near = project.neighbour(number, limit.other_condition_for(condition.name))
-                row["curves"][index] = len(curves)
-                curves.append(near.moved(limit.shift))
-    return curves
+                row["courses"][index] = len(courses)
+                courses.append(near.moved(limit.shift))
+    return courses
 
 
 def _clearance(project: Project, limit: ClearanceLimit) -> dict[str, Any]:

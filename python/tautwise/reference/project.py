@@ -185,7 +185,7 @@ class Twin:
         """The line that a spacing keeps from: `others` of the problem lists (problem, condition, shift)."""
         if rule["kind"] != "spacing":
             return None
-        problem, other_condition, shift = self.problem["others"][rule["curves"][condition]]
+        problem, other_condition, shift = self.problem["others"][rule["courses"][condition]]
         return Beside(Twin(problem).settle(other_condition), np.asarray(shift, dtype=np.float64))
 
     def worst(self, pull_N: float) -> float:

@@ -1,4 +1,4 @@
-#include "curve.h"
+#include "course.h"
 
 #include <math.h>
 
@@ -55,7 +55,7 @@ static size_t piece_arcs(const tw_section *section, const tw_piece *piece, doubl
     return count;
 }
 
-size_t tw_curve_arcs(const tw_section *section, tw_arc *arcs)
+size_t tw_course_arcs(const tw_section *section, tw_arc *arcs)
 {
     size_t count = 0;
     double passed = 0.0;
@@ -70,7 +70,7 @@ size_t tw_curve_arcs(const tw_section *section, tw_arc *arcs)
     return count;
 }
 
-void tw_curve_at(const tw_arc *arc, double u, double place[3], double slope[3], double curvature[3])
+void tw_course_at(const tw_arc *arc, double u, double place[3], double slope[3], double curvature[3])
 {
     double h = arc->at_m[1] - arc->at_m[0];
     for (int i = 0; i < 3; i++) {
@@ -87,7 +87,7 @@ void tw_curve_at(const tw_arc *arc, double u, double place[3], double slope[3], 
     }
 }
 
-void tw_curve_off_chord(const double point[3], const double a[3], const double b[3], double off[3])
+void tw_course_off_chord(const double point[3], const double a[3], const double b[3], double off[3])
 {
     double chord[3], along[3];
     tw_axpy(b, -1.0, a, chord);
@@ -97,20 +97,20 @@ void tw_curve_off_chord(const double point[3], const double a[3], const double b
     tw_axpy(along, -share, chord, off);
 }
 
-double tw_curve_reach(const tw_bow *bow)
+double tw_course_reach(const tw_bow *bow)
 {
     return tw_norm(bow->toward) + bow->rest;
 }
 
-tw_bow tw_curve_arc_bow(const tw_arc *arc, double u0, double u1)
+tw_bow tw_course_arc_bow(const tw_arc *arc, double u0, double u1)
 {
     double a[3], b[3], out[3], in[3], off[2][3], apart[3];
-    tw_curve_at(arc, u0, a, out, NULL);
-    tw_curve_at(arc, u1, b, in, NULL);
+    tw_course_at(arc, u0, a, out, NULL);
+    tw_course_at(arc, u1, b, in, NULL);
     tw_axpy(a, (u1 - u0) / 3.0, out, out);
     tw_axpy(b, -(u1 - u0) / 3.0, in, in);
-    tw_curve_off_chord(out, a, b, off[0]);
-    tw_curve_off_chord(in, a, b, off[1]);
+    tw_course_off_chord(out, a, b, off[0]);
+    tw_course_off_chord(in, a, b, off[1]);
     tw_axpy(off[1], -1.0, off[0], apart);
     tw_bow bow = {.rest = 0.5 * tw_norm(apart)};
     tw_axpy(off[0], 0.5, apart, bow.toward);
@@ -146,17 +146,17 @@ static tw_bow joined(const double bend[3], const tw_bow *left, const tw_bow *rig
     return bow;
 }
 
-void tw_curve_bows(const tw_arc *arcs, size_t node, size_t first, size_t last, tw_bow *bows)
+void tw_course_bows(const tw_arc *arcs, size_t node, size_t first, size_t last, tw_bow *bows)
 {
     size_t middle = first + (last - first) / 2;
     if (last - first == 1) {
-        bows[node] = tw_curve_arc_bow(&arcs[first], 0.0, 1.0);
+        bows[node] = tw_course_arc_bow(&arcs[first], 0.0, 1.0);
         return;
     }
     double bend[3];
     size_t left = node + 1, right = node + 2 * (middle - first);
-    tw_curve_bows(arcs, left, first, middle, bows);
-    tw_curve_bows(arcs, right, middle, last, bows);
-    tw_curve_off_chord(arcs[middle].position[0], arcs[first].position[0], arcs[last - 1].position[1], bend);
+    tw_course_bows(arcs, left, first, middle, bows);
+    tw_course_bows(arcs, right, middle, last, bows);
+    tw_course_off_chord(arcs[middle].position[0], arcs[first].position[0], arcs[last - 1].position[1], bend);
     bows[node] = joined(bend, &bows[left], &bows[right]);
 }
