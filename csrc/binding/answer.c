@@ -69,7 +69,8 @@ PyObject *tw_answer_verdict(const tw_verdict *verdict)
 {
     PyObject *dict = tw_fields_dict(tw_verdict_table, verdict);
     if (!dict || tw_fields_put(dict, "span", tw_fields_index(verdict->span)) < 0
-        || tw_fields_put(dict, "support", tw_fields_index(verdict->support)) < 0) {
+        || tw_fields_put(dict, "support", tw_fields_index(verdict->support)) < 0
+        || tw_fields_put(dict, "other_position_m", triple(verdict->other_position_m)) < 0) {
         Py_CLEAR(dict);
     }
     return dict;

@@ -181,6 +181,7 @@ static const field verdict_fields[] = {
     F(tw_verdict, margin, NAN),
     F(tw_verdict, utilisation, NAN),
     F(tw_verdict, station_m, NAN),
+    F(tw_verdict, other_at_m, NAN),
 };
 const field_table tw_verdict_table = TABLE(verdict_fields);
 

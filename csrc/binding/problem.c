@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "check.h"
+#include "courses.h"
 #include "fields.h"
 #include "problem_line.h"
 #include "route.h"
@@ -16,20 +17,20 @@ static const char *const place_names[] = {"whole", "station", "length", NULL};
 static const char *const carriage_names[] = {"none", "free", "held", NULL};
 static const char *const frame_names[] = {"span", "route", NULL};
 static const char *const kind_names[] = {"clearance", "tension", "support_load", "uplift", "swing", "sag",
-                                         "catenary_constant", "slope", NULL};
+                                         "catenary_constant", "slope", "spacing", NULL};
 static const char *const direction_names[] = {"along", "across", "down", "up", "resultant", NULL};
 static const char *const method_names[] = {"clamped", "over_sheaves", NULL};
 static const char *const clip_names[] = {"plumb", "lies", NULL};
 static const char *const rule_names[] = {"pull", "tension", "sag", "total_length", "span_lengths", "none", NULL};
 
 static const char *const problem_keys[] = {"line", "supports", "ground", "crossings", "conditions", "marks", "limits",
-                                           "stringing", "history", "route", NULL};
+                                           "stringing", "history", "route", "courses", NULL};
 static const char *const support_keys[] = {"hold", NULL};
 static const char *const condition_keys[] = {"loads", "ice_share", "state", NULL};
 static const char *const load_keys[] = {"is_point", "is_run", "place", "frame", "vector", "vector_to", "covers",
                                         "carriage", "carriage_span", NULL};
 static const char *const mark_keys[] = {"place", NULL};
-static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", NULL};
+static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", "courses", NULL};
 static const char *const stringing_keys[] = {"rule", "index", "lengths_m", "method", "clip", NULL};
 
 void tw_problem_free(problem *in)
@@ -52,6 +53,7 @@ void tw_problem_free(problem *in)
     PyMem_Free(in->covers);
     PyMem_Free(in->lengths);
     PyMem_Free(in->met);
+    tw_courses_free(in);
     memset(in, 0, sizeof *in);
 }
 
@@ -413,6 +415,9 @@ static int read_limit(PyObject *row, size_t index, problem *out)
     if (read_flags(row, "applies", out->applies + index * conditions, conditions) < 0) {
         return -1;
     }
+    if (tw_courses_read_limit(row, index, out) < 0) {
+        return -1;
+    }
     return read_flags(row, "covers", out->covers + index * supports, supports);
 }
 
@@ -426,6 +431,7 @@ static int read_limits(PyObject *dict, problem *out)
     out->project.limit_count = count;
     out->project.limit_applies = out->applies;
     out->project.limit_covers = out->covers;
+    out->project.limit_course = out->limit_course;
     return 0;
 }
 
@@ -550,9 +556,9 @@ int tw_problem_read(PyObject *dict, PyObject *range_error, problem *out)
         tw_problem_raise("supports", TW_NONE, "count", "at least two supports", range_error);
         return -1;
     }
-    if (read_route(dict, out) < 0 || read_ground(dict, out) < 0 || read_crossings(dict, out) < 0 || read_conditions(dict, out) < 0
-        || read_marks(dict, out) < 0 || read_limits(dict, out) < 0
-        || read_part(dict, "stringing", read_rule, out) < 0 || read_history(dict, out) < 0) {
+    if (read_route(dict, out) < 0 || read_ground(dict, out) < 0 || read_crossings(dict, out) < 0
+        || read_conditions(dict, out) < 0 || read_marks(dict, out) < 0 || tw_courses_read(dict, out) < 0
+        || read_limits(dict, out) < 0 || read_part(dict, "stringing", read_rule, out) < 0 || read_history(dict, out) < 0) {
         return -1;
     }
     if (tw_check_project(&out->project, &fault) != TW_OK) {

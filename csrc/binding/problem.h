@@ -21,6 +21,8 @@ typedef struct problem {
     unsigned char *covers;
     double *lengths;
     unsigned char *met;
+    tw_course *courses; /* each with arcs and reach of its own */
+    size_t *limit_course;
 } problem;
 
 /* 0, or -1 and raises; range_error is raised with .path and .expected for a number out of range. */

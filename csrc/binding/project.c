@@ -6,6 +6,7 @@
 
 #include "answer.h"
 #include "check.h"
+#include "courses.h"
 #include "crew.h"
 #include "fields.h"
 #include "module.h"
@@ -264,7 +265,7 @@ static PyObject *judged_row(const tw_verdict *verdict, size_t limit, size_t cond
 /* Judges one row and appends it; -1 and raises. */
 static int append_judged(PyObject *list, tw_trial *trial, size_t limit, size_t condition, tw_options *options)
 {
-    tw_verdict verdict = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN};
+    tw_verdict verdict = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN, NAN, {NAN, NAN, NAN}};
     run_state run;
     tw_run_begin(&run, options);
     tw_status status = tw_trial_judge(trial, limit, condition, options, &verdict);
@@ -341,6 +342,27 @@ static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywo
     }
     tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
     PyObject *result = status == TW_OK ? tw_places_along(section, (size_t)points) : raise_status(self, status);
+    tw_trial_free(trial);
+    return result;
+}
+
+static PyObject *project_course(PyObject *object, PyObject *args, PyObject *keywords)
+{
+    project_object *self = (project_object *)object;
+    Py_ssize_t condition;
+    double pull;
+    tw_options options;
+    const tw_section *section = NULL;
+    if (!PyArg_ParseTuple(args, "n:course", &condition) || condition_index(self, condition) < 0
+        || split_keywords(self, keywords, &pull, &options) < 0) {
+        return NULL;
+    }
+    tw_trial *trial = tw_trial_create(&self->problem.project);
+    if (!trial) {
+        return PyErr_NoMemory();
+    }
+    tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
+    PyObject *result = status == TW_OK ? tw_courses_along(section) : raise_status(self, status);
     tw_trial_free(trial);
     return result;
 }
@@ -529,6 +551,8 @@ static PyMethodDef project_methods[] = {
      "judge(*, pull=None, **options) -> list of dicts, one per limit and condition it applies to."},
     {"shape", (PyCFunction)(void (*)(void))project_shape, METH_VARARGS | METH_KEYWORDS,
      "shape(condition, points=200, *, pull=None) -> dict of arrays along the exact line, points a span."},
+    {"course", (PyCFunction)(void (*)(void))project_course, METH_VARARGS | METH_KEYWORDS,
+     "course(condition, *, pull=None) -> array (arcs, 14): the exact line as another project's `courses`."},
     {"at", (PyCFunction)(void (*)(void))project_at, METH_VARARGS | METH_KEYWORDS,
      "at(condition, stations, *, pull=None) -> dict of arrays at the stations; NaN where the line does not pass."},
     {"window", (PyCFunction)(void (*)(void))project_window, METH_VARARGS | METH_KEYWORDS,

@@ -324,6 +324,38 @@ static tw_status check_clearance(const tw_project *p, size_t i, tw_fault *fault)
     return TW_OK;
 }
 
+static tw_status check_course(const tw_course *course, size_t index, tw_fault *fault)
+{
+    for (size_t i = 0; i < course->arc_count; i++) {
+        const tw_arc *arc = &course->arcs[i];
+        int right = isfinite(arc->at_m[0]) && arc->at_m[1] > arc->at_m[0] && isfinite(arc->at_m[1]);
+        for (int k = 0; k < 6; k++) {
+            right &= fabs(arc->position[k / 3][k % 3]) <= 1e8 && fabs(arc->slope[k / 3][k % 3]) <= 1e3;
+            right &= i == 0 || k >= 3 || arc->position[0][k] == arc[-1].position[1][k];
+        }
+        if (!right) {
+            return fail(fault, "courses", index, "arcs", "finite arcs along the line that join end to end");
+        }
+    }
+    return course->arc_count > 0 ? TW_OK : fail(fault, "courses", index, "arcs", "at least one arc");
+}
+
+/* A distance to keep, and a line to keep it from wherever the limit is judged. */
+static tw_status check_spacing(const tw_project *p, size_t i, tw_fault *fault)
+{
+    const tw_limit *limit = &p->limits[i];
+    if (!(limit->least > 0.0) || !isnan(limit->most) || !isnan(limit->share)) {
+        return fail(fault, "limits", i, "least", "a least distance above 0, and neither most nor share");
+    }
+    for (size_t c = 0; c < p->condition_count; c++) {
+        size_t row = i * p->condition_count + c;
+        if (p->limit_applies[row] && (p->course_count == 0 || p->limit_course[row] >= p->course_count)) {
+            return fail(fault, "limits", i, "courses", "another line's course for every condition of the limit");
+        }
+    }
+    return TW_OK;
+}
+
 static tw_status check_limit(const tw_project *p, size_t i, tw_fault *fault)
 {
     const tw_limit *limit = &p->limits[i];
@@ -333,6 +365,9 @@ static tw_status check_limit(const tw_project *p, size_t i, tw_fault *fault)
             return fail(fault, "limits", i, "least", "a least value, and neither most nor share");
         }
         return limit->kind == TW_LIMIT_CLEARANCE ? check_clearance(p, i, fault) : TW_OK;
+    }
+    if (limit->kind == TW_LIMIT_SPACING) {
+        return check_spacing(p, i, fault);
     }
     if (limit->kind == TW_LIMIT_SAG) {
         return (most || least) && !share ? TW_OK : fail(fault, "limits", i, "most", "a most or a least value, no share");
@@ -444,6 +479,9 @@ tw_status tw_check_project(const tw_project *project, tw_fault *fault)
         if (!(project->crossings[k].from_m < project->crossings[k].to_m)) {
             status = fail(fault, "crossings", k, "to_m", "a station beyond from");
         }
+    }
+    for (size_t i = 0; status == TW_OK && i < project->course_count; i++) {
+        status = check_course(&project->courses[i], i, fault);
     }
     for (size_t i = 0; status == TW_OK && i < project->limit_count; i++) {
         status = check_limit(project, i, fault);

@@ -5,6 +5,7 @@
 #include "ground.h"
 #include "hold.h"
 #include "route.h"
+#include "spacing.h"
 #include "vector.h"
 
 double tw_limit_utilisation_most(double value, double most)
@@ -51,6 +52,25 @@ static void judge_clearance(const tw_limit *limit, const tw_section *section, si
     }
 }
 
+/* What a spacing keeps from, and the distance that matters no more. */
+typedef struct keep_from {
+    const tw_course *other;
+    double below_m;
+} keep_from;
+
+/* Only where it is nearer than in the spans before. */
+static void judge_spacing(const tw_limit *limit, const tw_section *section, size_t span, const keep_from *spaced,
+                          tw_verdict *place)
+{
+    tw_spacing found;
+    if (spaced->other && tw_spacing_least(section, span, spaced->other, spaced->below_m, &found)) {
+        offer_least(place, found.distance_m, limit->least, 1.0);
+        place->station_m = found.position[0];
+        place->other_at_m = found.other_at_m;
+        tw_copy(found.other_position, place->other_position_m);
+    }
+}
+
 /* Station of the largest tension: it sits at a piece's end. */
 static double tension_station(const tw_section *section, size_t span, double most)
 {
@@ -80,12 +100,13 @@ static void judge_tension(const tw_project *project, const tw_limit *limit, cons
 }
 
 static void judge_span(const tw_project *project, const tw_limit *limit, const tw_section *section, size_t span,
-                       tw_verdict *place)
+                       const keep_from *spaced, tw_verdict *place)
 {
     tw_span_state state;
     switch (limit->kind) {
     case TW_LIMIT_CLEARANCE: judge_clearance(limit, section, span, place); return;
     case TW_LIMIT_TENSION: judge_tension(project, limit, section, span, place); return;
+    case TW_LIMIT_SPACING: judge_spacing(limit, section, span, spaced, place); return;
     case TW_LIMIT_SAG:
         tw_section_span_state(section, span, &state);
         if (!isnan(limit->most)) {
@@ -175,18 +196,32 @@ static void judge_support(const tw_project *project, const tw_limit *limit, cons
     place->station_m = tw_route_support_station(project, support);
 }
 
+/* The other line of a spacing in a condition; NULL where there is none. */
+static const tw_course *course_of(const tw_project *project, size_t limit, size_t condition)
+{
+    size_t row = limit * project->condition_count + condition;
+    size_t course = project->course_count > 0 ? project->limit_course[row] : TW_NONE;
+    return course < project->course_count ? &project->courses[course] : NULL;
+}
+
 static int looks_at_supports(tw_limit_kind kind)
 {
     return kind == TW_LIMIT_SUPPORT_LOAD || kind == TW_LIMIT_UPLIFT || kind == TW_LIMIT_SWING;
 }
 
-tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_section *section, const tw_section *bare)
+tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condition, const tw_section *section,
+                          const tw_section *bare)
 {
     const tw_limit *rule = &project->limits[limit];
     const unsigned char *covers = project->limit_covers + limit * project->support_count;
+    const tw_course *other = course_of(project, limit, condition);
     int supports = looks_at_supports(rule->kind);
     size_t count = supports ? project->support_count : section->span_count;
-    const tw_verdict nowhere = {.span = TW_NONE, .support = TW_NONE, .station_m = (double)NAN};
+    const tw_verdict nowhere = {.span = TW_NONE,
+                                .support = TW_NONE,
+                                .station_m = (double)NAN,
+                                .other_at_m = (double)NAN,
+                                .other_position_m = {(double)NAN, (double)NAN, (double)NAN}};
     tw_verdict worst = nowhere;
     for (size_t k = 0; k < count; k++) {
         tw_verdict place = nowhere;
@@ -198,7 +233,8 @@ tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_sect
             judge_support(project, rule, section, bare, k, &place);
         } else {
             place.span = k;
-            judge_span(project, rule, section, k, &place);
+            const keep_from spaced = {other, worst.judged ? worst.value : INFINITY};
+            judge_span(project, rule, section, k, &spaced, &place);
         }
         if (place.judged && (!worst.judged || !(place.utilisation <= worst.utilisation))) {
             worst = place;

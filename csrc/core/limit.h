@@ -22,10 +22,13 @@ typedef struct tw_verdict {
     size_t span;        /* worst place; TW_NONE where it is a support */
     size_t support;     /* TW_NONE where it is a span */
     double station_m;   /* NaN where the whole span is meant */
+    double other_at_m;          /* spacing: natural length along the other line of its closest place; else NaN */
+    double other_position_m[3]; /* spacing: that place, in this line's axes; else NaN */
 } tw_verdict;
 
 /* section: the condition, solved. bare: the same without the resultant addition, for swing; may equal section. */
-tw_verdict tw_limit_judge(const tw_project *project, size_t limit, const tw_section *section, const tw_section *bare);
+tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condition, const tw_section *section,
+                          const tw_section *bare);
 
 /* Same rule, its utilisation alone, from a value and an allowed value. */
 double tw_limit_utilisation_most(double value, double most);

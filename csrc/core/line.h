@@ -185,7 +185,8 @@ typedef enum tw_limit_kind {
     TW_LIMIT_SWING,
     TW_LIMIT_SAG,
     TW_LIMIT_CATENARY_CONSTANT,
-    TW_LIMIT_SLOPE
+    TW_LIMIT_SLOPE,
+    TW_LIMIT_SPACING
 } tw_limit_kind;
 
 typedef enum tw_direction {
@@ -198,7 +199,7 @@ typedef enum tw_direction {
 
 typedef struct tw_limit {
     tw_limit_kind kind;
-    double least;           /* clearance m, uplift N, sag m; NaN: none */
+    double least;           /* clearance m, uplift N, sag m, spacing m; NaN: none */
     double most;            /* tension N, support load N, swing rad, sag m, catenary constant m, slope (rise over run); NaN: none */
     double share;           /* of breaking strength (tension) or of capacity (support load); NaN: none */
     size_t crossing;        /* clearance: index, or TW_NONE for the ground */
@@ -206,6 +207,27 @@ typedef struct tw_limit {
     double to_m;
     tw_direction direction; /* support load */
 } tw_limit;
+
+/* A stretch of another line, natural length at_m[0] to at_m[1], as a cubic with these ends and derivatives. */
+typedef struct tw_arc {
+    double at_m[2];        /* natural length from the other line's first support; the second above the first */
+    double position[2][3]; /* m, in this line's axes */
+    double slope[2][3];    /* d position / d natural length */
+} tw_arc;
+
+/* How a stretch of line goes from its chord: each of its places is one of the chord's, and a share of `toward`, and no more
+ * than `rest` in any direction. */
+typedef struct tw_bow {
+    double toward[3]; /* m */
+    double rest;      /* m */
+} tw_bow;
+
+/* Another line, hung in a condition of its own: arcs that join end to end. */
+typedef struct tw_course {
+    size_t arc_count; /* >= 1 */
+    const tw_arc *arcs;
+    const tw_bow *bows; /* [2 arc_count - 1]: what tw_course_bows found */
+} tw_course;
 
 /* The whole problem. Arrays are borrowed and must outlive every call. */
 typedef struct tw_project {
@@ -228,7 +250,11 @@ typedef struct tw_project {
     const tw_limit *limits;
     const unsigned char *limit_applies; /* [limit_count][condition_count]: the limit is judged in the condition */
     const unsigned char *limit_covers;  /* [limit_count][support_count]: it looks at the support, or at the span that
-                                           starts there (tension, sag, slope, catenary constant, clearance) */
+                                           starts there (tension, sag, slope, catenary constant, clearance, spacing) */
+    size_t course_count;                 /* 0 where no limit is a spacing */
+    const tw_course *courses;
+    const size_t *limit_course;          /* [limit_count][condition_count]: of a spacing, the course to keep from in the
+                                           condition, else TW_NONE; NULL where course_count is 0 */
     tw_stringing stringing;
     tw_history_rule history;
 } tw_project;

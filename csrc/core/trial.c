@@ -248,7 +248,7 @@ tw_status tw_trial_judge(tw_trial *trial, size_t limit, size_t condition, const 
         status = tw_trial_bare(trial, condition, options, &bare);
     }
     if (status == TW_OK) {
-        *verdict = tw_limit_judge(trial->project, limit, section, bare);
+        *verdict = tw_limit_judge(trial->project, limit, condition, section, bare);
     }
     return status;
 }

@@ -46,7 +46,7 @@ static int string_to(tw_window_run *run, double pull_N)
 
 double tw_window_row(tw_window_run *run, size_t row, tw_verdict *verdict)
 {
-    tw_verdict own = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN};
+    tw_verdict own = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN, NAN, {NAN, NAN, NAN}};
     tw_status status = run->stop;
     if (status == TW_OK) {
         status = tw_trial_judge(run->trial, run->window->row_limit[row], run->window->row_condition[row], run->options,

@@ -1,5 +1,6 @@
 /* Every allocation fails in turn: the call says so, leaves nothing behind, and the next one is right to the last byte. */
 #include "alloc_count.h"
+#include "course.h"
 #include "crew.h"
 #include "expect.h"
 #include "fit.h"
@@ -168,8 +169,15 @@ int main(void)
         {.kind = TW_LIMIT_TENSION, .least = NAN, .most = 60e3, .share = NAN, .from_m = NAN, .to_m = NAN},
         {.kind = TW_LIMIT_SWING, .least = NAN, .most = 0.6, .share = NAN, .from_m = NAN, .to_m = NAN},
         {.kind = TW_LIMIT_SAG, .least = NAN, .most = 25.0, .share = NAN, .from_m = NAN, .to_m = NAN},
+        {.kind = TW_LIMIT_SPACING, .least = 10.0, .most = NAN, .share = NAN, .from_m = NAN, .to_m = NAN},
     };
-    static const unsigned char all[] = {1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1};
+    static const unsigned char all[] = {1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1};
+    static const size_t course_of_limit[] = {TW_NONE, TW_NONE, TW_NONE, 0};
+    const tw_arc above = {.at_m = {0.0, 950.0}, .position = {{1000.0, 0.0, 160.0}, {1950.0, 20.0, 170.0}},
+                          .slope = {{1.0, 0.0, 0.0}, {1.0, 0.0, 0.0}}};
+    tw_bow bow;
+    tw_course_bows(&above, 0, 0, 1, &bow);
+    const tw_course course = {1, &above, &bow};
     fixture_three_spans(&f);
     f.condition.resultant_addition_N_per_m = 2.0;
     f.options.elements_per_span = 1; /* a mesh that has to be doubled */
@@ -177,7 +185,10 @@ int main(void)
     f.project.stringing.rule = TW_STRING_PULL;
     f.project.stringing.value = 20e3;
     f.project.limits = limits;
-    f.project.limit_count = 3;
+    f.project.limit_count = 4;
+    f.project.course_count = 1;
+    f.project.courses = &course;
+    f.project.limit_course = course_of_limit;
     f.project.limit_applies = all;
     f.project.limit_covers = all;
     refuse_each_way(&f, section_call, "section");

@@ -19,7 +19,7 @@ typedef struct survey {
 static void measure(const tw_case *c, const double *lengths_m, double temperature_degC, int per_span, survey *out)
 {
     tw_project project = c->project;
-    const tw_condition bare = {.temperature_degC = temperature_degC, .wind_speed_m_per_s = NAN};
+    const tw_condition bare = tw_line_bare(temperature_degC);
     const tw_section *section = NULL;
     project.conditions = &bare;
     project.condition_count = 1;

@@ -28,7 +28,7 @@ static tw_section *make_judged(tw_case *c)
 static tw_verdict judge(tw_case *c, const tw_section *s)
 {
     case_ready(c);
-    return tw_limit_judge(&c->project, c->project.limit_count - 1, s, s);
+    return tw_limit_judge(&c->project, c->project.limit_count - 1, 0, s, s);
 }
 
 static void check_most(const tw_verdict *v, double value, double most)
@@ -216,7 +216,7 @@ static void test_swing_is_read_off_the_bare_section(void)
     CHECK(tw_section_solve(bare, &c.options, 0) == TW_OK);
     case_limit(&c, TW_LIMIT_SWING, NAN, 0.9);
     case_ready(&c);
-    tw_verdict v = tw_limit_judge(&c.project, 0, s, bare);
+    tw_verdict v = tw_limit_judge(&c.project, 0, 0, s, bare);
     tw_support_state one, three;
     tw_section_support_state(bare, 1, &one);
     tw_section_support_state(bare, 3, &three);

@@ -9,7 +9,7 @@ import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from itertools import accumulate, pairwise
-from typing import Any, TypeVar
+from typing import TYPE_CHECKING, Any, TypeVar
 
 from pydantic import ValidationError
 
@@ -23,6 +23,9 @@ from tautwise.strict import Refused, described, did_you_mean, nearest, shown
 from tautwise.tables import Condition, Crossing, GroundTable, Head, History, Line, Mark, Stringing, Support, Table
 from tautwise.units import quantity
 from tautwise.waivers import Waiver
+
+if TYPE_CHECKING:
+    from tautwise.model import Project
 
 MOST = {"crossing": 2000, "support": 2000, "condition": 500, "mark": 2000, "limit": 500, "waiver": 500}
 LOADS_MOST = 2000
@@ -49,6 +52,7 @@ class Checked:
     marks: list[Mark | None] = field(default_factory=list)
     limits: list[BaseLimit | None] = field(default_factory=list)
     waivers: list[Waiver | None] = field(default_factory=list)
+    others: dict[int, Project] = field(default_factory=dict)
     faults: list[Fault] = field(default_factory=list)
     misspelt: set[KeyPath] = field(default_factory=set)
 

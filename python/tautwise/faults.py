@@ -28,6 +28,7 @@ TABLES = {
     "sag": '{ from = "West mast", to = "East mast", value = "6.7 m" }',
     "load": '{ force = "2 kN", at = "75 m" }',
     "factors": "{ wind = 1.5, ice = 1.2 }",
+    "shift": '{ offset = "1.5 m" }',
 }
 LISTS = {
     "load": f"[ {TABLES['load']} ]",

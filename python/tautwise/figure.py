@@ -78,7 +78,8 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
         ax.figure.subplots_adjust(**margins(ax, _legend_labels(lines)))
     shapes = [(line, _in_profile(line.shape(points))) for line in lines]
     scenery = shapes[0][0]._line().scenery()
-    _frame(ax, scenery, shapes)
+    others = _other_lines(lines)
+    _frame(ax, scenery, shapes, others)
     if own:
         _fit_page(ax, _legend_labels(lines))
     _draw_ground(ax, scenery)
@@ -97,6 +98,8 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
             label=plain(line.name),
             zorder=5,
         )
+    for (label, places), style in zip(others.items(), cycle(STYLES)):
+        ax.plot(*places.T, color=FAINT, linestyle=style, linewidth=1.0, zorder=4.5, label=plain(label))
     tightest = tightest_of(scenery, shapes)
     if tightest:
         _draw_tightest(ax, tightest)
@@ -132,13 +135,21 @@ def _clearances(scenery: Scenery, condition: str, position: Any) -> list[Tightes
     return found
 
 
-def _frame(ax: Any, scenery: Scenery, shapes: Sequence[tuple[Equilibrium, Any]]) -> None:
+def _other_lines(lines: Sequence[Equilibrium]) -> dict[str, Any]:
+    """Label and (station, elevation) of the lines that limits keep from, in the conditions drawn."""
+    drawn = (one for line in lines for one in line._line().scenery().others)
+    return {label: np.array(places) for label, places in drawn}
+
+
+def _frame(ax: Any, scenery: Scenery, shapes: Sequence[tuple[Equilibrium, Any]], others: dict[str, Any]) -> None:
     """Limits of the axes around everything, and a vertical exaggeration that is a round number."""
     heights = [position[:, 2] for _, position in shapes]
     heights += [np.array([elevation for _, _, elevation, _ in scenery.supports])]
     heights += [np.array([top, top + needs]) for *_, top, needs in scenery.crossings]
     stations = np.concatenate([position[:, 0] for _, position in shapes])
     left, right = float(stations.min()), float(stations.max())
+    beside = (places[(places[:, 0] >= left) & (places[:, 0] <= right), 1] for places in others.values())
+    heights += [elevations for elevations in beside if elevations.size]
     if scenery.ground:
         x, z = np.array(scenery.ground).T
         ends = np.interp([left, right], x, z)
@@ -251,7 +262,7 @@ def _draw_title(ax: Any, title: str) -> None:
 
 
 def _legend_labels(lines: Sequence[Equilibrium]) -> list[str]:
-    return [line.name for line in lines] + [ASKED]
+    return [line.name for line in lines] + list(_other_lines(lines)) + [ASKED]
 
 
 def _draw_legend(ax: Any, *, own: bool) -> None:

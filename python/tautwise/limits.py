@@ -5,15 +5,18 @@
 
 from __future__ import annotations
 
-from typing import Annotated, ClassVar, Literal
+from typing import Annotated, Any, ClassVar, Literal
 
 from pydantic import Field
 
 from tautwise.fields import (
+    LABEL_LENGTH_MOST,
     CatenaryConstant,
     Choice,
     Coordinate,
     Distance,
+    Kind,
+    Measure,
     Name,
     PositiveForce,
     Prose,
@@ -24,6 +27,7 @@ from tautwise.fields import (
     SwingAngle,
     Words,
 )
+from tautwise.strict import Refused, described, shown
 from tautwise.tables import Table
 
 DIRECTIONS = ("along", "across", "down", "up", "resultant")
@@ -120,6 +124,63 @@ class SlopeLimit(BaseLimit):
     spans: Names | None = None
 
 
+class ConditionPairs(Kind):
+    """For conditions of this line, by name, those of another line; kept as pairs.
+
+    >>> ConditionPairs().read({"hot": "ice"})
+    (('hot', 'ice'),)
+    """
+
+    words = "a table with a condition of the other line for each of this line"
+    example = '{ hot = "ice" }'
+
+    def read(self, value: Any) -> tuple[tuple[str, str], ...]:
+        """The pairs."""
+        if not isinstance(value, dict):
+            raise Refused(f"{described(value)} where a table is needed")
+        if not value:
+            raise Refused("an empty table")
+        name = Words("a name", "ice")
+        return tuple((str(key), self._name(name, key, other)) for key, other in value.items())
+
+    def json_schema(self) -> dict[str, Any]:
+        """A table of names."""
+        name = {"type": "string", "minLength": 1, "maxLength": LABEL_LENGTH_MOST}
+        return {"type": "object", "minProperties": 1, "additionalProperties": name, "description": self.words}
+
+    @staticmethod
+    def _name(name: Words, key: Any, other: Any) -> str:
+        try:
+            return str(name.read(other))
+        except Refused as refused:
+            raise Refused(f"{shown(str(key))}: {refused.problem}") from None
+
+
+class Shift(Table):
+    """How the axes of another line stand in this line's: where its station 0, offset 0, elevation 0 lies."""
+
+    station_m: Coordinate = Field(0.0, alias="station")
+    offset_m: Coordinate = Field(0.0, alias="offset")
+    elevation_m: Coordinate = Field(0.0, alias="elevation")
+
+
+class SpacingLimit(BaseLimit):
+    """The least distance in space, m, to the line of another project file, each line in a condition of its own."""
+
+    kind: Literal["spacing"]
+    other: Annotated[str, Words("a project file", "upper_wire.taut.toml")]
+    least: Annotated[float, Measure("m", "1.2 m", above=0.0)]
+    other_condition: Name | None = None
+    other_conditions: Annotated[Any, ConditionPairs()] = None
+    shift: Shift = Shift()
+    spans: Names | None = None
+
+    def other_condition_for(self, name: str) -> str:
+        """The other line's condition beside one of this line: its own, one for all, or that of the same name."""
+        pairs: dict[str, str] = dict(self.other_conditions or ())
+        return pairs.get(name, self.other_condition or name)
+
+
 Limit = Annotated[
     ClearanceLimit
     | TensionLimit
@@ -128,7 +189,8 @@ Limit = Annotated[
     | SwingLimit
     | SagLimit
     | CatenaryConstantLimit
-    | SlopeLimit,
+    | SlopeLimit
+    | SpacingLimit,
     Field(discriminator="kind"),
 ]
 
@@ -141,4 +203,5 @@ LIMITS: dict[str, type[BaseLimit]] = {
     "sag": SagLimit,
     "catenary_constant": CatenaryConstantLimit,
     "slope": SlopeLimit,
+    "spacing": SpacingLimit,
 }

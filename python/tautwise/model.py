@@ -31,6 +31,7 @@ from tautwise.errors import Fault, InputError
 from tautwise.from_core import file_path
 from tautwise.keylines import Path as KeyPath
 from tautwise.limits import BaseLimit
+from tautwise.others import other_rules
 from tautwise.plausible import warnings_of
 from tautwise.profile import Ground
 from tautwise.reader import Document, Source, read_project, shown_path
@@ -46,6 +47,7 @@ from tautwise.to_core import problem_of
 from tautwise.waivers import Waiver
 
 if TYPE_CHECKING:
+    from tautwise.neighbours import Neighbour
     from tautwise.results import CrewSheet, Equilibrium, PullWindow, SurveyFit, VetReport
     from tautwise.solve_sheet import Temperatures
     from tautwise.survey import Survey
@@ -60,9 +62,8 @@ RULES = (
     condition_rules,
     mark_rules,
     limit_rules,
+    other_rules,
 )
-
-
 TABLES = ("title", "line", "ground", "crossing", "support", "stringing", "history", "condition", "mark", "limit")
 
 
@@ -81,8 +82,9 @@ class Project(BaseModel):
     supports, crossings, conditions, marks, limits, waivers: the arrays of tables, in the order of the file; conditions
         and limits of rule packs follow.
     source: the project file as the user named it; None for keyword arguments.
-    input_sha256: the SHA-256 of the file. With included files, a ground profile or files of sizes: of the lines
-        "HASH  NAME" of all of them, as ``sha256sum`` prints them. For keyword arguments: of their canonical JSON.
+    input_sha256: the SHA-256 of the file. With included files, a ground profile, files of sizes, or projects that a
+        spacing keeps from: of the lines "HASH  NAME" of all of them, as ``sha256sum`` prints them. For keyword
+        arguments: of their canonical JSON.
     warnings: values that can be read but are hardly meant, and which of two sizes or rules was taken, one line each.
     origins: where each value of its size and its rule packs comes from.
 
@@ -108,6 +110,8 @@ class Project(BaseModel):
     input_sha256: str
     _document: Document = PrivateAttr()
     _warnings: tuple[str, ...] = PrivateAttr(default=())
+    _others: dict[int, Project] = PrivateAttr(default_factory=dict)
+    _neighbours: dict[tuple[str, str], Any] = PrivateAttr(default_factory=dict)
 
     def __init__(self, **tables: Any) -> None:
         document = Document(_without_none(tables), sources=[_keyword_source(tables)])
@@ -121,9 +125,11 @@ class Project(BaseModel):
 
     def _fill(self, document: Document) -> None:
         added = add_to(document)
-        values = _checked_values(document)
+        values, others = _checked_values(document)
         BaseModel.__init__(self, **values)
         self._document = document
+        self._others = others
+        self._neighbours = {}
         self._warnings = (*added.notes, *warnings_of(self, document))
 
     @property
@@ -175,9 +181,34 @@ class Project(BaseModel):
         ground = cast(Ground, self.ground)  # a height without a ground profile is refused when read
         return ground.elevation(support.station_m) + cast(float, support.height_m)
 
-    def to_core(self) -> dict[str, Any]:
-        """The problem as ``tautwise._core.Project`` takes it: plain values in SI, names resolved to indices."""
-        return problem_of(self)
+    @property
+    def others(self) -> dict[int, Project]:
+        """The projects that spacings keep from, by the number of the limit."""
+        return self._others
+
+    def neighbour(self, number: int, condition: str) -> Neighbour:
+        """The line that the spacing with a number keeps from, settled in a condition of its own; settled once.
+
+        Raises
+        ------
+        NotSettledError: it has no equilibrium within tolerance; the message names its file.
+        """
+        other = self._others[number]
+        key = (other.source or "", condition)
+        if key not in self._neighbours:
+            from tautwise.neighbours import neighbour_of
+
+            self._neighbours[key] = neighbour_of(other, condition)
+        return cast("Neighbour", self._neighbours[key])
+
+    def to_core(self, judging: bool = True) -> dict[str, Any]:
+        """The problem as ``tautwise._core.Project`` takes it: plain values in SI, names resolved to indices.
+
+        Parameters
+        ----------
+        judging: False leaves out other lines, which then need not be settled, and with them the spacings.
+        """
+        return problem_of(self, judging)
 
     def core_fault(self, path: str, problem: str, expected: str = "") -> Fault:
         """A fault that the core found (path such as ``supports[2].hanger_length_m``), at the key in the file."""
@@ -280,13 +311,14 @@ def load(path: str | os.PathLike[str]) -> Project:
     return Project._of(read_project(path))
 
 
-def _checked_values(document: Document) -> dict[str, Any]:
+def _checked_values(document: Document) -> tuple[dict[str, Any], dict[int, Project]]:
     checked = read_tables(document)
     for rule in () if document.incomplete else RULES:  # what they look for may stand in the file that is not there
         rule(checked)
     if checked.faults:
         raise InputError(checked.faults)
-    return _values(checked) | {"source": document.name, "input_sha256": _digest(document.sources)}
+    values = _values(checked) | {"source": document.name, "input_sha256": _digest(document.sources)}
+    return values, checked.others
 
 
 def _values(checked: Checked) -> dict[str, Any]:
@@ -321,7 +353,8 @@ def _digest(sources: list[Source]) -> str:
     if len(sources) == 1:
         return sources[0].sha256
     folder = Path(sources[0].name).parent
-    lines = (f"{source.sha256}  {os.path.relpath(source.name, folder)}\n" for source in sources)
+    names = (os.path.relpath(source.name, folder) if source.name else "" for source in sources)
+    lines = (f"{source.sha256}  {name}\n" for source, name in zip(sources, names, strict=True))
     return hashlib.sha256("".join(lines).encode()).hexdigest()
 
 

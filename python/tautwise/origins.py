@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from tautwise.errors import NotSettledError
-from tautwise.limits import GROUND, ClearanceLimit
+from tautwise.limits import GROUND, ClearanceLimit, SpacingLimit
 from tautwise.places import Scenery
 
 if TYPE_CHECKING:
@@ -52,13 +52,13 @@ class LineOrigin:
 
     def scenery(self) -> Scenery:
         """What stands around the line."""
-        return scenery_of(self.project)
+        return scenery_of(self.project, self.condition)
 
     def _problem(self) -> Any:
-        from tautwise.solve import core_of
+        from tautwise.solve import line_core_of
 
         if self._core is None:
-            self._core = core_of(self.project)
+            self._core = line_core_of(self.project)
         return self._core
 
     def _ground(self, stations: Any) -> Any:
@@ -100,8 +100,8 @@ class Judge:
         }
 
 
-def scenery_of(project: Project) -> Scenery:
-    """Ground, crossings and supports of a project, with the clearances that its limits ask for."""
+def scenery_of(project: Project, condition: int) -> Scenery:
+    """Ground, crossings and supports of a project, with the clearances that its limits ask for, and other lines."""
     limits = [limit for limit in project.limits if isinstance(limit, ClearanceLimit)]
     ends = project.supports[0].station_m, project.supports[-1].station_m
     needed = {limit.over: 0.0 for limit in limits}
@@ -122,4 +122,22 @@ def scenery_of(project: Project) -> Scenery:
             if limit.over == GROUND
         ),
         title=project.title,
+        others=_other_lines(project, condition),
     )
+
+
+def _other_lines(project: Project, condition: int) -> tuple[tuple[str, tuple[tuple[float, float], ...]], ...]:
+    """Label and (station, elevation) of each line that a spacing keeps from in a condition."""
+    name = project.conditions[condition].name
+    drawn: dict[str, tuple[tuple[float, float], ...]] = {}
+    for number, limit in enumerate(project.limits):
+        if not isinstance(limit, SpacingLimit) or not (limit.conditions is None or name in limit.conditions):
+            continue
+        beside = limit.other_condition_for(name)
+        try:
+            places = project.neighbour(number, beside).places(limit.shift)
+        except NotSettledError:
+            continue
+        label = f"{project.others[number].title or limit.other}: {beside}"
+        drawn[label] = tuple((float(x), float(z)) for x, _, z in places)
+    return tuple(drawn.items())

@@ -25,6 +25,7 @@ class Scenery(Record):
     supports: name, station and elevation of the point where the hold is fixed, and the hold.
     ground_clearances: from, to, and the clearance that a limit asks for above the ground.
     title: of the project.
+    others: label and (station, elevation) along each other line that a limit keeps from.
     """
 
     ground: tuple[tuple[float, float], ...]
@@ -32,6 +33,7 @@ class Scenery(Record):
     supports: tuple[tuple[str, float, float, str], ...]
     ground_clearances: tuple[tuple[float, float, float], ...]
     title: str = ""
+    others: tuple[tuple[str, tuple[tuple[float, float], ...]], ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)

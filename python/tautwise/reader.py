@@ -63,6 +63,7 @@ class Document:
     faults: what is already known to be wrong.
     incomplete: an included file could not be read, so that what is missing may stand there.
     additions: what a size and rule packs added to the tables; None before they did.
+    above: the projects for which this one is read, as resolved paths.
     """
 
     tables: dict[str, Any]
@@ -73,6 +74,7 @@ class Document:
     faults: list[Fault] = field(default_factory=list)
     incomplete: bool = False
     additions: Additions | None = None
+    above: tuple[Path, ...] = ()
 
     def where(self, path: KeyPath) -> tuple[str | None, int | None]:
         """File and line of a key, or of the nearest table around it.
@@ -114,12 +116,13 @@ class Document:
             self.index[(*path[:-1], key, *old[length:])] = self.index[old]
 
 
-def read_project(path: str | os.PathLike[str]) -> Document:
+def read_project(path: str | os.PathLike[str], above: tuple[Path, ...] = ()) -> Document:
     """Read a project file and all that it includes.
 
     Parameters
     ----------
     path: the file; TOML in UTF-8, at most 1 MB.
+    above: the projects for which it is read.
 
     Returns
     -------
@@ -132,7 +135,7 @@ def read_project(path: str | os.PathLike[str]) -> Document:
     name = os.fspath(path)
     reader = _Reader(name)
     tables, index = reader.file(Path(name), name, ())
-    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults, reader.incomplete)
+    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults, reader.incomplete, above=above)
 
 
 def read_text(path: Path, name: str, bytes_most: int) -> tuple[str, Source]:

@@ -39,6 +39,7 @@ class LimitState(Record):
     utilisation: share of the limit that is used; it holds while <= 1.
     side: "least" or "most", which side of `allowed` is right. reason: why it is undecided.
     waiver: of a limit that fails and may; None otherwise.
+    other_place: of a spacing, where the other line is closest.
     """
 
     id: str
@@ -56,6 +57,7 @@ class LimitState(Record):
     side: str | None = None
     why: str | None = None
     reason: str | None = None
+    other_place: str | None = None
     waiver: WaiverState | None = None
 
     @property
@@ -160,7 +162,16 @@ def _row(limit: LimitState) -> tuple[float | str | None, ...]:
     numbers = shown_values(limit.unit, limit.allowed, limit.value, limit.allowed, limit.margin)
     used = None if limit.utilisation is None else 100.0 * limit.utilisation
     return (limit.id, limit.word.upper() if limit.word == FAILS else limit.word, used, *numbers,
-            limit.condition, limit.place)  # fmt: skip
+            limit.condition, both_places(limit.place, limit.other_place))  # fmt: skip
+
+
+def both_places(place: str | None, other_place: str | None) -> str | None:
+    """Where a limit is worst, and of a spacing where the other line is closest.
+
+    >>> both_places("A to B, station 20.0 m", "upper.taut.toml: C to D, station 8.0 m")
+    'A to B, station 20.0 m; upper.taut.toml: C to D, station 8.0 m'
+    """
+    return place if not other_place else f"{place}; {other_place}"
 
 
 def shown_values(unit: str | None, allowed: float | None, *values: float | None) -> tuple[str | None, ...]:

@@ -24,7 +24,7 @@ class WindowEnd(Record):
     """One end of the window and the limit that governs it.
 
     `limit` None: no limit bounds this side within the pulls searched. The end is then open, which deserves a second
-    look: a limit may be missing.
+    look: a limit may be missing. `other_place`: of a spacing, where the other line is closest.
     """
 
     horizontal_tension_N: float
@@ -36,6 +36,7 @@ class WindowEnd(Record):
     unit: str | None = None
     utilisation: float | None = None
     station_m: float | None = None
+    other_place: str | None = None
 
     def __repr__(self) -> str:
         where = f"{self.limit} in {self.condition}" if self.limit else "no limit"

@@ -33,6 +33,7 @@ _GIVEN_ONCE = {
     "Mark": {"oneOf": [{"required": ["at"]}, {"required": ["at_length"]}]},
     "TensionLimit": {"oneOf": [{"required": ["share"]}, {"required": ["most"]}]},
     "SupportLoadLimit": {"oneOf": [{"required": ["share"]}, {"required": ["most"]}]},
+    "SpacingLimit": {"not": {"required": ["other_condition", "other_conditions"]}},
     "SagLimit": {"anyOf": [{"required": ["most"]}, {"required": ["least"]}]},
 }
 

@@ -62,7 +62,7 @@ def settle(project: Project, condition: str | None = None, *, pull: Pull = None,
     """
     index = _condition_index(project, condition)
     newtons = pull_of(project, pull)
-    core = core_of(project)
+    core = line_core_of(project)
     require_places(project, core, newtons)
     found = _settled(project, core, index, newtons, options)
     if not found.settled:
@@ -74,7 +74,7 @@ def settle(project: Project, condition: str | None = None, *, pull: Pull = None,
 def settle_all(project: Project, *, pull: Pull = None, **options: Any) -> tuple[Equilibrium, ...]:
     """The equilibrium in every condition, in the order of the file; one that does not settle says so in its status."""
     newtons = pull_of(project, pull)
-    core = core_of(project)
+    core = line_core_of(project)
     require_places(project, core, newtons)
     return tuple(_settled(project, core, index, newtons, options) for index in range(len(project.conditions)))
 
@@ -99,7 +99,7 @@ def strung(project: Project, *, pull: Pull = None) -> StrungState:
     """The line as strung: the pull and the natural length of each span."""
     newtons = pull_of(project, pull)
     with errors_of(project, newtons, AS_STRUNG):
-        found = core_of(project).string(pull=newtons)
+        found = line_core_of(project).string(pull=newtons)
     return StrungState(
         project.stringing.temperature_degC,
         finite(found["horizontal_tension_N"]),
@@ -164,14 +164,23 @@ def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
 
 
 def core_of(project: Project) -> _core.Project:
-    """The problem in the core.
+    """The problem in the core, with the other lines that spacings keep from.
 
     Raises
     ------
     InputError: a number is outside its range; the fault names the key of the project file.
+    NotSettledError: another line could not be settled.
     """
+    problem = project.to_core()
     with errors_of(project):
-        return _core.Project(project.to_core())
+        return _core.Project(problem)
+
+
+def line_core_of(project: Project) -> _core.Project:
+    """As `core_of`, without other lines and spacings: all that it takes to settle the line."""
+    problem = project.to_core(judging=False)
+    with errors_of(project):
+        return _core.Project(problem)
 
 
 def settled_bare(
@@ -291,7 +300,7 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
     InputError: always.
     """
     if pull is not None or _has_stringing(project):
-        require_places(project, core_of(project), pull)
+        require_places(project, line_core_of(project), pull)
         faults = off_faults(project, *_strung_range(project, pull))
     else:
         faults = beyond_faults(project, math.fsum(chords_m(project)), "about its length")
@@ -302,7 +311,8 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
 def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
     """First and last station, m, of the line as strung, bare: posts lean."""
     bare = {"temperature_degC": project.stringing.temperature_degC}
-    problem = {**project.to_core(), "conditions": [bare], "marks": [], "limits": [], "history": None}
+    core = project.to_core(judging=False)
+    problem = {**core, "conditions": [bare], "marks": [], "limits": [], "history": None}
     with errors_of(project, pull, AS_STRUNG):
         supports = _core.Project(problem).settle(0, pull=pull)["supports"]
     if not supports:
@@ -357,8 +367,7 @@ def _settled(
 
 
 def _has_stringing(project: Project) -> bool:
-    rule = project.stringing
-    return any((rule.horizontal_tension_N, rule.tension, rule.sag, rule.natural_length_m))
+    return project.stringing.has_rule
 
 
 def _condition_index(project: Project, condition: str | None) -> int:

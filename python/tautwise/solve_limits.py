@@ -7,6 +7,7 @@ from collections.abc import Callable, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 from tautwise.columns import forces_text
+from tautwise.limits import SpacingLimit
 from tautwise.records import finite
 from tautwise.results_line import CAUTION
 from tautwise.results_vet import HOLDS, UNDECIDED, LimitState, worst_first
@@ -34,6 +35,7 @@ UNITS = {
     "sag": "m",
     "catenary_constant": "m",
     "slope": "1",
+    "spacing": "m",
 }
 POST_LEANS_MOST = 0.02  # of the span
 Row = Mapping[str, Any]
@@ -116,6 +118,17 @@ def place_of(project: Project, row: Row) -> str | None:
     return f"{span}, station {station:.1f} m" if held is None else f"{span}, at {held}"
 
 
+def other_place_of(project: Project, row: Row) -> str | None:
+    """Where another line is closest, in words: its file, and a station in one of its spans."""
+    number, at = row.get("limit"), finite(row.get("other_at_m"))
+    limit = None if number is None else project.limits[number]
+    if at is None or number is None or not isinstance(limit, SpacingLimit):
+        return None
+    condition = project.conditions[row["condition"]].name
+    near = project.neighbour(number, limit.other_condition_for(condition))
+    return f"{limit.other}: {near.place(at, row['other_position_m'], limit.shift)}"
+
+
 def _held_at(project: Project, row: Row, station: float) -> str | None:
     """The support at whose clamp a station is; hangers swing and posts lean by less than this allows."""
     ends = project.supports[row["span"]], project.supports[row["span"] + 1]
@@ -155,6 +168,7 @@ def _limit_state(
         side=_side(limit, row),
         why=limit.why,
         reason=None if judged else reason(row) or reason(None),
+        other_place=other_place_of(project, row) if judged else None,
     )
 
 
@@ -205,6 +219,7 @@ def _end(project: Project, row: Row | None) -> WindowEnd | None:
         unit,
         finite(row["utilisation"]),
         finite(row.get("station_m")),
+        other_place_of(project, row),
     )
 
 

@@ -109,8 +109,10 @@ direction = "along"
 share = 0.8                           # of capacity; or most = "72 kN"
 
 # Other kinds: uplift (least), swing (most = "35 deg", for hangers), sag (most, least), slope (most = "12 %"),
-# catenary_constant (most = "1800 m"). Limits on spans take spans = ["West mast"], the support where a span starts;
-# every limit takes conditions = ["hot"], clause = "...", why = "...".
+# catenary_constant (most = "1800 m"), spacing (least = "1.2 m" from the line of other = "upper_wire.taut.toml", a file
+# in this folder; other_condition = "iced", or other_conditions = { hot = "iced" }; shift = { offset = "1.5 m" }).
+# Limits on spans take spans = ["West mast"], the support where a span starts; every limit takes conditions = ["hot"],
+# clause = "...", why = "...".
 """
 
 

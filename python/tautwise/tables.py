@@ -265,6 +265,11 @@ class Stringing(Table):
         """Whether the line is pulled in over sheaves and then clamped."""
         return self.method == OVER_SHEAVES
 
+    @property
+    def has_rule(self) -> bool:
+        """Whether the file says how hard to pull."""
+        return any((self.horizontal_tension_N, self.tension, self.sag, self.natural_length_m))
+
 
 class Ice(Table):
     """A sleeve of ice: radial thickness and density, and the share of it that each span keeps."""

@@ -24,6 +24,7 @@ from tautwise.results_vet import (
     FileVerdict,
     LimitState,
     VetReport,
+    both_places,
     human_unit,
     limit_table,
     shown_values,
@@ -132,7 +133,7 @@ def _end_table(window: PullWindow) -> Table:
             end.limit or OPEN_ENDED,
             *shown_values(end.unit, end.allowed, end.value, end.allowed),
             end.condition,
-            end.place,
+            both_places(end.place, end.other_place),
         )
         for name, end in ends
     )
@@ -194,7 +195,7 @@ def _edge_lines(best: PullToSpecify) -> list[str]:
 
 
 def _edge_words(edge: WindowEnd) -> str:
-    place = f", {edge.place}" if edge.place else ""
+    place = f", {both_places(edge.place, edge.other_place)}" if edge.place else ""
     return f"{edge.limit} {100.0 * (edge.utilisation or 0.0):.1f} % ({edge.condition}{place})"
 
 
@@ -318,7 +319,7 @@ def _governing_lines(limits: Sequence[LimitState]) -> list[str]:
     worst = next((limit for limit in limits if limit.word != WAIVED), limits[0])
     lines = []
     if worst.status != UNDECIDED:
-        place = f", {worst.place}" if worst.place else ""
+        place = f", {both_places(worst.place, worst.other_place)}" if worst.place else ""
         used = "" if worst.utilisation is None else f", {100.0 * worst.utilisation:.1f} % used"
         lines = [f"Governing: {worst.id} in {worst.condition or 'no condition'}{place}{used}."]
         notes = (("Where it stands", worst.clause), ("Why", worst.why))

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from tautwise.curves import force_terms
-from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SupportLoadLimit, SwingLimit
+from tautwise.limits import GROUND, BaseLimit, ClearanceLimit, SpacingLimit, SupportLoadLimit, SwingLimit
 from tautwise.rules_loading import has_capacity
 from tautwise.tables import PLUMB, SECONDS_PER_HOUR, Line, Part, Support
 from tautwise.to_core_loads import condition_of
@@ -18,8 +18,12 @@ if TYPE_CHECKING:
     from tautwise.model import Project
 
 
-def problem_of(project: Project) -> dict[str, Any]:
-    """The `problem` that ``tautwise._core.Project`` takes: plain values, SI, degC, rad; None for "not given"."""
+def problem_of(project: Project, judging: bool = True) -> dict[str, Any]:
+    """The `problem` that ``tautwise._core.Project`` takes: plain values, SI, degC, rad; None for "not given".
+
+    judging: False leaves out other lines and the spacings from them.
+    """
+    limits = [_limit(project, limit) for limit in project.limits]
     return {
         "line": _line(project),
         "supports": [_support(project, support) for support in project.supports],
@@ -27,7 +31,8 @@ def problem_of(project: Project) -> dict[str, Any]:
         "crossings": [{"from_m": one.from_m, "to_m": one.to_m, "top_m": one.top_m} for one in project.crossings],
         "conditions": [condition_of(project, condition) for condition in project.conditions],
         "marks": [_place(mark.at_m, mark.at_length_m) for mark in project.marks],
-        "limits": [_limit(project, limit) for limit in project.limits],
+        "limits": limits,
+        "courses": _courses(project, limits, judging),
         "stringing": _stringing(project),
         "history": _history(project),
         "route": "turning" if project.turns else "straight",
@@ -144,6 +149,22 @@ def _limit(project: Project, limit: BaseLimit) -> dict[str, Any]:
     if isinstance(limit, SupportLoadLimit):
         core["direction"] = limit.direction
     return core
+
+
+def _courses(project: Project, limits: list[dict[str, Any]], judging: bool) -> list[Any]:
+    """The other lines that spacings keep from; their numbers go into the rows of the limits."""
+    courses: list[Any] = []
+    for number, (limit, row) in enumerate(zip(project.limits, limits, strict=True)):
+        if not isinstance(limit, SpacingLimit):
+            continue
+        row["applies"] = [judging and applies for applies in row["applies"]]
+        row["courses"] = [None] * len(project.conditions)
+        for index, condition in enumerate(project.conditions):
+            if row["applies"][index]:
+                near = project.neighbour(number, limit.other_condition_for(condition.name))
+                row["courses"][index] = len(courses)
+                courses.append(near.moved(limit.shift))
+    return courses
 
 
 def _clearance(project: Project, limit: ClearanceLimit) -> dict[str, Any]:

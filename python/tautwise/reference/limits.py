@@ -11,9 +11,10 @@ import numpy as np
 
 from .quadrature import Array, golden
 from .section import Settled
+from .spacing import Beside, least_spacing
 from .states import horizontal_tension, sag_of, slope_max, support_state, tension_max
 
-SPAN_KINDS = {"clearance", "tension", "sag", "catenary_constant", "slope"}
+SPAN_KINDS = {"clearance", "tension", "sag", "catenary_constant", "slope", "spacing"}
 
 
 @dataclass(frozen=True)
@@ -55,8 +56,13 @@ def number(row: Mapping[str, Any], key: str) -> float | None:
     return None if value is None or math.isnan(value) else float(value)
 
 
-def judge(problem: Mapping[str, Any], limit: int, settled: Settled, bare: Settled) -> Verdict | None:
-    """The worst of a limit's places in one condition; `bare` is the condition without its resultant addition."""
+def judge(
+    problem: Mapping[str, Any], limit: int, settled: Settled, bare: Settled, beside: Beside | None = None
+) -> Verdict | None:
+    """The worst of a limit's places in one condition; `bare` is the condition without its resultant addition.
+
+    beside: the line that a spacing keeps from.
+    """
     rule = problem["limits"][limit]
     by_span = rule["kind"] in SPAN_KINDS
     count = len(settled.spans) + (0 if by_span else 1)
@@ -65,7 +71,7 @@ def judge(problem: Mapping[str, Any], limit: int, settled: Settled, bare: Settle
     for place in range(count):
         if covers[place]:
             found += (
-                judge_span(problem, rule, settled, place)
+                judge_span(problem, rule, settled, place, beside)
                 if by_span
                 else judge_support(rule, settled, bare, place, problem)
             )
@@ -73,9 +79,15 @@ def judge(problem: Mapping[str, Any], limit: int, settled: Settled, bare: Settle
 
 
 def judge_span(
-    problem: Mapping[str, Any], rule: Mapping[str, Any], settled: Settled, span: int
+    problem: Mapping[str, Any],
+    rule: Mapping[str, Any],
+    settled: Settled,
+    span: int,
+    beside: Beside | None = None,
 ) -> list[Verdict]:
     """Verdicts of one span."""
+    if rule["kind"] == "spacing":
+        return [] if beside is None else [least(least_spacing(settled, span, beside), rule["least"], 1.0)]
     if rule["kind"] == "clearance":
         clearance = least_clearance(problem, rule, settled, span)
         return [] if clearance is None else [least(clearance, rule["least"], 1.0)]

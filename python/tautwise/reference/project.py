@@ -14,6 +14,7 @@ from .quadrature import Array, Growing, PieceLoad
 from .route import route_of
 from .section import Section, Settled, Support
 from .sheave import Feed, begins, lengths_of, run_over
+from .spacing import Beside
 from .span import Material, Piece
 from .states import span_state, support_state
 from .stringing import Strung, pull_by_rule, string_to
@@ -244,10 +245,18 @@ class Twin:
                         if rule["kind"] == "swing"
                         else self.settle(c, pull_N)
                     )
-                    verdict = limits.judge(self.problem, i, self.settle(c, pull_N), bare)
+                    settled = self.settle(c, pull_N)
+                    verdict = limits.judge(self.problem, i, settled, bare, self.beside(rule, c))
                     if verdict is not None:
                         found[i, c] = verdict
         return found
+
+    def beside(self, rule: Mapping[str, Any], condition: int) -> Beside | None:
+        """The line that a spacing keeps from: `others` of the problem lists (problem, condition, shift)."""
+        if rule["kind"] != "spacing":
+            return None
+        problem, other_condition, shift = self.problem["others"][rule["courses"][condition]]
+        return Beside(Twin(problem).settle(other_condition), np.asarray(shift, dtype=np.float64))
 
     def worst(self, pull_N: float) -> float:
         """The greatest utilisation of all limits at a pull; 0 without any."""

@@ -1,0 +1,66 @@
+"""Another project's line, settled in one of its conditions, as the course that a spacing keeps from."""
+
+from __future__ import annotations
+
+from bisect import bisect_right
+from collections.abc import Sequence
+from dataclasses import dataclass
+from itertools import accumulate
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from tautwise.limits import Shift
+    from tautwise.model import Project
+
+    Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Neighbour:
+    """A line beside ours, in its own axes.
+
+    Fields
+    ------
+    arcs: (n, 14), natural lengths (2), positions (2 x 3) and slopes (2 x 3) of the ends of its cubic arcs.
+    names: of its supports. ends_m: natural length from its first support to each of the others.
+    """
+
+    arcs: Floats
+    names: tuple[str, ...]
+    ends_m: tuple[float, ...]
+
+    def moved(self, shift: Shift) -> Floats:
+        """The arcs in our axes."""
+        arcs = self.arcs.copy()
+        arcs[:, 2:8] += 2 * [shift.station_m, shift.offset_m, shift.elevation_m]
+        return arcs
+
+    def places(self, shift: Shift) -> Floats:
+        """Places along the line, (n + 1, 3), in our axes."""
+        arcs = self.moved(shift)
+        return np.vstack([arcs[:, 2:5], arcs[-1:, 5:8]])
+
+    def place(self, at_m: float, position_m: Sequence[float], shift: Shift) -> str:
+        """A place in words: the span, and the station in the line's own axes; `position_m` in ours."""
+        span = min(bisect_right(self.ends_m, at_m), len(self.ends_m) - 1)
+        return f"{self.names[span]} to {self.names[span + 1]}, station {position_m[0] - shift.station_m:.1f} m"
+
+
+def neighbour_of(project: Project, condition: str) -> Neighbour:
+    """The line of a project in one of its conditions, for the stringing that its file gives, proven as `settle` does.
+
+    Raises
+    ------
+    InputError: its natural lengths leave it slack, or the like, at the keys of its file.
+    NotSettledError: no equilibrium within tolerance.
+    """
+    from tautwise.solve import line_core_of, settle
+
+    settled: Any = settle(project, condition)
+    lengths = [span.natural_length_m for span in settled.spans]
+    arcs = line_core_of(project).course(project.condition_index(condition))
+    return Neighbour(arcs, tuple(support.name for support in project.supports), tuple(accumulate(lengths)))
