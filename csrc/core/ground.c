@@ -2,6 +2,7 @@
 
 #include <math.h>
 
+#include "span_ramp.h"
 #include "vector.h"
 
 enum { TANGENTS = 11 };
@@ -89,11 +90,31 @@ static double at_station(const stretch *line, double station)
     return tw_piece_at_station(line->material, line->piece, line->s0, line->s1, a, b, station);
 }
 
+/* Under a growing load normal . t has up to two zeros: they and the ends. */
+static void judge_top_ramp(const stretch *line, const top *t, const double normal[3], double from, double to, least *best)
+{
+    double places[2];
+    int count = tw_span_ramp_stationary(line->piece, normal, places);
+    for (int i = 0; i < count; i++) {
+        double r[3];
+        tw_piece_position(line->material, line->piece, places[i], r);
+        if (places[i] > line->s0 && places[i] < line->s1 && r[0] >= from && r[0] <= to) {
+            offer_place(line, t, places[i], best);
+        }
+    }
+    offer_place(line, t, at_station(line, from), best);
+    offer_place(line, t, at_station(line, to), best);
+}
+
 /* Exact least clearance over one straight top between stations from and to. Along a piece, d(clearance)/ds has the sign
  * of normal . t, which is linear in s: where it grows through zero within the stretch is the least place, otherwise an end. */
 static void judge_top(const stretch *line, const top *t, double from, double to, least *best)
 {
     const double normal[3] = {-t->slope, 0.0, 1.0};
+    if (tw_span_ramp_is(line->piece)) {
+        judge_top_ramp(line, t, normal, from, to, best);
+        return;
+    }
     double rate = -tw_dot(normal, line->piece->load);
     double at_zero = tw_dot(normal, line->piece->tension);
     double s = rate > 0.0 ? -at_zero / rate : -1.0;
@@ -128,7 +149,8 @@ static double bound(const stretch *line, const double *x, const double *z)
 static stretch make_stretch(const tw_material *material, const tw_piece *piece, double s0, double s1)
 {
     stretch line = {.material = material, .piece = piece, .s0 = s0, .s1 = s1};
-    line.convex = piece->load[0] == 0.0 && piece->load[2] <= 0.0 && piece->tension[0] > 0.0;
+    line.convex = piece->load[0] == 0.0 && piece->ramp[0] == 0.0 && piece->load[2] <= 0.0
+                  && piece->load[2] + piece->length_m * piece->ramp[2] <= 0.0 && piece->tension[0] > 0.0;
     double first[3] = {0.0}, last[3] = {0.0};
     tw_piece_position(material, piece, s0, first);
     tw_piece_position(material, piece, s1, last);

@@ -35,7 +35,6 @@ from tautwise.fields import (
     MassPerLength,
     Modulus,
     Name,
-    Pattern,
     PositiveForce,
     PositiveForcePerLength,
     PositiveLength,
@@ -50,6 +49,7 @@ from tautwise.fields import (
     Tolerance,
     Words,
 )
+from tautwise.patterns import Pattern
 from tautwise.units import STANDARD_GRAVITY_M_PER_S2
 
 HOLDS = ("anchor", "hanger", "post")
