@@ -249,6 +249,16 @@ def test_a_bearing_is_an_angle_from_the_span():
     )
 
 
+def test_the_bracket_of_a_growing_load_closes_with_the_fourth_power_of_the_mesh():
+    """As under a uniform load: what a mesh misses of a linear load would show as a lower power."""
+    load = ramp((0.0, 0.0, -2.0), (0.0, 0.0, -30.0), 0.0, 300.8, "length")
+    problem = cases.problem(cases.span(300.0), cases.lengths_rule(300.8), conditions=[cases.condition(loads=[load])])
+    core = _core.Project(problem)
+    gaps = [core.settle(0, elements_per_span=n, gap_relative=0.1)["gap_relative"] for n in (8, 16, 32)]
+    assert min(gaps) > 0.0
+    np.testing.assert_allclose([gaps[0] / gaps[1], gaps[1] / gaps[2]], 16.0, rtol=0.02)
+
+
 def test_a_ramp_split_in_two_is_the_same_ramp():
     whole = ramp((0.0, 0.0, -4.0), (0.0, 0.0, -28.0), 20.0, 140.0, "length")
     halves = [
