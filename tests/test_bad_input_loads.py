@@ -205,6 +205,16 @@ def test_good_loads_settle(tmp_path, made):
     assert condition.settled
 
 
+def test_a_held_carriage_that_its_span_leaves_behind(tmp_path):
+    """A heavy load ahead draws the hanger's clamp past the carriage's station."""
+    made = '{ force = "9 kN", at = "225 m" }, { force = "1 kN", carriage = "held", at = "150.01 m" }'
+    with pytest.raises(InputError) as refused:
+        load(file_of(tmp_path, {**loads(made), PATTERN: "pattern = [0, 1]"})).settle()
+    (fault,) = refused.value.faults
+    assert fault.path == "condition.iced.load[1].at"
+    assert "does not pass 150.01 m" in fault.problem
+
+
 def test_other_units_say_the_same(tmp_path):
     """One pound-force is 4.4482216152605 N, one foot 0.3048 m: to the last digits of a conversion."""
     foot, pound = 0.3048, 4.4482216152605
