@@ -2,9 +2,14 @@
 
 from __future__ import annotations
 
+import math
+
+import core_cases as cases
 import pytest
 
+from tautwise import _core
 from tautwise.errors import InputError
+from tautwise.from_core import file_path
 from tautwise.model import load
 
 GOOD = """\
@@ -200,6 +205,29 @@ def test_good_loads_settle(tmp_path, made):
     assert condition.settled
 
 
+def test_a_held_carriage_that_its_span_leaves_behind(tmp_path):
+    """A heavy load ahead draws the hanger's clamp past the carriage's station."""
+    made = '{ force = "9 kN", at = "225 m" }, { force = "1 kN", carriage = "held", at = "150.01 m" }'
+    with pytest.raises(InputError) as refused:
+        load(file_of(tmp_path, {**loads(made), PATTERN: "pattern = [0, 1]"})).settle()
+    (fault,) = refused.value.faults
+    assert fault.path == "condition.iced.load[1].at"
+    assert "does not pass 150.01 m" in fault.problem
+
+
+def test_other_units_say_the_same(tmp_path):
+    """One pound-force is 4.4482216152605 N, one foot 0.3048 m: to the last digits of a conversion."""
+    foot, pound = 0.3048, 4.4482216152605
+    us = '{ per_run = "20 lbf/ft", spans = ["Middle"] }, { force = "450 lbf", carriage = "held", at = "130 ft" }'
+    si = (
+        f'{{ per_run = "{20 * pound / foot!r} N/m", spans = ["Middle"] }}, '
+        f'{{ force = "{450 * pound!r} N", carriage = "held", at = "{130 * foot!r} m" }}'
+    )
+    a, b = (load(file_of(tmp_path, loads(made))).settle() for made in (us, si))
+    assert [span.sag_m for span in a.spans] == pytest.approx([span.sag_m for span in b.spans], rel=1e-11)
+    assert a.marks[0].tension_beyond_N == pytest.approx(b.marks[0].tension_beyond_N, rel=1e-10)
+
+
 SLIPS = [
     ({"wind = 1.5, load": "wind = 15, load"}, "condition.iced.factors.wind", "a load factor of 15"),
     ({"1200 m": "6000 m"}, "condition.iced.wind.altitude", "ft for m?"),
@@ -212,3 +240,59 @@ def test_what_is_hardly_meant_is_said(tmp_path, changes, key, words):
     (warning,) = load(file_of(tmp_path, changes)).warnings
     assert key in warning
     assert words in warning
+
+
+# --- what only a script that talks to the core can give
+
+CARRIAGE = {**cases.point_load(30.0, (0.0, 0.0, -1.0), "station"), "carriage": "free", "carriage_span": 0}
+SHORT = cases.spread_load((0.0, 0.0, -1.0), 1.0, 9.0)
+CORE = [
+    ({"ice_share": [1.5]}, "conditions[0].ice_pattern"),
+    ({"ice_share": [math.nan]}, "conditions[0].ice_pattern"),
+    ({"factor_wind": -1.0}, "conditions[0].factor_wind"),
+    ({"wind_altitude_m": 2e4}, "conditions[0].wind_altitude_m"),
+    ({"wind_bearing_rad": 7.0}, "conditions[0].wind_bearing_rad"),
+    ({"loads": [CARRIAGE, CARRIAGE]}, "conditions[0].loads"),
+    ({"loads": [{**CARRIAGE, "is_point": False}]}, "loads[0].carriage"),
+    ({"loads": [{**CARRIAGE, "carriage_span": 1}]}, "loads[0].carriage"),
+    ({"loads": [{**CARRIAGE, "carriage": "held", "place": "length"}]}, "loads[0].from_m"),
+    ({"loads": [{**cases.spread_load((0.0, 0.0, -1.0)), "vector_to": (0.0, 0.0, -2.0)}]}, "loads[0].from_m"),
+    ({"loads": [{**cases.point_load(30.0, (0.0, 0.0, -1.0)), "is_run": True}]}, "loads[0].is_run"),
+    ({"loads": [{**SHORT, "vector_to": (0.0, math.inf, 0.0)}]}, "loads[0].vector_to[1]"),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize(("given", "path"), CORE, ids=lambda value: str(value)[:40])
+def test_the_core_refuses_them_by_their_path(given, path):
+    with pytest.raises(_core.RangeError) as refused:
+        _core.Project(cases.problem(cases.span(100.0), cases.rule("pull", 1e4), conditions=[cases.condition(**given)]))
+    assert refused.value.path == path
+    assert refused.value.expected
+
+
+WRONG = [
+    {"ice_share": [1.0, 1.0]},
+    {"ice_share": "all"},
+    {"loads": [{**cases.spread_load((0.0, 0.0, -1.0)), "covers": [True, False]}]},
+    {"loads": [{**cases.spread_load((0.0, 0.0, -1.0)), "covers": 1}]},
+    {"loads": [{**CARRIAGE, "carriage": "loose"}]},
+    {"loads": [{**cases.spread_load((0.0, 0.0, -1.0), 1.0, 9.0), "vector_to": (0.0, 1.0)}]},
+]
+
+
+@pytest.mark.parametrize("given", WRONG, ids=lambda value: str(value)[:40])
+def test_the_core_refuses_what_has_no_right_shape(given):
+    with pytest.raises((ValueError, TypeError)):
+        _core.Project(cases.problem(cases.span(100.0), cases.rule("pull", 1e4), conditions=[cases.condition(**given)]))
+
+
+def test_a_fault_of_the_core_finds_its_key_in_the_file(tmp_path):
+    project = load(file_of(tmp_path, {}))
+    for path, key in (
+        ("conditions[0].ice_pattern", ("condition", 0, "ice", "pattern")),
+        ("conditions[0].factor_wind", ("condition", 0, "factors", "wind")),
+        ("conditions[0].wind_altitude_m", ("condition", 0, "wind", "altitude")),
+        ("supports[1].hanger_wind_area_m2", ("support", 1, "wind_area")),
+        ("loads[0].carriage", ("condition", 0, "load", 0, "carriage")),
+    ):
+        assert file_path(project, path) == key

@@ -151,6 +151,32 @@ def test_a_load_per_run_against_its_differential_equation(rise, length, across, 
     assert span["horizontal_tension_N"] == pytest.approx(states[0, 3], rel=near)
 
 
+GROUND = [(-5.0, 3.0), (60.0, 15.0), (130.0, 9.0), (210.0, 16.0), (300.0, 12.0), (420.0, 14.0), (2005.0, 8.0)]
+
+
+@pytest.mark.parametrize("seed", DRAWN[:6])
+def test_limits_agree_under_growing_loads(seed):
+    """Golden section leaves 1e-8 of a sample's step, squared; values near 0 are forces of 1e4 N."""
+    problem = drawn(seed)
+    end = problem["supports"][-1]["station_m"]
+    problem["ground"] = cases.profile([point for point in GROUND if point[0] < end] + [(end + 5.0, 8.0)])
+    problem["crossings"] = [{"from_m": 90.0, "to_m": 105.0, "top_m": 12.0}]
+    kinds = [
+        cases.limit("clearance", least=5.0),
+        cases.limit("clearance", least=5.0, crossing=0),
+        cases.limit("sag", most=9.0),
+        cases.limit("slope", most=0.25),
+        cases.limit("tension", most=30e3),
+        cases.limit("swing", most=0.5),
+    ]
+    problem["limits"] = [cases.complete(each, 1, len(problem["supports"])) for each in kinds]
+    found, expected = _core.Project(problem).judge(), Twin(problem).judge()
+    rows = [row for row in found if row["value"] is not None]
+    assert {(row["limit"], row["condition"]) for row in rows} == set(expected)
+    for row in rows:
+        assert row["value"] == pytest.approx(expected[row["limit"], 0].value, rel=1e-8, abs=1e-6), row
+
+
 # --- relations
 
 
@@ -221,6 +247,16 @@ def test_a_bearing_is_an_angle_from_the_span():
     assert (
         sum(row["across_N"] for row in made[0]["supports"]) < 0.0 < sum(row["along_N"] for row in made[0]["supports"])
     )
+
+
+def test_the_bracket_of_a_growing_load_closes_with_the_fourth_power_of_the_mesh():
+    """As under a uniform load: what a mesh misses of a linear load would show as a lower power."""
+    load = ramp((0.0, 0.0, -2.0), (0.0, 0.0, -30.0), 0.0, 300.8, "length")
+    problem = cases.problem(cases.span(300.0), cases.lengths_rule(300.8), conditions=[cases.condition(loads=[load])])
+    core = _core.Project(problem)
+    gaps = [core.settle(0, elements_per_span=n, gap_relative=0.1)["gap_relative"] for n in (8, 16, 32)]
+    assert min(gaps) > 0.0
+    np.testing.assert_allclose([gaps[0] / gaps[1], gaps[1] / gaps[2]], 16.0, rtol=0.02)
 
 
 def test_a_ramp_split_in_two_is_the_same_ramp():

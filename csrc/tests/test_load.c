@@ -119,8 +119,33 @@ static void test_no_load_takes_no_addition(void)
     CHECK(load[0] == 0.0 && load[1] == 0.0 && load[2] == 0.0);
 }
 
+/* ISO 2533, geopotential altitudes 0 and 1000 m: 1.2250 and 1.1117 kg/m3 (from memory; five digits). */
+static void test_air_is_thinner_higher_up(void)
+{
+    tw_condition windy = condition_of(0.0, 900.0, NAN, 0.0);
+    CHECK_NEAR(tw_load_air_density(0.0, 15.0), 1.2250, 5e-5);
+    CHECK_NEAR(tw_load_air_density(1000.0, 8.5), 1.1117, 1e-4);
+    windy.wind_speed_m_per_s = 20.0;
+    windy.wind_altitude_m = 1000.0;
+    windy.temperature_degC = 8.5;
+    windy.factor_wind = 1.5;
+    CHECK_REL(tw_load_pressure(&windy), 1.5 * 200.0 * tw_load_air_density(1000.0, 8.5), 1e-15);
+}
+
+static void test_a_share_of_ice_is_a_thinner_ring(void)
+{
+    const double d = 0.03, t = 0.02;
+    CHECK(tw_load_iced_diameter(d, t, 1.0) == d + 2.0 * t);
+    CHECK_REL(tw_load_iced_diameter(d, t, 1.0 - 1e-15), d + 2.0 * t, 1e-14);
+    CHECK(tw_load_iced_diameter(d, t, 0.0) == d);
+    double half = tw_load_iced_diameter(d, t, 0.5);
+    CHECK_REL(tw_load_ice(d, 0.5 * (half - d), 900.0), 0.5 * tw_load_ice(d, t, 900.0), 1e-14);
+}
+
 int main(void)
 {
+    test_air_is_thinner_higher_up();
+    test_a_share_of_ice_is_a_thinner_ring();
     test_general_order_95();
     test_a_constant_scales_the_resultant_and_keeps_its_direction();
     test_ice_is_an_annulus();

@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from tautwise.check import LOADS_MOST, Checked, at_most_one, exactly_one, known_names
-from tautwise.fields import SharesOf
 from tautwise.keylines import Path as KeyPath
+from tautwise.patterns import SharesOf
 from tautwise.strict import did_you_mean, shown
 from tautwise.tables import Condition, Load, Wind
 

@@ -34,7 +34,7 @@ from tautwise.results import (
 from tautwise.results_vet import HOLDS, WAIVED, worst_of_each
 from tautwise.solve_limits import limit_states, window_of
 from tautwise.solve_line import conditions_of, equilibrium_of
-from tautwise.solve_places import LENGTHS, OFF_THE_LINE, beyond_faults, off_faults, places_of
+from tautwise.solve_places import LENGTHS, OFF_THE_LINE, beyond_faults, held_faults, off_faults, places_of
 from tautwise.solve_relax import relaxations_of
 from tautwise.strict import Refused
 from tautwise.units import quantity
@@ -305,6 +305,7 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
     else:
         faults = beyond_faults(project, math.fsum(chords_m(project)), "about its length")
     words = _core.STATUS[OFF_THE_LINE]
+    faults = faults or held_faults(project)
     raise InputError(faults or [Fault(project.source, None, "", words, "marks and loads that lie on the line")])
 
 

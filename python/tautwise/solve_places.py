@@ -38,6 +38,20 @@ def off_faults(project: Project, low_m: float, high_m: float) -> list[Fault]:
     ]
 
 
+def held_faults(project: Project) -> list[Fault]:
+    """A fault for each held carriage: where the line is off no other place, a clamp has swung past one of these."""
+    loads = [load for condition in project.conditions for load in condition.loads]
+    return [
+        project.core_fault(
+            f"loads[{index}].at",
+            f"the line of this span does not pass {load.at_m:g} m once it is loaded",
+            "a station farther from the support, whose clamp moves along",
+        )
+        for index, load in enumerate(loads)
+        if load.carriage == "held"
+    ]
+
+
 def places_of(project: Project, keys: tuple[str, ...]) -> Iterator[Place]:
     """Path in the core's problem and value, m, of each place of a mark or a load given by one of some keys."""
     for number, mark in enumerate(project.marks):

@@ -40,7 +40,6 @@ from tautwise.fields import (
     MassPerLength,
     Modulus,
     Name,
-    Pattern,
     PositiveForce,
     PositiveForcePerLength,
     PositiveLength,
@@ -57,6 +56,7 @@ from tautwise.fields import (
     Tolerance,
     Words,
 )
+from tautwise.patterns import Pattern
 from tautwise.units import STANDARD_GRAVITY_M_PER_S2
 
 HOLDS = ("anchor", "hanger", "sheave", "post")

@@ -20,6 +20,7 @@ if TYPE_CHECKING:
 
 GAP_IN_ROUNDING = 1e-14  # below it the two energies differ by rounding alone
 BLOWN_M = 5e-4  # blow-out below half a millimetre is not worth a column
+LOADED_SHARE = 1e-3  # of the tension: a difference across a mark that is worth a column
 
 Row = tuple[float | str | None, ...]
 
@@ -209,18 +210,25 @@ def _support_lines(supports: Sequence[SupportState]) -> list[str]:
 
 def _mark_lines(found: Equilibrium, *, turns: bool) -> list[str]:
     marks = found.marks
+    loaded = any(abs(mark.tension_beyond_N - mark.tension_N) > LOADED_SHARE * mark.tension_N for mark in marks)
     plan = [length_column("east", [1e3]), length_column("north", [1e3])] if turns else [length_column("offset", [0.0])]
-    columns = (
+    columns = [
         text_column("mark"),
         length_column("along natural line", [1e3]),
         force_column("tension", [mark.tension_N for mark in marks]),
+        force_column("beyond", [mark.tension_beyond_N for mark in marks]),
         length_column("station", [1e3]),
         *plan,
         length_column("elevation", [mark.position_m[2] for mark in marks]),
-    )
+    ]
     first = 0 if turns else 1  # the x of a straight route is its station
-    rows: list[Row] = [(m.name, m.at_length_m, m.tension_N, m.station_m, *m.position_m[first:]) for m in marks]
-    return Table(columns, tuple(rows)).lines()
+    rows: list[Row] = [
+        (m.name, m.at_length_m, m.tension_N, m.tension_beyond_N, m.station_m, *m.position_m[first:]) for m in marks
+    ]
+    if not loaded:
+        del columns[3]
+        rows = [(*row[:3], *row[4:]) for row in rows]
+    return Table(tuple(columns), tuple(rows)).lines()
 
 
 def _bracket_words(found: Equilibrium) -> str:

@@ -6,7 +6,7 @@ from bisect import bisect_right
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
-from tautwise.fields import SharesOf
+from tautwise.patterns import SharesOf
 from tautwise.tables import Condition, Load
 
 if TYPE_CHECKING:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from tautwise.columns import plural
-from tautwise.fields import SharesOf
+from tautwise.patterns import SharesOf
 
 if TYPE_CHECKING:
     from tautwise.tables import Condition, Load
