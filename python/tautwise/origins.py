@@ -122,4 +122,5 @@ def scenery_of(project: Project) -> Scenery:
             if limit.over == GROUND
         ),
         title=project.title,
+        turns=project.turns,
     )

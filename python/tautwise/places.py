@@ -25,6 +25,7 @@ class Scenery(Record):
     supports: name, station and elevation of the point where the hold is fixed, and the hold.
     ground_clearances: from, to, and the clearance that a limit asks for above the ground.
     title: of the project.
+    turns: the route turns in plan, given by east and north.
     """
 
     ground: tuple[tuple[float, float], ...]
@@ -32,6 +33,7 @@ class Scenery(Record):
     supports: tuple[tuple[str, float, float, str], ...]
     ground_clearances: tuple[tuple[float, float, float], ...]
     title: str = ""
+    turns: bool = False
 
 
 @dataclass(frozen=True, slots=True, eq=False)
