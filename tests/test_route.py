@@ -397,6 +397,14 @@ def test_places_along_the_line_carry_their_station():
     assert math.isnan(found["station_m"][2])
 
 
+def test_the_greatest_tension_is_placed_along_the_route():
+    """At the higher end, which is the far clamp of the second span: the end of the route."""
+    problem = bend(limits=[cases.limit("tension", most=30e3)])
+    problem["supports"][2]["elevation_m"] = 50.0
+    (row,) = _core.Project(problem).judge()
+    assert (row["span"], row["station_m"]) == (1, pytest.approx(600.0, abs=1e-9))
+
+
 # --- moving a support
 
 
