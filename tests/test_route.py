@@ -227,6 +227,9 @@ def test_the_plan_mirrored(plain):
     np.testing.assert_allclose(swings[0], -swings[1], rtol=1e-10)
 
 
+MARKS = [{"place": "station", "at_m": 610.0}]
+
+
 def test_supports_on_one_line_are_a_straight_route():
     """Heading east the axes are those of the straight route; only stations count from the first support."""
     stations = [0.0, 220.0, 500.0, 760.0]
@@ -235,7 +238,7 @@ def test_supports_on_one_line_are_a_straight_route():
     conditions = [cases.condition(wind_pressure_Pa=300.0, loads=loads)]
     limits = [cases.limit("clearance", least=5.0), cases.limit("clearance", least=5.0, crossing=0)]
     parts = {"conditions": conditions, "limits": limits, "crossings": [(390.0, 420.0, 9.0)],
-             "ground": [(0.0, 2.0), (250.0, 6.0), (760.0, 3.0)], "marks": [{"place": "station", "at_m": 610.0}]}  # fmt: skip
+             "ground": [(0.0, 2.0), (250.0, 6.0), (760.0, 3.0)], "marks": MARKS}  # fmt: skip
     straight = cases.problem(at_angle_points(row, [(x, 0.0) for x in stations]), cases.rule("pull", 15e3), **parts)
     bent = turning(row, [(x + 512.0, 64.0) for x in stations], cases.rule("pull", 15e3), **parts)
     found, expected = settled(bent), settled(straight)
@@ -351,7 +354,7 @@ def test_limits_agree():
 
 
 def test_a_profile_of_many_points_over_an_oblique_span():
-    """The bound that spares most of a profile holds where the line's direction is no axis: as by a few long stretches."""
+    """The bound that spares most of a profile holds where the line's direction is no axis; the twin samples."""
     problem = bend(wind=300.0)
     problem = {**problem, "supports": [turned(row, 0.7) for row in problem["supports"]]}
     x = np.linspace(-1.0, 601.0, 241)
@@ -394,6 +397,14 @@ def test_places_along_the_line_carry_their_station():
     assert math.isnan(found["station_m"][2])
 
 
+def test_the_greatest_tension_is_placed_along_the_route():
+    """At the higher end, which is the far clamp of the second span: the end of the route."""
+    problem = bend(limits=[cases.limit("tension", most=30e3)])
+    problem["supports"][2]["elevation_m"] = 50.0
+    (row,) = _core.Project(problem).judge()
+    assert (row["span"], row["station_m"]) == (1, pytest.approx(600.0, abs=1e-9))
+
+
 # --- moving a support
 
 
@@ -413,7 +424,8 @@ def test_prices_move_supports_along_their_own_axes():
     problem = window_problem(7e3)
     window = _core.Project(problem).window()
     prices = [row for row in window["prices"] if row["variable"] == "support_station"]
-    assert window["open"] and {row["support"] for row in prices} >= {1}
+    assert window["open"]
+    assert {row["support"] for row in prices} >= {1}
     for row in prices:
         pull = window[row["end"]]["pull_N"]
         margins = [margin(moved_ahead(problem, row["support"], by), row, pull) for by in (1e-3, -1e-3)]

@@ -74,7 +74,7 @@ def test_it_swings_along_on_its_circle():
 
 @pytest.mark.parametrize("side", [1.0, -1.0])
 def test_one_string_goes_slack_and_the_other_swings(side):
-    """More across than the V can hold: the windward string carries all of the force, along itself, at its own length."""
+    """More across than the V can hold: the windward string carries all of it, along itself, at its length."""
     row = vee(30.0, spread=1.2)
     problem = line(row, wind=900.0)
     problem["conditions"][0]["wind_angle_rad"] = side * 0.5 * math.pi
@@ -166,7 +166,11 @@ def test_the_twin_agrees(seed):
     rng = np.random.default_rng(100 + seed)
     places = [(0.0, 0.0), (250.0, float(rng.uniform(-60, 60))), (480.0, float(rng.uniform(-60, 60))), (760.0, 0.0)]
     spreads = rng.uniform(0.3, 5.8, 2)
-    rows = [cases.support(0.0, 30.0), *(vee(30.0, length=3.0, spread=float(s)) for s in spreads), cases.support(0.0, 30.0)]
+    rows = [
+        cases.support(0.0, 30.0),
+        *(vee(30.0, length=3.0, spread=float(s)) for s in spreads),
+        cases.support(0.0, 30.0),
+    ]
     conditions = [cases.condition(wind_pressure_Pa=float(rng.uniform(0, 600)))]
     problem = turning(rows, places, cases.rule("pull", 9e3), conditions=conditions)
     found, twin = settled(problem), Twin(problem)

@@ -24,17 +24,16 @@ void tw_window_move(tw_window_run *run, const tw_support *home, size_t support, 
 {
     tw_support *at = &run->supports[support];
     *at = *home;
-    if (run->route_m) {
-        tw_route_measure(run->supports, run->project.support_count, run->route_m);
-    }
     if (station) {
         double ahead[2];
         tw_route_ahead(&run->project, support, ahead); /* of the support at home */
         at->station_m += by * ahead[0];
         at->offset_m += by * ahead[1];
-        if (run->route_m) {
-            tw_route_measure(run->supports, run->project.support_count, run->route_m);
-        }
+    }
+    if (run->route_m) {
+        tw_route_measure(run->supports, run->project.support_count, run->route_m);
+    }
+    if (station) {
         double ground = tw_ground_elevation(&run->project, tw_route_support_station(&run->project, support));
         if (!isnan(home->height_m) && !isnan(ground)) {
             at->elevation_m = ground + home->height_m;

@@ -123,6 +123,7 @@ def scenery_of(project: Project, condition: int) -> Scenery:
         ),
         title=project.title,
         others=_other_lines(project, condition),
+        turns=project.turns,
     )
 
 

@@ -26,6 +26,7 @@ class Scenery(Record):
     ground_clearances: from, to, and the clearance that a limit asks for above the ground.
     title: of the project.
     others: label and (station, elevation) along each other line that a limit keeps from.
+    turns: the route turns in plan, given by east and north.
     """
 
     ground: tuple[tuple[float, float], ...]
@@ -34,6 +35,7 @@ class Scenery(Record):
     ground_clearances: tuple[tuple[float, float, float], ...]
     title: str = ""
     others: tuple[tuple[str, tuple[tuple[float, float], ...]], ...] = ()
+    turns: bool = False
 
 
 @dataclass(frozen=True, slots=True, eq=False)

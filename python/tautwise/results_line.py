@@ -287,6 +287,12 @@ class Equilibrium(Record):
 
         return plot_line([self], ax, **options)
 
+    def plot_plan(self, ax: Any = None, **options: Any) -> Any:
+        """Draw the line from above; see :func:`tautwise.figure_plan.plot_plan`. Returns the Matplotlib axes."""
+        from tautwise.figure_plan import plot_plan
+
+        return plot_plan([self], ax, **options)
+
     def _line(self) -> Origin:
         self.require_settled()
         if self.origin is None:

@@ -177,7 +177,7 @@ def _form_rule(checked: Checked, number: int) -> None:
     if form == "V" and spread is None:
         problem = "a V hanger without its spread"
         checked.fault(path, problem, "the distance between the upper ends of its two strings", 'spread = "4.2 m"')
-    if form != "V" and spread is not None:
+    if form == "I" and spread is not None:
         checked.fault((*path, "spread"), "only a V hanger has a spread", "no spread, or a V", 'form = "V"')
 
 

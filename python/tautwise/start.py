@@ -39,10 +39,11 @@ top = "3.0 m"                         # elevation of the highest water
 
 [[support]]                           # at least two, in the order of their stations
 name = "West mast"
-station = "0 m"
+station = "0 m"                       # on a route that turns: east and north instead, of every support
 height = "15 m"                       # above the ground; or elevation = "21 m"
-hold = "anchor"                       # anchor: the line ends here. In between also: hanger (length, weight),
-                                      # sheave (length, weight, friction), post (stiffness_along, stiffness_across)
+hold = "anchor"                       # anchor: the line ends here. In between also: hanger (length, weight;
+                                      # form = "V" with its spread), sheave (length, weight, friction),
+                                      # post (stiffness_along, stiffness_across)
 capacity = { along = "90 kN", down = "30 kN" }
 
 [[support]]
