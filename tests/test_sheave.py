@@ -302,7 +302,7 @@ def test_offsets_against_the_twin(hill_twin):
 
 
 def test_offsets_keep_what_they_must():
-    """None at the ends; behind the mark on the way up, ahead of it beyond: on sheaves the line lies too far downhill."""
+    """None at the ends; behind the mark on the way up, ahead beyond it: on sheaves the line lies too far downhill."""
     found = offsets(hill())
     assert found[0] == found[-1] == 0.0
     assert found[1] < -0.05

@@ -18,7 +18,7 @@ from pathlib import Path
 
 EXAMPLES = Path(__file__).resolve().parents[2] / "examples"
 ENDING = ".taut.toml"
-COMMANDS = ("settle", "window", "vet")
+COMMANDS = ("settle", "window", "vet", "sheet")
 ANSWERS = (0, 1)  # exit codes that come with an answer
 
 
