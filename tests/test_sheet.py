@@ -100,6 +100,52 @@ def copied(folder, old, new):
     return str(file)
 
 
+def test_friction_of_sheaves_in_service():
+    """A line that stays on its sheaves: the range stands on its sheet too, around what it has without friction."""
+    holds = (("A", 0, "anchor"), ("B", 250, "sheave"), ("C", 520, "sheave"), ("D", 760, "anchor"))
+    project = tw.Project(
+        line={"weight": "11.9 N/m", "stiffness": "22.5 MN"},
+        support=[
+            {"name": name, "station": f"{x} m", "elevation": f"{20 + x / 50} m", "hold": hold}
+            | ({"friction": 0.05} if hold == "sheave" else {})
+            for name, x, hold in holds
+        ],
+        stringing={"temperature": "15 degC", "horizontal_tension": "20 kN"},
+        condition=[{"name": "bare", "temperature": "15 degC"}],
+    )
+    sheet = project.sheet()
+    free = [reading.horizontal_tension_N for reading in sheet.at_stringing.clamped]
+    first = [span.pulled_from_first.horizontal_tension_N for span in sheet.spans]
+    last = [span.pulled_from_last.horizontal_tension_N for span in sheet.spans]
+    assert first[0] == pytest.approx(20e3, rel=1e-12)
+    assert last[2] == pytest.approx(free[2], rel=1e-10)
+    assert first[0] - free[0] < 1e-6
+    assert all(one < two - 10.0 for one, two in zip(first[1:], free[1:], strict=True))
+    assert all(one < two - 10.0 for one, two in zip(last[:2], free[:2], strict=True))
+    assert project.settle().sheave_imbalance_N < 1e-9 * 20e3
+
+
+def test_posts_carry_sheaves_while_the_line_is_strung():
+    tables = {"stiffness_along": "500 kN/m", "stiffness_across": "500 kN/m"}
+    supports = [("A", 0, 20), ("B", 60, 24), ("C", 130, 22)]
+    project = tw.Project(
+        line={"weight": "5 N/m", "stiffness": "9 MN"},
+        support=[
+            {"name": name, "station": f"{x} m", "elevation": f"{z} m"}
+            | ({"hold": "post"} | tables if name == "B" else {})
+            for name, x, z in supports
+        ],
+        stringing={"temperature": "15 degC", "horizontal_tension": "6 kN", "method": "over sheaves"},
+        condition=[{"name": "bare", "temperature": "15 degC"}],
+    )
+    sheet = project.sheet()
+    over, clamped = sheet.at_stringing.over_sheaves, sheet.at_stringing.clamped
+    assert abs(over[0].horizontal_tension_N - over[1].horizontal_tension_N) > 5.0
+    assert clamped[0].horizontal_tension_N == pytest.approx(clamped[1].horizontal_tension_N, rel=1e-9)
+    assert sheet.supports[1].clip_offset_m != 0.0
+    assert project.settle().supports[1].along_N == pytest.approx(0.0, abs=1e-5)
+
+
 def printed(capsys, *arguments):
     assert run(["sheet", *arguments]) == 0
     out = capsys.readouterr()
