@@ -56,7 +56,7 @@ def with_limit(**keys):
         (with_limit(share=50), "a ratio above 0 and at most 1, for"),
         ({"line": LINE | {"diameter": "-1 mm"}}, "expected a length above 0, for"),
         ({"support": [{"name": "A", "station": "0 m", "height": "1 m", "hold": "ancor"}] * 2},
-         'did you mean "anchor"? expected anchor, hanger or post'),
+         'did you mean "anchor"? expected anchor, hanger, sheave or post'),
         ({"line": {3: 4}}, "line: the key 3 is no text"),
         ({"limit": [{3: 4}]}, "limit[0].kind: missing"),
     ],

@@ -363,7 +363,7 @@ def test_the_schema_takes_and_refuses_what_the_reader_does():
         ("line.weight", 11.9),
         ("line.mass", "1.2 kg/m"),
         ("line.wieght", "11.9 N/m"),
-        ("support.0.hold", "sheave"),
+        ("support.0.hold", "pulley"),
         ("limit.0.kind", "clearence"),
         ("limit.2.most", "3 kN"),
         ("stringing.tolerance", 3),

@@ -36,15 +36,19 @@ tw_pulling *tw_pulling_create(const tw_project *project)
     pulling->options = tw_options_default();
     pulling->held = *project;
     pulling->supports = tw_calloc(project->support_count, sizeof *pulling->supports);
-    pulling->held.supports = pulling->supports;
-    pulling->blocks = tw_section_create(&pulling->held);
-    pulling->clamped = tw_section_create(&pulling->held);
-    pulling->work = tw_calloc(TW_STRINGING_WORK(project), sizeof(double));
-    if (!pulling->supports || !pulling->blocks || !pulling->clamped || !pulling->work) {
+    if (!pulling->supports) {
         tw_pulling_free(pulling);
         return NULL;
     }
     memcpy(pulling->supports, project->supports, project->support_count * sizeof *pulling->supports);
+    pulling->held.supports = pulling->supports;
+    pulling->blocks = tw_section_create(&pulling->held);
+    pulling->clamped = tw_section_create(&pulling->held);
+    pulling->work = tw_calloc(TW_STRINGING_WORK(project), sizeof(double));
+    if (!pulling->blocks || !pulling->clamped || !pulling->work) {
+        tw_pulling_free(pulling);
+        return NULL;
+    }
     return pulling;
 }
 

@@ -7,6 +7,9 @@
  * so that D(R) = sum_spans [ -int W*(|t|) ds + load terms ] + sum_holds. -D is convex; its Hessian is block tridiagonal
  * with 3x3 blocks over the spans. Damped Newton.
  *
+ * Over a sheave natural length moves between the spans: see section_feed.h. D and the bracket are those of the line at the
+ * lengths found.
+ *
  * l |F| has a kink at F = 0: a slack hanger. There F = 0 is kept as a constraint: the spans on both sides run through
  * as one, and the clamp only has to stay within l of the support. Which hangers are slack is found by an active set.
  */

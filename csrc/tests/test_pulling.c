@@ -75,20 +75,25 @@ static void test_both_states(void)
 /* The clamped state is the one that today's rule strings to, at the horizontal tension that was found. */
 static void test_clamped_as_the_plumb_rule_has_it(void)
 {
-    tw_case c;
-    hill(&c);
-    c.supports[3].hold = TW_HOLD_HANGER;
-    c.supports[3].hanger_length_m = 1.6;
-    tw_trial *over = case_trial(&c, 18e3);
-    double pull = horizontal(over->pulling->clamped, 0);
-    c.project.stringing.method = TW_METHOD_CLAMPED;
-    tw_trial *plumb = case_trial(&c, pull);
-    CHECK(!plumb->pulling);
-    for (size_t k = 0; k < 5; k++) {
-        CHECK_NEAR(over->length_m[k], plumb->length_m[k], 1e-11);
+    static const double pulls[] = {18e3, 60e3, 1e5, 4e5}; /* the last two lift a hanger */
+    for (size_t i = 0; i < 4; i++) {
+        tw_case c;
+        hill(&c);
+        c.supports[3].hold = TW_HOLD_HANGER;
+        c.supports[3].hanger_length_m = 1.6;
+        tw_trial *over = case_trial(&c, pulls[i]);
+        CHECK(over != NULL);
+        CHECK((over->pulling->blocks->hold_force[5] < 0.0) == (i > 1));
+        double pull = horizontal(over->pulling->clamped, 0);
+        c.project.stringing.method = TW_METHOD_CLAMPED;
+        tw_trial *plumb = case_trial(&c, pull);
+        CHECK(!plumb->pulling);
+        for (size_t k = 0; k < 5; k++) {
+            CHECK_NEAR(over->length_m[k], plumb->length_m[k], 1e-11);
+        }
+        tw_trial_free(over);
+        tw_trial_free(plumb);
     }
-    tw_trial_free(over);
-    tw_trial_free(plumb);
 }
 
 /* Each rule asks for what a pull of 18 kN gives on the sheaves, and finds that pull and the same lengths. */

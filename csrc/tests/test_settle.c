@@ -254,6 +254,27 @@ static tw_status refuse(const tw_minimise_problem *problem, double *y)
 }
 
 /* Without Newton's steps a lie cannot become a result; with them it does no harm. */
+/* A sheave that was held as a clamp: the bracket closes, but the tension jumps over the sheave, and that is not settled. */
+static void test_clamped_sheave(void)
+{
+    for (int runs = 0; runs < 2; runs++) {
+        fixture f;
+        tw_settled out = {0};
+        fixture_begin(&f, 15.97, 34.7e6);
+        fixture_support(&f, TW_HOLD_ANCHOR, 0.0, 0.0, 0.0);
+        fixture_support(&f, TW_HOLD_SHEAVE, 250.0, 3.0, 250.4);
+        fixture_support(&f, TW_HOLD_ANCHOR, 650.0, 0.0, 401.9);
+        tw_section *section = tw_section_create(&f.project);
+        section->feed[1] = runs ? TW_FEED_SHEAVE : TW_FEED_NONE;
+        CHECK(tw_section_load(section, 0, f.lengths_m, NULL, 0) == TW_OK);
+        CHECK(tw_section_solve(section, &f.options, 0) == TW_OK);
+        CHECK(tw_settle(section, &f.options, &out) == (runs ? TW_OK : TW_NOT_SETTLED));
+        CHECK(out.gap_relative < 1e-6 && out.gap_relative > -1e-12);
+        CHECK(runs ? out.sheave_imbalance_N < 1e-6 : out.sheave_imbalance_N > 1.0);
+        tw_section_free(section);
+    }
+}
+
 static void test_lying_optimiser(void)
 {
     const tw_minimise_function liars[2] = {lie_without_work, lie_with_work};
@@ -364,6 +385,7 @@ int main(void)
     test_many_nodes();
     test_from_afar();
     test_wrong_exact_line();
+    test_clamped_sheave();
     test_lying_optimiser();
     test_stopped();
     test_limits();

@@ -234,7 +234,7 @@ def _draw_supports(ax: Any, scenery: Scenery, clamps: Any) -> None:
         if scenery.ground:
             foot = float(np.interp(station, *np.array(scenery.ground).T))
             ax.plot([station, station], [foot, elevation], color=INK, linewidth=2.2, solid_capstyle="butt", zorder=4)
-        if hold == "hanger":
+        if hold in ("hanger", "sheave"):  # a fixed sheave has no link to see
             ax.plot([station, x], [elevation, z], color=INK, linewidth=1.2, zorder=6)
         ax.plot([x], [z], marker=symbols[hold], color=INK, markerfacecolor="white", markersize=5, zorder=7)
         ax.annotate(plain(name), (station, max(elevation, z)), xytext=(0, 7), textcoords="offset points", ha="center",

@@ -37,11 +37,17 @@ def explained(
         option = _PATIENCE[status]
         ten_times = f"{10 * defaults[option]:g}"
         advice = f"allow more with project.{call}({option}={ten_times}) in Python, or ask less of one file"
+    if not advice and status == "not_settled" and _swinging_sheave(project):
+        advice = "a swinging sheave that carries next to nothing has no place of its own; fix it, or look at the loads"
     if status == "over_sheave":
         advice = "let the load begin further from the sheave, or give it at the sheave itself"
     if not advice and status in ("not_settled", "not_finite", "gap_too_wide"):
         advice = "look for a value that is far off, such as a stiffness or a weight in the wrong unit"
     return f"{text}: {advice}" if advice else text
+
+
+def _swinging_sheave(project: Project) -> bool:
+    return any(support.hold == "sheave" and support.hanger_length_m for support in project.supports)
 
 
 def slack_words(project: Project, pull: float | None) -> str:

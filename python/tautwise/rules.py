@@ -106,7 +106,7 @@ def _method_rules(checked: Checked) -> None:
     """What belongs to a line strung over sheaves, and what it leaves no room for."""
     raw = checked.raw("stringing")
     over = raw.get("method") == OVER_SHEAVES
-    for key in () if over else ("clip", "friction"):
+    for key in ("clip", "friction") if raw.get("method", CLAMPED) == CLAMPED else ():
         if raw.get(key) is not None:
             problem = f'{key} belongs to a line strung over sheaves, and this one is strung "{CLAMPED}"'
             checked.fault(("stringing", key), problem, f'method = "{OVER_SHEAVES}" beside it')

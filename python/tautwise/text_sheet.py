@@ -16,6 +16,8 @@ if TYPE_CHECKING:
     from tautwise.model import Project
 
 SPANS_IN_A_ROW = 6
+FLAT_M = 1.0  # sags below it are measured to the millimetre
+FROM = ("from first", "from last")
 FORMULA_SIGNS = ("=", "+", "-", "@")
 
 Row = tuple[float | str | None, ...]
@@ -61,7 +63,8 @@ def _cell(value: float | str | None) -> str:
 
 
 def _pull_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
-    where = "pulled in over sheaves" if sheet.over_sheaves else "strung clamped, hangers plumb"
+    plumb = ", hangers plumb" if any(support.hold == "hanger" for support in sheet.supports) else ""
+    where = "pulled in over sheaves" if sheet.over_sheaves else f"strung clamped{plumb}"
     then = f", then clamped {sheet.clip}" if sheet.over_sheaves else ""
     head = ink.strong(f"Bare line at {sheet.stringing_degC:.4g} degC, {where}{then}")
     if sheet.horizontal_tension_N is None:
@@ -100,12 +103,12 @@ def _span_lines(sheet: CrewSheet) -> list[str]:
 
 
 def _day_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
-    head = ink.strong("On the sheaves: pull of the first span, and sags, at the temperature of the line on the day")
+    head = ink.strong("On the sheaves: pull of a section's first span, and sags, by the temperature of the line")
     return [head, *_by_temperature(sheet, on_sheaves=True)]
 
 
 def _clamped_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
-    head = ink.strong("Clamped: horizontal tension of the first span, and sags")
+    head = ink.strong("Clamped: horizontal tension of a section's first span, and sags")
     return [head, *_by_temperature(sheet, on_sheaves=False)]
 
 
@@ -113,20 +116,26 @@ def _by_temperature(sheet: CrewSheet, *, on_sheaves: bool) -> list[str]:
     """Temperatures down, spans across, a few spans in a row of the page."""
     states = sorted({*sheet.temperatures, sheet.at_stringing}, key=lambda state: state.temperature_degC)
     lines: list[str] = []
-    for first in range(0, len(sheet.spans), SPANS_IN_A_ROW):
-        numbers = range(first, min(first + SPANS_IN_A_ROW, len(sheet.spans)))
-        lines += [""] if lines else []
-        lines += _block(sheet, states, numbers, on_sheaves=on_sheaves)
+    begin = 0
+    for section in sheet.sections:
+        end = next(n for n in range(begin, len(sheet.spans)) if sheet.spans[n].to_support == section.to_support) + 1
+        for first in range(begin, end, SPANS_IN_A_ROW):
+            numbers = range(first, min(first + SPANS_IN_A_ROW, end))
+            lines += [""] if lines else []
+            lines += _block(sheet, states, begin, numbers, on_sheaves=on_sheaves)
+        begin = end
     return lines
 
 
-def _block(sheet: CrewSheet, states: Sequence[CrewTemperature], numbers: range, *, on_sheaves: bool) -> list[str]:
+def _block(
+    sheet: CrewSheet, states: Sequence[CrewTemperature], begin: int, numbers: range, *, on_sheaves: bool
+) -> list[str]:
     readings = [state.over_sheaves if on_sheaves else state.clamped for state in states]
-    pulls = [each[0].horizontal_tension_N if each else None for each in readings]
+    pulls = [each[begin].horizontal_tension_N if each else None for each in readings]
     columns: list[Column] = [number_column("line at", "degC", 1), force_column("tension", pulls)]
     for number in numbers:
-        span = sheet.spans[number]
-        columns.append(number_column(f"{span.from_support} to {span.to_support}", "m", 2))
+        flat = all(each[number].sag_m < FLAT_M for each in readings if each)
+        columns.append(number_column(sheet.spans[number].name, "m", 3 if flat else 2))
     rows: list[Row] = [
         (state.temperature_degC, pull, *(each[number].sag_m if each else None for number in numbers))
         for state, pull, each in zip(states, pulls, readings, strict=True)
@@ -169,12 +178,11 @@ def _friction_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
         rows.append((span.name, reading.horizontal_tension_N, *tensions, reading.sag_m, *sags))
     columns = (
         text_column("between"),
-        *(force_column(head, [row[1] for row in rows if isinstance(row[1], float)]) for head in
-          ("tension, no friction", "from the first end", "from the last end")),
-        *(number_column(head, "m", 3) for head in ("sag, no friction", "from the first end", "from the last end")),
-    )  # fmt: skip
+        *(force_column(head, [row[1] for row in rows if isinstance(row[1], float)]) for head in ("tension", *FROM)),
+        *(number_column(head, "m", 3) for head in ("sag", *FROM)),
+    )
     when = f"at {sheet.stringing_degC:.4g} degC"
-    head = ink.strong(f"What friction of the sheaves may leave, by the end that it is pulled from ({when})")
+    head = ink.strong(f"What friction of the sheaves may leave, pulled from the first or from the last end ({when})")
     return [head, *Table(columns, tuple(rows)).lines()]
 
 

@@ -18,7 +18,7 @@ from pathlib import Path
 
 EXAMPLES = Path(__file__).resolve().parents[2] / "examples"
 ENDING = ".taut.toml"
-COMMANDS = ("settle", "window", "vet")
+COMMANDS = ("settle", "window", "vet", "sheet")
 SURVEY = "_survey.csv"  # beside a project file: points measured on its line, for the command fit
 ANSWERS = (0, 1)  # exit codes that come with an answer
 

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from itertools import pairwise
 from typing import Any
 
@@ -86,8 +87,9 @@ class Twin:
     def pulled_in(self, plumb: Strung, pull_N: float, drag: int = 0) -> Strung:
         """From spans of equal horizontal tension to those of a line that is pulled in."""
         clamps = "sheave" if self.over_sheaves() else "plumb"
-        settled = run_over(self.bare(plumb.lengths_m), self.feeds(clamps, pull_N, drag))
-        return Strung(lengths_of(settled), list(settled.spans), list(settled.clamps))
+        section = replace(self.bare(plumb.lengths_m), supports=held_down(self.supports, plumb))
+        settled = run_over(section, self.feeds(clamps, pull_N, drag))
+        return Strung(lengths_of(settled), list(settled.spans), list(settled.clamps), section.supports)
 
     def bare(self, lengths: list[float]) -> Section:
         """The bare line at the stringing temperature."""
@@ -100,10 +102,11 @@ class Twin:
         """Natural length of each span."""
         if pull_N is None and self.rule["rule"] == "span_lengths":
             return [float(length) for length in self.rule["lengths_m"]]
-        lengths = self.strung(self.pull_N() if pull_N is None else pull_N).lengths_m
+        strung = self.strung(self.pull_N() if pull_N is None else pull_N)
         if self.over_sheaves() and self.rule.get("clip", "plumb") == "plumb":
-            return lengths_of(run_over(self.bare(lengths), self.feeds("plumb")))
-        return lengths
+            section = replace(self.bare(strung.lengths_m), supports=strung.supports)
+            return lengths_of(run_over(section, self.feeds("plumb")))
+        return strung.lengths_m
 
     def pull_N(self) -> float:
         """The pull of the stringing rule."""
@@ -266,6 +269,17 @@ class Twin:
 def covers(load: Mapping[str, Any], span: int) -> bool:
     """Whether a load acts on a span."""
     return load.get("covers") is None or bool(load["covers"][span])
+
+
+def held_down(supports: Sequence[Support], strung: Strung) -> list[Support]:
+    """The supports of a line while it is strung: a hanger that it would lift is a fixed point at its plumb end."""
+    held = []
+    for j, support in enumerate(supports):
+        inner = support.hangs and 0 < j < len(supports) - 1
+        lift = strung.spans[j].pull[2] - strung.spans[j - 1].end_tension()[2] if inner else 0.0
+        lifted = inner and lift >= 0.5 * support.hanger_weight_N
+        held.append(Support(support.plumb(), axes=support.axes) if lifted else support)
+    return held
 
 
 def support_of(row: Mapping[str, Any], axes: Array) -> Support:

@@ -17,11 +17,15 @@ from .span import Hung, Material, NotSettled, Piece, length_at
 
 @dataclass(frozen=True)
 class Strung:
-    """Natural lengths (n), spans as hung between their clamps, and the clamps (n + 1, 3) at one pull."""
+    """Natural lengths (n), spans as hung between their clamps, and the clamps (n + 1, 3) at one pull.
+
+    supports: as they hold the line while it is strung over sheaves.
+    """
 
     lengths_m: list[float]
     spans: list[Hung]
     clamps: list[Array]
+    supports: Sequence[Support] = ()
 
 
 def string_to(
