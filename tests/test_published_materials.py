@@ -86,8 +86,8 @@ def test_both_columns_from_one_description(capsys):
 def test_the_curves_of_the_text_miss_its_own_table(capsys):
     """With the curves printed in the same chapter (D7, SEEN) the initial column is off by 1.9 %, the final by 4 %.
 
-    They are those of a general figure, stiffer at everyday stress (7.9e6 psi, where the table's rows from 60 to 0 degF ask
-    for 7.3e6) and creeping further (53.45e3 psi per percent, where its final row at 60 degF asks for about 57e3). Test
+    They are those of a general figure, stiffer at everyday stress (7.9e6 psi, where the rows from 60 to 0 degF ask for
+    7.3e6) and creeping further (53.45e3 psi per percent, where its final row at 60 degF asks for about 57e3). Test
     temperatures from 60 to 75 degF and the heaviest load without creep were tried: neither brings both columns within
     1.5 %. The inverse fit X(Y) is stiffer still there (8.2e6 psi).
     """

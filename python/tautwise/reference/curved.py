@@ -49,9 +49,12 @@ class Part:
     def loading(self, strain: Any, creeping: bool) -> Any:
         """Force on first loading, or on the creep curve where the part has one, N."""
         creeps = creeping and self.row.get("creep_N") is not None
-        terms = np.polynomial.Polynomial(self.row["creep_N" if creeps else "loading_N"])
-        place = np.clip(strain, 0.0, float(self.row["valid_to"]))
-        return np.maximum(0.0, terms(place) + terms.deriv()(place) * (strain - place))
+        place = np.minimum(np.maximum(strain, 0.0), float(self.row["valid_to"]))
+        value: Any = 0.0
+        slope: Any = 0.0
+        for term in reversed(self.row["creep_N" if creeps else "loading_N"]):
+            value, slope = value * place + term, slope * place + value
+        return np.maximum(0.0, value + slope * (strain - place))
 
     def force(self, strain: Any) -> Any:
         """Force as the part stands now, N."""
@@ -120,10 +123,10 @@ class CurvedMaterial:
         return [float(self.force(x)) for x in self.knots[1:]]
 
     def stretch(self, tension: Any) -> Any:
-        """L that carries a tension: 64 halvings of what lies between no tension and twice the natural length."""
+        """L that carries a tension: 60 halvings of what lies between no tension and half as long again."""
         low = np.full(np.shape(tension), self.strain)
-        high = np.ones(np.shape(tension))
-        for _ in range(64):
+        high = np.full(np.shape(tension), 0.5)
+        for _ in range(60):
             middle = 0.5 * (low + high)
             more = self.force(middle) > tension
             low, high = np.where(more, low, middle), np.where(more, middle, high)
