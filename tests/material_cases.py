@@ -20,7 +20,7 @@ TEXTBOOK = {
     "core": {"initial": [0.0, 37.15e3], "creep": [0.0, 37.15e3], "final": 38.60e3},
     "outer": {"initial": [-512.0, 4.902e4, -1.18e4, -5.76e4], "creep": [0.0, 16.30e3], "final": 68.95e3},
 }
-# The fourth-degree fits published for the same conductor with its sag-tension charts (MEM: from memory, no page at hand).
+# The fourth-degree fits published for the same conductor with its sag-tension charts (MEM: from memory, no page seen).
 CHART = {
     "core": {
         "initial": [-69.3, 38629.0, 3998.1, -45713.0, 27892.0],

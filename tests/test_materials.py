@@ -242,7 +242,7 @@ def test_a_met_condition_returns_to_itself():
     problem["conditions"][1] |= {"loads": copy.deepcopy(problem["conditions"][0]["loads"])}
     core = _core.Project(problem)
     heavy, again = (core.settle(c)["spans"][0] for c in (0, 1))
-    # what counts is the span's mean strain; its ends are stretched beyond it (2 % of the tension here), its middle less,
+    # what counts is the span's mean strain; its ends are stretched beyond it (2 % of the tension), its middle less,
     # where the unloading line is steeper by a third: a 1e-3 of the tension is left
     assert again["horizontal_tension_N"] == pytest.approx(heavy["horizontal_tension_N"], rel=1e-3)
 
