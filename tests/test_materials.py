@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 
 from tautwise import _core
+from tautwise.reference import states
 from tautwise.reference.curved import curved_line, expanded
 from tautwise.reference.project import Twin
 
@@ -30,14 +31,15 @@ KEYS = (
 
 
 def drawn(seed):
-    """One to three spans of a drawn curved line, heavy, hot and cold, in all three states."""
+    """One or two spans of a drawn curved line, heavy, hot and cold, in all three states."""
     rng = np.random.default_rng(1000 + seed)
-    n = int(rng.integers(1, 4))
+    n = 1 + seed % 2
     stations = np.concatenate([[0.0], np.cumsum(rng.uniform(120.0, 300.0, n))])
     supports = [cases.support(0.0, 30.0)]
     supports += [cases.hanger(float(x), float(rng.normal(30.0, 1.0))) for x in stations[1:-1]]
     supports += [cases.support(float(stations[-1]), float(rng.normal(30.0, 5.0)))]
-    loads = [cases.spread_load((0.0, 0.0, -float(rng.uniform(5, 20)))), cases.point_load(50.0, (0.0, 0.0, -900.0))]
+    heavy = -float(rng.uniform(5, 20))
+    loads = [cases.spread_load((0.0, 0.0, heavy)), cases.point_load(50.0, (0.0, 0.0, -900.0))]
     conditions = [
         cases.condition(temperature_degC=15.0),
         cases.condition(temperature_degC=-20.0, loads=loads, wind_pressure_Pa=300.0),
@@ -51,23 +53,32 @@ def drawn(seed):
     return {**problem, "history": {"met": [True, True, False, True], "creep_condition": 0}}
 
 
-@pytest.mark.parametrize("seed", range(6))
-def test_drawn_curved_lines_agree_with_the_twin(seed):
+@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize("condition", [2, 3])
+def test_drawn_curved_lines_agree_with_the_twin(seed, condition):
+    """Tensions, lengths, sag and the lower bound, final and after creep, whose history holds the conditions as strung."""
     problem = drawn(seed)
-    core, twin = _core.Project(problem), Twin(problem)
-    for condition in range(4):
-        found, expected = core.settle(condition), twin.states(condition)
-        assert found["status"] == "ok"
-        for mine, theirs in zip(expected["spans"], found["spans"], strict=True):
-            for key in KEYS:
-                assert theirs[key] == pytest.approx(mine[key], rel=SAME, abs=1e-8), (condition, key)
-        lower = twin.settle(condition).lower_bound_J()
-        total = sum(float((span.pull - span.end_tension())[2]) for span in twin.settle(condition).spans)
-        total += float(twin.settle(condition).section.clamp_loads[:, 2].sum())
-        assert found["energy_lower_J"] == pytest.approx(lower + 30.0 * total, rel=1e-9, abs=1e-5)
+    found, twin = _core.Project(problem).settle(condition), Twin(problem)
+    settled = twin.settle(condition)
+    assert found["status"] == "ok"
+    for k, (hung, span) in enumerate(zip(settled.spans, found["spans"], strict=True)):
+        expected = {
+            "natural_length_m": hung.length_m,
+            "line_length_m": hung.line_length_m(),
+            "horizontal_tension_N": states.horizontal_tension(settled, k),
+            "tension_from_N": float(np.linalg.norm(hung.pull)),
+            "tension_to_N": float(np.linalg.norm(hung.end_tension())),
+            "sag_m": states.sag_of(settled, k),
+        }
+        for key, value in expected.items():
+            assert span[key] == pytest.approx(value, rel=SAME, abs=1e-8), key
+    total = sum(float((span.pull - span.end_tension())[2]) for span in settled.spans)
+    total += float(settled.section.clamp_loads[:, 2].sum())
+    lower = settled.lower_bound_J() + 30.0 * total  # the core counts from the first support
+    assert found["energy_lower_J"] == pytest.approx(lower, rel=1e-9, abs=1e-5)
 
 
-@pytest.mark.parametrize("seed", range(4))
+@pytest.mark.parametrize("seed", range(2))
 def test_the_twin_is_in_equilibrium(seed):
     """Potential = complementary energy: only the true shape has both."""
     settled = Twin(drawn(seed)).settle(3)
