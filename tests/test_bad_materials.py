@@ -74,6 +74,12 @@ def test_the_core_refuses_at_the_key(tmp_path, case):
     assert expected in fault.expected
 
 
+def test_a_modulus_per_percent_is_noticed(tmp_path):
+    project = load(project_with(tmp_path, 'final_modulus = "6.895e6 psi"', 'final_modulus = "68.95e3 psi"'))
+    (warning,) = project.warnings
+    assert "line.outer.final_modulus: 0.0141 times the first slope" in warning
+
+
 def linear(state, extra=""):
     return f"""
 format = "tautwise 1"

@@ -39,7 +39,7 @@ def drawn(seed):
     supports += [cases.hanger(float(x), float(rng.normal(30.0, 1.0))) for x in stations[1:-1]]
     supports += [cases.support(float(stations[-1]), float(rng.normal(30.0, 5.0)))]
     heavy = -float(rng.uniform(5, 20))
-    loads = [cases.spread_load((0.0, 0.0, heavy)), cases.point_load(50.0, (0.0, 0.0, -900.0))]
+    loads = [cases.spread_load((0.0, 0.0, heavy)), cases.point_load(50.0, (0.0, 0.0, -9e2))]
     conditions = [
         cases.condition(temperature_degC=15.0),
         cases.condition(temperature_degC=-20.0, loads=loads, wind_pressure_Pa=300.0),
@@ -56,7 +56,7 @@ def drawn(seed):
 @pytest.mark.parametrize("seed", range(3))
 @pytest.mark.parametrize("condition", [2, 3])
 def test_drawn_curved_lines_agree_with_the_twin(seed, condition):
-    """Tensions, lengths, sag and the lower bound, final and after creep, whose history holds the conditions as strung."""
+    """Tensions, lengths, sag and lower bound, final and after creep; the history holds the conditions as strung."""
     problem = drawn(seed)
     found, twin = _core.Project(problem).settle(condition), Twin(problem)
     settled = twin.settle(condition)
@@ -143,6 +143,7 @@ def test_fifty_digits_agree_on_the_knee():
 
         def strain(T):
             """Unloading lines alone: sum E_i (x - shift_i - permanent_i)+ = T, the core carrying first."""
+
             def excess(some):
                 rates = [mp.mpf(part.row["final_stiffness_N"]) for part, _ in some]
                 starts = [shift + mp.mpf(part.permanent) for part, shift in some]
