@@ -73,6 +73,7 @@ static void test_each_is_the_slope_of_the_one_before_and_kinks_are_joined(void)
             double x = l.curve.knot[i], h = 1e-12;
             double below = tw_curve_force(&l.curve, x - h), above = tw_curve_force(&l.curve, x + h);
             CHECK_NEAR(below, above, 3.0 * h * l.material.stiffness_N + 1e-12 * above);
+            CHECK_NEAR(tw_curve_energy(&l.curve, x - h), tw_curve_energy(&l.curve, x + h), 3.0 * h * (above + 1.0));
             CHECK_NEAR(l.curve.force_N[i], above, 2.0 * h * l.material.stiffness_N + 1e-12 * above);
         }
         for (double x = 1.7e-5; x < 8e-3; x *= 1.9) {
