@@ -54,7 +54,8 @@ static void add_moved(const double terms[TW_CURVE_TERMS], double x, double out[T
 /* Where a growing polynomial reaches a value between low and high: Newton, kept inside a bracket that bisection halves. */
 static double reached(const double terms[TW_CURVE_TERMS], double wanted, double low, double high)
 {
-    double x = low;
+    double first = value(terms, low);
+    double x = low + (high - low) * fmin(fmax((wanted - first) / (value(terms, high) - first), 0.0), 1.0);
     for (int i = 0; i < 100 && high > low; i++) {
         double miss = value(terms, x) - wanted;
         double step = miss / slope(terms, x);
@@ -65,7 +66,7 @@ static double reached(const double terms[TW_CURVE_TERMS], double wanted, double 
         }
         double next = x - step;
         next = next >= low && next <= high ? next : 0.5 * (low + high);
-        if (fabs(next - x) <= 1e-17 + 1e-16 * fabs(x)) {
+        if (fabs(next - x) <= 1e-9 * fabs(x)) { /* quadratic: the next step would be rounding */
             return next;
         }
         x = next;

@@ -28,6 +28,14 @@ static void mean_load(const tw_section *section, size_t span, double mean[3])
     }
 }
 
+/* The tangent of a curved law at a tension, as a linear one. */
+static void straighten(const tw_material *material, double tension_N, tw_uniform *span)
+{
+    tw_material_point at = tw_material_under(material, tension_N);
+    span->stiffness_N = at.tangent_N;
+    span->strain = material->strain + at.strain - tension_N / at.tangent_N;
+}
+
 /* First pulls: each span for itself between plumb clamps, its load spread evenly. */
 static tw_status start_pulls(tw_section *section)
 {
@@ -44,12 +52,16 @@ static tw_status start_pulls(tw_section *section)
         }
         double drop = tw_dot(chord, mean);
         tw_axpy(chord, -drop, mean, p);
-        const tw_uniform span = {tw_norm(p), drop, size, section->materials[k].stiffness_N,
+        tw_uniform span = {tw_norm(p), drop, size, section->materials[k].stiffness_N,
                                  section->materials[k].strain};
         if (!(span.span > 0.0)) {
             return TW_NOT_SETTLED;
         }
         tw_status status = tw_uniform_settle(&span, section->length_m[k], &h, &v);
+        if (status == TW_OK && section->materials[k].curve) {
+            straighten(&section->materials[k], h, &span);
+            status = tw_uniform_settle(&span, section->length_m[k], &h, &v);
+        }
         if (status == TW_SLACK || status == TW_NOT_FINITE) {
             return status;
         }

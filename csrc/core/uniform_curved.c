@@ -11,6 +11,7 @@ tw_status tw_uniform_curved_length(const tw_material *material, const tw_uniform
 {
     const double start[3] = {0.0, 0.0, 0.0};
     double wanted = 4e-16 * (span->span + fabs(span->drop)), before = INFINITY;
+    *length_m *= (1.0 + h_N / material->stiffness_N) / tw_material_stretch(material, h_N);
     for (int i = 0; i < STEPS_MOST; i++) {
         const double pull[3] = {h_N, 0.0, *v_N}; /* x across the load, z along it */
         tw_piece piece = {.length_m = *length_m, .load = {0.0, 0.0, span->weight}};

@@ -217,5 +217,13 @@ int main(void)
                                .from_m = NAN, .to_m = NAN, .vector = {0.0, 0.0, -800.0}});
     refuse_each_way(&f, section_call, "run load and carriage");
     refuse_each_way(&f, settle_call, "settle with a carriage");
+    f.condition.load_count = 0;
+    const tw_part part = {.loading_N = {0.0, 40e6, -1e9}, .creep_N = {0.0, 30e6}, .valid_to = 0.005,
+                          .final_stiffness_N = 41e6, .expansion_per_K = 18e-6};
+    f.project.line.parts[0] = part;
+    f.project.line.part_count = 1;
+    f.condition.state = TW_STATE_AFTER_CREEP;
+    f.project.history.creep_condition = TW_NONE;
+    refuse_each_way(&f, settle_call, "settle with a history");
     return check_end("alloc_test");
 }

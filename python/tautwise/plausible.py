@@ -21,6 +21,7 @@ Slip = tuple[KeyPath, str]
 
 DENSITY_KG_PER_M3 = (1_000.0, 20_000.0)
 MODULUS_PA = (1e9, 250e9)
+FINAL_OVER_INITIAL = (0.3, 4.0)
 BREAKING_STRESS_PA = (20e6, 3000e6)
 EXPANSION_PER_K = (1e-6, 50e-6)
 HOTTEST_DEGC, HOTTEST_WITH_ICE_DEGC = 120.0, 5.0
@@ -39,8 +40,8 @@ TURN_MOST_DEG = 90.0
 
 def warnings_of(project: Project, document: Document) -> tuple[str, ...]:
     """One line for each value that is hardly meant: file, line, key, why, and what it may have been meant to be."""
-    slips = [*_line(project), *_stringing(project), *_supports(project), *_crossings(project), *_limits(project)]
-    slips += _sheaves(project)
+    slips = [*_line(project), *_parts(project), *_stringing(project), *_supports(project), *_sheaves(project)]
+    slips += [*_crossings(project), *_limits(project)]
     for number, condition in enumerate(project.conditions):
         slips += [((*("condition", number), *path), text) for path, text in _condition(project, condition)]
     return tuple(str(document.fault(path, text)) for path, text in slips)
@@ -72,6 +73,21 @@ def _line(project: Project) -> Iterator[Slip]:
     expansion = line.given_expansion_per_K
     if expansion and not EXPANSION_PER_K[0] <= expansion <= EXPANSION_PER_K[1]:
         yield ("line", "expansion"), f"{expansion:.4g} per K: a power of ten lost, or per degF for per K?"
+
+
+def _parts(project: Project) -> Iterator[Slip]:
+    line = project.line
+    for name, part in (("curve", line.curve), ("core", line.core), ("outer", line.outer)):
+        if part is None:
+            continue
+        ratio = part.final_modulus_Pa / (100.0 * part.initial_Pa[1]) if part.initial_Pa[1] > 0.0 else 1.0
+        if not FINAL_OVER_INITIAL[0] <= ratio <= FINAL_OVER_INITIAL[1]:
+            text = f"{ratio:.3g} times the first slope of initial: psi per percent for psi, or the other way about?"
+            yield ("line", name, "final_modulus"), text
+        expansion = part.expansion_per_K
+        if expansion and not EXPANSION_PER_K[0] <= expansion <= EXPANSION_PER_K[1]:
+            text = f"{expansion:.4g} per K: a power of ten lost, or per degF for per K?"
+            yield ("line", name, "expansion"), text
 
 
 def _weight(project: Project, area_m2: float) -> Iterator[Slip]:

@@ -17,7 +17,8 @@ name = "19-wire strand, 16 mm"
 diameter = "16 mm"
 area = "150 mm^2"
 weight = "11.9 N/m"                   # or mass = "1.21 kg/m"
-modulus = "150 GPa"                   # or stiffness = "22.5 MN" (modulus times area)
+modulus = "150 GPa"                   # or stiffness = "22.5 MN" (modulus times area); or a stress-strain curve:
+                                      # [line.curve], or [line.core] and [line.outer] (initial, final_modulus, creep)
 expansion = "11.5e-6 / K"
 breaking_strength = "190 kN"
 
@@ -71,7 +72,7 @@ temperature = "-30 degC"
 
 [[condition]]
 name = "ice and wind"
-temperature = "-5 degC"
+temperature = "-5 degC"                                    # state = "final" | "after creep": after a [history]
 ice = { thickness = "10 mm", density = "900 kg/m^3" }     # radial thickness
 wind = { pressure = "300 Pa", drag = 1.0 }                # or speed = "22 m/s"; square across the line
 # load = [ { force = "500 N", at = "150 m" }, { per_length = "20 N/m", from = "40 m", to = "80 m" } ]

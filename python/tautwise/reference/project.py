@@ -11,12 +11,13 @@ from typing import Any
 import numpy as np
 
 from . import carriage, limits, loads
+from .curved import Part, creep_strain, curved_line, lived_through
 from .quadrature import Array, Growing, PieceLoad
 from .route import route_of
-from .section import Section, Settled, Support
+from .section import Section, Settled, Support, settle_section
 from .sheave import Feed, begins, lengths_of, run_over
 from .spacing import Beside
-from .span import Material, Piece
+from .span import AnyMaterial, Material, Piece
 from .states import span_state, support_state
 from .stringing import Strung, pull_by_rule, string_to
 
@@ -45,11 +46,64 @@ class Twin:
         self.rule = problem["stringing"]
         self._strung: dict[float, Strung] = {}
         self._settled: dict[tuple[int, float | None, bool], Settled] = {}
+        self._as_strung: dict[tuple[int, float | None, bool], Settled] = {}
 
-    def material(self, temperature_degC: float) -> Material:
-        """The line at a temperature: expansion counts from that of the stringing."""
-        warmer = temperature_degC - self.rule["temperature_degC"]
-        return Material(self.line["stiffness_N"], self.line.get("expansion_per_K", 0.0) * warmer)
+    def material(self, temperature_degC: float, added: float = 0.0) -> AnyMaterial:
+        """The line at a temperature: expansion counts from that of the stringing; `added` strain."""
+        reference = self.rule["temperature_degC"]
+        if self.line.get("parts"):
+            return curved_line(self.line, temperature_degC, reference, None, added)
+        warmer = temperature_degC - reference
+        return Material(self.line["stiffness_N"], self.line.get("expansion_per_K", 0.0) * warmer + added)
+
+    def stretched(
+        self, row: Mapping[str, Any], pull_N: float | None, state: str | None = None
+    ) -> list[AnyMaterial]:
+        """The line of each span at a condition's temperature and in its state."""
+        state, temperature = state or row.get("state", "initial"), row["temperature_degC"]
+        count = len(self.supports) - 1
+        if state == "initial":
+            return [self.material(temperature)] * count
+        added = float(self.line.get("bedding_in_strain", 0.0))
+        added += creep_strain(self.line) if state == "after creep" else 0.0
+        if not self.line.get("parts"):
+            return [self.material(temperature, added)] * count
+        reference = self.rule["temperature_degC"]
+        lived = [self.lived(k, state, pull_N) for k in range(count)]
+        return [curved_line(self.line, temperature, reference, parts, added) for parts in lived]
+
+    def lived(self, span: int, state: str, pull_N: float | None) -> list[Part]:
+        """What the met conditions, and creep at the everyday one, have left in a span."""
+        history = self.problem.get("history") or {}
+        conditions = self.problem["conditions"]
+        flags = history.get("met") or [True] * len(conditions)
+        met = [
+            (row["temperature_degC"], self.mean_stretch(c, span, pull_N))
+            for c, row in enumerate(conditions)
+            if flags[c]
+        ]
+        crept = None
+        if state == "after creep" and any(row.get("creep_N") for row in self.line["parts"]):
+            everyday = history.get("creep_condition")
+            everyday = -1 if everyday is None else everyday
+            row = conditions[everyday] if everyday >= 0 else self.rule
+            crept = (row["temperature_degC"], self.mean_stretch(everyday, span, pull_N, creeping=True))
+        return lived_through(self.line, self.rule["temperature_degC"], met, crept)
+
+    def mean_stretch(self, condition: int, span: int, pull_N: float | None, creeping: bool = False) -> float:
+        """Stretched over natural length of a span in a condition, as strung or creeping."""
+        key = (condition, pull_N, creeping)
+        if key not in self._as_strung:
+            section = self.section(condition, pull_N, state="initial")
+            if creeping:
+                temperature = self.problem["conditions"][condition]["temperature_degC"] if condition >= 0 else None
+                temperature = self.rule["temperature_degC"] if temperature is None else temperature
+                parts = [Part(row, creeping=True) for row in self.line["parts"]]
+                material = curved_line(self.line, temperature, self.rule["temperature_degC"], parts)
+                section = replace(section, material=material)
+            self._as_strung[key] = settle_section(section)
+        hung = self._as_strung[key].spans[span]
+        return hung.line_length_m() / hung.length_m
 
     def strung(self, pull_N: float) -> Strung:
         """Bare, strung to a horizontal tension."""
@@ -138,9 +192,16 @@ class Twin:
         }
 
     def section(
-        self, condition: int, pull_N: float | None, with_addition: bool = True, rolled_m: float | None = None
+        self,
+        condition: int,
+        pull_N: float | None,
+        with_addition: bool = True,
+        rolled_m: float | None = None,
+        state: str | None = None,
     ) -> Section:
-        """The loads of a condition on the natural lengths; a carriage at natural length `rolled_m`."""
+        """The loads of a condition on the natural lengths; a carriage at natural length `rolled_m`; `state` instead of
+        the condition's own.
+        """
         lengths = self.lengths_m(pull_N)
         row = (
             self.problem["conditions"][condition]
@@ -154,7 +215,7 @@ class Twin:
             basic = loads.basic(self.line, row, with_addition, k, self.along(k)[:2])
             spans.append(self.pieces(k, float(starts[k]), length, basic, placed, row.get("factor_load", 1.0)))
         clamp_loads = self.clamp_loads(starts, placed, row)
-        return Section(self.material(row["temperature_degC"]), spans, self.supports, clamp_loads, self.route)
+        return Section(self.stretched(row, pull_N, state), spans, self.supports, clamp_loads, self.route)
 
     def placed(
         self, load: Mapping[str, Any], lengths: list[float], pull_N: float | None, rolled_m: float | None = None

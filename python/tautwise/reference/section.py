@@ -15,7 +15,7 @@ import numpy as np
 
 from .quadrature import Array, load_at
 from .route import Route
-from .span import Hung, Material, NotSettled, Piece, settle
+from .span import AnyMaterial, Hung, NotSettled, Piece, settle
 
 
 @dataclass(frozen=True)
@@ -110,12 +110,16 @@ class Support:
 class Section:
     """The loads of one condition on the pieces of each span, and on the clamps themselves: N, (n + 1, 3)."""
 
-    material: Material
+    material: AnyMaterial | Sequence[AnyMaterial]
     spans: Sequence[Sequence[Piece]]
     supports: Sequence[Support]
     clamp_loads: Array
     route: Route | None = None
     """None: straight."""
+
+    def material_of(self, span: int) -> AnyMaterial:
+        """One material for all spans, or one for each."""
+        return self.material[span] if isinstance(self.material, Sequence) else self.material
 
 
 @dataclass(frozen=True)
@@ -180,6 +184,7 @@ def settle_section(section: Section) -> Settled:
     D has a kink where a hanger carries nothing, so where a line holds itself up within reach of a slack hanger,
     |F| is blurred, ever less, down to 1e-9 of the loads; the answer is then good to about that.
 
+    >>> from tautwise.reference.span import Material
     >>> load, hanger = np.array([0.0, 0.0, -10.0]), dict(hold="hanger", hanger_length_m=2.0)
     >>> supports = [Support(np.array([0.0, 0.0, -2.0])), Support(np.array([100.0, 0.0, 0.0]), **hanger),
     ...             Support(np.array([200.0, 0.0, -2.0]))]
@@ -220,13 +225,18 @@ def newton(section: Section, pulls: Array) -> Settled:
 def first_guess(section: Section) -> Array:
     """The pulls of each span by itself between plumb clamps."""
     clamps = [support.plumb() for support in section.supports]
-    pulls = [settle(section.material, span, clamps[k + 1] - clamps[k]).pull for k, span in enumerate(section.spans)]
+    pulls = [
+        settle(section.material_of(k), span, clamps[k + 1] - clamps[k]).pull for k, span in enumerate(section.spans)
+    ]
     return np.array(pulls)
 
 
 def hang(section: Section, pulls: Array) -> Settled:
     """The spans hung with given pulls from where their holds then are; they need not meet."""
-    spans = [Hung(section.material, span, pull) for span, pull in zip(section.spans, pulls, strict=True)]
+    spans = [
+        Hung(section.material_of(k), span, pull)
+        for k, (span, pull) in enumerate(zip(section.spans, pulls, strict=True))
+    ]
     forces = -np.array(section.clamp_loads, dtype=np.float64)
     for k, hung in enumerate(spans):
         forces[k] -= hung.pull

@@ -15,6 +15,7 @@ from typing import TypeVar
 
 import numpy as np
 
+from .curved import CurvedMaterial
 from .quadrature import Array, PieceLoad, golden, nodes, panels
 
 Number = TypeVar("Number", float, Array)
@@ -48,6 +49,37 @@ class Material:
         """Complementary energy per natural metre, J/m: W*(T) = T (1 + e0) + T^2 / (2 EA)."""
         return tension * (1.0 + self.strain) + tension**2 / (2.0 * self.stiffness_N)
 
+    def compliance(self, tension: Number) -> Number:
+        """dL/dT."""
+        return 0.0 * tension + 1.0 / self.stiffness_N
+
+    def kinks_N(self) -> list[float]:
+        """Tensions at which the law bends sharply: none."""
+        return []
+
+
+AnyMaterial = Material | CurvedMaterial
+
+
+def smooth(material: AnyMaterial, tension: Array, load: PieceLoad, length: float) -> list[float]:
+    """Panels of a stretch that are cut where |t| passes a kink of the law, found between samples by bisection."""
+    edges = panels(tension, load, length)
+
+    def above(s: float, kink: float) -> float:
+        return float(np.linalg.norm(tension - load * s)) - kink
+
+    cuts: list[float] = []
+    for kink in material.kinks_N():
+        places = [float(s) for a, b in pairwise(edges) for s in np.linspace(a, b, 65)]
+        for start, end in pairwise(places):
+            low, high = start, end
+            if above(low, kink) * above(high, kink) < 0.0:
+                for _ in range(80):
+                    middle = 0.5 * (low + high)
+                    low, high = (middle, high) if above(low, kink) * above(middle, kink) > 0.0 else (low, middle)
+                cuts.append(0.5 * (low + high))
+    return sorted([*edges, *cuts])
+
 
 @dataclass(frozen=True)
 class Piece:
@@ -62,7 +94,7 @@ class Piece:
 class Hung:
     """A span hung from its start with a given pull; positions are measured from the start."""
 
-    material: Material
+    material: AnyMaterial
     pieces: Sequence[Piece]
     pull: Array
 
@@ -105,7 +137,7 @@ class Hung:
         found = np.zeros((len(places), 3))
         base = np.zeros(3)
         for start, tension, piece in self.starts():
-            edges = np.array(panels(tension, piece.load, piece.length_m))
+            edges = np.array(smooth(self.material, tension, piece.load, piece.length_m))
             here = (places > start) & (places <= start + piece.length_m)
             within = np.unique(np.concatenate([edges, places[here] - start]))
             moved = displacements(self.material, tension, piece.load, within)
@@ -139,7 +171,7 @@ class Hung:
     def _integral(self, of_tension: Callable[[Array], Array]) -> float:
         total = 0.0
         for _, tension, piece in self.starts():
-            places, weights = nodes(panels(tension, piece.load, piece.length_m))
+            places, weights = nodes(smooth(self.material, tension, piece.load, piece.length_m))
             sizes = np.linalg.norm(tension - piece.load * places[:, None], axis=1)
             total += float(weights @ of_tension(sizes))
         return total
@@ -170,12 +202,12 @@ class Hung:
         return np.concatenate([np.linspace(a, b, 65) for a, b in pairwise(edges)])
 
 
-def height_along(material: Material, tension: Array, load: PieceLoad, direction: Array, s: float) -> float:
+def height_along(material: AnyMaterial, tension: Array, load: PieceLoad, direction: Array, s: float) -> float:
     """direction . (r(s) - r(0)) of a stretch, m."""
     return float(direction @ displacement(material, tension, load, s))
 
 
-def displacement(material: Material, tension: Array, load: PieceLoad, length: float) -> Array:
+def displacement(material: AnyMaterial, tension: Array, load: PieceLoad, length: float) -> Array:
     """r(length) - r(0) of a stretch that starts with a tension vector, m.
 
     >>> bar = displacement(Material(1e6), np.array([1000.0, 0.0, 0.0]), np.zeros(3), 10.0)
@@ -184,13 +216,13 @@ def displacement(material: Material, tension: Array, load: PieceLoad, length: fl
     """
     if length <= 0.0:
         return np.zeros(3)
-    places, weights = nodes(panels(tension, load, length))
+    places, weights = nodes(smooth(material, tension, load, length))
     t = tension - load * places[:, None]
     size = np.linalg.norm(t, axis=1)
     return np.asarray((weights * material.stretch(size) / size) @ t)
 
 
-def displacements(material: Material, tension: Array, load: PieceLoad, lengths: Array) -> Array:
+def displacements(material: AnyMaterial, tension: Array, load: PieceLoad, lengths: Array) -> Array:
     """The same for many lengths that grow from 0 in steps shorter than a panel; shape (n, 3)."""
     places, weights = nodes([float(s) for s in lengths])
     t = tension - load * places[:, None]
@@ -199,19 +231,19 @@ def displacements(material: Material, tension: Array, load: PieceLoad, lengths: 
     return np.vstack([np.zeros(3), np.cumsum(parts.sum(axis=1), axis=0)])
 
 
-def flexibility(material: Material, tension: Array, load: PieceLoad, length: float) -> Array:
-    """d displacement / d tension, m/N: int [(1 + e0)/|t| (I - tt'/|t|^2) + I/EA] ds.
+def flexibility(material: AnyMaterial, tension: Array, load: PieceLoad, length: float) -> Array:
+    """d displacement / d tension, m/N: int [L/|t| (I - tt'/|t|^2) + dL/dT tt'/|t|^2] ds.
 
     >>> matrix = flexibility(Material(1e6), np.array([1000.0, 0.0, 0.0]), np.zeros(3), 10.0)
     >>> matrix.diagonal().round(9).tolist()
     [1e-05, 0.01001, 0.01001]
     """
-    places, weights = nodes(panels(tension, load, length))
+    places, weights = nodes(smooth(material, tension, load, length))
     t = tension - load * places[:, None]
     size = np.linalg.norm(t, axis=1)
-    across = weights * (1.0 + material.strain) / size
-    bend = across.sum() * np.eye(3) - np.einsum("n,ni,nj->ij", across / size**2, t, t)
-    return np.asarray(bend + length / material.stiffness_N * np.eye(3))
+    across = weights * material.stretch(size) / size
+    along = weights * material.compliance(size) - across
+    return np.asarray(across.sum() * np.eye(3) + np.einsum("n,ni,nj->ij", along / size**2, t, t))
 
 
 def lower_bound(hung: Hung, chord: Array) -> float:
@@ -219,7 +251,7 @@ def lower_bound(hung: Hung, chord: Array) -> float:
     return float(hung.end_tension() @ chord) - hung.conjugate_J()
 
 
-def settle(material: Material, pieces: Sequence[Piece], chord: Array, start: Array | None = None) -> Hung:
+def settle(material: AnyMaterial, pieces: Sequence[Piece], chord: Array, start: Array | None = None) -> Hung:
     """The equilibrium between two points `chord` apart, by damped Newton on the closing error.
 
     Case I(a) of the published checks:
@@ -263,7 +295,7 @@ def go_along(hung: Hung, chord: Array, step: Array, error: Array) -> tuple[Hung,
     return trial, trial_error
 
 
-def first_pull(material: Material, pieces: Sequence[Piece], chord: Array) -> Array:
+def first_pull(material: AnyMaterial, pieces: Sequence[Piece], chord: Array) -> Array:
     """The best D among pulls along the chord of 1e-6 to 1e2 times all loads and EA strained by the chord."""
     total = sum((piece.load * piece.length_m + piece.force for piece in pieces), np.zeros(3))
     along = chord / np.linalg.norm(chord)
@@ -279,7 +311,7 @@ def first_pull(material: Material, pieces: Sequence[Piece], chord: Array) -> Arr
     return max(pulls, key=lambda pull: lower_bound(Hung(material, pieces, pull), chord))
 
 
-def length_at(material: Material, load: Array, chord: Array, horizontal_N: float) -> tuple[float, Array]:
+def length_at(material: AnyMaterial, load: Array, chord: Array, horizontal_N: float) -> tuple[float, Array]:
     """Natural length of a span strung to a horizontal tension, m, and the pull at its start.
 
     The load is straight down. Newton on (length, vertical tension) from the inextensible catenary, whose

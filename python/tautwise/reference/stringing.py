@@ -12,7 +12,7 @@ import numpy as np
 
 from .quadrature import Array
 from .section import Support
-from .span import Hung, Material, NotSettled, Piece, length_at
+from .span import AnyMaterial, Hung, NotSettled, Piece, length_at
 
 
 @dataclass(frozen=True)
@@ -29,13 +29,14 @@ class Strung:
 
 
 def string_to(
-    material: Material, weight_N_per_m: float, supports: Sequence[Support], pull_N: float
+    material: AnyMaterial, weight_N_per_m: float, supports: Sequence[Support], pull_N: float
 ) -> Strung:
     """String a section to a horizontal tension: hangers plumb, but where the route turns or a post leans.
 
     There each clamp must be where its own force puts it: a few repetitions, then Newton with differences.
     Raises NotSettled.
 
+    >>> from tautwise.reference.span import Material
     >>> ends = [Support(np.array([x, 0.0, 0.0])) for x in (0.0, 300.0)]
     >>> round(string_to(Material(34.7e6), 15.97, ends, 17368.8076566).lengths_m[0], 9)
     300.8
@@ -54,7 +55,7 @@ def string_to(
     raise NotSettled("the clamps do not come to rest at this pull")
 
 
-def between(material: Material, weight_N_per_m: float, clamps: Array, pull_N: float) -> list[Hung]:
+def between(material: AnyMaterial, weight_N_per_m: float, clamps: Array, pull_N: float) -> list[Hung]:
     """The bare spans between clamps (n + 1, 3), each with the same horizontal tension."""
     load = np.array([0.0, 0.0, -weight_N_per_m])
     found = [length_at(material, load, far - near, pull_N) for near, far in pairwise(clamps)]
