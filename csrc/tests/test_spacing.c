@@ -184,13 +184,13 @@ static void test_bow_of_a_winding_arc(void)
     const tw_arc arc = {{0.0, 10.0}, {{0.0, 0.0, 0.0}, {10.0, 0.0, 0.0}}, {{1.0, 0.5, 0.1}, {1.0, 0.6, -0.2}}};
     for (int k = 0; k < 24; k++) {
         const double n[3] = {0.0, cos(0.2618 * k), sin(0.2618 * k)};
-        tw_bow bow = tw_curve_arc_bow(&arc, 0.1, 0.9);
+        tw_bow bow = tw_course_arc_bow(&arc, 0.1, 0.9);
         double first[3], last[3], place[3], off[3];
-        tw_curve_at(&arc, 0.1, first, NULL, NULL);
-        tw_curve_at(&arc, 0.9, last, NULL, NULL);
+        tw_course_at(&arc, 0.1, first, NULL, NULL);
+        tw_course_at(&arc, 0.9, last, NULL, NULL);
         for (int i = 1; i < 50; i++) {
-            tw_curve_at(&arc, 0.1 + 0.016 * i, place, NULL, NULL);
-            tw_curve_off_chord(place, first, last, off);
+            tw_course_at(&arc, 0.1 + 0.016 * i, place, NULL, NULL);
+            tw_course_off_chord(place, first, last, off);
             CHECK(tw_dot(n, off) <= fmax(0.0, tw_dot(n, bow.toward)) + bow.rest + 1e-14);
         }
     }
