@@ -10,9 +10,7 @@ import pytest
 import tautwise as tw
 from tautwise import cli
 from tautwise.errors import InputError
-from tautwise.faults import keys_of
 from tautwise.rulepacks import leaves, pack, pack_names, raw_pack, rule_packs, value_sources
-from tautwise.tables import Condition
 
 LBF_PER_FT = 14.593902937206364
 FOOT_M = 0.3048
@@ -133,12 +131,14 @@ def test_shares_of_261h(district):
     )
 
 
-def test_a_state_is_given_where_conditions_have_one():
-    made = project(["nesc-250b-heavy", "nesc-261h"])
-    if "state" in keys_of(Condition):
-        assert [getattr(one, "state", None) for one in made.conditions[1:]] == ["initial", "final"]
-    else:
-        assert sum("one state" in each.source for each in made.origins) == 2
+def test_a_state_is_given_where_the_line_has_one():
+    """A linear line is the same in both states, and says so; one that beds in is not."""
+    rules = ["nesc-250b-heavy", "nesc-261h"]
+    linear = project(rules)
+    assert [one.state for one in linear.conditions[1:]] == ["initial", "initial"]
+    assert sum("the line is linear" in each.source for each in linear.origins) == 2
+    bedded = project(rules, line={"size": "Drake", "bedding_in": "0.03 %"})
+    assert [one.state for one in bedded.conditions[1:]] == ["initial", "final"]
 
 
 def test_iec_60826_wind():

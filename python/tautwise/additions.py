@@ -14,7 +14,6 @@ from typing import TYPE_CHECKING, Any
 
 from tautwise.catalogue import Catalogue
 from tautwise.errors import InputError
-from tautwise.faults import keys_of
 from tautwise.keylines import Path as KeyPath
 from tautwise.reader import Document, WrittenNumber, inside_folder, read_text
 from tautwise.rulepacks import PRESSURE, clause_of, filled, leaves, pack_names, parameters, raw_pack, value_sources
@@ -22,7 +21,6 @@ from tautwise.size_files import BYTES_MOST, read_sizes
 from tautwise.size_records import Size, SizeValue
 from tautwise.sources import NOT_STATED, SourceLine
 from tautwise.strict import Refused, described, did_you_mean, nearest, shown
-from tautwise.tables import Condition
 from tautwise.units import number_and_unit, read_unit
 
 if TYPE_CHECKING:
@@ -33,7 +31,8 @@ PACKS_MOST = 32
 KEYWORDS = "the keyword arguments"
 LACKING, FAILED = "lacking", "failed"
 
-_STATE = "this version settles a line in one state, so that initial and final are judged on the same one"
+_STATE = "the line is linear and without bedding_in, so that initial and final are judged on the same one"
+_STRETCHES = ("curve", "core", "outer", "bedding_in")  # keys of a line that is another in its final state
 _RULES_EXAMPLE = 'rules = ["nesc-250b-heavy", "nesc-261h"]'
 _INSTEAD = {  # which keys of the file stand in for a size's
     "weight": ("mass",),
@@ -295,13 +294,14 @@ def _conditions_of(document: Document, path: KeyPath, given: Any) -> list[str] |
 
 def _add_conditions(document: Document, uses: Iterable[_Use], added: Additions) -> None:
     names = {use.name for use in uses}
-    stateful = "state" in keys_of(Condition)
+    line = document.tables.get("line")
+    stretches = isinstance(line, dict) and any(line.get(key) is not None for key in _STRETCHES)
     for use, row in _rows(uses, "condition"):
         if row.get("needs", use.name) not in names:
             continue
         table = filled(use.raw, row, use.given)
         table["name"] = f"{use.prefix} {row['name']}"
-        if "state" in table and not stateful:
+        if "state" in table and not stretches:
             del table["state"]
             added.origins.append(SourceLine(f"{table['name']} state", row["state"], _STATE, ""))
         if _append(document, "condition", "name", table, use, added):

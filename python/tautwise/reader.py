@@ -135,7 +135,8 @@ def read_project(path: str | os.PathLike[str], above: tuple[Path, ...] = ()) -> 
     name = os.fspath(path)
     reader = _Reader(name)
     tables, index = reader.file(Path(name), name, ())
-    return Document(tables, name, Path(name).parent, index, reader.sources, reader.faults, reader.incomplete, above=above)
+    sources, faults = reader.sources, reader.faults
+    return Document(tables, name, Path(name).parent, index, sources, faults, reader.incomplete, above=above)
 
 
 def read_text(path: Path, name: str, bytes_most: int) -> tuple[str, Source]:
