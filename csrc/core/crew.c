@@ -119,7 +119,8 @@ static void fill_lengths(crew_run *run)
 {
     tw_crew *crew = run->crew;
     double reference = run->bare.stringing.temperature_degC;
-    const tw_material material = tw_material_at(&run->bare.line, reference, reference);
+    tw_curve curve;
+    const tw_material material = tw_material_after(&run->bare.line, reference, reference, NULL, &curve);
     for (size_t k = 0; k < crew->span_count; k++) {
         double own = crew->clamped[crew->temperature_count * crew->span_count + k].horizontal_tension_N;
         double tension = isnan(crew->pull_N) ? own : crew->pull_N;
