@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from tautwise.columns import Table, force_column, force_text, length_column, number_column, plural, text_column
+from tautwise.history import history_words
 from tautwise.results_line import Equilibrium, SettleReport, SupportState
 from tautwise.strict import shown
 from tautwise.words import condition_words
@@ -110,7 +111,10 @@ def _stretch_lines(found: Equilibrium) -> list[str]:
     longer = [100.0 * span.permanent_strain for span in found.spans]
     least, most = f"{min(longer):.4f}", f"{max(longer):.4f}"
     much = most if least == most else f"{least} to {most}"
-    return [f"  Stretched for good: {much} % longer at this tension and temperature than as strung."]
+    lines = [f"  Stretched for good: {much} % longer at this tension and temperature than as strung."]
+    if found.history is not None and found.history.parts:
+        lines += [f"  History: {history_words(found.history)}."]
+    return lines
 
 
 def _strung_lines(report: SettleReport, project: Project) -> list[str]:
