@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, ClassVar
 
 from tautwise.records import Record, finite
+from tautwise.tables import SECONDS_PER_HOUR
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -98,7 +99,7 @@ def _given(line: Line, condition: Condition) -> float:
         law = line.creep_law
         crept = line.creep_strain or 0.0
         if law is not None:
-            crept = law.coefficient * (law.time_s / 3600.0) ** law.exponent
+            crept = law.coefficient * (law.time_s / SECONDS_PER_HOUR) ** law.exponent
     return line.bedding_in + crept
 
 
@@ -109,9 +110,8 @@ def history_words(found: HistoryState) -> str:
     >>> history_words(HistoryState("ice and wind", "everyday", 0.0, (part,)))
     'stretched by ice and wind (A to B: outer 0.0510 %); creep at everyday left no more'
     """
-    texts = []
-    for condition in dict.fromkeys(part.condition for part in found.parts if not part.by_creep):
-        texts.append(f"{condition} ({_most(found, condition, by_creep=False)})")
+    loaded = dict.fromkeys(part.condition for part in found.parts if not part.by_creep)
+    texts = [f"{condition} ({_most(found, condition, by_creep=False)})" for condition in loaded]
     said = [f"stretched by {' and by '.join(texts)}"] if texts else []
     if found.creep_condition is not None:
         most = _most(found, found.creep_condition, by_creep=True)

@@ -70,8 +70,9 @@ class LimitState(Record):
 class FileVerdict(Record):
     """The limits of one project, worst first; `file` is its name, `pull_N` the pull it was judged at.
 
-    It holds if every limit holds or is waived. `findings`: waivers that are expired or excuse nothing. `sources`: where
-    its numbers come from, where asked for.
+    It holds if every limit holds or is waived. `findings`: what is hardly meant in the
+    input, waivers that are expired or excuse nothing, what the line shows that is hardly meant, what no limit judges.
+    `sources`: where its numbers come from, where asked for.
     """
 
     file: str

@@ -49,7 +49,8 @@ def equilibrium_of(project: Project, index: int, found: Mapping[str, Any], origi
     supports = tuple(_support(name, state) for name, state in zip(names, found["supports"], strict=True))
     return Equilibrium(
         head[0], SETTLED, head[2], head[3], **energies, **counts,
-        state=condition.state, history=history_of(project, condition, found["spans"]), spans=spans, supports=supports, marks=_marks(project, index, found), origin=origin,
+        state=condition.state, history=history_of(project, condition, found["spans"]),
+        spans=spans, supports=supports, marks=_marks(project, index, found), origin=origin,
     )  # fmt: skip
 
 

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from tautwise.columns import Table, force_column, force_text, length_column, number_column, plural, text_column
+from tautwise.findings import bare_texts
 from tautwise.history import history_words
 from tautwise.results_line import Equilibrium, SettleReport, SupportState
 from tautwise.strict import shown
@@ -21,6 +22,8 @@ if TYPE_CHECKING:
 
 GAP_IN_ROUNDING = 1e-14  # below it the two energies differ by rounding alone
 BLOWN_M = 5e-4  # blow-out below half a millimetre is not worth a column
+LOOKS_MOST = 8
+TEXT_MOST = 400  # of a finding, which holds names from the file
 LOADED_SHARE = 1e-3  # of the tension: a difference across a mark that is worth a column
 
 Row = tuple[float | str | None, ...]
@@ -74,6 +77,13 @@ def quoted(name: object) -> str:
     return shlex.quote(shown(str(name), 200))
 
 
+def look_again_lines(project: Project, findings: Sequence[str]) -> list[str]:
+    """What deserves a second look; the file stands in the heading already."""
+    texts = bare_texts(project, findings)
+    more = [f"  and {plural(len(texts) - LOOKS_MOST, 'more warning')}."] if len(texts) > LOOKS_MOST else []
+    return ["", *(f"  Look again: {shown(text, TEXT_MOST)}" for text in texts[:LOOKS_MOST]), *more] if texts else []
+
+
 def caution(text: str, ink: Ink) -> list[str]:
     """The caution, at the foot of every answer."""
     return ["", ink.quiet(text)]
@@ -85,6 +95,7 @@ def settle_text(report: SettleReport, project: Project, ink: Ink, pull: str | No
     lines = [*heading(project, ink), *_strung_lines(report, project), "", *_summary(ranked, project, ink)]
     for each in ranked:
         lines += ["", *condition_text(each, project, ink)]
+    lines += look_again_lines(project, report.warnings)
     file = quoted(project.source or "FILE")
     at_pull = f" --pull {quoted(pull)}" if pull else ""
     steps = [("judge every limit at this pull", f"tautwise vet {file}{at_pull}")] if project.limits else []
