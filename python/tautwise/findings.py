@@ -119,7 +119,8 @@ def _lifted(project: Project, line: Equilibrium) -> list[str]:
         if (each.swing_deg or 0.0) > OVERTURNED_DEG and holds[each.name] == "hanger":
             force = f"stands {each.swing_deg:.0f} deg from hanging, with {force_text(each.resultant_N)} in it"
             slack = each.resultant_N < SLACK_SHARE * (line.tension_max_N or 0.0)
-            found.append(f"the line lifts at {each.name!r} in {line.name!r}: its hanger {'is slack' if slack else force}")
+            words = "is slack" if slack else force
+            found.append(f"the line lifts at {each.name!r} in {line.name!r}: its hanger {words}")
     return found
 
 

@@ -133,7 +133,7 @@ def window(project: Project, **options: Any) -> PullWindow:
     relax = relaxations_of(project, found["relax"])
     answer = window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core), relax)
     pull = answer.specify.horizontal_tension_N if answer.specify else None
-    lines = () if pull is None else line_findings(project, core, pull)
+    lines = line_findings(project, core, pull) if pull is not None and project.limits else ()
     judging = judging_findings(project, "every pull is in the window")
     return replace(answer, warnings=(*project.warnings, *lines, *judging))
 
@@ -183,7 +183,7 @@ def line_findings(project: Project, core: _core.Project, pull: float | None) -> 
 def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
     """The report of a project whose line could not be settled at all: every limit undecided, for one reason."""
     given = project.stringing.horizontal_tension_N if pull is None else pull_of(project, pull)
-    findings = (*project.warnings, *findings_of(project, (), given), *_vet_findings(project))
+    findings = (*project.warnings, *_vet_findings(project))  # the reason says why the line did not settle
     return _verdict(project, limit_states(project, (), every=False, reason=lambda row: reason), given, findings)
 
 
