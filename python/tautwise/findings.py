@@ -77,12 +77,14 @@ def _off_the_curves(project: Project, conditions: Sequence[Equilibrium]) -> Iter
     limits = dict(zip(part_names(project.line), (part.valid_to for part in project.line.parts), strict=True))
     worst: dict[tuple[str, str], tuple[float, str]] = {}
     for each in conditions:
+        kept = each.history.parts if each.history is not None else ()
+        met = {(one.from_support, one.part): one.met_strain for one in kept}
         reached = [
             (each.name, part, strain, span.name)
             for span in each.spans
             for part, strain in zip(limits, span.part_strains, strict=True)
+            if strain > met.get((span.from_support, part), 0.0)  # else it is on its unloading line
         ]
-        kept = each.history.parts if each.history is not None else ()
         reached += [
             (one.condition, one.part, one.met_strain, f"{one.from_support} to {one.to_support}") for one in kept
         ]

@@ -9,6 +9,7 @@ from __future__ import annotations
 import datetime
 import math
 import os
+import re
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import replace
@@ -132,10 +133,30 @@ def window(project: Project, **options: Any) -> PullWindow:
         raise _undecided(project, found)
     relax = relaxations_of(project, found["relax"])
     answer = window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core), relax)
-    pull = answer.specify.horizontal_tension_N if answer.specify else None
-    lines = line_findings(project, core, pull) if pull is not None and project.limits else ()
+    lines = _window_findings(project, core, answer) if project.limits else ()
     judging = judging_findings(project, "every pull is in the window")
     return replace(answer, warnings=(*project.warnings, *lines, *judging))
+
+
+def _window_findings(project: Project, core: _core.Project, answer: PullWindow) -> tuple[str, ...]:
+    """What the line shows at the pull to specify, and what more at the ends that a limit governs."""
+    if answer.specify is None:
+        return ()
+    found = list(line_findings(project, core, answer.specify.horizontal_tension_N))
+    said = {_without_numbers(text) for text in found}
+    head = f"{project.source}: " if project.source else ""
+    for word, end in (("lowest", answer.low), ("highest", answer.high)):
+        if end is None or end.limit is None:
+            continue
+        texts = line_findings(project, core, end.horizontal_tension_N)
+        new = [text for text in texts if _without_numbers(text) not in said]
+        found += [f"{head}at the {word} pull, {text.removeprefix(head)}" for text in new]
+    return tuple(found)
+
+
+def _without_numbers(text: str) -> str:
+    """The same for two pulls that differ in nothing but how much."""
+    return re.sub(r"\d[\d.e+-]* ?(?:%|k?N)?", "", text)
 
 
 def vet(project: Project, *, pull: Pull = None, every: bool = False, today: datetime.date | None = None) -> VetReport:

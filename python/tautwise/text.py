@@ -123,7 +123,7 @@ def _stretch_lines(found: Equilibrium) -> list[str]:
     least, most = f"{min(longer):.4f}", f"{max(longer):.4f}"
     much = most if least == most else f"{least} to {most}"
     lines = [f"  Stretched for good: {much} % longer at this tension and temperature than as strung."]
-    if found.history is not None and found.history.parts:
+    if found.history is not None:
         lines += [f"  History: {history_words(found.history)}."]
     return lines
 
