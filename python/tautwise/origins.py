@@ -14,6 +14,7 @@ import numpy as np
 from tautwise.errors import NotSettledError
 from tautwise.limits import GROUND, ClearanceLimit, SpacingLimit
 from tautwise.places import Scenery
+from tautwise.solve_line import load_label
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -124,6 +125,11 @@ def scenery_of(project: Project, condition: int) -> Scenery:
         title=project.title,
         others=_other_lines(project, condition),
         turns=project.turns,
+        carriages=tuple(
+            load_label(load, number)
+            for number, load in enumerate(project.conditions[condition].loads)
+            if load.carriage is not None
+        ),
     )
 
 

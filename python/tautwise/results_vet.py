@@ -160,7 +160,8 @@ def limit_table(limits: Iterable[LimitState]) -> Table:
 
 
 def _row(limit: LimitState) -> tuple[float | str | None, ...]:
-    numbers = shown_values(limit.unit, limit.allowed, limit.value, limit.allowed, limit.margin)
+    unit = None if limit.allowed is None else limit.unit  # which of N and kN it would be, nobody knows
+    numbers = shown_values(unit, limit.allowed, limit.value, limit.allowed, limit.margin)
     used = None if limit.utilisation is None else 100.0 * limit.utilisation
     return (limit.id, limit.word.upper() if limit.word == FAILS else limit.word, used, *numbers,
             limit.condition, both_places(limit.place, limit.other_place))  # fmt: skip

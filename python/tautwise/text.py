@@ -155,7 +155,7 @@ def _summary(ranked: Sequence[Equilibrium], project: Project, ink: Ink) -> list[
         text_column("state"),
     ]
     rows: list[Row] = [
-        (each.name, each.temperature_degC, each.tension_max_N, share, each.sag_max_m, _deepest(each), each.status)
+        (each.name, each.temperature_degC, each.tension_max_N, share, each.sag_max_m, _deepest(each), _words(each))
         for each, share in zip(ranked, shares, strict=True)
     ]
     if strength is None:
@@ -170,6 +170,11 @@ def _broken_lines(ranked: Sequence[Equilibrium], strength: float | None, ink: In
     if strength is None or not broken:
         return []
     return [ink.alarm(f"  Above its breaking strength of {force_text(strength)}: {', '.join(broken)}.")]
+
+
+def _words(found: Equilibrium) -> str:
+    """The status of a condition as words."""
+    return found.status.replace("_", " ")
 
 
 def _deepest(found: Equilibrium) -> str | None:
