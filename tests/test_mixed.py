@@ -21,7 +21,7 @@ from tautwise.reference.project import Twin
 from tautwise.reference.route import route_of
 
 DRAWN = range(48)
-TWINNED = range(16)
+TWINNED = (2, 3, 7, 8, 11, 14, 15, 34, 35, 37, 39, 45, 50, 55, 56, 58)  # those that the twin hangs within seconds
 HONEST = {"slack", "not_settled", "gap_too_wide", "over_sheave", "not_finite"}
 BALANCE = 1e-9  # of the greatest tension: closing errors of 1e-13 of a span times EA/T, at most 1e4
 FLAT = {"sag_station_m": 1e-5, "low_station_m": 1e-5}  # places of an extreme, as in test_twin
@@ -240,12 +240,14 @@ def clamped_as_found(problem, condition, found):
     return held
 
 
-@pytest.mark.parametrize("seed", DRAWN)
+def runs(seed):
+    return any(row["hold"] == "sheave" for row in drawn(seed)["supports"])
+
+
+@pytest.mark.parametrize("seed", filter(runs, DRAWN))
 def test_a_line_on_sheaves_hangs_as_if_clamped_where_it_ran(seed):
     """Once run, a sheave is a clamp that happens to see equal tensions: the solver for clamped lines agrees."""
     problem = drawn(seed)
-    if not any(row["hold"] == "sheave" for row in problem["supports"]):
-        pytest.skip("no sheave")
     found = _core.Project(problem).settle(0)
     if found["status"] != "ok":
         pytest.skip(found["status"])
