@@ -6,11 +6,13 @@
  * A free carriage, a force F that rolls without friction, rests where moving it gains no energy: where the tension is the
  * same on both sides, with t the tension vector before it
  *     |t - F| = |t|,   so   F.F - 2 t.F = 0
- * and rolls towards the side of the smaller tension. A held one stands at a station x: r_x(s) = x. Either is one equation in
- * the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
+ * and rolls towards the side of the smaller tension. Where another force hangs the tension jumps, and the carriage may rest
+ * there, between balances of different signs. A held one stands at a station x of its span: x(r(s)) = x. Either is one equation
+ * in the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
  */
 #include <math.h>
 
+#include "route.h"
 #include "section_load.h"
 #include "vector.h"
 
@@ -156,8 +158,9 @@ static double roll_miss(rolling *run, double s)
     double place[3], before[3], beyond[3];
     tw_section *section = run->section;
     if (run->load->carriage == TW_CARRIAGE_HELD) {
+        const tw_route_leg leg = tw_route_leg_of(section->project, run->load->carriage_span);
         tw_section_at(section, s, place, NULL);
-        return place[0] - run->load->from_m;
+        return tw_route_station(&leg, place) - run->load->from_m;
     }
     tw_section_beside(section, s, before, beyond);
     return drive(before, run->force);
