@@ -9,6 +9,7 @@ import math
 import re
 from typing import Any
 
+import numpy as np
 import pytest
 
 import tautwise as tw
@@ -111,6 +112,31 @@ def test_tension_on_sheaves_grows_with_the_height():
     weight = 0.98 * 9.80665
     first = math.hypot(18e3, 18e3 * (27.0 - 1.6) / 260.0 - weight * 260.0 / 2.0)
     assert readings[3].tension_max_N == pytest.approx(first + weight * (237.4 - 113.0), rel=1e-3)
+
+
+def test_bend_is_held_by_twice_the_pull_times_the_sine_of_half_the_turn():
+    """Statics of the whole shore line: the bisector's force in still air, and what the wind from two bearings adds.
+
+    Still: 2 x 13.5 kN x sin 10 deg across, nothing along. In wind of 500 Pa the forces on the three lengths beside the
+    supports balance what the wind puts on the line and the strings: p d L square to each span times sin^2 of the angle.
+    """
+    project = project_of("shore_bend")
+    still, sea, land = (project.settle(name) for name in ("everyday", "wind from the sea", "wind from the land"))
+    assert still.supports[1].across_N == pytest.approx(2.0 * 13.5e3 * math.sin(math.radians(10.0)), rel=1e-5)
+    assert still.supports[1].along_N == pytest.approx(0.0, abs=0.1)
+    for state, bearing in ((sea, 170.0), (land, 350.0)):
+        toward = math.radians(90.0 - bearing - 180.0)  # where it blows, anticlockwise from east
+        push = np.zeros(2)
+        for span, turn in zip(state.spans, (0.0, math.radians(20.0), math.radians(20.0)), strict=True):
+            sine = math.sin(toward - turn)
+            square = 500.0 * 18.8e-3 * span.natural_length_m * sine * abs(sine)
+            push += square * np.array([-math.sin(turn), math.cos(turn)])
+        push += 0.5 * 500.0 * 0.35 * np.array([math.cos(toward), math.sin(toward)])
+        met = np.zeros(2)
+        for support, turn in zip(state.supports, np.radians([0.0, 10.0, 20.0, 20.0]), strict=True):
+            met += support.along_N * np.array([math.cos(turn), math.sin(turn)])
+            met += support.across_N * np.array([-math.sin(turn), math.cos(turn)])
+        assert met == pytest.approx(push, abs=0.5)  # the coordinates of the file are rounded to a millimetre
 
 
 def test_feeder_hollow_is_light_on_its_pole():

@@ -16,6 +16,7 @@ import pytest
 import tautwise as tw
 from steps import LANES, LAST
 from tautwise import cli
+from tautwise.schema import project_schema
 
 ROOT = Path(__file__).resolve().parents[1]
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -157,6 +158,16 @@ def test_paths_in_the_developers_page_exist():
     paths = {word for word in code_words() if re.fullmatch(r"[\w./-]+/[\w.-]*", word) and "NAME" not in word}
     assert len(paths) > 20
     assert not [path for path in sorted(paths) if not (ROOT / path).exists()]
+
+
+def test_every_key_is_listed():
+    """Each key of the project file's schema stands among README's keys, or is a table of its own there."""
+    part = README[README.index("### Every key") : README.index("## Commands")]
+    told = set(re.findall(r"[a-z0-9_]+", " ".join(re.findall(r"`([^`]+)`", part))))
+    schema = project_schema()
+    keys = {key for one in (schema, *schema["$defs"].values()) for key in one.get("properties", {})}
+    assert len(keys) > 100
+    assert not sorted(keys - told)
 
 
 def test_the_map_names_every_file():

@@ -1,4 +1,4 @@
-"""Features that meet: spacing and turning routes, courses of curved lines, history and carriages, prices over sheaves."""
+"""Features that meet: spacing and turning routes, courses of curved lines, history and carriages, prices, winds."""
 
 from __future__ import annotations
 
@@ -44,7 +44,7 @@ def spaced(folder, *, shift="", here=BEND, there=BEND, turning=(True, True)):
 
 
 def test_lines_that_turn_together_keep_their_stations(tmp_path):
-    """The same plan 2 m higher: nearest where the lines are steepest, 3 N/m * 100 m / (2 * 4 kN), at one station of both."""
+    """The same plan 2 m higher: nearest where the lines are steepest, by 3 N/m * 100 m / (2 * 4 kN)."""
     (limit,) = spaced(tmp_path).vet().limits
     assert limit.value == pytest.approx(2.0 * math.cos(math.atan(0.0375)), rel=1e-4)
     here, there = (float(text.split()[-2]) for text in (limit.place, limit.other_place))
@@ -54,8 +54,8 @@ def test_lines_that_turn_together_keep_their_stations(tmp_path):
 
 
 def test_a_shift_by_east_and_north(tmp_path):
-    """The other line's own plan lies 3 m east. Its first span, in direction (0.8, 0.6), passes our angle point 1.8 m aside,
-    2.4 m from its own end, where it sags by 3 * 2.4 * 97.6 / 8000 m.
+    """The other line's own plan lies 3 m east. Its first span, in direction (0.8, 0.6), passes our angle point 1.8 m
+    aside, 2.4 m from its own end, where it sags by 3 * 2.4 * 97.6 / 8000 m.
     """
     moved = [(x - 500.0, y) for x, y in BEND]
     shift = 'shift = { east = "503 m", elevation = "0 m" }\n'
@@ -93,7 +93,7 @@ def test_the_figure_draws_the_other_line_at_its_stations_here(tmp_path):
 
 @pytest.mark.parametrize("curved", [False, True])
 def test_courses_of_curved_lines_and_growing_loads(curved):
-    """The cubic arcs against places of the line itself: 1e-10 m a smooth arc; a kink of the law bends one along itself."""
+    """The cubic arcs against places of the line: 1e-10 m a smooth arc; a kink of the law stretches one along itself."""
     of = material.drawn_line(3) if curved else cases.line()
     ramp = {**cases.spread_load((0.0, 0.0, -2.0), 30.0, 200.0), "vector_to": (0.0, 6.0, -30.0)}
     at = np.linspace(3.0, 240.0, 60)
@@ -172,7 +172,7 @@ def test_marked_lengths_of_a_curved_line_follow_its_own_law():
 
 @pytest.mark.parametrize("support", [0, 1, 2])
 def test_prices_over_sheaves_are_those_of_windows_found_anew(support):
-    """Central differences of whole windows over 1 cm: they err by the square of it, and by 1e-9 of the pull over 1 cm."""
+    """Central differences of whole windows over 1 cm: they err by its square, and by 1e-9 of the pull over 1 cm."""
     supports = [cases.support(0.0, 40.0), cases.hanger(180.0, 44.0), cases.support(400.0, 52.0)]
     limits = [cases.limit("sag", most=9.0)]
     problem = cases.problem(
@@ -233,10 +233,13 @@ def test_a_free_carriage_rests_at_a_weight_that_it_cannot_pass():
     """Rolling on would lift it on either side of the weight: both stand at one place, which is where both hang."""
     weight = cases.point_load(100.0, (0.0, 0.0, -3e3))
     rolling = {**cases.point_load(60.0, (0.0, 0.0, -1e3), "station"), "carriage": "free", "carriage_span": 0}
-    one = cases.problem(cases.span(200.0), cases.rule("pull", 9e3), conditions=[cases.condition(loads=[weight, rolling])])
     both = cases.point_load(100.0, (0.0, 0.0, -4e3))
-    two = cases.problem(cases.span(200.0), cases.rule("pull", 9e3), conditions=[cases.condition(loads=[both])])
-    found, expected = _core.Project(one).settle(0), _core.Project(two).settle(0)
+    found, expected = (
+        _core.Project(
+            cases.problem(cases.span(200.0), cases.rule("pull", 9e3), conditions=[cases.condition(loads=loads)])
+        ).settle(0)
+        for loads in ([weight, rolling], [both])
+    )
     assert found["status"] == "ok"
     assert found["loads"][1]["at_length_m"] == pytest.approx(100.0, abs=1e-9)
     assert found["spans"][0]["tension_from_N"] == pytest.approx(expected["spans"][0]["tension_from_N"], rel=SAME)

@@ -220,7 +220,8 @@ def _bare_core(project: Project, lengths_m: Sequence[float], temperatures_degC: 
         "temperature_degC": project.stringing.temperature_degC, "rule": "span_lengths", "lengths_m": list(lengths_m)
     }  # fmt: skip
     bare = [{"temperature_degC": each} for each in temperatures_degC]
-    problem = {**project.to_core(), "conditions": bare, "marks": [], "limits": [], "stringing": rule}
+    problem = {**project.to_core(judging=False), "conditions": bare, "marks": [], "limits": [], "stringing": rule}
+    problem["history"] = None
     return _core.Project(problem)
 
 

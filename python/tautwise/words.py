@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 from tautwise.columns import plural
 from tautwise.patterns import SharesOf
 
 if TYPE_CHECKING:
-    from tautwise.tables import Condition, Load
+    from tautwise.tables import Condition, Load, Wind
 
 LOADS_NAMED = 3
 
@@ -21,9 +22,9 @@ def condition_words(condition: Condition) -> str:
     if condition.ice and condition.ice.thickness_m:
         words.append(f"{1e3 * condition.ice.thickness_m:.4g} mm of ice{_pattern_words(condition.ice.pattern)}")
     if condition.wind and condition.wind.pressure_Pa:
-        words.append(f"wind of {condition.wind.pressure_Pa:.4g} Pa")
+        words.append(f"wind of {condition.wind.pressure_Pa:.4g} Pa{_from_words(condition.wind)}")
     if condition.wind and condition.wind.speed_m_per_s:
-        words.append(f"wind of {condition.wind.speed_m_per_s:.4g} m/s")
+        words.append(f"wind of {condition.wind.speed_m_per_s:.4g} m/s{_from_words(condition.wind)}")
     if condition.resultant_addition_N_per_m:
         words.append(f"{condition.resultant_addition_N_per_m:.4g} N/m added to the resultant")
     factors = [f"{key} times {value:.4g}" for key, value in condition.factors if value != 1.0]
@@ -33,6 +34,10 @@ def condition_words(condition: Condition) -> str:
     if more > 0:
         words.append(f"and {plural(more, 'more load')}")
     return ", ".join(words)
+
+
+def _from_words(wind: Wind) -> str:
+    return "" if wind.bearing_rad is None else f" from a bearing of {math.degrees(wind.bearing_rad):.4g} deg"
 
 
 def _pattern_words(pattern: tuple[float, ...] | SharesOf | None) -> str:
