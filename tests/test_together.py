@@ -1,4 +1,4 @@
-"""Features that meet: spacing and turning routes, courses of curved lines, history and carriages, prices, winds."""
+"""Features that meet: spacing and turning routes, courses of curved lines, history, carriages, winds."""
 
 from __future__ import annotations
 
@@ -120,23 +120,6 @@ def test_courses_of_curved_lines_and_growing_loads(curved):
 # --- history
 
 
-@pytest.mark.parametrize("kind", ["carriage", "run"])
-def test_a_history_is_met_with_loads_that_follow_the_shape(kind):
-    """A condition that is met and itself in a later state leaves what it leaves as strung."""
-    heavy = {**cases.point_load(60.0, (0.0, 0.0, -9e3), "station"), "carriage": "free", "carriage_span": 0}
-    heavy = heavy if kind == "carriage" else {**cases.spread_load((0.0, 0.0, -30.0)), "is_run": True}
-    loads = {"temperature_degC": -10.0, "loads": [heavy]}
-    conditions = [cases.condition(**loads), cases.condition(**loads, state="final"), cases.condition(state="final")]
-    supports = [cases.support(0.0, 30.0), cases.support(250.0, 75.0)]
-    problem = cases.problem(supports, cases.rule("pull", 16e3), of=material.conductor(), conditions=conditions)
-    strains = []
-    for met in ([True, False, False], [False, True, False]):
-        found = _core.Project({**problem, "history": {"met": met, "creep_condition": None}}).settle(2)
-        strains.append(found["spans"][0]["permanent_strain"])
-    assert strains[0] > 1e-5
-    assert strains[1] == pytest.approx(strains[0], rel=1e-9)
-
-
 def test_a_history_on_sheaves_is_met_with_the_lengths_of_each_condition():
     """In the condition that was heaviest the final line hangs as it then did, its spans' lengths included.
 
@@ -154,43 +137,6 @@ def test_a_history_on_sheaves_is_met_with_the_lengths_of_each_condition():
         assert abs(before["natural_length_m"] - first["natural_length_m"]) > 0.05
         assert now["natural_length_m"] == pytest.approx(before["natural_length_m"], abs=1e-3)
         assert now["tension_from_N"] == pytest.approx(before["tension_from_N"], rel=1e-4)
-
-
-# --- the crew sheet of a curved line
-
-
-def test_marked_lengths_of_a_curved_line_follow_its_own_law():
-    of = material.conductor()
-    problem = cases.problem(cases.span(250.0, 10.0), cases.rule("pull", 20e3), of=of)
-    (row,) = _core.Project(problem).sheet([15.0])["lengths"]
-    law = Twin(problem).section(0, None).material_of(0)
-    assert row["marked_m"] == pytest.approx(row["natural_m"] * float(law.stretch(np.array([20e3]))[0]), rel=1e-10)
-
-
-# --- prices
-
-
-@pytest.mark.parametrize("support", [0, 1, 2])
-def test_prices_over_sheaves_are_those_of_windows_found_anew(support):
-    """Central differences of whole windows over 1 cm: they err by its square, and by 1e-9 of the pull over 1 cm."""
-    supports = [cases.support(0.0, 40.0), cases.hanger(180.0, 44.0), cases.support(400.0, 52.0)]
-    limits = [cases.limit("sag", most=9.0)]
-    problem = cases.problem(
-        supports, {**cases.rule("none", None), "method": "over_sheaves"}, of=cases.line(strength=90e3), limits=limits
-    )
-    (price,) = [
-        row
-        for row in _core.Project(problem).window()["prices"]
-        if row["variable"] == "support_height" and row["support"] == support
-    ] or [None]
-    if price is None:
-        pytest.skip("no price: not beside the governing span")
-    ends = []
-    for by in (0.01, -0.01):
-        moved = copy.deepcopy(problem)
-        moved["supports"][support]["elevation_m"] += by
-        ends.append(_core.Project(moved).window(verify=0)["low"]["pull_N"])
-    assert price["pull_per_unit"] == pytest.approx((ends[0] - ends[1]) / 0.02, rel=1e-3, abs=0.01)
 
 
 # --- loads per run beside sheaves, and where the route turns
