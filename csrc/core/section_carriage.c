@@ -6,11 +6,13 @@
  * A free carriage, a force F that rolls without friction, rests where moving it gains no energy: where the tension is the
  * same on both sides, with t the tension vector before it
  *     |t - F| = |t|,   so   F.F - 2 t.F = 0
- * and rolls towards the side of the smaller tension. A held one stands at a station x: r_x(s) = x. Either is one equation in
- * the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
+ * and rolls towards the side of the smaller tension. Where another force hangs the tension jumps, and the carriage may rest
+ * there, between balances of different signs. A held one stands at a station x of its span: x(r(s)) = x. Either is one equation
+ * in the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
  */
 #include <math.h>
 
+#include "route.h"
 #include "section_load.h"
 #include "vector.h"
 
@@ -19,6 +21,7 @@ static const double RUN_CHANGE = 1e-12;    /* of a share that counts as none */
 static const double RUN_SETTLED = 1e-10;   /* and that is accepted where rounding leaves no less */
 static const double ROLL_MARGIN = 1e-6;    /* of the span: nearer to a support than this is at it */
 static const double ROLL_STEP = 1e-13;     /* of the span: as near as a place is found */
+static const double ROLL_TOUCH = 3e-9;     /* of the span: nearer than this to another force the two are at one place */
 static const double ROLL_FIRST = 0.02;     /* of the span: the first step of the search for a bracket */
 static const double ROLL_BALANCED = 1e-9;  /* of the tension: a difference that counts as none */
 
@@ -131,8 +134,9 @@ static double roll_miss(rolling *run, double s)
     double place[3], before[3], beyond[3];
     tw_section *section = run->section;
     if (run->load->carriage == TW_CARRIAGE_HELD) {
+        const tw_route_leg leg = tw_route_leg_of(section->project, run->load->carriage_span);
         tw_section_at(section, s, place, NULL);
-        return place[0] - run->load->from_m;
+        return tw_route_station(&leg, place) - run->load->from_m;
     }
     tw_section_beside(section, s, before, beyond);
     tw_axpy(before, -1.0, run->force, beyond);
@@ -205,6 +209,35 @@ static double narrow_place(rolling *run, double place[2], double miss[2], double
     return fabs(fa) <= fabs(fb) ? a : b;
 }
 
+/* Another point load so near to a place that the two may be one; NaN: none. */
+static double load_beside(const rolling *run, double s, double near)
+{
+    const tw_project *project = run->section->project;
+    const tw_condition *state = &project->conditions[run->condition];
+    for (size_t i = 0; i < state->load_count; i++) {
+        const tw_load *load = &project->loads[state->load_first + i];
+        if (load->is_point && load != run->load && fabs(run->section->load_from_m[i] - s) <= near) {
+            return run->section->load_from_m[i];
+        }
+    }
+    return (double)NAN;
+}
+
+/* Whether a free carriage stays where it has been put; at another force, only what lies on both sides was balanced. */
+static tw_status judge_rest(rolling *run, double low, double high)
+{
+    double off = roll_miss(run, run->section->carriage_m);
+    if (fabs(off) <= ROLL_BALANCED * run->tension_N || run->section->carriage_m <= low || run->section->carriage_m >= high) {
+        return TW_OK;
+    }
+    double at = load_beside(run, run->section->carriage_m, ROLL_TOUCH * (high - low));
+    if (isnan(at)) {
+        return TW_NOT_SETTLED;
+    }
+    roll_to(run, at);
+    return run->status;
+}
+
 static tw_status roll(rolling *run)
 {
     tw_section *section = run->section;
@@ -227,10 +260,7 @@ static tw_status roll(rolling *run)
     if (run->status == TW_OK && section->carriage_m != at) {
         roll_to(run, at);
     }
-    double off = run->status == TW_OK ? roll_miss(run, section->carriage_m) : 0.0;
-    int between = section->carriage_m > start && section->carriage_m < start + length;
-    return run->status == TW_OK && !held && between && !(fabs(off) <= ROLL_BALANCED * run->tension_N) ? TW_NOT_SETTLED
-                                                                                                    : run->status;
+    return run->status == TW_OK && !held ? judge_rest(run, start, start + length) : run->status;
 }
 
 tw_status tw_section_hang(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,

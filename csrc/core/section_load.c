@@ -234,7 +234,8 @@ static void load_span(tw_section *section, const loading *on, size_t span)
     }
 }
 
-/* Half of each hanger's weight and wind, and the point loads that act right at a clamp. A hanger looks at the span ahead. */
+/* Half of each hanger's weight and wind, and the point loads that act right at a clamp. A hanger looks at the span ahead; so
+ * does a load "along" or "across" at an angle point. */
 static void load_clamps(tw_section *section, const loading *on)
 {
     for (size_t j = 0; j <= section->span_count; j++) {
@@ -248,6 +249,7 @@ static void load_clamps(tw_section *section, const loading *on)
             tw_load_hanger(support, on->state, tw_load_wind_angle(on->state, u), vector);
             into_route(TW_FRAME_SPAN, u, vector, g);
         }
+        tw_copy(g, section->link_load + 3 * j);
         for (size_t i = 0; i < on->count; i++) {
             if (on->loads[i].is_point && section->load_from_m[i] == section->start_m[j]) {
                 into_route(on->loads[i].frame, u, on->loads[i].vector, vector);
@@ -323,7 +325,6 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
         on.count = on.state->load_count;
         on.loads = on.count ? project->loads + on.state->load_first : NULL;
     }
-    section->factor_weight = on.state->factor_weight;
     memcpy(section->length_m, length_m, section->span_count * sizeof(double));
     for (size_t k = 0; k < section->span_count; k++) {
         section->start_m[k + 1] = section->start_m[k] + length_m[k];

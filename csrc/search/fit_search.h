@@ -20,6 +20,7 @@ typedef struct tw_fit_model {
     size_t *condition;         /* [count] of each observation; owned */
     double *length_m;          /* [span_count] owned */
     double *work;              /* of stringing; owned */
+    tw_pulling *pulling;       /* how it is strung over sheaves; NULL: clamped; owned */
     double *side;              /* [2 row_count] of derivatives; owned */
     tw_trial *trial;           /* owned */
     double sigma_m;            /* least of the given; 1 without */

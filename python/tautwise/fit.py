@@ -18,7 +18,7 @@ from tautwise.fit_judge import deviations, findings_of
 from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan, SurveyFit
 from tautwise.results_line import CAUTION
 from tautwise.solve import core_of, errors_of, program, settled_bare
-from tautwise.strict import described
+from tautwise.strict import described, shown
 from tautwise.student import CONFIDENCE, quantile
 from tautwise.survey import Survey, survey_from
 
@@ -58,6 +58,10 @@ def fit(
     """
     if unknown not in UNKNOWNS:
         raise InputError([Fault(None, None, "unknown", f"{described(unknown)} is not known", "pull or lengths")])
+    sheave = next((one.name for one in project.supports if one.hold == "sheave"), None)
+    if unknown == "lengths" and sheave is not None:
+        problem = f'natural length runs over the sheave "{shown(sheave)}": the spans beside it have no lengths of their own'
+        raise InputError([Fault(project.source, None, "unknown", problem, "pull")])
     points = survey_from(survey, temperature)
     _refuse_stations(project, points)
     if unknown == "lengths" and (spans := sum(count > 0 for count in _counts(project, points))) > SPANS_MOST:

@@ -208,10 +208,11 @@ def settled_bare(
 def shape_bare(
     project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float], points: int
 ) -> list[Any]:
-    """Positions along the bare line on natural lengths, at each temperature; `points` for each span."""
+    """Station and elevation along the bare line on natural lengths, at each temperature; `points` for each span."""
     core = _bare_core(project, lengths_m, temperatures_degC)
     with errors_of(project, math.inf):
-        return [core.shape(index, points)["position_m"] for index in range(len(temperatures_degC))]
+        shapes = [core.shape(index, points) for index in range(len(temperatures_degC))]
+    return [(shape["station_m"], shape["position_m"][:, 2]) for shape in shapes]
 
 
 def _bare_core(project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float]) -> _core.Project:
