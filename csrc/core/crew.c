@@ -100,7 +100,7 @@ static tw_status hang_bare(crew_run *run, double temperature_degC, const double 
     if (status == TW_OK) {
         read_spans(run->section, mass_of(run), rows);
     }
-    return status == TW_CANCELLED ? status : TW_OK;
+    return tw_status_stops(status) ? status : TW_OK;
 }
 
 /* Every temperature, in one state. */
@@ -202,7 +202,7 @@ static tw_status fill_friction(crew_run *run, const tw_crew_span *free_run)
         read_spans(blocks, mass_of(run), crew->last);
     }
     blocks->drag = 0;
-    return status == TW_CANCELLED ? status : TW_OK;
+    return tw_status_stops(status) ? status : TW_OK;
 }
 
 static tw_status fill_over(crew_run *run)
