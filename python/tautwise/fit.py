@@ -15,7 +15,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
-from tautwise.fit_judge import deviations, findings_of
+from tautwise.fit_judge import as_built_findings, deviations, findings_of
 from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan, SurveyFit
 from tautwise.results_line import CAUTION
 from tautwise.solve import errors_of, line_core_of, program, settled_bare
@@ -61,7 +61,9 @@ def fit(
         raise InputError([Fault(None, None, "unknown", f"{described(unknown)} is not known", "pull or lengths")])
     sheave = next((one.name for one in project.supports if one.hold == "sheave"), None)
     if unknown == "lengths" and sheave is not None:
-        problem = f'natural length runs over the sheave "{shown(sheave)}": the spans beside it have no lengths of their own'
+        problem = (
+            f'natural length runs over the sheave "{shown(sheave)}": the spans beside it have no lengths of their own'
+        )
         raise InputError([Fault(project.source, None, "unknown", problem, "pull")])
     points = survey_from(survey, temperature)
     _refuse_stations(project, points)
@@ -154,6 +156,7 @@ def _result(project: Project, points: Survey, unknown: str, found: Mapping[str, 
     deviation = None if points.has_sigmas or variance is None else math.sqrt(variance)
     spans = _spans(project, points, found, states, variance, factor)
     pull = _pull(found, variance, factor) if unknown == "pull" else None
+    findings = (*findings_of(points, pull, spans, listed, found["chi2"], left), *as_built_findings(project))
     return SurveyFit(
         program=program(), project=project.title, input_sha256=project.input_sha256, survey=points.source,
         survey_sha256=points.sha256, unknown=unknown, temperature_degC=project.stringing.temperature_degC,
@@ -162,7 +165,7 @@ def _result(project: Project, points: Survey, unknown: str, found: Mapping[str, 
         rms_m=math.sqrt(math.fsum(r * r for r in residuals) / len(residuals)), chi2=found["chi2"],
         standard_deviation_m=deviation, confidence=CONFIDENCE, factor=factor, gap_relative=gap,
         step_relative=found["step_relative"], steps=found["steps"], evaluations=found["evaluations"],
-        warnings=findings_of(points, pull, spans, listed, found["chi2"], left), caution=CAUTION, origin=project,
+        warnings=findings, caution=CAUTION, origin=project,
     )  # fmt: skip
 
 
