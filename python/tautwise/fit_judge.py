@@ -99,8 +99,8 @@ def as_built_findings(project: Project) -> tuple[str, ...]:
     if project.line.stretches:
         found.append(
             "the line is taken as one that nothing has stretched for good yet; where it has been stretched already, "
-            "the natural lengths are those of the line as it is now, and on the project as built a condition in the state "
-            "final or after creep would count that stretch twice"
+            "the natural lengths are those of the line as it is now, and on the project as built a condition in the "
+            "state final or after creep would count that stretch twice"
         )
     if gone := dropped(project):
         found.append(
