@@ -6,7 +6,9 @@ supports are all that acts on the line and its hangers, whatever the line is mad
 
 from __future__ import annotations
 
+import copy
 import math
+from itertools import pairwise
 
 import core_cases as cases
 import material_cases as material
@@ -41,10 +43,9 @@ def drawn(seed):
         else cases.line(float(rng.uniform(5, 20)), float(10.0 ** rng.uniform(6.8, 7.5)), strength=120e3)
     )
     states = ["initial", "final", "after creep"] if curved else ["initial"]
-    fed = "sheave" in holds or "link" in holds
     conditions = [
-        drawn_condition(rng, n, places, turning=turning, fed=fed, state="initial"),
-        drawn_condition(rng, n, places, turning=turning, fed=fed, state=str(rng.choice(states))),
+        drawn_condition(rng, n, places, turning=turning, state="initial"),
+        drawn_condition(rng, n, places, turning=turning, state=str(rng.choice(states))),
     ]
     stiffness = sum(part["loading_N"][1] for part in of["parts"]) if curved else of["stiffness_N"]
     pull = float(stiffness * rng.uniform(0.6e-3, 1.4e-3))
@@ -97,11 +98,11 @@ def drawn_support(rng, kind, place):
     return cases.support(place[0], elevation, **where)
 
 
-def drawn_condition(rng, n, places, *, turning, fed, state):
-    reach = sum(math.dist(a, b) for a, b in zip(places, places[1:], strict=False))
+def drawn_condition(rng, n, places, *, turning, state):
+    reach = sum(math.dist(a, b) for a, b in pairwise(places))
     low, high = sorted(float(x) for x in rng.uniform(0.05, 0.95, 2) * reach)
     span = int(rng.integers(0, n))
-    stations = np.concatenate([[0.0], np.cumsum([math.dist(a, b) for a, b in zip(places, places[1:], strict=False)])])
+    stations = np.concatenate([[0.0], np.cumsum([math.dist(a, b) for a, b in pairwise(places)])])
     if not turning:
         stations = np.array([x for x, _ in places])
     between = float(stations[span] + rng.uniform(0.25, 0.75) * (stations[span + 1] - stations[span]))
@@ -148,7 +149,7 @@ def on_the_supports(problem, found):
 
 
 def acting(problem, condition, found):
-    """Sum of all that acts, from the definitions and the natural lengths found; loads stay where they are on the line."""
+    """Sum of all that acts, by the definitions, on the natural lengths found; loads stay where they are on the line."""
     row, route = problem["conditions"][condition], route_of(problem)
     ends = np.concatenate([[0.0], np.cumsum([span["natural_length_m"] for span in found["spans"]])])
     total = np.zeros(3)
@@ -222,3 +223,36 @@ def test_the_twin_finds_the_same(seed):
         mine = [row[key] for row in expected["supports"]]
         theirs = [row[key] for row in found["supports"]]
         np.testing.assert_allclose(theirs, mine, rtol=0, atol=BALANCE * size, err_msg=key)
+
+
+def clamped_as_found(problem, condition, found):
+    """The same line with sheaves turned into clamps, on the natural lengths that it has run to; loads by length."""
+    held = copy.deepcopy(problem)
+    held["stringing"] = cases.lengths_rule(*(span["natural_length_m"] for span in found["spans"]))
+    for row in held["supports"]:
+        if row["hold"] == "sheave":
+            row["hold"] = "hanger" if row["hanger_length_m"] > 0.0 else "anchor"
+    row = held["conditions"][condition]
+    for load, mark in zip(row["loads"], found["loads"], strict=True):
+        if load["is_point"]:
+            load |= {"place": "length", "from_m": mark["at_length_m"], "carriage": "none"}
+            load.pop("carriage_span", None)
+    return held
+
+
+@pytest.mark.parametrize("seed", DRAWN)
+def test_a_line_on_sheaves_hangs_as_if_clamped_where_it_ran(seed):
+    """Once run, a sheave is a clamp that happens to see equal tensions: the solver for clamped lines agrees."""
+    problem = drawn(seed)
+    if not any(row["hold"] == "sheave" for row in problem["supports"]):
+        pytest.skip("no sheave")
+    found = _core.Project(problem).settle(0)
+    if found["status"] != "ok":
+        pytest.skip(found["status"])
+    held = _core.Project(clamped_as_found(problem, 0, found)).settle(0)
+    assert held["status"] == "ok"
+    size = max(span["tension_max_N"] for span in found["spans"])
+    for key in ("tension_from_N", "tension_to_N", "horizontal_tension_N"):
+        assert [s[key] for s in held["spans"]] == pytest.approx([s[key] for s in found["spans"]], abs=BALANCE * size)
+    for key in ("along_N", "across_N", "down_N"):
+        assert [s[key] for s in held["supports"]] == pytest.approx([s[key] for s in found["supports"]], abs=BALANCE * size)

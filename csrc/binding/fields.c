@@ -151,6 +151,7 @@ static const field settled_fields[] = {
     F(tw_settled, residual_N, NAN),
     F(tw_settled, closing_m, NAN),
     F(tw_settled, sheave_imbalance_N, NAN),
+    F(tw_settled, load_mismatch, NAN),
 };
 const field_table tw_settled_table = TABLE(settled_fields);
 

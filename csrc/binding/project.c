@@ -194,7 +194,7 @@ static int settled_room(const tw_project *project, size_t condition, tw_settled 
 {
     *out = (tw_settled){.status = TW_NOT_SETTLED, .energy_J = NAN, .energy_lower_J = NAN, .gap_J = NAN,
                         .gap_relative = NAN, .residual_N = NAN, .closing_m = NAN,
-                        .sheave_imbalance_N = NAN};
+                        .sheave_imbalance_N = NAN, .load_mismatch = NAN};
     out->spans = nan_rows(project->support_count - 1, sizeof(tw_span_state));
     out->supports = nan_rows(project->support_count, sizeof(tw_support_state));
     out->marks = nan_rows(project->mark_count, sizeof(tw_mark_state));

@@ -118,13 +118,12 @@ static tw_status hang_all(crew_run *run, const double *length_m, tw_crew_span *r
 static void fill_lengths(crew_run *run)
 {
     tw_crew *crew = run->crew;
-    double reference = run->bare.stringing.temperature_degC;
-    const tw_material material = tw_material_at(&run->bare.line, reference, reference);
+    const tw_material *strung = run->section->materials; /* hung last at the stringing temperature */
     for (size_t k = 0; k < crew->span_count; k++) {
         double own = crew->clamped[crew->temperature_count * crew->span_count + k].horizontal_tension_N;
         double tension = isnan(crew->pull_N) ? own : crew->pull_N;
         crew->lengths[k].natural_m = run->trial->length_m[k];
-        crew->lengths[k].marked_m = run->trial->length_m[k] * tw_material_stretch(&material, tension);
+        crew->lengths[k].marked_m = run->trial->length_m[k] * tw_material_stretch(&strung[k], tension);
     }
 }
 

@@ -59,8 +59,7 @@ tw_status tw_history_settle(tw_history *history, size_t condition, const double 
                             int creeping, const tw_options *options)
 {
     history->section->creeping = creeping;
-    tw_status status = tw_section_load(history->section, condition, length_m, strung, 1);
-    return status == TW_OK ? tw_section_solve(history->section, options, 0) : status;
+    return tw_section_hang(history->section, condition, length_m, strung, 1, options, 0);
 }
 
 static double mean_stretch(const tw_section *section, size_t span)

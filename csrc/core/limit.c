@@ -65,7 +65,8 @@ static void judge_spacing(const tw_limit *limit, const tw_section *section, size
     tw_spacing found;
     if (spaced->other && tw_spacing_least(section, span, spaced->other, spaced->below_m, &found)) {
         offer_least(place, found.distance_m, limit->least, 1.0);
-        place->station_m = found.position[0];
+        const tw_route_leg leg = tw_route_leg_of(section->project, span);
+        place->station_m = tw_route_station(&leg, found.position);
         place->other_at_m = found.other_at_m;
         tw_copy(found.other_position, place->other_position_m);
     }

@@ -350,6 +350,7 @@ typedef struct tw_settled {
     double gap_relative;
     double residual_N;        /* largest out-of-balance force on a node of the discretised line */
     double closing_m;         /* largest closing error of the exact line */
+    double load_mismatch;     /* of loads that depend on the shape, see tw_section_runs_off; 0 without such loads */
     double sheave_imbalance_N;/* largest difference of tension across a sheave, exact line; 0 without sheaves */
     size_t elements;          /* of the discretised line */
     size_t evaluations;       /* of its energy by the optimiser */

@@ -78,13 +78,15 @@ void tw_pulling_over_sheaves(tw_section *section)
     set_feeds(section, section->project, TW_FEED_SHEAVE);
 }
 
-/* With equal horizontal tension the line would lift these hangers: they become fixed points at their plumb ends. */
+/* The supports as they stand now: a search may have moved them. With equal horizontal tension the line would lift some
+ * hangers: they become fixed points at their plumb ends. */
 static void hold_down(tw_pulling *pulling, const double *length_m, const double *pull)
 {
     double weight = pulling->project->line.weight_N_per_m;
-    for (size_t j = 1; j + 1 < pulling->project->support_count; j++) {
+    size_t count = pulling->project->support_count;
+    memcpy(pulling->supports, pulling->project->supports, count * sizeof *pulling->supports);
+    for (size_t j = 1; j + 1 < count; j++) {
         tw_support *support = &pulling->supports[j];
-        *support = pulling->project->supports[j];
         double link = tw_hold_link_m(support);
         double down = pull[3 * j - 1] + weight * length_m[j - 1] - pull[3 * j + 2];
         if (link > 0.0 && down + 0.5 * support->hanger_weight_N <= 0.0) {

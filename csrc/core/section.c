@@ -49,6 +49,7 @@ tw_section *tw_section_create(const tw_project *project)
     section->project = project;
     section->span_count = spans;
     section->carriage_m = (double)NAN;
+    section->condition = TW_NONE;
     section->piece_capacity = spans + 2 * loads;
     section->materials = tw_calloc(spans, sizeof *section->materials);
     section->curves = project->line.part_count > 0 ? tw_calloc(spans, sizeof *section->curves) : NULL;
@@ -75,13 +76,14 @@ tw_section *tw_section_create(const tw_project *project)
     section->feed = tw_calloc(spans + 1, sizeof *section->feed);
     section->moved_m = tw_calloc(spans + 1, sizeof(double));
     section->winch_N = tw_calloc(spans + 1, sizeof(double));
+    section->feed_runs = tw_calloc(spans + 1, sizeof *section->feed_runs);
     section->feed_work = tw_calloc(TW_SECTION_FEED_PER_SPAN * spans, sizeof(double));
     section->work = tw_calloc(TW_SECTION_WORK_PER_SPAN * spans + 3, sizeof(double));
     if (!section->pieces || !section->piece_first || !section->cut_m || !section->slack
         || !section->run_first || !section->start_m || !section->length_m || !section->pull
         || !section->clamp || !section->clamp_load || !section->link_load || !section->hold_force || !section->ahead || !section->load_length_m
         || !section->load_from_m || !section->load_to_m || !section->work || !section->feed || !section->moved_m
-        || !section->winch_N || !section->feed_work) {
+        || !section->winch_N || !section->feed_work || !section->feed_runs) {
         tw_section_free(section);
         return NULL;
     }
@@ -116,6 +118,7 @@ void tw_section_free(tw_section *section)
     tw_free(section->moved_m);
     tw_free(section->winch_N);
     tw_free(section->feed_work);
+    tw_free(section->feed_runs);
     tw_free(section->work);
     tw_free(section->run_vector);
     tw_free(section->run_share);

@@ -36,6 +36,7 @@ typedef enum tw_feed {
 
 typedef struct tw_section {
     const tw_project *project;
+    size_t condition;        /* that was loaded; TW_NONE: bare */
     tw_material *materials;  /* [span_count] owned */
     tw_curve *curves;        /* [span_count] room for their laws; NULL on a linear line; owned */
     double stiffness_N;      /* largest of the materials */
@@ -64,6 +65,7 @@ typedef struct tw_section {
     tw_feed *feed;           /* [span_count + 1] by the supports' holds at first; owned */
     double *moved_m;         /* [span_count + 1] natural length moved across each support into the span ahead; owned */
     double *feed_work;       /* scratch of section_feed; owned */
+    size_t *feed_runs;       /* [span_count + 1] scratch of section_feed; owned */
     double *winch_N;         /* [span_count + 1] horizontal tension that a winch keeps in the span ahead; owned */
     int drag;                /* +1: friction lets the tension grow ahead over each sheave; -1: fall; 0: no friction */
     int fed;                 /* 1: moved_m has been put on the pieces since they were loaded */
@@ -92,6 +94,13 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
  * from the pulls, shares and the carriage's place already there. TW_ERROR_PLACE: a held carriage's station is off its span. */
 tw_status tw_section_hang(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,
                           int with_addition, const tw_options *options, int warm);
+
+/* How far the loads are from what the hung shape asks for: the largest change of a load per run's share if it were brought
+ * into line once more, and what a carriage still lacks of standing (the force that drives it on over the tension, or the
+ * miss of its station over the span's length). */
+double tw_section_runs_off(const tw_section *section);
+double tw_section_carriage_off(const tw_section *section);
+#define TW_SECTION_OFF_MOST 1e-9 /* of either, in a line that is settled */
 
 /* Find the equilibrium. warm: start from the pulls already there. Fills everything from pull on. */
 tw_status tw_section_solve(tw_section *section, const tw_options *options, int warm);

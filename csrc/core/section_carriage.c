@@ -21,9 +21,7 @@ static const double RUN_CHANGE = 1e-12;    /* of a share that counts as none */
 static const double RUN_SETTLED = 1e-10;   /* and that is accepted where rounding leaves no less */
 static const double ROLL_MARGIN = 1e-6;    /* of the span: nearer to a support than this is at it */
 static const double ROLL_STEP = 1e-13;     /* of the span: as near as a place is found */
-static const double ROLL_TOUCH = 3e-9;     /* of the span: nearer than this to another force the two are at one place */
 static const double ROLL_FIRST = 0.02;     /* of the span: the first step of the search for a bracket */
-static const double ROLL_BALANCED = 1e-9;  /* of the tension: a difference that counts as none */
 
 /* Horizontal run of a piece: int |t_xy|/|t| W*'(|t|) ds at five Gauss-Legendre points; a piece is short beside its span. */
 static double plan_run(const tw_material *material, const tw_piece *piece)
@@ -41,38 +39,57 @@ static double plan_run(const tw_material *material, const tw_piece *piece)
     return run * piece->length_m;
 }
 
-/* Brings the loads per run on a piece into line with its shape; returns the change of the share. */
-static double follow_run(tw_section *section, const tw_material *material, size_t p)
+/* The share of a load per run that the shape of a piece makes: at its start, and its growth along it. */
+static void share_of(const tw_material *material, const tw_piece *piece, double share[2])
 {
-    tw_piece *piece = &section->pieces[p];
-    double *share = section->run_share + 2 * p;
-    const double *vector = section->run_vector + 3 * p;
     double ends[2], t[3];
-    if (tw_norm(vector) == 0.0 || !(piece->length_m > 0.0)) {
-        return 0.0;
-    }
     for (int e = 0; e < 2; e++) {
         tw_piece_tension(piece, e * piece->length_m, t);
         double size = tw_norm(t);
         ends[e] = hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
     }
-    double rate = (ends[1] - ends[0]) / piece->length_m;
-    double start = plan_run(material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
-    double change = fabs(start - share[0]) + fabs(rate - share[1]) * piece->length_m;
-    tw_axpy(piece->load, start - share[0], vector, piece->load);
-    tw_axpy(piece->ramp, rate - share[1], vector, piece->ramp);
-    share[0] = start;
-    share[1] = rate;
-    return change;
+    share[0] = plan_run(material, piece) / piece->length_m - 0.5 * (ends[1] - ends[0]);
+    share[1] = (ends[1] - ends[0]) / piece->length_m;
+}
+
+/* By how much the share of a piece is not that of its shape; what it should be. */
+static double run_off(const tw_section *section, size_t span, size_t p, double share[2])
+{
+    const tw_piece *piece = &section->pieces[p];
+    const double *now = section->run_share + 2 * p;
+    if (tw_norm(section->run_vector + 3 * p) == 0.0 || !(piece->length_m > 0.0)) {
+        share[0] = now[0];
+        share[1] = now[1];
+        return 0.0;
+    }
+    share_of(&section->materials[span], piece, share);
+    return fabs(share[0] - now[0]) + fabs(share[1] - now[1]) * piece->length_m;
+}
+
+double tw_section_runs_off(const tw_section *section)
+{
+    double most = 0.0, share[2];
+    for (size_t k = 0; section->run_vector && k < section->span_count; k++) {
+        for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
+            double off = run_off(section, k, p, share);
+            most = off > most || isnan(off) ? off : most;
+        }
+    }
+    return most;
 }
 
 double tw_section_follow_runs(tw_section *section)
 {
-    double most = 0.0;
+    double most = tw_section_runs_off(section);
     for (size_t k = 0; k < section->span_count; k++) {
         for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
-            double change = follow_run(section, &section->materials[k], p);
-            most = change > most || isnan(change) ? change : most;
+            double *now = section->run_share + 2 * p, share[2];
+            const double *vector = section->run_vector + 3 * p;
+            run_off(section, k, p, share);
+            tw_axpy(section->pieces[p].load, share[0] - now[0], vector, section->pieces[p].load);
+            tw_axpy(section->pieces[p].ramp, share[1] - now[1], vector, section->pieces[p].ramp);
+            now[0] = share[0];
+            now[1] = share[1];
         }
     }
     return most;
@@ -112,7 +129,6 @@ typedef struct rolling {
     double force[3];
     int warm;
     size_t steps;
-    double tension_N; /* at the carriage, of the last place */
     tw_status status;
 } rolling;
 
@@ -128,6 +144,14 @@ static const tw_load *carriage_of(const tw_project *project, size_t condition)
     return NULL;
 }
 
+/* (|t - F|^2 - |t|^2) / (|t - F| + |t|): what drives a force F on, with t before it, N; negative where it rolls ahead. */
+static double drive(const double before[3], const double force[3])
+{
+    double beyond[3];
+    tw_axpy(before, -1.0, force, beyond);
+    return (tw_dot(force, force) - 2.0 * tw_dot(before, force)) / (tw_norm(beyond) + tw_norm(before));
+}
+
 /* What is zero where the carriage stands, growing with s there. */
 static double roll_miss(rolling *run, double s)
 {
@@ -139,9 +163,7 @@ static double roll_miss(rolling *run, double s)
         return tw_route_station(&leg, place) - run->load->from_m;
     }
     tw_section_beside(section, s, before, beyond);
-    tw_axpy(before, -1.0, run->force, beyond);
-    run->tension_N = tw_norm(before);
-    return (tw_dot(run->force, run->force) - 2.0 * tw_dot(before, run->force)) / (tw_norm(beyond) + run->tension_N);
+    return drive(before, run->force);
 }
 
 /* The line hung with the carriage at s; NaN, and the status, when that fails. */
@@ -179,7 +201,8 @@ static int bracket_place(rolling *run, double low, double high, double place[2],
     return run->status == TW_OK;
 }
 
-/* Chandrupatla's method: inverse quadratic interpolation where it can be trusted, else bisection. */
+/* Chandrupatla's method: inverse quadratic interpolation where it can be trusted, else bisection. Returns the better end of
+ * what is left of the bracket; place[1] is then the other. */
 static double narrow_place(rolling *run, double place[2], double miss[2], double tolerance)
 {
     double b = place[0], fb = miss[0], a = place[1], fa = miss[1], c = a, fc = fa;
@@ -206,36 +229,43 @@ static double narrow_place(rolling *run, double place[2], double miss[2], double
         share = trusted ? fa / (fb - fa) * fc / (fb - fc) + (c - a) / (b - a) * fa / (fc - fa) * fb / (fc - fb) : 0.5;
         share = fmin(fmax(share, least), 1.0 - least);
     }
+    place[1] = fabs(fa) <= fabs(fb) ? b : a;
     return fabs(fa) <= fabs(fb) ? a : b;
 }
 
-/* Another point load so near to a place that the two may be one; NaN: none. */
-static double load_beside(const rolling *run, double s, double near)
+/* A free carriage rests where it rolls back from just ahead and ahead from just behind; another point load there makes the
+ * two differ. At an end of its span only one side is asked. */
+static double free_off(const tw_section *section, const tw_load *load)
 {
-    const tw_project *project = run->section->project;
-    const tw_condition *state = &project->conditions[run->condition];
-    for (size_t i = 0; i < state->load_count; i++) {
-        const tw_load *load = &project->loads[state->load_first + i];
-        if (load->is_point && load != run->load && fabs(run->section->load_from_m[i] - s) <= near) {
-            return run->section->load_from_m[i];
-        }
+    double force[3], before[3], beyond[3];
+    size_t span = load->carriage_span;
+    double s = section->carriage_m, start = section->start_m[span], end = section->start_m[span + 1];
+    double margin = ROLL_MARGIN * (end - start);
+    tw_section_load_vector(section, section->condition, load, span, force);
+    if (tw_norm(force) == 0.0) {
+        return 0.0;
     }
-    return (double)NAN;
+    tw_section_beside(section, s, before, beyond);
+    double size = fmax(tw_norm(before), tw_norm(beyond));
+    double ahead = s <= start + margin ? 0.0 : drive(before, force);
+    tw_axpy(beyond, 1.0, force, beyond);
+    double back = s >= end - margin ? 0.0 : -drive(beyond, force);
+    return fmax(fmax(ahead, back), 0.0) / size;
 }
 
-/* Whether a free carriage stays where it has been put; at another force, only what lies on both sides was balanced. */
-static tw_status judge_rest(rolling *run, double low, double high)
+double tw_section_carriage_off(const tw_section *section)
 {
-    double off = roll_miss(run, run->section->carriage_m);
-    if (fabs(off) <= ROLL_BALANCED * run->tension_N || run->section->carriage_m <= low || run->section->carriage_m >= high) {
-        return TW_OK;
+    const tw_load *load = section->condition == TW_NONE ? NULL : carriage_of(section->project, section->condition);
+    double place[3];
+    if (!load) {
+        return 0.0;
     }
-    double at = load_beside(run, run->section->carriage_m, ROLL_TOUCH * (high - low));
-    if (isnan(at)) {
-        return TW_NOT_SETTLED;
+    if (load->carriage == TW_CARRIAGE_FREE) {
+        return free_off(section, load);
     }
-    roll_to(run, at);
-    return run->status;
+    tw_section_at(section, section->carriage_m, place, NULL);
+    double station = tw_section_station(section, section->carriage_m, place);
+    return fabs(station - load->from_m) / section->length_m[load->carriage_span];
 }
 
 static tw_status roll(rolling *run)
@@ -260,7 +290,10 @@ static tw_status roll(rolling *run)
     if (run->status == TW_OK && section->carriage_m != at) {
         roll_to(run, at);
     }
-    return run->status == TW_OK && !held ? judge_rest(run, start, start + length) : run->status;
+    if (run->status == TW_OK && !(tw_section_carriage_off(section) <= TW_SECTION_OFF_MOST)) {
+        roll_to(run, place[1]); /* beside another point load only one side of the bracket is at rest */
+    }
+    return run->status == TW_OK && !(tw_section_carriage_off(section) <= TW_SECTION_OFF_MOST) ? TW_NOT_SETTLED : run->status;
 }
 
 tw_status tw_section_hang(tw_section *section, size_t condition, const double *length_m, const tw_section *strung,

@@ -24,6 +24,7 @@ typedef struct feed_run {
     double *first, *last, *whole; /* natural length of a span's first and last piece and of all, with nothing moved */
     double *pull, *moved;         /* before the step */
     double *miss;                 /* of the equation in m_j, else 0 */
+    size_t *run_first;            /* the runs that the step is of: coming to rest may join or part them */
     int overran;                  /* a step was cut short by a piece that would have run over a sheave */
 } feed_run;
 
@@ -59,6 +60,7 @@ static feed_run begin(tw_section *section, const tw_options *options, tw_section
     run.pull = run.whole + n;
     run.moved = run.pull + 3 * n;
     run.miss = run.moved + n;
+    run.run_first = section->feed_runs;
     return run;
 }
 
@@ -364,12 +366,13 @@ static double advance(feed_run *run, double before, tw_status *status)
 {
     size_t runs = run->s->runs;
     tw_section *section = run->section;
+    memcpy(run->run_first, section->run_first, runs * sizeof *run->run_first);
     memcpy(run->pull, section->pull, 3 * section->span_count * sizeof(double));
     memcpy(run->moved, section->moved_m, section->span_count * sizeof(double));
     run->overran = 0;
     double share = 1.0;
     for (int cut = 0; cut < HALVINGS_MOST; cut++, share *= 0.5) {
-        double miss = take_share(run, section->run_first, runs, share, status);
+        double miss = take_share(run, run->run_first, runs, share, status);
         if (tw_status_stops(*status) || miss <= (1.0 - 1e-4 * share) * before || before <= AT_FLOOR) {
             return miss;
         }

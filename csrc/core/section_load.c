@@ -147,7 +147,21 @@ static int acts_on(const tw_load *load, size_t span)
     return !load->covers || load->covers[span];
 }
 
-/* Sorted places within (0, length) of a span where a load begins, ends or acts; under a load per run, many more. */
+/* Many more places under a load per run, none so near to another that a sliver is left between them. */
+static size_t cut_for_run(tw_section *section, size_t count, double length)
+{
+    double part = length / TW_SECTION_RUN_PIECES;
+    for (int i = 1; i < TW_SECTION_RUN_PIECES; i++) {
+        int free = 1;
+        for (size_t k = 0; free && k < count; k++) {
+            free = fabs(section->cut_m[k] - part * i) > 0.01 * part;
+        }
+        count = free ? cut_at(section, count, part * i) : count;
+    }
+    return count;
+}
+
+/* Sorted places within (0, length) of a span where a load begins, ends or acts. */
 static size_t cut_span(tw_section *section, const loading *on, size_t span)
 {
     double s0 = section->start_m[span], length = section->length_m[span];
@@ -165,10 +179,7 @@ static size_t cut_span(tw_section *section, const loading *on, size_t span)
             }
         }
     }
-    for (int i = 1; run && i < TW_SECTION_RUN_PIECES; i++) {
-        count = cut_at(section, count, length * i / TW_SECTION_RUN_PIECES);
-    }
-    return count;
+    return run ? cut_for_run(section, count, length) : count;
 }
 
 /* A load per length on a piece that begins at natural length `at` from the first support. */
@@ -325,6 +336,7 @@ tw_status tw_section_load(tw_section *section, size_t condition, const double *l
         on.count = on.state->load_count;
         on.loads = on.count ? project->loads + on.state->load_first : NULL;
     }
+    section->condition = condition;
     memcpy(section->length_m, length_m, section->span_count * sizeof(double));
     for (size_t k = 0; k < section->span_count; k++) {
         section->start_m[k + 1] = section->start_m[k] + length_m[k];

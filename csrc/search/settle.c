@@ -314,7 +314,9 @@ static tw_status judge(settle_run *run)
         return TW_GAP_TOO_WIDE;
     }
     out->sheave_imbalance_N = tw_section_imbalance(run->section);
-    if (!(out->sheave_imbalance_N <= imbalance_most * state.tension_N)) {
+    double runs = tw_section_runs_off(run->section), carriage = tw_section_carriage_off(run->section);
+    out->load_mismatch = carriage > runs || isnan(carriage) ? carriage : runs;
+    if (!(out->sheave_imbalance_N <= imbalance_most * state.tension_N) || !(out->load_mismatch <= TW_SECTION_OFF_MOST)) {
         return TW_NOT_SETTLED;
     }
     return parts.link_excess <= link_excess_most ? TW_OK : TW_NOT_SETTLED;
@@ -396,7 +398,7 @@ tw_status tw_settle_with(const tw_section *section, const tw_options *options, t
     run.deadline = tw_clock_deadline(options->seconds_most);
     run.gap_least = INFINITY;
     out->energy_J = out->energy_lower_J = out->gap_J = out->gap_relative = out->residual_N = (double)NAN;
-    out->sheave_imbalance_N = (double)NAN;
+    out->sheave_imbalance_N = out->load_mismatch = (double)NAN;
     out->elements = out->evaluations = out->newton_steps = 0;
     while (try_mesh(&run, per_span)) {
         per_span *= 2;

@@ -4,6 +4,8 @@
  * close to the identity, so a handful of O(n) evaluations do. Newton steps finish. Then the proof, which trusts neither:
  *     residual <= residual_relative * largest tension      every node is in balance
  *     |c - a|  <= l (1 + 1e-9)                             no hanger has grown
+ *     | |R_j| - |t_j| | <= 1e-9 largest tension            natural length rests on every sheave
+ *     load mismatch <= 1e-9                                loads per run and a carriage are those of the shape
  *     -1e-9    <= (P - D) / (|stored| + |work|) <= gap_relative
  * with P of the settled shape, from above, and D of the exact line, from below. A gap that is too wide doubles the mesh; the
  * gap of the start shape tells beforehand. Rounding: forces below 16 machine epsilons of EA (that of the strain) count as
@@ -18,7 +20,7 @@
 #include "section.h"
 
 /* section: solved. Fills status, energy_J, energy_lower_J, gap_J, gap_relative, residual_N, elements, evaluations and
- * newton_steps of out, all of one shape, and leaves its other fields alone. Returns out->status:
+ * newton_steps of out, load_mismatch and sheave_imbalance_N, all of one shape, and leaves its other fields alone. Returns out->status:
  *     TW_OK                                              only with the proof
  *     TW_CANCELLED, TW_DEADLINE                          out holds the best shape so far
  *     TW_EVALUATION_LIMIT, TW_NOT_SETTLED, TW_NOT_FINITE not in balance, or a hanger has grown

@@ -171,6 +171,7 @@ class Equilibrium(Record):
         between them, `gap_J` apart; `gap_relative` is that over the energy that the loads and the stretch exchange.
     residual_N, closing_m: largest out-of-balance force of the discretised line, closing error of the exact one.
     sheave_imbalance_N: largest difference of tension across a sheave of the exact line; 0 where there is none.
+    load_mismatch: how far loads per run and a carriage are from what the shape asks for; 0 where there are none.
     elements, evaluations: of the discretised line, and of its energy by the optimiser.
     newton_steps, exact_steps: Newton steps of the discretised and of the exact line.
     spans, supports, marks: along the line; marks hold the condition's point loads too.
@@ -195,6 +196,7 @@ class Equilibrium(Record):
     residual_N: float | None
     closing_m: float | None
     sheave_imbalance_N: float | None
+    load_mismatch: float | None
     elements: int
     evaluations: int
     newton_steps: int
@@ -209,7 +211,16 @@ class Equilibrium(Record):
     def failed(cls, name: str, temperature_degC: float, status: str, text: str, **given: Any) -> Equilibrium:
         """A condition that did not settle; `given` holds what is known of the attempt."""
         numbers: dict[str, Any] = dict.fromkeys(
-            ("energy_J", "energy_lower_J", "gap_J", "gap_relative", "residual_N", "closing_m", "sheave_imbalance_N")
+            (
+                "energy_J",
+                "energy_lower_J",
+                "gap_J",
+                "gap_relative",
+                "residual_N",
+                "closing_m",
+                "sheave_imbalance_N",
+                "load_mismatch",
+            )
         )
         counts: dict[str, Any] = dict.fromkeys(("elements", "evaluations", "newton_steps", "exact_steps"), 0)
         return cls(

@@ -221,6 +221,7 @@ def _bare_core(project: Project, lengths_m: Sequence[float], temperatures_degC: 
     }  # fmt: skip
     bare = [{"temperature_degC": each} for each in temperatures_degC]
     problem = {**project.to_core(judging=False), "conditions": bare, "marks": [], "limits": [], "stringing": rule}
+    problem["history"] = None
     return _core.Project(problem)
 
 

@@ -15,7 +15,8 @@ if TYPE_CHECKING:
     from tautwise.model import Project
     from tautwise.tables import Load
 
-_ENERGIES = ("energy_J", "energy_lower_J", "gap_J", "gap_relative", "residual_N", "closing_m", "sheave_imbalance_N")
+_ENERGIES = ("energy_J", "energy_lower_J", "gap_J", "gap_relative", "residual_N", "closing_m", "sheave_imbalance_N",
+             "load_mismatch")  # fmt: skip
 _COUNTS = ("elements", "evaluations", "newton_steps", "exact_steps")
 _PLAIN_SPAN = (
     "span_m",

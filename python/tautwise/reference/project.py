@@ -94,16 +94,20 @@ class Twin:
         """Stretched over natural length of a span in a condition, as strung or creeping."""
         key = (condition, pull_N, creeping)
         if key not in self._as_strung:
-            section = self.section(condition, pull_N, state="initial")
-            if creeping:
-                temperature = self.problem["conditions"][condition]["temperature_degC"] if condition >= 0 else None
-                temperature = self.rule["temperature_degC"] if temperature is None else temperature
-                parts = [Part(row, creeping=True) for row in self.line["parts"]]
-                material = curved_line(self.line, temperature, self.rule["temperature_degC"], parts)
-                section = replace(section, material=material)
-            self._as_strung[key] = self.at_rest(section)
+
+            def section_at(rolled: float | None) -> Section:
+                section = self.section(condition, pull_N, rolled_m=rolled, state="initial")
+                return replace(section, material=self.creeping(condition)) if creeping else section
+
+            self._as_strung[key] = carriage.settle(self, condition, pull_N, section_at)
         hung = self._as_strung[key].spans[span]
         return hung.line_length_m() / hung.length_m
+
+    def creeping(self, condition: int) -> AnyMaterial:
+        """The line on its creep curves, at a condition's temperature."""
+        reference = self.rule["temperature_degC"]
+        temperature = self.problem["conditions"][condition]["temperature_degC"] if condition >= 0 else reference
+        return curved_line(self.line, temperature, reference, [Part(row, creeping=True) for row in self.line["parts"]])
 
     def strung(self, pull_N: float) -> Strung:
         """Bare, strung to a horizontal tension."""
@@ -175,7 +179,9 @@ class Twin:
         """A condition in equilibrium; -1 is the bare line at stringing."""
         key = (condition, pull_N, with_addition)
         if key not in self._settled:
-            self._settled[key] = carriage.settle(self, condition, pull_N, with_addition)
+            self._settled[key] = carriage.settle(
+                self, condition, pull_N, lambda rolled: self.section(condition, pull_N, with_addition, rolled)
+            )
         return self._settled[key]
 
     def at_rest(self, section: Section) -> Settled:
