@@ -178,6 +178,13 @@ def test_moduli_of_en_1993(kind):
 # --- every row
 
 
+def test_a_source_that_is_a_standard_names_its_table_or_says_that_it_is_not_noted():
+    for size in shipped():
+        for value in size.values:
+            if value.source.startswith("ASTM"):
+                assert re.search(r"\btable\b", value.source), (size.name, value.key, value.source)
+
+
 def test_every_value_has_a_source():
     for size in EVERY:
         assert size.values

@@ -268,6 +268,8 @@ typedef struct tw_observation {
     double temperature_degC; /* of the line */
 } tw_observation;
 
+#define TW_GRAVITY 9.80665 /* m/s2, standard gravity (ISO 80000-3) */
+
 /* What a poll callback returns: 0 to go on, TW_DEADLINE where the time is up, anything else to cancel. Called often; it should
  * look at the clock first. The core has no clock of its own, so a deadline reaches it this way alone. */
 typedef int (*tw_poll)(void *data);
