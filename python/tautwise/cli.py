@@ -166,9 +166,6 @@ def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
     from tautwise.solve import window as search
     from tautwise.sources import with_sources
 
-    for project in projects:
-        if not project.limits:
-            _tell([f"warning: {project.source}: no [[limit]], so every pull is in the window"])
     done, failed = _each(projects, lambda project: search(project))
     if as_json:
         _print_documents([with_sources(found, project, sources) for project, found in done], many=len(files) > 1)
@@ -178,6 +175,8 @@ def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
         _print_texts(
             [*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done
         )
+    for project, found in done:
+        _tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
     _tell(failed)
     if not all(found.open for _, found in done):
         return FAILS
@@ -202,7 +201,6 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
     options = {} if day is None else {"today": day_of(day)}
     projects = _loaded(unfolded(files))
     from tautwise.errors import NotSettledError
-    from tautwise.findings import slack_finding
     from tautwise.results import VetReport
     from tautwise.solve import undecided
     from tautwise.solve import vet as check
@@ -213,15 +211,13 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
         except NotSettledError as error:
             _tell([str(error)])
             return undecided(project, str(error), pull=pull)
-        _tell(f"warning: {text}" for text in slack_finding(project, report.files[0].pull_N))
         return report
 
     done, _ = _each(projects, judged)
     verdicts = (with_sources(file, project, sources) for project, each in done for file in each.files)
     report = VetReport.of(verdicts, done[0][1].program)
-    for project in projects:
-        if not project.limits:
-            _tell([f"warning: {project.source}: no [[limit]], so there is nothing to vet"])
+    for project, file in zip([project for project, _ in done], report.files, strict=True):
+        _tell(f"warning: {text}" for text in file.findings[len(project.warnings) :])
     if as_json:
         _print_documents([report])
     else:

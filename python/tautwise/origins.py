@@ -15,6 +15,7 @@ from tautwise.errors import NotSettledError
 from tautwise.limits import GROUND, ClearanceLimit, SpacingLimit
 from tautwise.neighbours import stations_beside
 from tautwise.places import Scenery
+from tautwise.solve_line import load_label
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -125,6 +126,11 @@ def scenery_of(project: Project, condition: int) -> Scenery:
         title=project.title,
         others=_other_lines(project, condition),
         turns=project.turns,
+        carriages=tuple(
+            load_label(load, number)
+            for number, load in enumerate(project.conditions[condition].loads)
+            if load.carriage is not None
+        ),
     )
 
 

@@ -130,12 +130,15 @@ def other_place_of(project: Project, row: Row) -> str | None:
 
 
 def _held_at(project: Project, row: Row, station: float) -> str | None:
-    """The support at whose clamp a station is; hangers swing and posts lean by less than this allows."""
+    """The support at whose clamp a station is; hangers swing, posts and springs give by less than this allows."""
     ends = project.supports[row["span"]], project.supports[row["span"] + 1]
     span = ends[1].station_m - ends[0].station_m
     reach = {"anchor": 1e-6 * span, "post": POST_LEANS_MOST * span}
     for support in ends:
-        if abs(station - support.station_m) <= reach.get(support.hold, support.hanger_length_m or 0.0):
+        springs = support.stiffness_along_N_per_m or support.stiffness_across_N_per_m
+        springs = springs or support.stiffness_vertical_N_per_m
+        hold = "post" if support.hold == "anchor" and springs else support.hold
+        if abs(station - support.station_m) <= reach.get(hold, support.hanger_length_m or 0.0):
             return support.name
     return None
 

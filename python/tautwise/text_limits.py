@@ -40,7 +40,7 @@ from tautwise.results_window import (
     conflict_table,
     price_table,
 )
-from tautwise.text import Ink, caution, heading, next_steps, quoted
+from tautwise.text import Ink, caution, heading, look_again_lines, next_steps, quoted
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -60,7 +60,7 @@ def vet_text(report: VetReport, projects: Sequence[Project], ink: Ink) -> list[s
     if len(pairs) > 1:
         lines += [_files_head(report, ink), *_file_table([file for file, _ in pairs]).lines(), ""]
     for file, project in pairs:
-        lines += [*heading(project, ink), *_verdict_lines(file, ink), ""]
+        lines += [*heading(project, ink), *_verdict_lines(file, project, ink), ""]
     failing = [project for file, project in pairs if not file.holds]
     meant = quoted((failing or list(projects))[0].source or "FILE") if projects else "FILE"
     aim = "find the pulls that keep every limit" if failing else "see how far the pull may move"
@@ -78,6 +78,7 @@ def best_so_far(window: PullWindow | None) -> str:
 
 def _open_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [_open_head(window, ink), "", *_end_table(window).lines(), *_second_looks(window)]
+    lines += look_again_lines(project, window.warnings)
     if window.specify:
         lines += ["", *_specify_lines(window, ink)]
     prices = price_table(window)
@@ -206,7 +207,7 @@ def _shut_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [
         ink.alarm("SHUT: no pull keeps every limit") + f" (tried {tried}, bare at {window.temperature_degC:.4g} degC)"
     ]
-    lines += _conflict_lines(window, ink)
+    lines += [*_conflict_lines(window, ink), *look_again_lines(project, window.warnings)]
     file = quoted(project.source or "FILE")
     if not window.relax:
         lines += ["", "No single change of a limit or a support was found that opens it."]
@@ -281,9 +282,9 @@ def _near(window: PullWindow, each: Relaxation, divisor: float, decimals: int) -
     return cut(each.pull_N / divisor, decimals, up=bound.side == AT_LEAST)
 
 
-def _verdict_lines(file: FileVerdict, ink: Ink) -> list[str]:
+def _verdict_lines(file: FileVerdict, project: Project, ink: Ink) -> list[str]:
     lines = [_verdict_head(file, ink)]
-    findings = [f"Look again: {text}" for text in file.findings]
+    findings = look_again_lines(project, file.findings)
     if not file.limits:
         return [*lines, *findings]
     lines += ["", *(_accented(line, ink) for line in limit_table(file.limits).lines())]
