@@ -41,10 +41,13 @@ def project(line, supports, conditions, limits):
 
 
 def ramp():
-    """The anchor swings back with the pull, past the place where the load begins."""
+    """The anchor is drawn in by the pull, past the place of a load."""
     line = ROPE | {"weight": "10 N/m", "stiffness": "20 MN", "breaking_strength": "200 kN"}
     supports = [support("L", "0 m", "10 m", stiffness_along="200 kN/m"), support("R", "100 m", "10 m")]
-    load = [{"per_length": "0 N/m", "per_length_to": "400 N/m", "from": "0.18 m", "to": "100 m"}]
+    load = [
+        {"per_length": "0 N/m", "per_length_to": "400 N/m", "from": "0 m", "to": "100 m"},
+        {"force": "1 N", "at": "0.18 m"},
+    ]
     return project(
         line,
         supports,
