@@ -142,7 +142,7 @@ def _exact_ends(window: PullWindow, limit: str) -> list[float]:
 
 
 def _range_shown(window: PullWindow, rows: dict[str, list[Stretch]]) -> tuple[float, float]:
-    """The pulls worth seeing: every open stretch, and all ends of bars near it or the conflict, with some room around."""
+    """The pulls worth seeing: every open stretch, the ends of bars near it or the conflict, some room around."""
     ends = [end for bars in rows.values() for bar in bars for end in _bounded_ends(bar)]
     ends += [end for interval in window.intervals for end in interval]
     ends += [each.needs_N for each in window.conflict if each.needs_N is not None]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from bisect import bisect_right
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import accumulate
 from typing import TYPE_CHECKING, Any
 
@@ -64,3 +64,16 @@ def neighbour_of(project: Project, condition: str) -> Neighbour:
     lengths = [span.natural_length_m for span in settled.spans]
     arcs = line_core_of(project).course(project.condition_index(condition))
     return Neighbour(arcs, tuple(support.name for support in project.supports), tuple(accumulate(lengths)))
+
+
+def as_strung(project: Project, near: Neighbour) -> Neighbour | None:
+    """The same line as strung, bare, from which follows which of two crossing lines is the upper one; None where it
+    cannot be settled so.
+    """
+    from tautwise.errors import TautwiseError
+    from tautwise.solve import course_as_strung
+
+    try:
+        return replace(near, arcs=course_as_strung(project))
+    except TautwiseError:
+        return None

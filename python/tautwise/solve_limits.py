@@ -127,14 +127,14 @@ def place_of(project: Project, row: Row) -> str | None:
 
 
 def other_place_of(project: Project, row: Row) -> str | None:
-    """Where another line is closest, in words: its file, and a station in one of its spans."""
+    """Where another line is closest, in words: its file and condition, and a station in one of its spans."""
     number, at = row.get("limit"), finite(row.get("other_at_m"))
     limit = None if number is None else project.limits[number]
     if at is None or number is None or not isinstance(limit, SpacingLimit):
         return None
-    condition = project.conditions[row["condition"]].name
-    near = project.neighbour(number, limit.other_condition_for(condition))
-    return f"{limit.other}: {near.place(at, row['other_position_m'], limit.shift)}"
+    beside = limit.other_condition_for(project.conditions[row["condition"]].name)
+    near = project.neighbour(number, beside)
+    return f"{limit.other}, {beside}: {near.place(at, row['other_position_m'], limit.shift)}"
 
 
 def _held_at(project: Project, row: Row, station: float) -> str | None:
