@@ -206,6 +206,7 @@ typedef struct tw_limit {
     double from_m;          /* clearance: stations; NaN: the whole route */
     double to_m;
     tw_direction direction; /* support load */
+    size_t strung_course; /* of a spacing: 1 + number of the other line's course as strung, bare; 0: not known */
 } tw_limit;
 
 /* A stretch of another line, natural length at_m[0] to at_m[1], as a cubic with these ends and derivatives. */

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from bisect import bisect_right
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import accumulate
 from typing import TYPE_CHECKING, Any
 
@@ -99,3 +99,16 @@ def stations_beside(project: Project, places: Floats) -> Floats:
         found = np.where(away < nearest, support.station_m + share * math.hypot(*chord), found)
         nearest = np.minimum(away, nearest)
     return found
+
+
+def as_strung(project: Project, near: Neighbour) -> Neighbour | None:
+    """The same line as strung, bare, from which follows which of two crossing lines is the upper one; None where it
+    cannot be settled so.
+    """
+    from tautwise.errors import TautwiseError
+    from tautwise.solve import course_as_strung
+
+    try:
+        return replace(near, arcs=course_as_strung(project))
+    except TautwiseError:
+        return None
