@@ -139,10 +139,14 @@ def window(project: Project, **options: Any) -> PullWindow:
 
 
 def _window_findings(project: Project, core: _core.Project, answer: PullWindow) -> tuple[str, ...]:
-    """What the line shows at the pull to specify, and what more at the ends that a limit governs."""
+    """What the line shows at the pull to specify, and what more at the ends that a limit governs.
+
+    Nobody specifies the pull of a window that is open-ended, so nothing is said of it there.
+    """
     if answer.specify is None:
         return ()
-    found = list(line_findings(project, core, answer.specify.horizontal_tension_N))
+    bounded = all(end is not None and end.limit is not None for end in (answer.low, answer.high))
+    found = list(line_findings(project, core, answer.specify.horizontal_tension_N)) if bounded else []
     said = {_without_numbers(text) for text in found}
     head = f"{project.source}: " if project.source else ""
     for word, end in (("lowest", answer.low), ("highest", answer.high)):
