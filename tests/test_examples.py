@@ -133,7 +133,7 @@ def test_bend_is_held_by_twice_the_pull_times_the_sine_of_half_the_turn():
             sine = math.sin(toward - turn)
             square = 500.0 * 18.8e-3 * span.natural_length_m * sine * abs(sine)
             push += square * np.array([-math.sin(turn), math.cos(turn)])
-        push += 0.5 * 500.0 * 0.35 * np.array([math.cos(toward), math.sin(toward)])
+        push += 500.0 * 0.35 * np.array([math.cos(toward), math.sin(toward)])
         met = np.zeros(2)
         for support, turn in zip(state.supports, np.radians([0.0, 10.0, 20.0, 20.0]), strict=True):
             met += support.along_N * np.array([math.cos(turn), math.sin(turn)])

@@ -79,11 +79,12 @@ def test_a_point_load_amid_a_load_per_run_leaves_no_sliver(at):
 @pytest.mark.parametrize("start", [30.0, 100.0, 170.0])
 def test_a_carriage_rests_against_a_heavier_load(start):
     """The lowest place is the kink that the heavier load makes: the tension jumps there, more than the carriage can."""
-    loads = [{"force": "20 kN", "at": "60 m"}, {"name": "trolley", "force": "1 kN", "carriage": "free", "at": f"{start} m"}]
-    project = tw.Project(line=LINE, support=[support(0, 0.0, 30.0), support(1, 200.0, 32.0)], condition=[row(load=loads)],
+    trolley = {"name": "trolley", "force": "1 kN", "carriage": "free", "at": f"{start} m"}
+    project = tw.Project(line=LINE, support=[support(0, 0.0, 30.0), support(1, 200.0, 32.0)],
+                         condition=[row(load=[{"force": "20 kN", "at": "60 m"}, trolley])],
                          stringing={"temperature": "15 degC", "horizontal_tension": "9 kN"})  # fmt: skip
-    heavy, trolley = project.settle().marks
-    assert trolley.at_length_m == pytest.approx(heavy.at_length_m, abs=1e-6)
+    heavy, rolled = project.settle().marks
+    assert rolled.at_length_m == pytest.approx(heavy.at_length_m, abs=1e-6)
 
 
 @pytest.mark.parametrize("line", [LINE | {"bedding_in": "0.05 %"}, CURVED])
@@ -92,11 +93,11 @@ def test_a_line_with_a_final_state_can_be_surveyed(line, tmp_path):
     project = tw.Project(line=line, support=[support(0, 0.0, 20.0), support(1, 200.0, 24.0)],
                          stringing={"temperature": "15 degC", "horizontal_tension": "9 kN"},
                          condition=[row(), row("later", state="final")])  # fmt: skip
-    shape = project.settle("c").at([40.0, 80.0, 120.0, 160.0])
-    rows = "".join(f"{x!r},{z!r},15\n" for x, _, z in shape.position_m.tolist())
+    found = project.settle("c").at([40.0, 80.0, 120.0, 160.0])
+    rows = "".join(f"{x!r},{z!r},15\n" for x, _, z in found.position_m.tolist())
     survey = tmp_path / "points.csv"
     survey.write_text("station_m,elevation_m,temperature_degC\n" + rows)
-    assert project.fit(survey).horizontal_tension_N == pytest.approx(9e3, rel=1e-7)
+    assert project.fit(survey).pull.horizontal_tension_N == pytest.approx(9e3, rel=1e-7)
 
 
 def test_a_curved_line_is_marked_by_its_own_law():

@@ -120,6 +120,8 @@ static PyObject *window_end(const tw_window_end *end)
 {
     PyObject *dict = tw_answer_verdict(&end->verdict);
     if (!dict || put_row(dict, end->limit, end->condition) < 0
+        || tw_fields_put(dict, "why", PyUnicode_FromString(tw_status_name(end->why))) < 0
+        || tw_fields_put(dict, "why_text", PyUnicode_FromString(tw_status_text(end->why))) < 0
         || tw_fields_put(dict, "pull_N", tw_fields_number(end->pull_N)) < 0) {
         Py_CLEAR(dict);
     }

@@ -353,6 +353,9 @@ static tw_status check_spacing(const tw_project *p, size_t i, tw_fault *fault)
             return fail(fault, "limits", i, "courses", "another line's course for every condition of the limit");
         }
     }
+    if (limit->strung_course > p->course_count) {
+        return fail(fault, "limits", i, "strung_course", "the number of a course, or none");
+    }
     return TW_OK;
 }
 
@@ -492,7 +495,8 @@ tw_status tw_check_project(const tw_project *project, tw_fault *fault)
 tw_status tw_check_observations(const tw_project *project, const tw_observation *observations, size_t count,
                                 tw_fault *fault)
 {
-    double first = project->supports[0].station_m, last = project->supports[project->support_count - 1].station_m;
+    double first = tw_route_support_station(project, 0);
+    double last = tw_route_support_station(project, project->support_count - 1);
     memset(fault, 0, sizeof *fault);
     if (count < 1) {
         return fail(fault, "observations", TW_NONE, "count", "at least one point");

@@ -8,7 +8,6 @@
 #include "wave.h"
 
 enum { LAST_END_MOST = 60 };
-static const double gravity = 9.80665;    /* m/s2, standard */
 static const double LAST_END_MISS = 1e-13; /* of the horizontal tension of a section's last span */
 
 /* The project with one bare condition in the place of its own. */
@@ -86,7 +85,7 @@ static void read_spans(const tw_section *section, double mass_kg_per_m, tw_crew_
 
 static double mass_of(const crew_run *run)
 {
-    return run->bare.line.weight_N_per_m / gravity;
+    return run->bare.line.weight_N_per_m / TW_GRAVITY;
 }
 
 /* The bare line at one temperature with given natural lengths; a state that does not settle stays NaN. */
@@ -100,7 +99,7 @@ static tw_status hang_bare(crew_run *run, double temperature_degC, const double 
     if (status == TW_OK) {
         read_spans(run->section, mass_of(run), rows);
     }
-    return status == TW_CANCELLED ? status : TW_OK;
+    return tw_status_stops(status) ? status : TW_OK;
 }
 
 /* Every temperature, in one state. */
@@ -118,14 +117,12 @@ static tw_status hang_all(crew_run *run, const double *length_m, tw_crew_span *r
 static void fill_lengths(crew_run *run)
 {
     tw_crew *crew = run->crew;
-    double reference = run->bare.stringing.temperature_degC;
-    tw_curve curve;
-    const tw_material material = tw_material_after(&run->bare.line, reference, reference, NULL, &curve);
+    const tw_material *strung = run->section->materials; /* hung last at the stringing temperature */
     for (size_t k = 0; k < crew->span_count; k++) {
         double own = crew->clamped[crew->temperature_count * crew->span_count + k].horizontal_tension_N;
         double tension = isnan(crew->pull_N) ? own : crew->pull_N;
         crew->lengths[k].natural_m = run->trial->length_m[k];
-        crew->lengths[k].marked_m = run->trial->length_m[k] * tw_material_stretch(&material, tension);
+        crew->lengths[k].marked_m = run->trial->length_m[k] * tw_material_stretch(&strung[k], tension);
     }
 }
 
@@ -205,7 +202,7 @@ static tw_status fill_friction(crew_run *run, const tw_crew_span *free_run)
         read_spans(blocks, mass_of(run), crew->last);
     }
     blocks->drag = 0;
-    return status == TW_CANCELLED ? status : TW_OK;
+    return tw_status_stops(status) ? status : TW_OK;
 }
 
 static tw_status fill_over(crew_run *run)

@@ -47,6 +47,11 @@ double tw_route_station(const tw_route_leg *leg, const double r[3])
     return leg->origin_m + ((r[0] - leg->at[0]) * leg->ahead[0] + (r[1] - leg->at[1]) * leg->ahead[1]);
 }
 
+double tw_route_left(const tw_route_leg *leg, const double r[3])
+{
+    return (r[1] - leg->at[1]) * leg->ahead[0] - (r[0] - leg->at[0]) * leg->ahead[1];
+}
+
 double tw_route_rate(const tw_route_leg *leg, const double v[3])
 {
     return v[0] * leg->ahead[0] + v[1] * leg->ahead[1];

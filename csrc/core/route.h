@@ -30,6 +30,9 @@ tw_route_leg tw_route_leg_of(const tw_project *project, size_t span);
 
 double tw_route_station(const tw_route_leg *leg, const double position[3]);
 
+/* How far left of the leg a point is: y on a straight route, else from the line between the span's supports. */
+double tw_route_left(const tw_route_leg *leg, const double position[3]);
+
 /* Rate at which the station grows along a vector. */
 double tw_route_rate(const tw_route_leg *leg, const double vector[3]);
 

@@ -67,6 +67,7 @@ tw_section *tw_section_create(const tw_project *project)
     section->pull = tw_calloc(3 * spans, sizeof(double));
     section->clamp = tw_calloc(3 * (spans + 1), sizeof(double));
     section->clamp_load = tw_calloc(3 * (spans + 1), sizeof(double));
+    section->link_load = tw_calloc(3 * (spans + 1), sizeof(double));
     section->hold_force = tw_calloc(3 * (spans + 1), sizeof(double));
     section->ahead = tw_calloc(2 * (spans + 1), sizeof(double));
     section->load_length_m = tw_calloc(loads + 1, sizeof(double));
@@ -80,7 +81,7 @@ tw_section *tw_section_create(const tw_project *project)
     section->work = tw_calloc(TW_SECTION_WORK_PER_SPAN * spans + 3, sizeof(double));
     if (!section->pieces || !section->piece_first || !section->cut_m || !section->slack
         || !section->run_first || !section->start_m || !section->length_m || !section->pull
-        || !section->clamp || !section->clamp_load || !section->hold_force || !section->ahead || !section->load_length_m
+        || !section->clamp || !section->clamp_load || !section->link_load || !section->hold_force || !section->ahead || !section->load_length_m
         || !section->load_from_m || !section->load_to_m || !section->work || !section->feed || !section->moved_m
         || !section->winch_N || !section->feed_work || !section->feed_runs) {
         tw_section_free(section);
@@ -107,6 +108,7 @@ void tw_section_free(tw_section *section)
     tw_free(section->pull);
     tw_free(section->clamp);
     tw_free(section->clamp_load);
+    tw_free(section->link_load);
     tw_free(section->hold_force);
     tw_free(section->ahead);
     tw_free(section->load_length_m);

@@ -69,7 +69,7 @@ typedef struct tw_section {
     double *winch_N;         /* [span_count + 1] horizontal tension that a winch keeps in the span ahead; owned */
     int drag;                /* +1: friction lets the tension grow ahead over each sheave; -1: fall; 0: no friction */
     int fed;                 /* 1: moved_m has been put on the pieces since they were loaded */
-    double factor_weight;    /* of the hangers' weight in the condition */
+    double *link_load;       /* [3 (span_count + 1)] the half of a link's weight and wind that its support takes; owned */
     double carriage_m;       /* natural length from the first support where the carriage stands; NaN: not known yet */
     double *run_vector;      /* [3 piece_capacity] loads per horizontal metre on each piece, N/m; NULL: no such load; owned */
     double *run_share;       /* [2 piece_capacity] horizontal over natural metre: at a piece's start, growth along it; owned */

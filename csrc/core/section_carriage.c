@@ -6,11 +6,14 @@
  * A free carriage, a force F that rolls without friction, rests where moving it gains no energy: where the tension is the
  * same on both sides, with t the tension vector before it
  *     |t - F| = |t|,   so   F.F - 2 t.F = 0
- * and rolls towards the side of the smaller tension. A held one stands at a station x: r_x(s) = x. Either is one equation in
- * the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
+ * and rolls towards the side of the smaller tension. Where another force hangs the tension jumps, and the carriage may rest
+ * there, between balances of different signs. A held one stands at a station x of its span: x(r(s)) = x. Either is one equation
+ * in the natural length s, solved within a bracket (T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145-149).
  */
 #include <math.h>
 
+#include "gauss.h"
+#include "route.h"
 #include "section_load.h"
 #include "vector.h"
 
@@ -24,17 +27,14 @@ static const double ROLL_FIRST = 0.02;     /* of the span: the first step of the
 /* Horizontal run of a piece: int |t_xy|/|t| W*'(|t|) ds at five Gauss-Legendre points; a piece is short beside its span. */
 static double plan_run(const tw_material *material, const tw_piece *piece)
 {
-    static const double point[5] = {0.046910077030668, 0.230765344947158, 0.5, 0.769234655052842, 0.953089922969332};
-    static const double weight[5] = {0.118463442528095, 0.239314335249683, 0.284444444444444, 0.239314335249683,
-                                     0.118463442528095};
-    double run = 0.0;
-    for (int i = 0; i < 5; i++) {
-        double t[3];
-        tw_piece_tension(piece, point[i] * piece->length_m, t);
+    double half = 0.5 * piece->length_m, run = 0.0;
+    for (int p = 0; p < 5; p++) {
+        double t[3], point = p % 2 ? tw_gauss_five_point[(p + 1) / 2] : -tw_gauss_five_point[(p + 1) / 2];
+        tw_piece_tension(piece, half + half * point, t);
         double size = tw_norm(t);
-        run += weight[i] * hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
+        run += tw_gauss_five_weight[(p + 1) / 2] * hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
     }
-    return run * piece->length_m;
+    return half * run;
 }
 
 /* The share of a load per run that the shape of a piece makes: at its start, and its growth along it. */
@@ -156,8 +156,9 @@ static double roll_miss(rolling *run, double s)
     double place[3], before[3], beyond[3];
     tw_section *section = run->section;
     if (run->load->carriage == TW_CARRIAGE_HELD) {
+        const tw_route_leg leg = tw_route_leg_of(section->project, run->load->carriage_span);
         tw_section_at(section, s, place, NULL);
-        return place[0] - run->load->from_m;
+        return tw_route_station(&leg, place) - run->load->from_m;
     }
     tw_section_beside(section, s, before, beyond);
     return drive(before, run->force);

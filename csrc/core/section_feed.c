@@ -94,6 +94,24 @@ static void note_lengths(const feed_run *run)
     }
 }
 
+/* A load that varies stays where it is on the line: the first piece of a span begins elsewhere along it. */
+static void shift_ramp(tw_section *section, size_t span, double by_m)
+{
+    tw_piece *piece = first_piece(section, span);
+    tw_axpy(piece->load, by_m, piece->ramp, piece->load);
+    if (section->run_vector) {
+        double *share = section->run_share + 2 * section->piece_first[span];
+        share[0] += by_m * share[1];
+    }
+}
+
+/* The load at the very end of a span. */
+static void end_load(const tw_section *section, size_t span, double load[3])
+{
+    const tw_piece *piece = last_piece(section, span);
+    tw_piece_load(piece, piece->length_m, load);
+}
+
 /* Puts moved_m on the pieces; 0, and leaves them as they are, where a piece would be used up. */
 static int apply_moved(feed_run *run)
 {
@@ -115,6 +133,7 @@ static int apply_moved(feed_run *run)
         first_piece(section, k)->length_m = run->first[k] + in - (one ? out : 0.0);
         last_piece(section, k)->length_m = run->last[k] - out + (one ? in : 0.0);
         section->length_m[k] = run->whole[k] + in - out;
+        shift_ramp(section, k, s0 - section->start_m[k]); /* no winch where a load varies: s is that of the line itself */
         section->start_m[k] = s0;
         s0 += section->length_m[k];
     }
@@ -259,7 +278,9 @@ static void put_closing(const feed_run *run, size_t r)
                         section->soft_N, 1.0, near);
     tw_hold_flexibility(&section->project->supports[ends[1]], section->ahead + 2 * ends[1], section->hold_force + 3 * ends[1],
                         section->soft_N, 1.0, far);
-    const double *q_in = first_piece(section, ends[0])->load, *q_out = last_piece(section, ends[1] - 1)->load;
+    const double *q_in = first_piece(section, ends[0])->load;
+    double q_out[3], q_behind[3];
+    end_load(section, ends[1] - 1, q_out);
     end_per_length(run, r, in, out);
     put_block(diag, 1.0, bend);
     put_block(diag, 1.0, near);
@@ -268,7 +289,8 @@ static void put_closing(const feed_run *run, size_t r)
     put_block(upper, -1.0, far);
     add_product(far, -1.0, q_in, in);
     if (section->feed[ends[0]] != TW_FEED_WINCH && r > 0) {
-        add_product(near, -1.0, last_piece(section, ends[0] - 1)->load, in);
+        end_load(section, ends[0] - 1, q_behind);
+        add_product(near, -1.0, q_behind, in);
     }
     put_column(diag, 3, in);
     if (r > 0) {
@@ -286,7 +308,7 @@ static void put_feed(const feed_run *run, size_t r)
 {
     const tw_section *section = run->section;
     size_t j = section->run_first[r];
-    double in_ahead[3], in_behind[3];
+    double in_ahead[3], in_behind[3], q_behind[3];
     double *lower = run->lower + BLOCK * r + 3 * SIZE, *diag = run->diag + BLOCK * r + 3 * SIZE;
     run->step[SIZE * r + 3] = -run->miss[j];
     if (section->feed[j] == TW_FEED_NONE) {
@@ -298,7 +320,8 @@ static void put_feed(const feed_run *run, size_t r)
     if (section->feed[j] != TW_FEED_WINCH) {
         memcpy(lower, in_behind, sizeof in_behind);
         lower[3] = -tw_dot(in_behind, first_piece(section, section->run_first[r - 1])->load);
-        diag[3] = tw_dot(in_behind, last_piece(section, j - 1)->load);
+        end_load(section, j - 1, q_behind);
+        diag[3] = tw_dot(in_behind, q_behind);
     }
 }
 
@@ -350,7 +373,7 @@ static double advance(feed_run *run, double before, tw_status *status)
     double share = 1.0;
     for (int cut = 0; cut < HALVINGS_MOST; cut++, share *= 0.5) {
         double miss = take_share(run, run->run_first, runs, share, status);
-        if (*status == TW_CANCELLED || miss <= (1.0 - 1e-4 * share) * before || before <= AT_FLOOR) {
+        if (tw_status_stops(*status) || miss <= (1.0 - 1e-4 * share) * before || before <= AT_FLOOR) {
             return miss;
         }
     }
@@ -368,7 +391,7 @@ static tw_status iterate(feed_run *run)
             return TW_NOT_SETTLED;
         }
         miss = advance(run, before, &status);
-        if (status == TW_CANCELLED) {
+        if (tw_status_stops(status)) {
             return status;
         }
         if (before <= AT_FLOOR && !(miss < 0.25 * before)) {

@@ -313,12 +313,13 @@ void tw_section_support_state(const tw_section *section, size_t support, tw_supp
 {
     const tw_support *at = &section->project->supports[support];
     int hangs = tw_hold_link_m(at) > 0.0;
-    double F[3];
-    tw_route_into_axes(section->ahead + 2 * support, section->hold_force + 3 * support, F);
+    double whole[3], F[3];
+    tw_axpy(section->hold_force + 3 * support, -1.0, section->link_load + 3 * support, whole);
+    tw_route_into_axes(section->ahead + 2 * support, whole, F);
     state->along_N = -F[0];
     state->across_N = -F[1];
-    state->down_N = F[2] + (hangs ? 0.5 * section->factor_weight * at->hanger_weight_N : 0.0);
-    state->resultant_N = sqrt(F[0] * F[0] + F[1] * F[1] + state->down_N * state->down_N);
+    state->down_N = F[2];
+    state->resultant_N = tw_norm(F);
     state->station_m = tw_route_support_station(section->project, support);
     tw_copy(section->clamp + 3 * support, state->position_m);
     state->swing_rad = state->swing_along_rad = state->swing_across_rad = (double)NAN;

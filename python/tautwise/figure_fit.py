@@ -37,8 +37,8 @@ def plot_fit(found: SurveyFit, ax: Any = None, *, points: int = 200) -> Any:
         ax, below = figure.subplots(2, 1, sharex=True, height_ratios=(3, 1.3))
         figure.subplots_adjust(left=0.09, right=0.985, top=0.9, bottom=0.165, hspace=0.12)
     scenery = scenery_of(found._project(), 0)
-    for (degrees, position), colour, style in zip(_curves(found, points), CURVES, STYLES, strict=False):
-        ax.plot(position[:, 0], position[:, 2], color=colour, linestyle=style, linewidth=1.6, zorder=3,
+    for (degrees, (stations, heights)), colour, style in zip(_curves(found, points), CURVES, STYLES, strict=False):
+        ax.plot(stations, heights, color=colour, linestyle=style, linewidth=1.6, zorder=3,
                 label=f"fitted line at {degrees:.4g} degC")  # fmt: skip
     for name, station, elevation, _ in scenery.supports:
         ax.plot([station], [elevation], marker="s", color=INK, markerfacecolor="white", markersize=5, zorder=5)

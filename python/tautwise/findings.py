@@ -17,6 +17,7 @@ from tautwise.sources import ONE_STATE
 if TYPE_CHECKING:
     from tautwise.model import Project
     from tautwise.results import Equilibrium
+    from tautwise.results_vet import LimitState
 
 
 DEEP_SAG_SHARE = 0.25  # of the span
@@ -151,3 +152,13 @@ def _slack_strings(project: Project, line: Equilibrium) -> list[str]:
             head = f"the line pushes to the {other} at {support.name!r} in {line.name!r}"
             found.append(f"{head}: the {other} string of its V is slack, and the {side} one carries alone")
     return found
+
+
+def changed_places(states: Sequence[LimitState]) -> tuple[str, ...]:
+    """Spacings that fail because the lines have passed through each other: which is above is not as strung."""
+    return tuple(
+        f"{state.id} in {state.condition}: the lines have passed through each other since they were strung bare; "
+        f"{state.place} now hangs {-state.value:.3g} m on the wrong side of {state.other_place}."
+        for state in states
+        if state.kind == "spacing" and state.value is not None and state.value < 0.0
+    )

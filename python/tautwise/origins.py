@@ -13,6 +13,7 @@ import numpy as np
 
 from tautwise.errors import NotSettledError
 from tautwise.limits import GROUND, ClearanceLimit, SpacingLimit
+from tautwise.neighbours import stations_beside
 from tautwise.places import Scenery
 from tautwise.solve_line import load_label
 
@@ -146,5 +147,6 @@ def _other_lines(project: Project, condition: int) -> tuple[tuple[str, tuple[tup
         except NotSettledError:
             continue
         label = f"{project.others[number].title or limit.other}: {beside}"
-        drawn[label] = tuple((float(x), float(z)) for x, _, z in places)
+        stations = stations_beside(project, places)
+        drawn[label] = tuple((float(x), float(z)) for x, z in zip(stations, places[:, 2], strict=True))
     return tuple(drawn.items())

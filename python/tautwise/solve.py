@@ -18,7 +18,7 @@ from typing import TYPE_CHECKING, Any, NoReturn
 
 from tautwise import _core
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
-from tautwise.findings import findings_of, judging_findings
+from tautwise.findings import changed_places, findings_of, judging_findings
 from tautwise.origins import Judge, LineOrigin
 from tautwise.outcomes import AS_STRUNG, chords_m, explained, refuse_slack
 from tautwise.records import finite
@@ -175,7 +175,7 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False, today: date
     core = core_of(project)
     require_places(project, core, newtons)
     with errors_of(project, newtons, AS_STRUNG):
-        rows = core.judge(pull=newtons)
+        rows = core.judge(pull=newtons, seconds_most=_core.DEFAULTS["seconds_most"] * len(project.conditions))
     if newtons is None and any(row["reason"] == "slack" for row in rows):
         refuse_slack(project, "slack", _core.STATUS["slack"])
     if any(row["reason"] == OFF_THE_LINE for row in rows):
@@ -184,7 +184,8 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False, today: date
     states = limit_states(project, rows, every=True, reason=_reasons(project, newtons), excused=book.excused)
     limits = states if every else worst_of_each(states)
     strung_to = strung(project, pull=pull).horizontal_tension_N
-    findings = (*book.findings(states), *line_findings(project, core, newtons), *_vet_findings(project))
+    findings = (*changed_places(states), *book.findings(states))
+    findings += (*line_findings(project, core, newtons), *_vet_findings(project))
     return _verdict(project, limits, strung_to, (*project.warnings, *findings))
 
 
@@ -257,10 +258,11 @@ def settled_bare(
 def shape_bare(
     project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float], points: int
 ) -> list[Any]:
-    """Positions along the bare line on natural lengths, at each temperature; `points` for each span."""
+    """Station and elevation along the bare line on natural lengths, at each temperature; `points` for each span."""
     core = _bare_core(project, lengths_m, temperatures_degC)
     with errors_of(project, math.inf):
-        return [core.shape(index, points)["position_m"] for index in range(len(temperatures_degC))]
+        shapes = [core.shape(index, points) for index in range(len(temperatures_degC))]
+    return [(shape["station_m"], shape["position_m"][:, 2]) for shape in shapes]
 
 
 def _bare_core(project: Project, lengths_m: Sequence[float], temperatures_degC: Sequence[float]) -> _core.Project:
@@ -359,13 +361,27 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
     raise InputError(faults or [Fault(project.source, None, "", words, "marks and loads that lie on the line")])
 
 
-def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
-    """First and last station, m, of the line as strung, bare: posts lean."""
+def course_as_strung(project: Project) -> Any:
+    """The exact line as strung, bare: arcs (n, 14), as another project's course.
+
+    Raises
+    ------
+    InputError, NotSettledError: it has no equilibrium.
+    """
+    with errors_of(project, None, AS_STRUNG):
+        return _core.Project(_as_strung(project)).course(0)
+
+
+def _as_strung(project: Project) -> dict[str, Any]:
     bare = {"temperature_degC": project.stringing.temperature_degC}
     core = project.to_core(judging=False)
-    problem = {**core, "conditions": [bare], "marks": [], "limits": [], "history": None}
+    return {**core, "conditions": [bare], "marks": [], "limits": [], "history": None}
+
+
+def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
+    """First and last station, m, of the line as strung, bare: posts lean."""
     with errors_of(project, pull, AS_STRUNG):
-        supports = _core.Project(problem).settle(0, pull=pull)["supports"]
+        supports = _core.Project(_as_strung(project)).settle(0, pull=pull)["supports"]
     if not supports:
         return -math.inf, math.inf
     if project.turns:

@@ -32,12 +32,12 @@ from tautwise.results_vet import (
 from tautwise.results_window import (
     AT_LEAST,
     NEVER,
-    OPEN_ENDED,
     PullToSpecify,
     PullWindow,
     Relaxation,
     WindowEnd,
     conflict_table,
+    governed_by,
     price_table,
 )
 from tautwise.text import Ink, caution, heading, look_again_lines, next_steps, quoted
@@ -79,16 +79,16 @@ def best_so_far(window: PullWindow | None) -> str:
 def _open_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [_open_head(window, ink), "", *_end_table(window).lines(), *_second_looks(window)]
     lines += look_again_lines(project, window.warnings)
-    if window.specify:
+    if window.least_used:
         lines += ["", *_specify_lines(window, ink)]
     prices = price_table(window)
     if prices.rows:
         head = "What moves the ends, pull for each metre, until another limit takes over"
         lines += ["", ink.strong(head), *prices.lines()]
     file = quoted(project.source or "FILE")
-    if _is_open_ended(window):
+    if window.specify is None:
         return [*lines, *next_steps([("add the limit that is missing, then", f"tautwise window {file}")], ink)]
-    pull = f'"{_specified(window.specify)[0]}"' if window.specify else '"... kN"'
+    pull = f'"{_specified(window.specify)[0]}"'
     steps = [
         ("judge every limit at this pull", f"tautwise vet {file} --pull {pull}"),
         ("see the line hang at this pull", f"tautwise settle {file} --pull {pull}"),
@@ -131,7 +131,7 @@ def _end_table(window: PullWindow) -> Table:
         (
             name,
             cut(end.horizontal_tension_N / divisor, decimals, up=name == "lowest"),
-            end.limit or OPEN_ENDED,
+            governed_by(end),
             *shown_values(end.unit, end.allowed, end.value, end.allowed),
             end.condition,
             both_places(end.place, end.other_place),
@@ -141,34 +141,18 @@ def _end_table(window: PullWindow) -> Table:
     return Table(columns, rows)
 
 
-def _is_open_ended(window: PullWindow) -> bool:
-    return any(end is not None and end.limit is None for end in (window.low, window.high))
-
-
 def _second_looks(window: PullWindow) -> list[str]:
-    looks = []
-    low, high = window.searched_N
-    if window.low and window.low.limit is None:
-        looks.append(f"open-ended below: no limit stops the pull down to {force_text(low)}, the lowest one tried.")
-        looks.append("a slack line breaks most clearances; is a clearance or a sag limit missing?")
-    if window.high and window.high.limit is None:
-        looks.append(f"open-ended above: no limit stops the pull up to {force_text(high)}, the highest one tried.")
-        looks.append("a pull always costs strength; is a limit on tension or on a support's load missing?")
-    if len(window.intervals) > 1:
-        looks.append(
-            "the pulls between these stretches break a limit; the ends shown are of the stretch to specify from."
-        )
-    return ["", *(f"  Look again: {text}" for text in looks)] if looks else []
+    return ["", *(f"  Look again: {text}" for text in window.findings)] if window.findings else []
 
 
 def _specify_lines(window: PullWindow, ink: Ink) -> list[str]:
-    best = window.specify
+    best = window.specify or window.least_used
     if best is None:
         return []
     pull, band = _specified(best)
-    word = "Of the pulls tried, the limits are used least at" if _is_open_ended(window) else "Specify"
+    word = "Specify" if window.specify else "Of the pulls tried, the limits are used least at"
     lines = [ink.strong(f"{word} {pull} {band}, bare line at {best.temperature_degC:.4g} degC"), *_edge_lines(best)]
-    if _is_open_ended(window):
+    if window.specify is None:
         lines.append(ink.alarm("  Specify none before the open-ended side has its limit."))
     if best.worst_utilisation > 1.0:
         lines.append(ink.alarm("  The window is narrower than the tolerance: at its edges a limit fails."))

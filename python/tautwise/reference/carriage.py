@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from .section import Settled, settle_section
+from .section import Section, Settled
+from .sheave import lengths_of
 
 if TYPE_CHECKING:
     from .project import Twin
@@ -15,8 +17,10 @@ MARGIN = 1e-6
 """A carriage nearer to a support than this share of the span is at it."""
 
 
-def settle(twin: Twin, condition: int, pull_N: float | None, with_addition: bool) -> Settled:
+def settle(twin: Twin, condition: int, pull_N: float | None, section_at: Callable[[float | None], Section]) -> Settled:
     """A condition in equilibrium, its carriage where it rests or is held.
+
+    section_at: the loaded section with the carriage at a natural length from the first support; None: there is none.
 
     A free one rests where the tension is the same before and beyond it: of all places it makes the line's energy
     least. It moves to the side of the smaller tension. A held one is where the line passes its station.
@@ -24,13 +28,13 @@ def settle(twin: Twin, condition: int, pull_N: float | None, with_addition: bool
     rows = twin.problem["conditions"][condition].get("loads", ()) if condition >= 0 else ()
     load = next((row for row in rows if row.get("carriage", "none") != "none"), None)
     if load is None:
-        return settle_section(twin.section(condition, pull_N, with_addition))
+        return twin.at_rest(section_at(None))
     span, lengths = int(load["carriage_span"]), twin.lengths_m(pull_N)
     start, length = sum(lengths[:span]), lengths[span]
 
     def tried(s: float) -> tuple[Settled, float]:
-        settled = settle_section(twin.section(condition, pull_N, with_addition, start + s))
-        return settled, miss(settled, load, span, s)
+        settled = twin.at_rest(section_at(start + s))
+        return settled, miss(settled, load, span, start + s - sum(lengths_of(settled)[:span]))
 
     low, high = MARGIN * length, (1.0 - MARGIN) * length
     at_low, at_high = tried(low)[1], tried(high)[1]
@@ -53,7 +57,7 @@ def settle(twin: Twin, condition: int, pull_N: float | None, with_addition: bool
 def miss(settled: Settled, load: dict[str, Any], span: int, s: float) -> float:
     """What is zero where the carriage stands: tension beyond less before, N, or its station less that asked for, m."""
     if load["carriage"] == "held":
-        return float(settled.position_at(span, s)[0]) - float(load["from_m"])
+        return settled.station(span, settled.position_at(span, s)) - float(load["from_m"])
     hung = settled.spans[span]
     here = [tension for at, tension, _ in hung.starts() if abs(at - s) < 1e-9 * hung.length_m]
     return float(np.linalg.norm(here[0])) - float(np.linalg.norm(hung.tension_at(s - 1e-12 * hung.length_m)))

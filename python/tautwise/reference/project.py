@@ -94,16 +94,20 @@ class Twin:
         """Stretched over natural length of a span in a condition, as strung or creeping."""
         key = (condition, pull_N, creeping)
         if key not in self._as_strung:
-            section = self.section(condition, pull_N, state="initial")
-            if creeping:
-                temperature = self.problem["conditions"][condition]["temperature_degC"] if condition >= 0 else None
-                temperature = self.rule["temperature_degC"] if temperature is None else temperature
-                parts = [Part(row, creeping=True) for row in self.line["parts"]]
-                material = curved_line(self.line, temperature, self.rule["temperature_degC"], parts)
-                section = replace(section, material=material)
-            self._as_strung[key] = settle_section(section)
+
+            def section_at(rolled: float | None) -> Section:
+                section = self.section(condition, pull_N, rolled_m=rolled, state="initial")
+                return replace(section, material=self.creeping(condition)) if creeping else section
+
+            self._as_strung[key] = carriage.settle(self, condition, pull_N, section_at)
         hung = self._as_strung[key].spans[span]
         return hung.line_length_m() / hung.length_m
+
+    def creeping(self, condition: int) -> AnyMaterial:
+        """The line on its creep curves, at a condition's temperature."""
+        reference = self.rule["temperature_degC"]
+        temperature = self.problem["conditions"][condition]["temperature_degC"] if condition >= 0 else reference
+        return curved_line(self.line, temperature, reference, [Part(row, creeping=True) for row in self.line["parts"]])
 
     def strung(self, pull_N: float) -> Strung:
         """Bare, strung to a horizontal tension."""
@@ -149,8 +153,8 @@ class Twin:
         """The bare line at the stringing temperature."""
         load = np.array([0.0, 0.0, -self.line["weight_N_per_m"]])
         spans = [[Piece(length, load)] for length in lengths]
-        clamp_loads = self.clamp_loads(np.concatenate([[0.0], np.cumsum(lengths)]), [], {})
-        return Section(self.material(self.rule["temperature_degC"]), spans, self.supports, clamp_loads, self.route)
+        links = self.link_loads({})
+        return Section(self.material(self.rule["temperature_degC"]), spans, self.supports, links, self.route, links)
 
     def lengths_m(self, pull_N: float | None = None) -> list[float]:
         """Natural length of each span."""
@@ -175,20 +179,22 @@ class Twin:
         """A condition in equilibrium; -1 is the bare line at stringing."""
         key = (condition, pull_N, with_addition)
         if key not in self._settled:
-            service = {j: Feed("sheave") for j, support in enumerate(self.supports) if support.hold == "sheave"}
-            if service:
-                self._settled[key] = run_over(self.section(condition, pull_N, with_addition), service)
-            else:
-                self._settled[key] = carriage.settle(self, condition, pull_N, with_addition)
+            self._settled[key] = carriage.settle(
+                self, condition, pull_N, lambda rolled: self.section(condition, pull_N, with_addition, rolled)
+            )
         return self._settled[key]
+
+    def at_rest(self, section: Section) -> Settled:
+        """A section in equilibrium, with natural length that runs over the sheaves in service."""
+        service = {j: Feed("sheave") for j, support in enumerate(self.supports) if support.hold == "sheave"}
+        return run_over(section, service) if service else settle_section(section)
 
     def states(self, condition: int, pull_N: float | None = None) -> dict[str, list[dict[str, float]]]:
         """Spans and supports of a condition in equilibrium, keys as in the solver's results."""
         settled = self.settle(condition, pull_N)
-        weight = self.problem["conditions"][condition].get("factor_weight", 1.0) if condition >= 0 else 1.0
         return {
             "spans": [span_state(settled, k) for k in range(len(settled.spans))],
-            "supports": [support_state(settled, j, weight) for j in range(len(self.supports))],
+            "supports": [support_state(settled, j) for j in range(len(self.supports))],
         }
 
     def section(
@@ -214,8 +220,9 @@ class Twin:
         for k, length in enumerate(lengths):
             basic = loads.basic(self.line, row, with_addition, k, self.along(k)[:2])
             spans.append(self.pieces(k, float(starts[k]), length, basic, placed, row.get("factor_load", 1.0)))
-        clamp_loads = self.clamp_loads(starts, placed, row)
-        return Section(self.stretched(row, pull_N, state), spans, self.supports, clamp_loads, self.route)
+        links = self.link_loads(row)
+        clamp_loads = links + self.clamp_loads(starts, placed, row)
+        return Section(self.stretched(row, pull_N, state), spans, self.supports, clamp_loads, self.route, links)
 
     def placed(
         self, load: Mapping[str, Any], lengths: list[float], pull_N: float | None, rolled_m: float | None = None
@@ -230,8 +237,21 @@ class Twin:
             return 0.0, sum(lengths), load
         ends = [load["from_m"], load["from_m"] if load.get("is_point") else load["to_m"]]
         if place == "station":
-            ends = [length_at_station(self.settle(-1, pull_N), x) for x in ends]
+            strung = self.settle(-1, pull_N)
+            point = bool(load.get("is_point"))
+            within = [None if point else self.drawn_in(strung, far, x) for far, x in enumerate(ends)]
+            ends = [length_at_station(strung, x) if s is None else s for x, s in zip(ends, within, strict=True)]
         return ends[0], ends[1], load
+
+    def drawn_in(self, strung: Settled, far: int, station_m: float) -> float | None:
+        """The line's end on one side, where a station lies between the support there and its clamp, drawn inwards."""
+        span = len(strung.spans) - 1 if far else 0
+        clamp = strung.station(span, strung.clamps[-1 if far else 0])
+        support = self.route.support_station(len(strung.spans) if far else 0)
+        between = clamp < station_m <= support if far else support <= station_m < clamp
+        if not between:
+            return None
+        return sum(hung.length_m for hung in strung.spans) if far else 0.0
 
     def vector(self, load: Mapping[str, Any], span: int) -> Array:
         """A load's vector in route axes."""
@@ -284,18 +304,25 @@ class Twin:
     def clamp_loads(
         self, starts: Array, placed: list[tuple[float, float, Mapping[str, Any]]], condition: Mapping[str, Any]
     ) -> Array:
-        """Half of each hanger's weight and wind, and the point loads that act right at a clamp; N, (n + 1, 3)."""
+        """The point loads that act right at a clamp, in the axes of the span ahead; N, (n + 1, 3)."""
         found = np.zeros((len(self.supports), 3))
-        for j, support in enumerate(self.supports):
+        for j in range(len(self.supports)):
             span = min(j, len(self.supports) - 2)
             snap = SNAP * float(starts[span + 1] - starts[span])
-            if support.hangs:
-                area = self.problem["supports"][j].get("hanger_wind_area_m2", 0.0)
-                own = loads.at_hanger(condition, support.hanger_weight_N, area, self.along(span)[:2])
-                found[j] += self.turned(own, span)
             for first, _, row in placed:
                 if row.get("is_point") and abs(first - starts[j]) <= snap:
                     found[j] += condition.get("factor_load", 1.0) * self.vector(row, span)
+        return found
+
+    def link_loads(self, condition: Mapping[str, Any]) -> Array:
+        """Half of each hanger's weight and wind: at its clamp, and once more at its support; N, (n + 1, 3)."""
+        found = np.zeros((len(self.supports), 3))
+        for j, support in enumerate(self.supports):
+            if support.hangs:
+                span = min(j, len(self.supports) - 2)
+                area = self.problem["supports"][j].get("hanger_wind_area_m2", 0.0)
+                own = loads.at_hanger(condition, support.hanger_weight_N, area, self.along(span)[:2])
+                found[j] = self.turned(own, span)
         return found
 
     def judge(self, pull_N: float | None = None) -> dict[tuple[int, int], limits.Verdict]:

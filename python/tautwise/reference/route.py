@@ -44,6 +44,13 @@ class Route:
         ahead = (np.asarray(place)[:2] - self.places[span]) @ self.direction(span)
         return self.support_station(span) + float(ahead)
 
+    def left(self, span: int, place: Array) -> float:
+        """How far left of a span's own direction a place is; of the route where that is straight."""
+        if not self.turning:
+            return float(place[1])
+        x, y = self.direction(span)
+        return float(np.array([-y, x]) @ (np.asarray(place)[:2] - self.places[span]))
+
     def axes(self, support: int) -> Array:
         """Rows: ahead, to the left, up. At an angle point ahead halves the angle between the spans' directions."""
         if not self.turning:

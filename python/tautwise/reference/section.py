@@ -108,7 +108,10 @@ class Support:
 
 @dataclass(frozen=True)
 class Section:
-    """The loads of one condition on the pieces of each span, and on the clamps themselves: N, (n + 1, 3)."""
+    """The loads of one condition on the pieces of each span, and on the clamps themselves: N, (n + 1, 3).
+
+    link_loads: the half of a link's weight and wind that its support takes without the line, N, (n + 1, 3).
+    """
 
     material: AnyMaterial | Sequence[AnyMaterial]
     spans: Sequence[Sequence[Piece]]
@@ -116,6 +119,7 @@ class Section:
     clamp_loads: Array
     route: Route | None = None
     """None: straight."""
+    link_loads: Array | None = None
 
     def material_of(self, span: int) -> AnyMaterial:
         """One material for all spans, or one for each."""

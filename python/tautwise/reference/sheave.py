@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .quadrature import Array
+from .quadrature import Array, Growing
 from .section import Section, Settled, settle_section
 from .span import NotSettled, Piece
 
@@ -100,7 +100,7 @@ def shifted(section: Section, feeds: Mapping[int, Feed], moved: Mapping[int, flo
     """The section with natural length put before a support's span ahead and taken from the end of the span behind."""
     spans = [list(span) for span in section.spans]
     for j, length in moved.items():
-        spans[j][0] = longer(spans[j][0], length)
+        spans[j][0] = begun_before(longer(spans[j][0], length), length)
         if feeds[j].kind != "winch":
             spans[j - 1][-1] = longer(spans[j - 1][-1], -length)
     return replace(section, spans=spans)
@@ -112,6 +112,13 @@ def longer(piece: Piece, length_m: float) -> Piece:
     if grown.length_m <= 0.0:
         raise ValueError("a piece of the line would run over a sheave")
     return grown
+
+
+def begun_before(piece: Piece, length_m: float) -> Piece:
+    """A piece that begins so much earlier, a load that grows being where it was on the line."""
+    if not isinstance(piece.load, Growing):
+        return piece
+    return replace(piece, load=replace(piece.load, start=piece.load.at(-length_m)))
 
 
 def miss(settled: Settled, support: int, feed: Feed) -> float:

@@ -165,21 +165,20 @@ def span_state(settled: Settled, span: int) -> dict[str, float]:
     }
 
 
-def support_state(settled: Settled, support: int, weight_factor: float = 1.0) -> dict[str, float]:
+def support_state(settled: Settled, support: int) -> dict[str, float]:
     """Force of line and hold on a support in its axes, N, and the angles of a hanger from the vertical, else NaN."""
-    at = settled.section.supports[support]
-    force = at.axes @ settled.hold_forces[support]
+    at, links = settled.section.supports[support], settled.section.link_loads
+    force = at.axes @ (settled.hold_forces[support] - (0.0 if links is None else links[support]))
     swing = [math.nan] * 3
     if at.hangs:
         x, y, z = at.axes @ (settled.clamps[support] - at.place)
         swing = [math.atan2(math.hypot(x, y), -z), math.atan2(x, -z), math.atan2(y, -z)]
     route = settled.section.route
-    down = float(force[2]) + (0.5 * weight_factor * at.hanger_weight_N if at.hangs else 0.0)
     return {
         "along_N": -float(force[0]),
         "across_N": -float(force[1]),
-        "down_N": down,
-        "resultant_N": math.sqrt(float(force[0]) ** 2 + float(force[1]) ** 2 + down**2),
+        "down_N": float(force[2]),
+        "resultant_N": float(np.linalg.norm(force)),
         "swing_rad": swing[0],
         "swing_along_rad": swing[1],
         "swing_across_rad": swing[2],

@@ -40,5 +40,6 @@ def places(
         s = length_at_station(settled, station)
         span = min(int(np.searchsorted(ends, s)), len(ends) - 1)
         within = s - (ends[span - 1] if span else 0.0)
-        found.append(settled.position_at(span, float(within))[1:])
+        place = settled.position_at(span, float(within))
+        found.append([twin.route.left(span, place), place[2]])
     return np.array(found, dtype=np.float64)
