@@ -143,10 +143,9 @@ def _window_findings(project: Project, core: _core.Project, answer: PullWindow) 
 
     Nobody specifies the pull of a window that is open-ended, so nothing is said of it there.
     """
-    if answer.specify is None:
-        return ()
+    best = answer.specify
     bounded = all(end is not None and end.limit is not None for end in (answer.low, answer.high))
-    found = list(line_findings(project, core, answer.specify.horizontal_tension_N)) if bounded else []
+    found = list(line_findings(project, core, best.horizontal_tension_N)) if best is not None and bounded else []
     said = {_without_numbers(text) for text in found}
     head = f"{project.source}: " if project.source else ""
     for word, end in (("lowest", answer.low), ("highest", answer.high)):

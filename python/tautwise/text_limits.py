@@ -77,8 +77,9 @@ def best_so_far(window: PullWindow | None) -> str:
 
 
 def _open_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
-    lines = [_open_head(window, ink), "", *_end_table(window).lines(), *_second_looks(window)]
-    lines += look_again_lines(project, window.warnings)
+    lines = [_open_head(window, ink), "", *_end_table(window).lines()]
+    looks = [*_second_looks(window), *look_again_lines(project, window.warnings)]
+    lines += ["", *filter(None, looks)] if looks else []
     if window.least_used:
         lines += ["", *_specify_lines(window, ink)]
     prices = price_table(window)
