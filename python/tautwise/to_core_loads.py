@@ -102,8 +102,8 @@ def _load(project: Project, load: Load) -> dict[str, Any]:
         core["covers"] = there
         if load.per_length_to_N_per_m is not None:
             stations = [support.station_m for support in project.supports]
-            first, last = there.index(True), len(there) - there[::-1].index(True)
-            core |= {"place": "station", "from_m": stations[first], "to_m": stations[last]}
+            start, end = there.index(True), len(there) - there[::-1].index(True)
+            core |= {"place": "station", "from_m": stations[start], "to_m": stations[end]}
     if load.carriage is not None:
         core |= {"carriage": load.carriage, "carriage_span": _carriage_span(project, load)}
     for place, first, second, last in (
