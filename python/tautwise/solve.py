@@ -20,7 +20,7 @@ from tautwise import _core
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
 from tautwise.findings import changed_places, findings_of, judging_findings
 from tautwise.origins import Judge, LineOrigin
-from tautwise.outcomes import AS_STRUNG, chords_m, explained, refuse_slack
+from tautwise.outcomes import AS_STRUNG, chords_m, explained, range_fault, refuse_slack
 from tautwise.records import finite
 from tautwise.results import (
     CAUTION,
@@ -316,8 +316,8 @@ def errors_of(project: Project, pull: float | None = None, where: str = "") -> I
         yield
     except _core.RangeError as error:
         path, expected = getattr(error, "path", ""), getattr(error, "expected", "")
-        problem = "outside its range" if path else str(error)
-        raise InputError([project.core_fault(path, problem, expected)]) from None
+        fault = range_fault(project, path, expected) if path else project.core_fault("", str(error), expected)
+        raise InputError([fault]) from None
     except _core.SettleError as error:
         status = getattr(error, "status", "not_settled")
         if status == OFF_THE_LINE:
