@@ -19,8 +19,8 @@ PACKAGE = ROOT / "python" / "tautwise"
 
 # A file may include its own layer (without a cycle) and those above it in this list.
 CORE_LAYERS = (
-    {"alloc", "status", "sum", "vector"},
-    {"line", "couple", "blocktri"},
+    {"alloc", "status", "sum", "vector", "gauss"},
+    {"line", "polynomial", "couple", "blocktri"},
     {"check", "material", "load", "hold", "route", "vee"},
     {"span", "uniform"},
     {"section", "stringing", "wave"},

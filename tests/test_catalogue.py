@@ -8,6 +8,8 @@ import io
 import json
 import math
 import re
+import shlex
+import tomllib
 
 import pytest
 from hypothesis import given
@@ -20,7 +22,9 @@ from tautwise.errors import InputError
 from tautwise.ropes import factors, listed_ropes, rope
 from tautwise.size_files import read_sizes
 from tautwise.size_records import CONFIDENCES, MEASURES, Size, name_key
-from tautwise.strict import Refused
+from tautwise.strict import Refused, toml_text
+from tautwise.text import Ink
+from tautwise.text_catalogue import sizes_text
 
 POUND_N = 4.4482216152605
 FOOT_M = 0.3048
@@ -172,6 +176,13 @@ def test_moduli_of_en_1993(kind):
 
 
 # --- every row
+
+
+def test_a_source_that_is_a_standard_names_its_table_or_says_that_it_is_not_noted():
+    for size in shipped():
+        for value in size.values:
+            if value.source.startswith("ASTM"):
+                assert re.search(r"\btable\b", value.source), (size.name, value.key, value.source)
 
 
 def test_every_value_has_a_source():
@@ -524,3 +535,24 @@ def test_any_rope_is_computed_or_refused(name):
         assert rope(name).breaking_strength_N > 0
     except Refused as refused:
         assert refused.problem
+
+
+NAMES = ["my rope", "Bob's rope", 'rope 6"', "a\\b", "$(rm x) `y`", "; ls"]
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_what_is_to_be_pasted_is_quoted(name):
+    cell = '"' + name.replace('"', '""') + '"'
+    sizes = read_sizes(f"name,mass [kg/m]\n{cell},0.345\n", "my.csv")
+    lines = sizes_text(sizes, Ink(False), sources=False, ropes=False)
+    (use,) = (line for line in lines if "under [line]" in line)
+    (see,) = (line for line in lines if "--sources" in line)
+    written = use[use.index("size = ") : use.index(" under [line]")]
+    assert tomllib.loads(written) == {"size": name}
+    assert shlex.split(see[see.index("tautwise sizes") :]) == ["tautwise", "sizes", name, "--sources"]
+
+
+@given(st.text())
+def test_any_text_survives_its_toml(text):
+    text = text.encode("utf-8", "ignore").decode()  # no lone surrogates, which TOML has none of
+    assert tomllib.loads(f"x = {toml_text(text)}") == {"x": text}

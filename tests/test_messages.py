@@ -59,6 +59,9 @@ def with_limit(**keys):
          'did you mean "anchor"? expected anchor, hanger, sheave or post'),
         ({"line": {3: 4}}, "line: the key 3 is no text"),
         ({"limit": [{3: 4}]}, "limit[0].kind: missing"),
+        ({"line": LINE | {3: 4}}, "line: the key 3 is no text"),
+        ({"rules": [{"pack": "nesc-261h", 1: 2}]}, "rules[0]: the key 1 is no text"),
+        ({"rules": [{"pack": "nesc-261h", None: 2, (1, 2): 3}]}, "rules[0]: the key (1, 2) is no text"),
     ],
 )  # fmt: skip
 def test_messages_say_what_to_write(tables, words):

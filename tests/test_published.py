@@ -556,7 +556,7 @@ def test_i_energies(length, total):
 
 
 def test_i_settle_is_fast_to_converge():
-    """The aim of the blueprint: fewer than 40 evaluations."""
+    """The aim set for this line: fewer than 40 evaluations."""
     assert settled(cases.problem(cases.span(300.0), cases.lengths_rule(300.8)))["evaluations"] < 40
 
 

@@ -171,6 +171,7 @@ def test_nothing_undecided_is_excused(tmp_path):
         ("until", None, "waiver[0].until: missing; expected a date, for example until = 2027-06-30"),
         ("limit", None, "waiver[0].limit: missing; expected a limit's id"),
         ("until", "2027-13-01", 'waiver[0].until: the text "2027-13-01" is no date; expected a date'),
+        ("until", "2027-W01-1", 'waiver[0].until: the text "2027-W01-1" is no date; expected a date'),
         ("until", 2027, "waiver[0].until: the number 2027 is no date"),
         ("until", datetime.datetime(2027, 6, 30, 12), "waiver[0].until: a time of day where a date is needed"),
         ("reason", "", "waiver[0].reason: an empty text"),

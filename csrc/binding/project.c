@@ -139,23 +139,24 @@ static PyObject *lengths_of(const tw_trial *trial)
 }
 
 /* A trial strung to a pull, or by the project's rule; NULL and raises. */
-static tw_trial *strung_trial(project_object *self, double pull)
+static tw_trial *strung_trial(project_object *self, double pull, run_state *run, const tw_options *options)
 {
     tw_trial *trial = tw_trial_create(&self->problem.project);
     if (!trial) {
         PyErr_NoMemory();
         return NULL;
     }
-    tw_status status;
-    Py_BEGIN_ALLOW_THREADS
-    status = tw_trial_string(trial, pull);
-    Py_END_ALLOW_THREADS
-    if (status != TW_OK) {
-        raise_status(self, status);
-        tw_trial_free(trial);
-        return NULL;
+    tw_run_begin(run);
+    tw_status status = tw_trial_string(trial, pull, options);
+    tw_run_end(run);
+    if (status == TW_OK && !run->raised) {
+        return trial;
     }
-    return trial;
+    if (!run->raised) {
+        raise_status(self, status);
+    }
+    tw_trial_free(trial);
+    return NULL;
 }
 
 static PyObject *project_string(PyObject *object, PyObject *args, PyObject *keywords)
@@ -163,10 +164,12 @@ static PyObject *project_string(PyObject *object, PyObject *args, PyObject *keyw
     project_object *self = (project_object *)object;
     double pull;
     tw_options options;
+    run_state run;
     if (!PyArg_ParseTuple(args, ":string") || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
-    tw_trial *trial = strung_trial(self, pull);
+    tw_run_open(&run, &options);
+    tw_trial *trial = strung_trial(self, pull, &run, &options);
     if (!trial) {
         return NULL;
     }
@@ -226,8 +229,9 @@ static PyObject *project_settle(PyObject *object, PyObject *args, PyObject *keyw
         PyErr_NoMemory();
         goto done;
     }
-    tw_run_begin(&run, &options);
-    settled.status = tw_trial_string(trial, pull);
+    tw_run_open(&run, &options);
+    tw_run_begin(&run);
+    settled.status = tw_trial_string(trial, pull, &options);
     if (settled.status == TW_OK) {
         tw_report_condition(trial, (size_t)condition, &options, &settled);
     }
@@ -263,14 +267,14 @@ static PyObject *judged_row(const tw_verdict *verdict, size_t limit, size_t cond
 }
 
 /* Judges one row and appends it; -1 and raises. */
-static int append_judged(PyObject *list, tw_trial *trial, size_t limit, size_t condition, tw_options *options)
+static int append_judged(PyObject *list, tw_trial *trial, size_t limit, size_t condition, run_state *run,
+                         const tw_options *options)
 {
     tw_verdict verdict = {0, NAN, NAN, NAN, NAN, TW_NONE, TW_NONE, NAN, NAN, {NAN, NAN, NAN}};
-    run_state run;
-    tw_run_begin(&run, options);
+    tw_run_begin(run);
     tw_status status = tw_trial_judge(trial, limit, condition, options, &verdict);
-    tw_run_end(&run);
-    if (run.raised || PyErr_CheckSignals() < 0) {
+    tw_run_end(run);
+    if (run->raised || PyErr_CheckSignals() < 0) {
         return -1;
     }
     if (status == TW_OK && !verdict.judged) {
@@ -288,10 +292,12 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     const tw_project *project = &self->problem.project;
     double pull;
     tw_options options;
+    run_state run;
     if (!PyArg_ParseTuple(args, ":judge") || split_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
-    tw_trial *trial = strung_trial(self, pull);
+    tw_run_open(&run, &options);
+    tw_trial *trial = strung_trial(self, pull, &run, &options);
     if (!trial) {
         return NULL;
     }
@@ -299,7 +305,7 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     for (size_t i = 0; list && i < project->limit_count; i++) {
         for (size_t c = 0; list && c < project->condition_count; c++) {
             if (project->limit_applies[i * project->condition_count + c]
-                && append_judged(list, trial, i, c, &options) < 0) {
+                && append_judged(list, trial, i, c, &run, &options) < 0) {
                 Py_CLEAR(list);
             }
         }
@@ -308,17 +314,22 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     return list;
 }
 
-static tw_status solve_exact(tw_trial *trial, double pull, size_t condition, const tw_options *options,
-                             const tw_section **section)
+/* 0, or -1 and raises. */
+static int solve_exact(project_object *self, tw_trial *trial, double pull, size_t condition, tw_options *options,
+                       const tw_section **section)
 {
-    tw_status status;
-    Py_BEGIN_ALLOW_THREADS
-    status = tw_trial_string(trial, pull);
+    run_state run;
+    tw_run_open(&run, options);
+    tw_run_begin(&run);
+    tw_status status = tw_trial_string(trial, pull, options);
     if (status == TW_OK) {
         status = tw_trial_section(trial, condition, options, section);
     }
-    Py_END_ALLOW_THREADS
-    return status;
+    tw_run_end(&run);
+    if (!run.raised && status != TW_OK) {
+        raise_status(self, status);
+    }
+    return !run.raised && status == TW_OK ? 0 : -1;
 }
 
 static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywords)
@@ -340,8 +351,8 @@ static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywo
     if (!trial) {
         return PyErr_NoMemory();
     }
-    tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-    PyObject *result = status == TW_OK ? tw_places_along(section, (size_t)points) : raise_status(self, status);
+    int solved = solve_exact(self, trial, pull, (size_t)condition, &options, &section) == 0;
+    PyObject *result = solved ? tw_places_along(section, (size_t)points) : NULL;
     tw_trial_free(trial);
     return result;
 }
@@ -361,8 +372,8 @@ static PyObject *project_course(PyObject *object, PyObject *args, PyObject *keyw
     if (!trial) {
         return PyErr_NoMemory();
     }
-    tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-    PyObject *result = status == TW_OK ? tw_courses_along(section) : raise_status(self, status);
+    int solved = solve_exact(self, trial, pull, (size_t)condition, &options, &section) == 0;
+    PyObject *result = solved ? tw_courses_along(section) : NULL;
     tw_trial_free(trial);
     return result;
 }
@@ -386,11 +397,8 @@ static PyObject *project_at(PyObject *object, PyObject *args, PyObject *keywords
         PyErr_NoMemory();
     } else if (stations && PyArray_NDIM(stations) != 1) {
         PyErr_SetString(PyExc_ValueError, "stations: expected a one-dimensional array");
-    } else if (stations) {
-        tw_status status = solve_exact(trial, pull, (size_t)condition, &options, &section);
-        result = status == TW_OK
-                     ? tw_places_at(section, PyArray_DATA(stations), (size_t)PyArray_DIM(stations, 0))
-                     : raise_status(self, status);
+    } else if (stations && solve_exact(self, trial, pull, (size_t)condition, &options, &section) == 0) {
+        result = tw_places_at(section, PyArray_DATA(stations), (size_t)PyArray_DIM(stations, 0));
     }
     tw_trial_free(trial);
     Py_XDECREF(stations);
@@ -432,7 +440,8 @@ static PyObject *project_window(PyObject *object, PyObject *args, PyObject *keyw
     if (!window) {
         return PyErr_NoMemory();
     }
-    tw_run_begin(&run, &options);
+    tw_run_open(&run, &options);
+    tw_run_begin(&run);
     tw_status status = tw_window_search(&self->problem.project, &options, window);
     tw_run_end(&run);
     if (run.raised) {
@@ -477,9 +486,10 @@ static PyObject *project_sheet(PyObject *object, PyObject *args, PyObject *keywo
         return NULL;
     }
     tw_crew *crew = crew_at(&self->problem.project, given);
-    tw_trial *trial = crew ? strung_trial(self, pull) : NULL;
+    tw_run_open(&run, &options);
+    tw_trial *trial = crew ? strung_trial(self, pull, &run, &options) : NULL;
     if (trial) {
-        tw_run_begin(&run, &options);
+        tw_run_begin(&run);
         tw_status status = tw_crew_fill(crew, trial, &options);
         tw_run_end(&run);
         if (!run.raised) {
@@ -513,7 +523,8 @@ static PyObject *run_fit(project_object *self, const survey *points, tw_fit_unkn
     if (!fit) {
         return PyErr_NoMemory();
     }
-    tw_run_begin(&run, options);
+    tw_run_open(&run, options);
+    tw_run_begin(&run);
     tw_status status = tw_fit_search(&self->problem.project, points->observations, points->count, unknown, options, fit);
     tw_run_end(&run);
     if (!run.raised) {

@@ -13,25 +13,26 @@ static int poll_signals(void *data)
 {
     run_state *run = data;
     double now = tw_clock_now();
-    if (run->raised) {
-        return 1;
+    if (!run->raised && now - run->last_s >= SIGNAL_PERIOD_S) {
+        run->last_s = now;
+        PyEval_RestoreThread(run->saved);
+        run->raised = PyErr_CheckSignals() < 0;
+        run->saved = PyEval_SaveThread();
     }
-    if (now - run->last_s < SIGNAL_PERIOD_S) {
-        return 0;
-    }
-    run->last_s = now;
-    PyEval_RestoreThread(run->saved);
-    run->raised = PyErr_CheckSignals() < 0;
-    run->saved = PyEval_SaveThread();
-    return run->raised;
+    return run->raised ? TW_CANCELLED : now < run->deadline ? TW_OK : TW_DEADLINE;
 }
 
-void tw_run_begin(run_state *run, tw_options *options)
+void tw_run_open(run_state *run, tw_options *options)
 {
     run->raised = 0;
     run->last_s = tw_clock_now();
+    run->deadline = tw_clock_deadline(options->seconds_most);
     options->poll = poll_signals;
     options->poll_data = run;
+}
+
+void tw_run_begin(run_state *run)
+{
     run->saved = PyEval_SaveThread();
 }
 

@@ -4,30 +4,21 @@
 
 #include "check_rules.h"
 #include "material_curve.h"
+#include "polynomial.h"
 
 static const double COEFFICIENT_MOST = 1e20; /* N per strain^4 of the largest lines stays below */
-
-static double value(const double terms[TW_CURVE_TERMS], double x)
-{
-    return terms[0] + x * (terms[1] + x * (terms[2] + x * (terms[3] + x * terms[4])));
-}
-
-static double slope(const double terms[TW_CURVE_TERMS], double x)
-{
-    return terms[1] + x * (2.0 * terms[2] + x * (3.0 * terms[3] + x * 4.0 * terms[4]));
-}
 
 /* Least slope on [0, end]: at an end, or where the second derivative, a parabola, is zero. */
 static double least_slope(const double terms[TW_CURVE_TERMS], double end)
 {
     double a = 12.0 * terms[4], b = 6.0 * terms[3], c = 2.0 * terms[2];
-    double least = fmin(slope(terms, 0.0), slope(terms, end));
+    double least = fmin(tw_polynomial_slope(terms, 0.0), tw_polynomial_slope(terms, end));
     double root = b * b - 4.0 * a * c;
     double q = -0.5 * (b + copysign(sqrt(fmax(root, 0.0)), b));
     const double places[2] = {a != 0.0 ? q / a : -1.0, q != 0.0 ? c / q : -1.0};
     for (int i = 0; root >= 0.0 && i < 2; i++) {
         if (places[i] > 0.0 && places[i] < end) {
-            least = fmin(least, slope(terms, places[i]));
+            least = fmin(least, tw_polynomial_slope(terms, places[i]));
         }
     }
     return least;
@@ -54,7 +45,7 @@ static tw_status check_loading(const tw_part *part, size_t i, tw_fault *fault)
     if (!(least_slope(part->loading_N, part->valid_to) > 0.0)) {
         return tw_check_fail(fault, "parts", i, "loading_N", "a curve that grows from 0 to valid_to");
     }
-    if (!(value(part->loading_N, part->valid_to) > 0.0)) {
+    if (!(tw_polynomial_value(part->loading_N, part->valid_to) > 0.0)) {
         return tw_check_fail(fault, "parts", i, "loading_N", "a curve that carries something at valid_to");
     }
     return TW_OK;
@@ -70,12 +61,13 @@ static tw_status check_creep(const tw_part *part, size_t i, tw_fault *fault)
     if (!in_range(part->creep_N)) {
         return tw_check_fail(fault, "parts", i, "creep_N", "finite coefficients");
     }
-    if (!(least_slope(part->creep_N, end) > 0.0 && value(part->creep_N, end) > 0.0)) {
+    if (!(least_slope(part->creep_N, end) > 0.0 && tw_polynomial_value(part->creep_N, end) > 0.0)) {
         return tw_check_fail(fault, "parts", i, "creep_N", "a curve that grows from 0 to valid_to");
     }
     for (int half = 1; half <= 2; half++) {
-        double excess = value(part->creep_N, 0.5 * half * end) - value(part->loading_N, 0.5 * half * end);
-        if (excess > 1e-9 * value(part->loading_N, end)) {
+        double at = 0.5 * half * end;
+        double excess = tw_polynomial_value(part->creep_N, at) - tw_polynomial_value(part->loading_N, at);
+        if (excess > 1e-9 * tw_polynomial_value(part->loading_N, end)) {
             return tw_check_fail(fault, "parts", i, "creep_N", "no more force than on first loading: creep lengthens");
         }
     }

@@ -8,7 +8,6 @@
 #include "wave.h"
 
 enum { LAST_END_MOST = 60 };
-static const double gravity = 9.80665;    /* m/s2, standard */
 static const double LAST_END_MISS = 1e-13; /* of the horizontal tension of a section's last span */
 
 /* The project with one bare condition in the place of its own. */
@@ -86,7 +85,7 @@ static void read_spans(const tw_section *section, double mass_kg_per_m, tw_crew_
 
 static double mass_of(const crew_run *run)
 {
-    return run->bare.line.weight_N_per_m / gravity;
+    return run->bare.line.weight_N_per_m / TW_GRAVITY;
 }
 
 /* The bare line at one temperature with given natural lengths; a state that does not settle stays NaN. */
@@ -100,7 +99,7 @@ static tw_status hang_bare(crew_run *run, double temperature_degC, const double 
     if (status == TW_OK) {
         read_spans(run->section, mass_of(run), rows);
     }
-    return status == TW_CANCELLED ? status : TW_OK;
+    return tw_status_stops(status) ? status : TW_OK;
 }
 
 /* Every temperature, in one state. */
@@ -201,7 +200,7 @@ static tw_status fill_friction(crew_run *run, const tw_crew_span *free_run)
         read_spans(blocks, mass_of(run), crew->last);
     }
     blocks->drag = 0;
-    return status == TW_CANCELLED ? status : TW_OK;
+    return tw_status_stops(status) ? status : TW_OK;
 }
 
 static tw_status fill_over(crew_run *run)

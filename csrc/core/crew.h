@@ -52,7 +52,7 @@ tw_crew *tw_crew_create(const tw_project *project, size_t temperature_count);
 void tw_crew_free(tw_crew *crew);
 
 /* Fills all but the temperatures, which stand, from a trial that is strung. A state that does not settle stays NaN.
- * TW_CANCELLED: the options' poll said so. TW_ERROR_MEMORY. */
+ * TW_CANCELLED, TW_DEADLINE: the options' poll said so. TW_ERROR_MEMORY. */
 tw_status tw_crew_fill(tw_crew *crew, tw_trial *trial, const tw_options *options);
 
 #endif

@@ -21,6 +21,12 @@ tw_options tw_options_default(void)
     return options;
 }
 
+tw_status tw_options_ask(const tw_options *options)
+{
+    int says = options->poll ? options->poll(options->poll_data) : 0;
+    return says == 0 ? TW_OK : says == TW_DEADLINE ? TW_DEADLINE : TW_CANCELLED;
+}
+
 tw_condition tw_line_bare(double temperature_degC)
 {
     tw_condition condition = {

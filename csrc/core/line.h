@@ -268,7 +268,10 @@ typedef struct tw_observation {
     double temperature_degC; /* of the line */
 } tw_observation;
 
-/* What a poll callback returns: 0 to go on, anything else to cancel. Called often; it should look at the clock first. */
+#define TW_GRAVITY 9.80665 /* m/s2, standard gravity (ISO 80000-3) */
+
+/* What a poll callback returns: 0 to go on, TW_DEADLINE where the time is up, anything else to cancel. Called often; it should
+ * look at the clock first. The core has no clock of its own, so a deadline reaches it this way alone. */
 typedef int (*tw_poll)(void *data);
 
 typedef struct tw_options {
@@ -287,6 +290,9 @@ typedef struct tw_options {
 } tw_options;
 
 tw_options tw_options_default(void);
+
+/* Whether to go on: TW_OK, TW_CANCELLED or TW_DEADLINE. */
+tw_status tw_options_ask(const tw_options *options);
 
 /* A condition that leaves the line bare and calm. */
 tw_condition tw_line_bare(double temperature_degC);

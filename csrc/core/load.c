@@ -3,11 +3,10 @@
 #include <math.h>
 
 static const double PI = 3.14159265358979323846;
-static const double GRAVITY = 9.80665; /* m/s2, standard gravity (ISO 80000-3) */
 
 double tw_load_ice(double diameter_m, double thickness_m, double density_kg_per_m3)
 {
-    return PI * thickness_m * (diameter_m + thickness_m) * density_kg_per_m3 * GRAVITY;
+    return PI * thickness_m * (diameter_m + thickness_m) * density_kg_per_m3 * TW_GRAVITY;
 }
 
 double tw_load_iced_diameter(double diameter_m, double thickness_m, double share)

@@ -3,6 +3,8 @@
 #include <math.h>
 #include <string.h>
 
+#include "polynomial.h"
+
 /* Where a part's law changes: its force from `from` on is a polynomial in its strain. */
 typedef struct stretch_law {
     double from;
@@ -10,24 +12,6 @@ typedef struct stretch_law {
 } stretch_law;
 
 enum { LAWS_MOST = 4, TOP = TW_CURVE_TERMS - 1 };
-
-static double value(const double terms[TW_CURVE_TERMS], double x)
-{
-    double sum = terms[TOP];
-    for (int k = TOP - 1; k >= 0; k--) {
-        sum = sum * x + terms[k];
-    }
-    return sum;
-}
-
-static double slope(const double terms[TW_CURVE_TERMS], double x)
-{
-    double sum = TOP * terms[TOP];
-    for (int k = TOP - 1; k >= 1; k--) {
-        sum = sum * x + k * terms[k];
-    }
-    return sum;
-}
 
 static double integral(const double terms[TW_CURVE_TERMS], double x)
 {
@@ -54,11 +38,11 @@ static void add_moved(const double terms[TW_CURVE_TERMS], double x, double out[T
 /* Where a growing polynomial reaches a value between low and high: Newton, kept inside a bracket that bisection halves. */
 static double reached(const double terms[TW_CURVE_TERMS], double wanted, double low, double high)
 {
-    double first = value(terms, low);
-    double x = low + (high - low) * fmin(fmax((wanted - first) / (value(terms, high) - first), 0.0), 1.0);
+    double first = tw_polynomial_value(terms, low);
+    double x = low + (high - low) * fmin(fmax((wanted - first) / (tw_polynomial_value(terms, high) - first), 0.0), 1.0);
     for (int i = 0; i < 100 && high > low; i++) {
-        double miss = value(terms, x) - wanted;
-        double step = miss / slope(terms, x);
+        double miss = tw_polynomial_value(terms, x) - wanted;
+        double step = miss / tw_polynomial_slope(terms, x);
         if (miss <= 0.0) {
             low = x;
         } else {
@@ -96,7 +80,7 @@ static int loading_laws(const tw_part *part, int creeping, double from, stretch_
         memcpy(laws[count++].terms, terms, TW_CURVE_TERMS * sizeof(double));
     }
     laws[count].from = fmax(from, end);
-    straight(value(terms, end), slope(terms, end), end, laws[count++].terms);
+    straight(tw_polynomial_value(terms, end), tw_polynomial_slope(terms, end), end, laws[count++].terms);
     return count;
 }
 
@@ -174,7 +158,7 @@ static void sum_up(tw_curve *curve)
         curve->energy_J[k] = energy;
         if (k + 1 < curve->count) {
             double width = curve->knot[k + 1] - first - curve->knot[k];
-            force = value(terms, width);
+            force = tw_polynomial_value(terms, width);
             energy += integral(terms, width);
         }
     }
@@ -214,13 +198,13 @@ static size_t knot_below(const double *at, size_t count, double x)
 double tw_curve_force(const tw_curve *curve, double x)
 {
     size_t k = knot_below(curve->knot, curve->count, x);
-    return x > 0.0 ? value(curve->terms[k], x - curve->knot[k]) : 0.0;
+    return x > 0.0 ? tw_polynomial_value(curve->terms[k], x - curve->knot[k]) : 0.0;
 }
 
 double tw_curve_slope(const tw_curve *curve, double x)
 {
     size_t k = knot_below(curve->knot, curve->count, x);
-    return x >= 0.0 ? slope(curve->terms[k], x - curve->knot[k]) : 0.0;
+    return x >= 0.0 ? tw_polynomial_slope(curve->terms[k], x - curve->knot[k]) : 0.0;
 }
 
 double tw_curve_energy(const tw_curve *curve, double x)
@@ -246,7 +230,7 @@ double tw_curve_steepest(const tw_curve *curve)
     for (size_t k = 0; k < curve->count; k++) {
         double width = k + 1 < curve->count ? curve->knot[k + 1] - curve->knot[k] : 0.0;
         for (int i = 0; i <= 4; i++) {
-            most = fmax(most, slope(curve->terms[k], 0.25 * i * width));
+            most = fmax(most, tw_polynomial_slope(curve->terms[k], 0.25 * i * width));
         }
     }
     return most;
@@ -267,7 +251,7 @@ double tw_part_force(const tw_part *part, double strain, int creeping)
     while (at > 0 && laws[at].from > strain) {
         at--;
     }
-    return strain > from ? value(laws[at].terms, strain) : 0.0;
+    return strain > from ? tw_polynomial_value(laws[at].terms, strain) : 0.0;
 }
 
 /* Where the unloading line from a place below the loading curve meets that curve, at `from` or beyond. */
@@ -290,7 +274,7 @@ static double meeting(const tw_part *part, double permanent, double from)
     }
     low = fmax(from, end);
     double below = tw_part_force(part, low, 0) - rate * (low - permanent);
-    double gain = rate - slope(part->loading_N, end);
+    double gain = rate - tw_polynomial_slope(part->loading_N, end);
     return gain > 0.0 ? low + below / gain : INFINITY;
 }
 

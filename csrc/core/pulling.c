@@ -33,7 +33,6 @@ tw_pulling *tw_pulling_create(const tw_project *project)
         return NULL;
     }
     pulling->project = project;
-    pulling->options = tw_options_default();
     pulling->held = *project;
     pulling->supports = tw_calloc(project->support_count, sizeof *pulling->supports);
     if (!pulling->supports) {
@@ -119,7 +118,7 @@ static tw_status pull_in(void *data, double pull_N, double *length_m, double *pu
     memcpy(blocks->pull, pull, 3 * n * sizeof(double));
     memset(blocks->moved_m, 0, (n + 1) * sizeof(double));
     memset(blocks->slack, 0, n + 1);
-    status = tw_section_solve(blocks, &pulling->options, 1);
+    status = tw_section_solve(blocks, pulling->options, 1);
     if (status != TW_OK) {
         return status;
     }
@@ -146,15 +145,16 @@ static tw_status clamp_plumb(tw_pulling *pulling, double *length_m)
     memcpy(clamped->pull, pulling->blocks->pull, 3 * n * sizeof(double));
     memset(clamped->moved_m, 0, (n + 1) * sizeof(double));
     memset(clamped->slack, 0, n + 1);
-    status = tw_section_solve(clamped, &pulling->options, 1);
+    status = tw_section_solve(clamped, pulling->options, 1);
     memcpy(length_m, clamped->length_m, n * sizeof(double));
     return status;
 }
 
-tw_status tw_pulling_lengths(tw_pulling *pulling, double *pull_N, double *length_m)
+tw_status tw_pulling_lengths(tw_pulling *pulling, double *pull_N, double *length_m, const tw_options *options)
 {
     const tw_stringing *rule = &pulling->project->stringing;
     const tw_stringing_way way = {pull_in, pulling};
+    pulling->options = options;
     tw_status status = tw_stringing_by(pulling->project, &way, length_m, pull_N, pulling->work);
     if (status == TW_OK && rule->method == TW_METHOD_OVER_SHEAVES && rule->clip == TW_CLIP_PLUMB) {
         status = clamp_plumb(pulling, length_m);

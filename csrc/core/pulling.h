@@ -22,7 +22,7 @@ typedef struct tw_pulling {
     tw_section *blocks;     /* as pulled in; owned */
     tw_section *clamped;    /* as clamped; owned */
     double *work;           /* scratch of stringing; owned */
-    tw_options options;     /* those of the solver's own */
+    const tw_options *options; /* of the call at work */
 } tw_pulling;
 
 /* Whether a project's natural lengths are found this way: strung over sheaves, or with a sheave in service. */
@@ -36,8 +36,8 @@ void tw_pulling_free(tw_pulling *pulling);
 
 /* Natural length of each span once it is clamped. pull_N: given, or NaN for the project's own rule, whose pull is then
  * written. Fills blocks, and clamped where the line was clamped plumb.
- * TW_OUT_OF_REACH: no pull does it. TW_ERROR_RANGE: no rule. */
-tw_status tw_pulling_lengths(tw_pulling *pulling, double *pull_N, double *length_m);
+ * TW_OUT_OF_REACH: no pull does it. TW_ERROR_RANGE: no rule. TW_CANCELLED, TW_DEADLINE: the options' poll said so. */
+tw_status tw_pulling_lengths(tw_pulling *pulling, double *pull_N, double *length_m, const tw_options *options);
 
 /* Sheaves at every support between the anchors of a section that is loaded later; no length comes in from outside. */
 void tw_pulling_over_sheaves(tw_section *section);

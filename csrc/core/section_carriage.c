@@ -12,6 +12,7 @@
  */
 #include <math.h>
 
+#include "gauss.h"
 #include "route.h"
 #include "section_load.h"
 #include "vector.h"
@@ -26,17 +27,14 @@ static const double ROLL_FIRST = 0.02;     /* of the span: the first step of the
 /* Horizontal run of a piece: int |t_xy|/|t| W*'(|t|) ds at five Gauss-Legendre points; a piece is short beside its span. */
 static double plan_run(const tw_material *material, const tw_piece *piece)
 {
-    static const double point[5] = {0.046910077030668, 0.230765344947158, 0.5, 0.769234655052842, 0.953089922969332};
-    static const double weight[5] = {0.118463442528095, 0.239314335249683, 0.284444444444444, 0.239314335249683,
-                                     0.118463442528095};
-    double run = 0.0;
-    for (int i = 0; i < 5; i++) {
-        double t[3];
-        tw_piece_tension(piece, point[i] * piece->length_m, t);
+    double half = 0.5 * piece->length_m, run = 0.0;
+    for (int p = 0; p < 5; p++) {
+        double t[3], point = p % 2 ? tw_gauss_five_point[(p + 1) / 2] : -tw_gauss_five_point[(p + 1) / 2];
+        tw_piece_tension(piece, half + half * point, t);
         double size = tw_norm(t);
-        run += weight[i] * hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
+        run += tw_gauss_five_weight[(p + 1) / 2] * hypot(t[0], t[1]) / size * tw_material_stretch(material, size);
     }
-    return run * piece->length_m;
+    return half * run;
 }
 
 /* The share of a load per run that the shape of a piece makes: at its start, and its growth along it. */

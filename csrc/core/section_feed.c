@@ -373,7 +373,7 @@ static double advance(feed_run *run, double before, tw_status *status)
     double share = 1.0;
     for (int cut = 0; cut < HALVINGS_MOST; cut++, share *= 0.5) {
         double miss = take_share(run, run->run_first, runs, share, status);
-        if (*status == TW_CANCELLED || miss <= (1.0 - 1e-4 * share) * before || before <= AT_FLOOR) {
+        if (tw_status_stops(*status) || miss <= (1.0 - 1e-4 * share) * before || before <= AT_FLOOR) {
             return miss;
         }
     }
@@ -391,7 +391,7 @@ static tw_status iterate(feed_run *run)
             return TW_NOT_SETTLED;
         }
         miss = advance(run, before, &status);
-        if (status == TW_CANCELLED) {
+        if (tw_status_stops(status)) {
             return status;
         }
         if (before <= AT_FLOOR && !(miss < 0.25 * before)) {

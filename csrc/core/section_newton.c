@@ -179,11 +179,12 @@ tw_status tw_section_iterate(tw_section *section, const tw_options *options, tw_
         if (!isfinite(worst) || (!how->patient && share < CUT_SHORT)) {
             return TW_NOT_SETTLED;
         }
+        tw_status asked = tw_options_ask(options);
+        if (asked != TW_OK) {
+            return asked;
+        }
         if (before <= enough && worst > 0.25 * before) {
             break; /* at the floor of rounding */
-        }
-        if (options->poll && options->poll(options->poll_data)) {
-            return TW_CANCELLED;
         }
     }
     return TW_OK;

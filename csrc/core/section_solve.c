@@ -288,7 +288,7 @@ tw_status tw_section_solve(tw_section *section, const tw_options *options, int w
     section->steps = 0;
     tw_status status = tw_section_feeds(section) ? tw_section_run_over(section, options, &s, warm)
                                                  : tw_section_rest(section, options, &s, warm);
-    if (status == TW_OK || status == TW_CANCELLED) {
+    if (status == TW_OK || tw_status_stops(status)) {
         finish(section, &s);
     }
     return status;

@@ -3,13 +3,9 @@
 #include <math.h>
 #include <string.h>
 
+#include "gauss.h"
 #include "vector.h"
 
-/* Ten Gauss-Legendre points and weights on [-1, 1], symmetric. */
-static const double ten_point[5] = {0.14887433898163121088, 0.43339539412924719080, 0.67940956829902440623,
-                                    0.86506336668898451073, 0.97390652851717172008};
-static const double ten_weight[5] = {0.29552422471475287017, 0.26926671930999635509, 0.21908636251598204400,
-                                     0.14945134915058059315, 0.06667134430868813759};
 enum { PARTS_MOST = 100000, SCAN = 32 };
 
 static void tension_at(const tw_stretch_of_line *line, double s, double t[3])
@@ -75,9 +71,9 @@ static void add_part(const tw_material *material, const tw_stretch_of_line *line
     double middle = 0.5 * (from + to), half = 0.5 * (to - from);
     for (int p = 0; p < 10 && half > 0.0; p++) {
         double t[3];
-        double point = p % 2 ? ten_point[p / 2] : -ten_point[p / 2];
+        double point = p % 2 ? tw_gauss_ten_point[p / 2] : -tw_gauss_ten_point[p / 2];
         tension_at(line, middle + half * point, t);
-        add_point(material, line, t, half * ten_weight[p / 2], with_flexibility, out);
+        add_point(material, line, t, half * tw_gauss_ten_weight[p / 2], with_flexibility, out);
     }
 }
 

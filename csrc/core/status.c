@@ -21,3 +21,8 @@ const char *tw_status_text(tw_status status)
     }
     return "unknown status";
 }
+
+int tw_status_stops(tw_status status)
+{
+    return status == TW_CANCELLED || status == TW_DEADLINE;
+}

@@ -35,4 +35,7 @@ typedef enum tw_status {
 const char *tw_status_name(tw_status status);
 const char *tw_status_text(tw_status status);
 
+/* Whether a search was told to end: cancelled, or at its deadline. */
+int tw_status_stops(tw_status status);
+
 #endif

@@ -71,7 +71,7 @@ void tw_trial_free(tw_trial *trial)
     tw_free(trial);
 }
 
-tw_status tw_trial_string(tw_trial *trial, double pull_N)
+tw_status tw_trial_string(tw_trial *trial, double pull_N, const tw_options *options)
 {
     trial->strung_ready = 0;
     trial->bare_condition = TW_NONE;
@@ -81,7 +81,7 @@ tw_status tw_trial_string(tw_trial *trial, double pull_N)
     memset(trial->solved, 0, trial->project->condition_count * sizeof(int));
     trial->pull_N = pull_N;
     if (trial->pulling && !(isnan(pull_N) && trial->project->stringing.rule == TW_STRING_SPAN_LENGTHS)) {
-        return tw_pulling_lengths(trial->pulling, &trial->pull_N, trial->length_m);
+        return tw_pulling_lengths(trial->pulling, &trial->pull_N, trial->length_m, options);
     }
     if (isnan(pull_N)) {
         return tw_stringing_lengths(trial->project, trial->length_m, &trial->pull_N, trial->string_work);

@@ -36,7 +36,7 @@ tw_trial *tw_trial_create(const tw_project *project);
 void tw_trial_free(tw_trial *trial);
 
 /* String to a pull, or by the project's own rule when pull is NaN. Forgets what was solved. */
-tw_status tw_trial_string(tw_trial *trial, double pull_N);
+tw_status tw_trial_string(tw_trial *trial, double pull_N, const tw_options *options);
 
 /* The bare strung line, solved. */
 tw_status tw_trial_strung(tw_trial *trial, const tw_options *options, const tw_section **section);

@@ -2,16 +2,10 @@
 
 #include <math.h>
 
+#include "gauss.h"
 #include "vector.h"
 
 enum { HALVINGS_MOST = 60 };
-static const double gravity = 9.80665; /* m/s2, standard */
-
-/* Gauss-Legendre, ten points. */
-static const double point[5] = {0.1488743389816312, 0.4333953941292472, 0.6794095682990244, 0.8650633666889845,
-                                0.9739065285171717};
-static const double weight[5] = {0.2955242247147529, 0.2692667193099963, 0.2190863625159820, 0.1494513491505806,
-                                 0.0666713443086881};
 
 static double slowness(const tw_material *material, const tw_piece *piece, double s)
 {
@@ -39,8 +33,8 @@ static double passage(const tw_material *material, const tw_piece *piece, double
         return passage(material, piece, from, middle, halvings - 1) + passage(material, piece, middle, to, halvings - 1);
     }
     for (int i = 0; i < 5; i++) {
-        sum += half * weight[i] * (slowness(material, piece, middle - half * point[i])
-                                   + slowness(material, piece, middle + half * point[i]));
+        sum += half * tw_gauss_ten_weight[i] * (slowness(material, piece, middle - half * tw_gauss_ten_point[i])
+                                   + slowness(material, piece, middle + half * tw_gauss_ten_point[i]));
     }
     return sum;
 }
@@ -56,5 +50,5 @@ double tw_wave_return_s(const tw_material *material, const tw_piece *pieces, siz
 
 double tw_wave_parabola_s(double sag_m)
 {
-    return 2.0 * sqrt(8.0 * sag_m / gravity);
+    return 2.0 * sqrt(8.0 * sag_m / TW_GRAVITY);
 }

@@ -17,8 +17,6 @@ double tw_clock_deadline(double seconds)
 
 tw_status tw_clock_check(const tw_options *options, double deadline)
 {
-    if (options->poll != NULL && options->poll(options->poll_data) != 0) {
-        return TW_CANCELLED;
-    }
-    return tw_clock_now() < deadline ? TW_OK : TW_DEADLINE;
+    tw_status asked = tw_options_ask(options);
+    return asked != TW_OK || tw_clock_now() < deadline ? asked : TW_DEADLINE;
 }

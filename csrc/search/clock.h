@@ -13,7 +13,8 @@ double tw_clock_now(void);
 /* The instant `seconds` from now. */
 double tw_clock_deadline(double seconds);
 
-/* TW_OK: go on. TW_CANCELLED: the poll asked to stop. TW_DEADLINE: the instant is past (a NaN always is). */
+/* TW_OK: go on. TW_CANCELLED: the poll asked to stop. TW_DEADLINE: it says that the time is up, or the instant is past (a NaN
+ * always is). */
 tw_status tw_clock_check(const tw_options *options, double deadline);
 
 #endif

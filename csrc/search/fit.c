@@ -28,18 +28,19 @@ typedef struct fit_run {
     double least;     /* pivot below which no point shows an unknown */
 } fit_run;
 
-static size_t spans_with_points(const tw_project *project, const tw_observation *seen, size_t count, size_t *span)
+/* Each point's span into fit->place, the spans that carry points into fit->span; how many. */
+static size_t place_points(const tw_project *project, const tw_observation *seen, tw_fit *fit)
 {
-    size_t found = 0, before = TW_NONE;
-    for (size_t k = 0; k + 1 < project->support_count; k++) {
-        for (size_t i = 0; i < count && before != k; i++) {
-            before = tw_fit_span_of(project, seen[i].station_m) == k ? k : before;
+    size_t found = 0;
+    for (size_t i = 0; i < fit->observation_count; i++) {
+        fit->place[i] = tw_fit_span_of(project, seen[i].station_m);
+        if (fit->place[i] != TW_NONE) {
+            fit->span[fit->place[i]] = 1; /* for now a mark */
         }
-        if (before == k) {
-            if (span) {
-                span[found] = k;
-            }
-            found++;
+    }
+    for (size_t k = 0; k < fit->span_count; k++) {
+        if (fit->span[k]) {
+            fit->span[found++] = k;
         }
     }
     return found;
@@ -52,28 +53,31 @@ tw_fit *tw_fit_create(const tw_project *project, const tw_observation *observati
     if (!fit) {
         return NULL;
     }
-    size_t spans = project->support_count - 1;
-    size_t n = unknown == TW_FIT_PULL ? 1 : spans_with_points(project, observations, count, NULL);
+    size_t spans = project->support_count - 1, n = 1;
     fit->status = TW_NOT_SETTLED;
     fit->span_count = spans;
     fit->observation_count = count;
-    fit->unknown_count = n;
     fit->undetermined = TW_NONE;
-    fit->span = tw_calloc(n + 1, sizeof *fit->span);
+    fit->span = tw_calloc(spans, sizeof *fit->span);
+    fit->place = tw_calloc(count, sizeof *fit->place);
+    if (fit->span && fit->place) {
+        n = place_points(project, observations, fit);
+    }
+    if (unknown == TW_FIT_PULL && fit->span) {
+        fit->span[0] = TW_NONE;
+        n = 1;
+    }
+    fit->unknown_count = n;
     fit->value = tw_calloc(n + 1, sizeof(double));
     fit->covariance = tw_calloc(n * n + 1, sizeof(double));
     fit->length_m = tw_calloc(spans, sizeof(double));
     fit->length_rate = tw_calloc(spans, sizeof(double));
     fit->residual_m = tw_calloc(2 * count, sizeof(double));
     fit->leverage = tw_calloc(2 * count, sizeof(double));
-    if (!fit->span || !fit->value || !fit->covariance || !fit->length_m || !fit->length_rate || !fit->residual_m
+    if (!fit->span || !fit->place || !fit->value || !fit->covariance || !fit->length_m || !fit->length_rate || !fit->residual_m
         || !fit->leverage) {
         tw_fit_free(fit);
         return NULL;
-    }
-    fit->span[0] = TW_NONE;
-    if (unknown == TW_FIT_LENGTHS) {
-        spans_with_points(project, observations, count, fit->span);
     }
     return fit;
 }
@@ -84,6 +88,7 @@ void tw_fit_free(tw_fit *fit)
         return;
     }
     tw_free(fit->span);
+    tw_free(fit->place);
     tw_free(fit->value);
     tw_free(fit->covariance);
     tw_free(fit->length_m);
@@ -146,7 +151,7 @@ static double largest(const double *values, size_t count)
 
 static int stops(tw_status status)
 {
-    return status == TW_CANCELLED || status == TW_DEADLINE || status < 0;
+    return tw_status_stops(status) || status < 0;
 }
 
 /* Residuals at trial; kept as the best where their squares are fewer, or in any case. */
@@ -409,7 +414,7 @@ static void publish_rows(fit_run *run, int with_leverage)
 static tw_status publish(fit_run *run, tw_status status)
 {
     const double sigma = isnan(run->model.seen[0].sigma_m) ? 1.0 : run->model.sigma_m;
-    int stopped = status == TW_CANCELLED || status == TW_DEADLINE || status == TW_EVALUATION_LIMIT;
+    int stopped = tw_status_stops(status) || status == TW_EVALUATION_LIMIT;
     if (!(status == TW_OK || (stopped && isfinite(run->square)))) {
         return status;
     }
@@ -430,7 +435,8 @@ tw_status tw_fit_search(const tw_project *project, const tw_observation *observa
                         tw_fit_unknown unknown, const tw_options *options, tw_fit *fit)
 {
     fit_run run = {.fit = fit, .model = {.given = project, .seen = observations, .count = count, .unknown = unknown,
-                                         .unknown_count = fit->unknown_count, .span = fit->span, .options = options}};
+                                         .unknown_count = fit->unknown_count, .span = fit->span, .place = fit->place,
+                                         .options = options}};
     tw_status status = open_run(&run);
     fit->row_count = run.model.row_count;
     if (status == TW_OK && (run.model.unknown_count < 1 || run.model.row_count < run.model.unknown_count)) {

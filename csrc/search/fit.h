@@ -28,6 +28,7 @@ typedef struct tw_fit {
     size_t observation_count;
     size_t unknown_count;      /* 1, or the spans with points */
     size_t *span;              /* [unknown_count] which span's length; TW_NONE: the pull; owned */
+    size_t *place;             /* [observation_count] the span in whose inner part each point lies, or TW_NONE; owned */
     double *value;             /* [unknown_count] N or m; owned */
     double *covariance;        /* [unknown_count^2] of value, N^2 or m^2: times s^2 where no sigma was given; owned; zero unless TW_OK */
     double *length_m;          /* [span_count] natural lengths; owned */

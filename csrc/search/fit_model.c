@@ -33,14 +33,18 @@ static tw_uniform lone_span(const tw_project *project, size_t span)
 
 size_t tw_fit_span_of(const tw_project *project, double station_m)
 {
-    for (size_t k = 0; k + 1 < project->support_count; k++) {
-        double from = tw_route_support_station(project, k), to = tw_route_support_station(project, k + 1);
-        double edge = TW_FIT_INNER * (to - from);
-        if (station_m < to - edge) {
-            return station_m > from + edge ? k : TW_NONE;
+    size_t k = 0, beyond = project->support_count - 1;
+    while (beyond - k > 1) {
+        size_t middle = k + (beyond - k) / 2;
+        if (station_m < tw_route_support_station(project, middle)) {
+            beyond = middle;
+        } else {
+            k = middle;
         }
     }
-    return TW_NONE;
+    double from = tw_route_support_station(project, k), to = tw_route_support_station(project, k + 1);
+    double edge = TW_FIT_INNER * (to - from);
+    return station_m > from + edge && station_m < to - edge ? k : TW_NONE;
 }
 
 /* One bare condition for each temperature that occurs. */
@@ -81,10 +85,11 @@ tw_status tw_fit_open(tw_fit_model *model)
     model->condition = tw_calloc(model->count, sizeof *model->condition);
     model->length_m = tw_calloc(model->span_count, sizeof(double));
     model->work = tw_calloc(TW_STRINGING_WORK(model->given), sizeof(double));
+    model->sums = tw_calloc(2 * model->span_count, sizeof(double));
     model->pulling = tw_pulling_applies(model->given) ? tw_pulling_create(model->given) : NULL;
     measure_scales(model);
     model->side = tw_calloc(2 * model->row_count, sizeof(double));
-    if (!model->conditions || !model->condition || !model->length_m || !model->work || !model->side
+    if (!model->conditions || !model->condition || !model->length_m || !model->work || !model->sums || !model->side
         || (tw_pulling_applies(model->given) && !model->pulling)) {
         return TW_ERROR_MEMORY;
     }
@@ -106,6 +111,7 @@ void tw_fit_close(tw_fit_model *model)
     tw_free(model->condition);
     tw_free(model->length_m);
     tw_free(model->work);
+    tw_free(model->sums);
     tw_free(model->side);
 }
 
@@ -114,7 +120,7 @@ tw_status tw_fit_lengths(tw_fit_model *model, const double *q)
     tw_status status = TW_OK;
     if (model->unknown == TW_FIT_PULL) {
         double pull = exp(q[0]);
-        return model->pulling ? tw_pulling_lengths(model->pulling, &pull, model->length_m)
+        return model->pulling ? tw_pulling_lengths(model->pulling, &pull, model->length_m, model->options)
                               : tw_stringing_at_pull(model->given, pull, model->length_m, model->work);
     }
     for (size_t u = 0; status == TW_OK && u < model->unknown_count; u++) {
@@ -169,7 +175,7 @@ tw_status tw_fit_residuals(tw_fit_model *model, const double *q, double *out)
     tw_status status = tw_fit_lengths(model, q);
     model->evaluations++;
     if (status == TW_OK) {
-        status = tw_trial_string(model->trial, (double)NAN);
+        status = tw_trial_string(model->trial, (double)NAN, model->options);
     }
     for (size_t i = 0; status == TW_OK && i < model->count; i++) {
         const tw_observation *seen = &model->seen[i];
@@ -216,23 +222,20 @@ tw_status tw_fit_derivatives(tw_fit_model *model, double *q, double step, double
     return status;
 }
 
-/* Sums of the parabola z = chord - x (l - x) w c / (2 H), c the slant of the chord: of sag times that, and of its square. */
-static void parabola_sums(const tw_fit_model *model, size_t span, double sums[2])
+/* A point's part in its span's sums of the parabola z = chord - x (l - x) w c / (2 H), c the slant of the chord: of sag times
+ * that, and of its square. */
+static void add_parabola(const tw_fit_model *model, size_t span, const tw_observation *seen, double sums[2])
 {
     double near[3], chord[3];
     plumb_chord(model->given, span, near, chord);
     double from = tw_route_support_station(model->given, span);
     double run = tw_route_support_station(model->given, span + 1) - from;
     double slant = sqrt(1.0 + chord[2] * chord[2] / (chord[0] * chord[0] + chord[1] * chord[1]));
-    for (size_t i = 0; i < model->count; i++) {
-        if (tw_fit_span_of(model->given, model->seen[i].station_m) == span) {
-            double x = model->seen[i].station_m - from;
-            double sag = near[2] + chord[2] * x / run - model->seen[i].elevation_m;
-            double shape = 0.5 * model->given->line.weight_N_per_m * slant * x * (run - x);
-            sums[0] += sag * shape;
-            sums[1] += shape * shape;
-        }
-    }
+    double x = seen->station_m - from;
+    double sag = near[2] + chord[2] * x / run - seen->elevation_m;
+    double shape = 0.5 * model->given->line.weight_N_per_m * slant * x * (run - x);
+    sums[0] += sag * shape;
+    sums[1] += shape * shape;
 }
 
 /* Logarithm of the parabola's pull, kept between a deep sag and a tenth of EA. */
@@ -247,14 +250,18 @@ static double parabola_pull(const tw_fit_model *model, const double sums[2])
 void tw_fit_start(const tw_fit_model *model, double *q)
 {
     double all[2] = {0.0, 0.0};
+    memset(model->sums, 0, 2 * model->span_count * sizeof(double));
+    for (size_t i = 0; i < model->count; i++) {
+        if (model->place[i] != TW_NONE) {
+            add_parabola(model, model->place[i], &model->seen[i], model->sums + 2 * model->place[i]);
+        }
+    }
     for (size_t k = 0; k < model->span_count; k++) {
-        parabola_sums(model, k, all);
+        all[0] += model->sums[2 * k];
+        all[1] += model->sums[2 * k + 1];
     }
     for (size_t u = 0; u < model->unknown_count; u++) {
-        double own[2] = {0.0, 0.0};
-        if (model->unknown == TW_FIT_LENGTHS) {
-            parabola_sums(model, model->span[u], own);
-        }
+        const double *own = model->unknown == TW_FIT_LENGTHS ? model->sums + 2 * model->span[u] : all;
         q[u] = parabola_pull(model, own[0] > 0.0 ? own : all);
     }
 }

@@ -15,6 +15,8 @@ typedef struct tw_fit_model {
     tw_fit_unknown unknown;
     size_t unknown_count;
     const size_t *span;        /* [unknown_count] */
+    const size_t *place;       /* [count] each observation's span, or TW_NONE */
+    double *sums;              /* [2 span_count] of the parabolas to begin with; owned */
     size_t row_count;
     tw_condition *conditions;  /* [count] owned */
     size_t *condition;         /* [count] of each observation; owned */
@@ -34,7 +36,7 @@ typedef struct tw_fit_model {
 tw_status tw_fit_open(tw_fit_model *model);
 void tw_fit_close(tw_fit_model *model);
 
-/* The span in whose inner part a point lies, or TW_NONE. */
+/* The span in whose inner part a point lies, or TW_NONE; by bisection. */
 size_t tw_fit_span_of(const tw_project *project, double station_m);
 
 /* Natural lengths at the unknowns q (logarithms of pulls) into model->length_m. */

@@ -61,11 +61,11 @@ static int is_finite(const tw_energy_state *state)
 /* Asks the poll and the clock, and keeps to their first word. */
 static int is_interrupted(settle_run *run)
 {
-    if (run->stop != TW_CANCELLED && run->stop != TW_DEADLINE) {
+    if (!tw_status_stops(run->stop)) {
         tw_status status = tw_clock_check(run->options, run->deadline);
         run->stop = status != TW_OK ? status : run->stop;
     }
-    return run->stop == TW_CANCELLED || run->stop == TW_DEADLINE;
+    return tw_status_stops(run->stop);
 }
 
 static void close_mesh(settle_run *run)

@@ -201,7 +201,7 @@ static tw_status verify_pull(tw_window_run *run, double pull_N)
 {
     tw_window *w = run->window;
     tw_options options = *run->options;
-    tw_status status = tw_trial_string(run->trial, pull_N);
+    tw_status status = tw_trial_string(run->trial, pull_N, &options);
     for (size_t c = 0; status == TW_OK && c < run->project.condition_count; c++) {
         const tw_section *section;
         tw_settled settled = {0};

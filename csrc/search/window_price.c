@@ -12,7 +12,7 @@ static const double PULL_STEP = 1e-5;     /* and of the pull, relative */
 static double margin_at(tw_window_run *run, size_t row, double pull_N)
 {
     tw_verdict verdict;
-    tw_status status = tw_trial_string(run->trial, pull_N);
+    tw_status status = tw_trial_string(run->trial, pull_N, run->options);
     tw_window_latch(run, status);
     if (status != TW_OK || tw_window_row(run, row, &verdict) >= TW_WINDOW_UNSETTLED || !verdict.judged) {
         return NAN;

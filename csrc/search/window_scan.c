@@ -27,7 +27,7 @@ double tw_window_worst(const tw_window_run *run, const double *u, size_t *row)
 /* A place off the line spoils one pull, or one move of a support, not the search. */
 void tw_window_latch(tw_window_run *run, tw_status status)
 {
-    if (run->stop == TW_OK && status != TW_ERROR_PLACE && (status < 0 || status == TW_CANCELLED || status == TW_DEADLINE)) {
+    if (run->stop == TW_OK && status != TW_ERROR_PLACE && (status < 0 || tw_status_stops(status))) {
         run->stop = status;
     }
 }
@@ -39,7 +39,7 @@ static int string_to(tw_window_run *run, double pull_N)
     if (run->stop != TW_OK) {
         return 0;
     }
-    tw_status status = tw_trial_string(run->trial, pull_N);
+    tw_status status = tw_trial_string(run->trial, pull_N, run->options);
     tw_window_latch(run, status);
     return status == TW_OK;
 }

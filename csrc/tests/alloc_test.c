@@ -47,7 +47,7 @@ static tw_status settle_call(const fixture *f, double *answer)
     tw_settled out = {0};
     const tw_section *section;
     tw_trial *trial = tw_trial_create(&f->project);
-    tw_status status = trial ? tw_trial_string(trial, (double)NAN) : TW_ERROR_MEMORY;
+    tw_status status = trial ? tw_trial_string(trial, (double)NAN, &f->options) : TW_ERROR_MEMORY;
     if (status == TW_OK) {
         status = tw_trial_section(trial, 0, &f->options, &section);
     }
@@ -67,7 +67,7 @@ static tw_status judge_call(const fixture *f, double *answer)
     tw_status status = trial ? TW_OK : TW_ERROR_MEMORY;
     *answer = 0.0;
     for (size_t i = 0; i < f->project.limit_count && status == TW_OK; i++) {
-        status = tw_trial_string(trial, 20e3);
+        status = tw_trial_string(trial, 20e3, &f->options);
         if (status == TW_OK) {
             status = tw_trial_judge(trial, i, 0, &f->options, &verdict);
         }
@@ -84,7 +84,7 @@ static tw_status crew_call(const fixture *f, double *answer)
 {
     tw_trial *trial = tw_trial_create(&f->project);
     tw_crew *crew = trial ? tw_crew_create(&f->project, 2) : NULL;
-    tw_status status = crew ? tw_trial_string(trial, 20e3) : TW_ERROR_MEMORY;
+    tw_status status = crew ? tw_trial_string(trial, 20e3, &f->options) : TW_ERROR_MEMORY;
     if (status == TW_OK) {
         crew->temperature_degC[1] = 20.0;
         status = tw_crew_fill(crew, trial, &f->options);

@@ -194,7 +194,7 @@ tw_section *case_hung(const tw_case *c, size_t condition)
 tw_trial *case_trial(const tw_case *c, double pull_N)
 {
     tw_trial *trial = tw_trial_create(&c->project);
-    if (trial && tw_trial_string(trial, pull_N) == TW_OK) {
+    if (trial && tw_trial_string(trial, pull_N, &c->options) == TW_OK) {
         return trial;
     }
     tw_trial_free(trial);

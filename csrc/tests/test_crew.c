@@ -130,6 +130,8 @@ static void test_without_sheaves_and_cancelled(void)
     c.options.poll = stop;
     c.options.poll_data = &now;
     CHECK(tw_crew_fill(crew, trial, &c.options) == TW_CANCELLED);
+    now = TW_DEADLINE;
+    CHECK(tw_crew_fill(crew, trial, &c.options) == TW_DEADLINE);
     tw_crew_free(crew);
     tw_trial_free(trial);
     tw_crew_free(NULL);

@@ -27,7 +27,7 @@ static void measure(const tw_case *c, const double *lengths_m, double temperatur
     project.stringing.rule = TW_STRING_SPAN_LENGTHS;
     project.stringing.lengths_m = lengths_m;
     tw_trial *trial = tw_trial_create(&project);
-    CHECK(tw_trial_string(trial, (double)NAN) == TW_OK);
+    CHECK(tw_trial_string(trial, (double)NAN, &c->options) == TW_OK);
     CHECK(tw_trial_section(trial, 0, &c->options, &section) == TW_OK);
     for (size_t k = 0; k + 1 < project.support_count; k++) {
         double from = project.supports[k].station_m, to = project.supports[k + 1].station_m, s, r[3];
@@ -85,6 +85,35 @@ static void test_a_whole_route_is_found_again_at_several_temperatures(void)
     tw_fit *fit = fitted(&c, &points, TW_FIT_PULL);
     CHECK(fit->status == TW_OK);
     CHECK_REL(fit->value[0], 23e3, 1e-8);
+    tw_fit_free(fit);
+}
+
+/* In whatever order they come, points lie in the spans that a search from the first support on finds. */
+static void test_points_find_their_spans(void)
+{
+    static const double shares[] = {0.5, 0.0011, 0.0009, 0.9995, 0.0, 0.9989, 0.25};
+    tw_case c;
+    survey points = {.count = 0};
+    case_route(&c);
+    size_t spans = c.project.support_count - 1;
+    for (size_t i = 0; i < 7 * spans; i++) {
+        size_t k = (5 * i + 2) % spans;
+        double from = c.supports[k].station_m, to = c.supports[k + 1].station_m;
+        if (k != 1) { /* no point at all in the second span */
+            const tw_observation seen = {from + shares[i / spans] * (to - from), 0.0, NAN, NAN, 15.0};
+            points.seen[points.count++] = seen;
+        }
+    }
+    tw_fit *fit = tw_fit_create(&c.project, points.seen, points.count, TW_FIT_LENGTHS);
+    for (size_t i = 0; i < points.count; i++) {
+        size_t expected = TW_NONE;
+        for (size_t k = 0; k < spans; k++) {
+            double from = c.supports[k].station_m, to = c.supports[k + 1].station_m, edge = TW_FIT_INNER * (to - from);
+            expected = points.seen[i].station_m > from + edge && points.seen[i].station_m < to - edge ? k : expected;
+        }
+        CHECK(fit->place[i] == expected);
+    }
+    CHECK(fit->unknown_count == spans - 1 && fit->span[0] == 0 && fit->span[1] == 2);
     tw_fit_free(fit);
 }
 
@@ -336,6 +365,7 @@ int main(void)
 {
     test_a_pull_is_found_again();
     test_a_whole_route_is_found_again_at_several_temperatures();
+    test_points_find_their_spans();
     test_lengths_are_found_again();
     test_a_span_without_points_takes_the_pull_of_the_others();
     test_covariances_are_those_of_the_parabola();

@@ -32,7 +32,7 @@ static void test_it_is_lived_through_once_and_on_demand(void)
     size_t after = trial->settles; /* the conditions as strung, the two in a state as strung, creep, and this one */
     CHECK(after == strung + 2 + 1 + 1);
     CHECK(tw_trial_section(trial, strung + 1, &c.options, &s) == TW_OK && trial->settles == after + 1);
-    CHECK(tw_trial_string(trial, 22e3) == TW_OK && !trial->history->ready);
+    CHECK(tw_trial_string(trial, 22e3, &c.options) == TW_OK && !trial->history->ready);
     CHECK(tw_trial_section(trial, 0, &c.options, &s) == TW_OK && s->permanent == NULL);
     tw_trial_free(trial);
 }

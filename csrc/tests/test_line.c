@@ -29,10 +29,30 @@ static void test_defaults_ask_nobody_and_end(void)
     CHECK(options.elements_per_span < options.elements_most);
 }
 
+static int say(void *data)
+{
+    return *(int *)data;
+}
+
+static void test_who_is_asked_says_how_it_ends(void)
+{
+    static const struct { int says; tw_status status; } cases[] = {
+        {0, TW_OK}, {1, TW_CANCELLED}, {-5, TW_CANCELLED}, {TW_DEADLINE, TW_DEADLINE}};
+    tw_options options = tw_options_default();
+    CHECK(tw_options_ask(&options) == TW_OK);
+    for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
+        int says = cases[i].says;
+        options.poll = say;
+        options.poll_data = &says;
+        CHECK(tw_options_ask(&options) == cases[i].status);
+    }
+}
+
 int main(void)
 {
     test_defaults_are_in_range();
     test_defaults_promise_a_proof();
     test_defaults_ask_nobody_and_end();
+    test_who_is_asked_says_how_it_ends();
     return check_end("test_line");
 }

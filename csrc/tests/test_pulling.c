@@ -49,7 +49,7 @@ static void test_both_states(void)
     hill(&c);
     tw_pulling *pulling = tw_pulling_create(&c.project);
     double lengths[5], pull = 18e3;
-    CHECK(pulling && tw_pulling_lengths(pulling, &pull, lengths) == TW_OK);
+    CHECK(pulling && tw_pulling_lengths(pulling, &pull, lengths, &c.options) == TW_OK);
     const tw_section *blocks = pulling->blocks, *clamped = pulling->clamped;
     CHECK_REL(horizontal(blocks, 0), 18e3, 1e-13);
     CHECK_REL(horizontal(blocks, 3), 18e3, 1e-13); /* each section has its own winch */
@@ -130,7 +130,7 @@ static void test_every_rule(void)
         tw_trial_free(by_rule);
     }
     c.project.stringing.rule = TW_STRING_NONE;
-    CHECK(tw_trial_string(trial, (double)NAN) == TW_ERROR_RANGE);
+    CHECK(tw_trial_string(trial, (double)NAN, &c.options) == TW_ERROR_RANGE);
     tw_trial_free(trial);
 }
 
@@ -196,14 +196,43 @@ static void test_what_a_pull_cannot_do(void)
         tw_case c;
         hill(&c);
         tw_trial *trial = case_trial(&c, 18e3);
-        tw_status status = tw_trial_string(trial, bad[i]);
+        tw_status status = tw_trial_string(trial, bad[i], &c.options);
         int finite = 1;
         for (size_t k = 0; k < 5; k++) {
             finite &= isfinite(trial->length_m[k]) && trial->length_m[k] > 0.0;
         }
         CHECK(status != TW_OK || finite);
-        CHECK(tw_trial_string(trial, 18e3) == TW_OK); /* and nothing is left of it */
+        CHECK(tw_trial_string(trial, 18e3, &c.options) == TW_OK); /* and nothing is left of it */
         tw_trial_free(trial);
+    }
+}
+
+static int say_after(void *data)
+{
+    int *left_then = data;
+    return left_then[0]-- > 0 ? 0 : left_then[1];
+}
+
+/* The search for the pull solves a line each time: every solve asks, and its first word ends the search. */
+static void test_a_search_over_sheaves_can_be_stopped(void)
+{
+    static const tw_status ends[] = {TW_CANCELLED, TW_DEADLINE};
+    for (int i = 0; i < 2; i++) {
+        for (int granted = 0; granted < 40; granted += 13) {
+            tw_case c;
+            int left_then[2] = {granted, (int)ends[i]};
+            hill(&c);
+            tw_trial *trial = case_trial(&c, 18e3);
+            c.project.stringing.rule = TW_STRING_SAG;
+            c.project.stringing.index = 1;
+            c.project.stringing.value = 6.0;
+            c.options.poll = say_after;
+            c.options.poll_data = left_then;
+            CHECK(tw_trial_string(trial, (double)NAN, &c.options) == ends[i]);
+            c.options.poll = NULL;
+            CHECK(tw_trial_string(trial, (double)NAN, &c.options) == TW_OK); /* and nothing is left of it */
+            tw_trial_free(trial);
+        }
     }
 }
 
@@ -216,5 +245,6 @@ int main(void)
     test_sheaves_in_service();
     test_given_lengths_are_kept();
     test_what_a_pull_cannot_do();
+    test_a_search_over_sheaves_can_be_stopped();
     return check_end("test_pulling");
 }

@@ -185,7 +185,7 @@ static void test_small_deflection_sag_stands_beside_the_exact_one(void)
     CHECK_REL(r.spans[0].small_deflection_sag_m, 15.97 * 300.0 * 300.0 / (8.0 * 17368.8076566), 1e-10);
     CHECK_REL(r.spans[0].slant_sag_m, r.spans[0].sag_m, 1e-12);
     case_point(&c, TW_PLACE_LENGTH, 150.4, 0.0, 0.0, -5000.0);
-    CHECK(tw_trial_string(trial, NAN) == TW_OK);
+    CHECK(tw_trial_string(trial, NAN, &c.options) == TW_OK);
     tw_trial_free(trial);
     trial = case_trial(&c, NAN);
     CHECK(run(trial, 0, &c.options, &r) == TW_OK);

@@ -89,7 +89,7 @@ static void test_warm_and_cold_starts_agree(void)
         double pull = c.project.stringing.value;
         tw_trial *one = case_trial(&c, 0.6 * pull), *other = case_trial(&c, pull);
         CHECK(tw_trial_section(one, 0, &c.options, &warm) == TW_OK);
-        CHECK(tw_trial_string(one, pull) == TW_OK && tw_trial_section(one, 0, &c.options, &warm) == TW_OK);
+        CHECK(tw_trial_string(one, pull, &c.options) == TW_OK && tw_trial_section(one, 0, &c.options, &warm) == TW_OK);
         CHECK(tw_trial_section(other, 0, &c.options, &cold) == TW_OK);
         for (size_t k = 0; k < 3 * warm->span_count; k++) {
             CHECK_NEAR(warm->pull[k], cold->pull[k], 1e-6 * pull);

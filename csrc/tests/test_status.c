@@ -52,11 +52,20 @@ static void test_a_number_outside_the_list_is_unknown(void)
     CHECK(strcmp(tw_status_text((tw_status)12345), "unknown status") == 0);
 }
 
+static void test_two_outcomes_are_stops(void)
+{
+    for (size_t i = 0; i < COUNT; i++) {
+        tw_status status = entries[i].status;
+        CHECK(tw_status_stops(status) == (status == TW_CANCELLED || status == TW_DEADLINE));
+    }
+}
+
 int main(void)
 {
     test_every_status_has_name_and_text();
     test_names_and_values_are_unique();
     test_errors_are_negative_and_outcomes_are_not();
     test_a_number_outside_the_list_is_unknown();
+    test_two_outcomes_are_stops();
     return check_end("test_status");
 }

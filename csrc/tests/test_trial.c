@@ -21,7 +21,7 @@ static void test_a_condition_is_solved_once(void)
     CHECK(tw_trial_section(trial, 2, &c.options, &a) == TW_OK && trial->settles == 1);
     CHECK(tw_trial_section(trial, 2, &c.options, &b) == TW_OK && trial->settles == 1 && a == b);
     CHECK(tw_trial_section(trial, 0, &c.options, &b) == TW_OK && trial->settles == 2 && a != b);
-    CHECK(tw_trial_string(trial, 22e3) == TW_OK);
+    CHECK(tw_trial_string(trial, 22e3, &c.options) == TW_OK);
     CHECK(tw_trial_section(trial, 2, &c.options, &a) == TW_OK && trial->settles == 3);
     tw_trial_free(trial);
 }
@@ -54,9 +54,9 @@ static void test_where_it_came_from_does_not_matter(void)
     for (int i = 0; i < 5; i++) {
         const tw_section *a, *b;
         for (size_t k = 0; k < 4; k++) {
-            CHECK(tw_trial_string(warm, through[i]) == TW_OK);
+            CHECK(tw_trial_string(warm, through[i], &c.options) == TW_OK);
             CHECK(tw_trial_section(warm, k, &c.options, &a) == TW_OK);
-            CHECK(tw_trial_string(warm, 21e3) == TW_OK);
+            CHECK(tw_trial_string(warm, 21e3, &c.options) == TW_OK);
             tw_trial *cold = case_trial(&c, 21e3);
             CHECK(tw_trial_section(warm, k, &c.options, &a) == TW_OK);
             CHECK(tw_trial_section(cold, k, &c.options, &b) == TW_OK);
@@ -109,10 +109,10 @@ static void test_the_projects_rule_is_used_without_a_pull(void)
     tw_trial *trial = case_trial(&c, NAN);
     CHECK(trial->pull_N == 20e3);
     c.project.stringing.rule = TW_STRING_SPAN_LENGTHS;
-    CHECK(tw_trial_string(trial, NAN) == TW_OK && isnan(trial->pull_N));
+    CHECK(tw_trial_string(trial, NAN, &c.options) == TW_OK && isnan(trial->pull_N));
     CHECK(trial->length_m[2] == c.lengths_m[2]);
     c.project.stringing.rule = TW_STRING_NONE;
-    CHECK(tw_trial_string(trial, NAN) == TW_ERROR_RANGE);
+    CHECK(tw_trial_string(trial, NAN, &c.options) == TW_ERROR_RANGE);
     tw_trial_free(trial);
 }
 
@@ -140,7 +140,7 @@ static void test_a_failure_is_passed_on_and_not_kept(void)
     CHECK(tw_trial_judge(trial, 1, 0, &c.options, &verdict) == TW_OK);
     CHECK(tw_trial_section(trial, 3, &c.options, &s) == TW_OK);
     c.loads[0].from_m = 5000.0;
-    CHECK(tw_trial_string(trial, 21e3) == TW_OK);
+    CHECK(tw_trial_string(trial, 21e3, &c.options) == TW_OK);
     CHECK(tw_trial_section(trial, 3, &c.options, &s) == TW_ERROR_PLACE);
     CHECK(tw_trial_judge(trial, 0, 3, &c.options, &verdict) == TW_ERROR_PLACE);
     tw_trial_free(trial);

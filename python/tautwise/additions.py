@@ -252,8 +252,11 @@ def _use(document: Document, path: KeyPath, entry: Any) -> _Use | None:
     known = [each.name for each in parameters(raw)]
     allowed = ["pack", "as", *known, *(["conditions"] if free else [])]
     for key in [key for key in table if key not in allowed]:
-        problem = f"unknown key; {did_you_mean(str(key), allowed)}"
-        document.faults.append(document.fault((*path, key), problem))
+        if isinstance(key, str):
+            fault = document.fault((*path, key), f"unknown key; {did_you_mean(key, allowed)}")
+        else:
+            fault = document.fault(path, f"the key {shown(str(key))} is no text", "the keys of a project file")
+        document.faults.append(fault)
     prefix = table.get("as", name)
     if not isinstance(prefix, str) or not prefix.strip() or not prefix.isprintable() or len(prefix) > 40:
         problem = f"{described(prefix)} is no name"

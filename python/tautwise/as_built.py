@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Any
 from tautwise.errors import Fault, InputError
 from tautwise.keylines import scan
 from tautwise.reader import FILE_BYTES_MOST, Source, read_text
+from tautwise.rules import STRINGING_RULES
 from tautwise.strict import Refused, inert
 
 if TYPE_CHECKING:
@@ -106,22 +107,34 @@ def as_built_text(found: SurveyFit, project: Project, target: str) -> str:
         raise InputError([Fault(name, None, "", "the file has changed since it was read", "the same file")])
     points = os.path.basename(found.survey or "") or "a survey"
     try:
-        return rewritten(text, table, f"As built: natural lengths fitted to the points of {inert(points)}.")
+        comment = f"As built: natural lengths fitted to the points of {inert(points)}.{_unstretched(project)}"
+        return rewritten(text, table, comment)
     except Refused as refused:
         problem = f"it is not written: {refused.problem}; put this in by hand: {' '.join(table)}"
         raise InputError([Fault(name, None, "stringing", problem)]) from None
+
+
+def _unstretched(project: Project) -> str:
+    return " The line was taken as never stretched." if project.line.stretches else ""
 
 
 def _same_folder(one: str, other: str) -> bool:
     return os.path.realpath(os.path.dirname(one) or ".") == os.path.realpath(os.path.dirname(other) or ".")
 
 
-def _table(project: Project, lengths: list[str]) -> dict[str, Any]:
-    """The temperature and the tolerance as they were written, and the natural lengths."""
+def dropped(project: Project) -> tuple[str, ...]:
+    """The keys of [stringing], beside its rule, that a line as built cannot keep: how it came over its sheaves."""
     raw = project._document.tables.get("stringing", {})
-    kept = {key: raw[key] for key in ("temperature",) if key in raw}
-    last = {key: raw[key] for key in ("tolerance",) if key in raw}
-    return {**kept, "natural_length": lengths, **last}
+    gone = ("method", "clip", "friction") if project.stringing.over_sheaves else ()
+    return tuple(key for key in gone if raw.get(key) is not None)
+
+
+def _table(project: Project, lengths: list[str]) -> dict[str, Any]:
+    """The natural lengths in place of the rule; everything else as it was written."""
+    raw = project._document.tables.get("stringing", {})
+    kept = {key: value for key, value in raw.items() if key not in (*STRINGING_RULES, *dropped(project))}
+    first = {key: kept.pop(key) for key in ("temperature",) if key in kept}
+    return {**first, "natural_length": lengths, **kept}
 
 
 def _others(text: str) -> dict[str, Any]:

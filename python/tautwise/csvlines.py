@@ -1,4 +1,4 @@
-"""CSV files of numbers, read line by line, so that a lone quote cannot swallow the lines after it.
+"""CSV files, read line by line, so that a lone quote cannot swallow the lines after it.
 
 >>> lines = CsvLines("points.csv")
 >>> lines.row(2, "120.0,4.5")
@@ -25,6 +25,9 @@ class CsvLines:
     name: of the file, as its faults give it.
     """
 
+    row_words: tuple[str, str] = ("plain numbers", "120.0,4.5")
+    """What a line should hold, and an example."""
+
     def __init__(self, name: str) -> None:
         self.name = name
         self.faults: list[Fault] = []
@@ -42,7 +45,7 @@ class CsvLines:
             found = []
         if len(found) != 1 or line.count('"') % 2:
             wrong = "a quote that is not closed on its line" if '"' in line else "characters that are no row"
-            self.fault(number, wrong, "plain numbers", "120.0,4.5")
+            self.fault(number, wrong, *self.row_words)
             return None
         return found[0]
 

@@ -9,15 +9,16 @@ from __future__ import annotations
 
 import math
 import os
+from bisect import bisect_right
 from collections.abc import Mapping, Sequence
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
-from tautwise.fit_judge import deviations, findings_of
+from tautwise.fit_judge import as_built_findings, deviations, findings_of
 from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan, SurveyFit
 from tautwise.results_line import CAUTION
-from tautwise.solve import core_of, errors_of, program, settled_bare
+from tautwise.solve import errors_of, line_core_of, program, settled_bare
 from tautwise.strict import described, shown
 from tautwise.student import CONFIDENCE, quantile
 from tautwise.survey import Survey, survey_from
@@ -73,7 +74,7 @@ def fit(
 
 
 def _found(project: Project, points: Survey, unknown: str, options: Mapping[str, Any]) -> dict[str, Any]:
-    core = core_of(project)
+    core = line_core_of(project)
     try:
         with errors_of(project):
             found: dict[str, Any] = core.fit(points.columns(), unknown=unknown, **options)
@@ -132,11 +133,12 @@ def _undetermined(project: Project, points: Survey, found: Mapping[str, Any]) ->
 
 def _counts(project: Project, points: Survey) -> list[int]:
     """Points in the inner part of each span."""
-    counts = []
-    for before, after in pairwise(project.supports):
-        edge = INNER * (after.station_m - before.station_m)
-        inside = (before.station_m + edge < station < after.station_m - edge for station in points.stations_m)
-        counts.append(sum(inside))
+    ends = [support.station_m for support in project.supports]
+    counts = [0] * (len(ends) - 1)
+    for station in points.stations_m:
+        span = min(max(bisect_right(ends, station) - 1, 0), len(counts) - 1)
+        edge = INNER * (ends[span + 1] - ends[span])
+        counts[span] += ends[span] + edge < station < ends[span + 1] - edge
     return counts
 
 
@@ -152,6 +154,7 @@ def _result(project: Project, points: Survey, unknown: str, found: Mapping[str, 
     deviation = None if points.has_sigmas or variance is None else math.sqrt(variance)
     spans = _spans(project, points, found, states, variance, factor)
     pull = _pull(found, variance, factor) if unknown == "pull" else None
+    findings = (*findings_of(points, pull, spans, listed, found["chi2"], left), *as_built_findings(project))
     return SurveyFit(
         program=program(), project=project.title, input_sha256=project.input_sha256, survey=points.source,
         survey_sha256=points.sha256, unknown=unknown, temperature_degC=project.stringing.temperature_degC,
@@ -160,7 +163,7 @@ def _result(project: Project, points: Survey, unknown: str, found: Mapping[str, 
         rms_m=math.sqrt(math.fsum(r * r for r in residuals) / len(residuals)), chi2=found["chi2"],
         standard_deviation_m=deviation, confidence=CONFIDENCE, factor=factor, gap_relative=gap,
         step_relative=found["step_relative"], steps=found["steps"], evaluations=found["evaluations"],
-        warnings=findings_of(points, pull, spans, listed, found["chi2"], left), caution=CAUTION, origin=project,
+        warnings=findings, caution=CAUTION, origin=project,
     )  # fmt: skip
 
 

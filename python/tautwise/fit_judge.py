@@ -6,10 +6,12 @@ import math
 from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
+from tautwise.as_built import dropped
 from tautwise.columns import plural
 from tautwise.student import THREE_SIGMA, chi_square_exceeded, two_sided
 
 if TYPE_CHECKING:
+    from tautwise.model import Project
     from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan
     from tautwise.survey import Survey
 
@@ -89,6 +91,23 @@ def findings_of(
             "or the intervals are too narrow"
         )
     return (*found, *_hardly_known(pull), *_blown(listed))
+
+
+def as_built_findings(project: Project) -> tuple[str, ...]:
+    """What the natural lengths are not, and what goes with the stringing rule."""
+    found = []
+    if project.line.stretches:
+        found.append(
+            "the line is taken as one that nothing has stretched for good yet; where it has been stretched already, "
+            "the natural lengths are those of the line as it is now, and on the project as built a condition in the "
+            "state final or after creep would count that stretch twice"
+        )
+    if gone := dropped(project):
+        found.append(
+            f"the project as built is clamped, so it leaves out {' and '.join(gone)} of its [stringing], which tell "
+            "how the line came over its sheaves"
+        )
+    return tuple(found)
 
 
 def _far_off(listed: Sequence[FittedPoint]) -> list[str]:

@@ -359,8 +359,15 @@ def _digest(sources: list[Source]) -> str:
 
 
 def _keyword_source(tables: dict[str, Any]) -> Source:
-    text = json.dumps(tables, sort_keys=True, ensure_ascii=False, separators=(",", ":"), default=str, skipkeys=True)
+    text = json.dumps(_text_keys(tables), sort_keys=True, ensure_ascii=False, separators=(",", ":"), default=str)
     return Source("", hashlib.sha256(text.encode("utf-8", "surrogatepass")).hexdigest())
+
+
+def _text_keys(value: Any) -> Any:
+    """Without keys that are no text, which are refused later and cannot be sorted now."""
+    if isinstance(value, dict):
+        return {key: _text_keys(part) for key, part in value.items() if isinstance(key, str)}
+    return [_text_keys(part) for part in value] if isinstance(value, list | tuple) else value
 
 
 def _without_none(value: Any) -> Any:

@@ -17,13 +17,24 @@ if TYPE_CHECKING:
     from tautwise.model import Project
 
 OTHERS_DEEP_MOST = 8
+OTHERS_MOST = 100
 _EXAMPLE = 'other = "upper_wire.taut.toml"'
 
 
 def other_rules(checked: Checked) -> None:
     """Each spacing's other project: a file in the project's folder, not one of those for which this one is read, with a
-    pull and the conditions that are asked for. It is read once, and its files count among this project's sources."""
-    read: dict[Path, Project | None] = {}
+    pull and the conditions that are asked for. Each is read once, however many keep from it, and its files count among
+    this project's sources."""
+    document = checked.document
+    first = document.family is None
+    if document.family is None:
+        document.family = {}
+    _read_others(checked, document.family)
+    if first:
+        document.family = None
+
+
+def _read_others(checked: Checked, family: dict[Path, Project | None]) -> None:
     for number, limit in enumerate(checked.limits):
         if checked.raw("limit", number).get("kind") == "spacing":
             at_most_one(checked, ("limit", number), SpacingLimit, ("other_condition", "other_conditions"))
@@ -36,10 +47,16 @@ def other_rules(checked: Checked) -> None:
             checked.fault(path, problem, "another project file in the project's folder or below it", _EXAMPLE)
             continue
         real = file.resolve()
-        if real not in read:
-            read[real] = _read(checked, name)
-        other = read[real]
+        if real not in family:
+            if len(family) >= OTHERS_MOST:
+                problem = f"too many projects that keep from one another: at most {OTHERS_MOST} are read"
+                checked.fault(path, problem, "fewer, or only those that are near")
+                return
+            family[real] = None  # counts while it is read
+            family[real] = _read(checked, name, family)
+        other = family[real]
         if other is not None:
+            _count_sources(checked, other)
             checked.others[number] = other
             _axes_rule(checked, number, other)
             _pull_rule(checked, path, other)
@@ -77,18 +94,19 @@ def _problem(checked: Checked, file: Path, entry: str) -> str:
     return "" if file.is_file() else f"there is no file {text}"
 
 
-def _read(checked: Checked, name: str) -> Project | None:
+def _read(checked: Checked, name: str, family: dict[Path, Project | None]) -> Project | None:
     from tautwise.model import Project
 
     try:
-        document = read_project(name, _above(checked))
-        other = Project._of(document)
+        return Project._of(read_project(name, _above(checked), family))
     except InputError as error:
         checked.faults.extend(fault for fault in error.faults if fault not in checked.faults)
         return None
+
+
+def _count_sources(checked: Checked, other: Project) -> None:
     known = {source.name for source in checked.document.sources}
-    checked.document.sources.extend(source for source in document.sources if source.name not in known)
-    return other
+    checked.document.sources.extend(source for source in other._document.sources if source.name not in known)
 
 
 def _axes_rule(checked: Checked, number: int, other: Project) -> None:

@@ -23,6 +23,7 @@ from tautwise.strict import described, nearest, shown
 
 if TYPE_CHECKING:
     from tautwise.additions import Additions
+    from tautwise.model import Project
 
 FORMAT = "tautwise 1"
 FILE_BYTES_MOST = 1_000_000
@@ -64,6 +65,7 @@ class Document:
     incomplete: an included file could not be read, so that what is missing may stand there.
     additions: what a size and rule packs added to the tables; None before they did.
     above: the projects for which this one is read, as resolved paths.
+    family: while it is read, every project read so far for the first of them, None where one could not be.
     """
 
     tables: dict[str, Any]
@@ -75,6 +77,7 @@ class Document:
     incomplete: bool = False
     additions: Additions | None = None
     above: tuple[Path, ...] = ()
+    family: dict[Path, Project | None] | None = None
 
     def where(self, path: KeyPath) -> tuple[str | None, int | None]:
         """File and line of a key, or of the nearest table around it.
@@ -116,13 +119,15 @@ class Document:
             self.index[(*path[:-1], key, *old[length:])] = self.index[old]
 
 
-def read_project(path: str | os.PathLike[str], above: tuple[Path, ...] = ()) -> Document:
+def read_project(
+    path: str | os.PathLike[str], above: tuple[Path, ...] = (), family: dict[Path, Project | None] | None = None
+) -> Document:
     """Read a project file and all that it includes.
 
     Parameters
     ----------
     path: the file; TOML in UTF-8, at most 1 MB.
-    above: the projects for which it is read.
+    above: the projects for which it is read. family: those read before it.
 
     Returns
     -------
@@ -136,7 +141,9 @@ def read_project(path: str | os.PathLike[str], above: tuple[Path, ...] = ()) -> 
     reader = _Reader(name)
     tables, index = reader.file(Path(name), name, ())
     sources, faults = reader.sources, reader.faults
-    return Document(tables, name, Path(name).parent, index, sources, faults, reader.incomplete, above=above)
+    return Document(
+        tables, name, Path(name).parent, index, sources, faults, reader.incomplete, above=above, family=family
+    )
 
 
 def read_text(path: Path, name: str, bytes_most: int) -> tuple[str, Source]:

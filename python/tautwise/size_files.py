@@ -10,19 +10,17 @@ plain numbers; without one each cell has its own, ``0.273 lbf/ft``. An empty cel
 
 from __future__ import annotations
 
-import csv
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from tautwise.errors import Fault, InputError
+from tautwise.csvlines import CsvLines
 from tautwise.fields import PROSE_LENGTH_MOST, Words
 from tautwise.size_records import CONFIDENCES, MEASURES, Size, SizeValue, name_key
 from tautwise.strict import Refused, did_you_mean, shown
 
 BYTES_MOST = 2_000_000
 ROWS_MOST = 20_000
-FAULTS_MOST = 20
 
 _TEXTS = ("name", "aliases", "kind", "source", "confidence", "note")
 _COLUMNS = (*_TEXTS, *MEASURES, *(f"{key}_{what}" for key in MEASURES for what in ("source", "confidence")))
@@ -61,10 +59,8 @@ def read_sizes(text: str, name: str) -> tuple[Size, ...]:
     return _Reader(name).read(text)
 
 
-class _Reader:
-    def __init__(self, name: str) -> None:
-        self.name = name
-        self.faults: list[Fault] = []
+class _Reader(CsvLines):
+    row_words = ("cells with commas between them", "")
 
     def read(self, text: str) -> tuple[Size, ...]:
         lines = [(n, line) for n, line in enumerate(text.split("\n"), start=1) if line.strip() and line[0] != "#"]
@@ -75,7 +71,7 @@ class _Reader:
         if len(lines) - 1 > ROWS_MOST:
             self.fault(lines[0][0], f"{len(lines) - 1} sizes; at most {ROWS_MOST} are read")
         self.give_up()
-        rows = [row for number, line in lines[1:] if (row := self.row(number, line, columns)) is not None]
+        rows = [row for number, line in lines[1:] if (row := self.sized(number, line, columns)) is not None]
         sizes = [size for row in rows if (size := self.size(row)) is not None]
         self.unique(sizes)
         self.give_up()
@@ -83,7 +79,7 @@ class _Reader:
 
     def head(self, number: int, line: str) -> list[tuple[str, str]]:
         columns: list[tuple[str, str]] = []
-        for cell in self.cells(number, line) or []:
+        for cell in self.row(number, line) or []:
             found = _HEAD.fullmatch(cell.strip())
             column, unit = (found[1], found[2] or "") if found else (cell.strip(), "")
             if column not in _COLUMNS or (unit and column not in MEASURES):
@@ -99,8 +95,8 @@ class _Reader:
             self.fault(number, "the head names no sizes", "name and at least one of the keys under [line]", _EXAMPLE)
         return columns
 
-    def row(self, number: int, line: str, columns: Sequence[tuple[str, str]]) -> _Row | None:
-        cells = self.cells(number, line)
+    def sized(self, number: int, line: str, columns: Sequence[tuple[str, str]]) -> _Row | None:
+        cells = self.row(number, line)
         if cells is None:
             return None
         if len(cells) != len(columns):
@@ -108,18 +104,6 @@ class _Reader:
             return None
         named = {column: cell.strip() for (column, _), cell in zip(columns, cells, strict=True)}
         return _Row(number, named, dict(columns))
-
-    def cells(self, number: int, line: str) -> list[str] | None:
-        # Each line is a reader of its own, so that a lone quote cannot swallow the lines after it.
-        try:
-            found = list(csv.reader([line], strict=True))
-        except csv.Error:
-            found = []
-        if len(found) != 1 or line.count('"') % 2:
-            wrong = "a quote that is not closed on its line" if '"' in line else "characters that are no row"
-            self.fault(number, wrong, "cells with commas between them")
-            return None
-        return found[0]
 
     def size(self, row: _Row) -> Size | None:
         before = len(self.faults)
@@ -176,15 +160,3 @@ class _Reader:
                 if other is not size:
                     problem = f'"{shown(name)}" is the name of another size too, in line {other.line}'
                     self.fault(size.line or 1, problem, "a name of its own", column="name")
-
-    def fault(self, line: int, problem: str, expected: str = "", example: str = "", column: str = "") -> None:
-        self.faults.append(Fault(self.name, line, column, problem, expected, example))
-
-    def give_up(self) -> None:
-        if not self.faults:
-            return
-        kept = sorted(self.faults, key=lambda fault: fault.line or 0)[:FAULTS_MOST]
-        more = len(self.faults) - len(kept)
-        if more:
-            kept.append(Fault(self.name, kept[-1].line, "", f"and {more} more faults of this file"))
-        raise InputError(kept)

@@ -146,7 +146,7 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False, today: date
     core = core_of(project)
     require_places(project, core, newtons)
     with errors_of(project, newtons, AS_STRUNG):
-        rows = core.judge(pull=newtons)
+        rows = core.judge(pull=newtons, seconds_most=_core.DEFAULTS["seconds_most"] * len(project.conditions))
     if newtons is None and any(row["reason"] == "slack" for row in rows):
         refuse_slack(project, "slack", _core.STATUS["slack"])
     if any(row["reason"] == OFF_THE_LINE for row in rows):

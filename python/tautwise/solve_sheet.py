@@ -23,7 +23,7 @@ from tautwise.results_sheet import (
     CrewTemperature,
     SpanReading,
 )
-from tautwise.solve import Pull, core_of, errors_of, program, pull_of
+from tautwise.solve import Pull, errors_of, line_core_of, program, pull_of
 from tautwise.strict import Refused
 from tautwise.units import quantity
 
@@ -54,7 +54,7 @@ def sheet(project: Project, temperatures_degC: Temperatures = None, *, pull: Pul
     degC = _temperatures(project, temperatures_degC)
     newtons = pull_of(project, pull)
     with errors_of(project, newtons, AS_STRUNG):
-        found = core_of(project).sheet(np.array(degC, dtype=np.float64), pull=newtons, **options)
+        found = line_core_of(project).sheet(np.array(degC, dtype=np.float64), pull=newtons, **options)
     return _sheet_of(project, found)
 
 

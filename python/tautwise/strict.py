@@ -10,6 +10,7 @@ import difflib
 import math
 import re
 from collections.abc import Iterable
+from datetime import date
 from fractions import Fraction
 
 NUMBER_PATTERN = r"[+-]?(?:[0-9]+(?:\.[0-9]+)?|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?"
@@ -17,6 +18,7 @@ NUMBER_LENGTH_MOST = 40
 SHOWN_LENGTH_MOST = 60
 
 _NUMBER = re.compile(NUMBER_PATTERN)
+_DAY = re.compile(r"[0-9]{4}-[0-9]{2}-[0-9]{2}")
 _COMMA_NUMBER = re.compile(r"[+-]?[0-9]+,[0-9]+")
 
 
@@ -80,6 +82,18 @@ def strict_float(text: str) -> float:
     return value
 
 
+def strict_day(text: str) -> date | None:
+    """Read a day as year-month-day; None for any other text, such as a week of ISO 8601.
+
+    >>> strict_day("2027-06-30"), strict_day("2027-W01-1"), strict_day("2027-02-30")
+    (datetime.date(2027, 6, 30), None, None)
+    """
+    try:
+        return date.fromisoformat(text) if _DAY.fullmatch(text) else None
+    except ValueError:
+        return None
+
+
 def nearest_double(value: Fraction) -> float:
     """The double nearest to an exact value; one that overflows is refused.
 
@@ -133,6 +147,16 @@ def inert(text: str) -> str:
     if text.isprintable():
         return text
     return "".join(char if char.isprintable() else ascii(char)[1:-1] for char in text)
+
+
+def toml_text(text: str) -> str:
+    """A text as it stands in a TOML file.
+
+    >>> print(toml_text('6" strand'))
+    "6\\" strand"
+    """
+    escaped = text.replace("\\", "\\\\").replace('"', '\\"')
+    return '"' + "".join(char if char.isprintable() else f"\\U{ord(char):08x}" for char in escaped) + '"'
 
 
 def described(value: object) -> str:

@@ -13,17 +13,15 @@ from __future__ import annotations
 import hashlib
 import math
 import os
-import re
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
-from datetime import date
 from pathlib import Path
 from typing import Any
 
 from tautwise.csvlines import CsvLines, numbered_lines
 from tautwise.errors import Fault, InputError
 from tautwise.reader import read_text
-from tautwise.strict import Refused, described, did_you_mean, shown, strict_float
+from tautwise.strict import Refused, described, did_you_mean, shown, strict_day, strict_float
 from tautwise.units import quantity
 
 CSV_BYTES_MOST = 4_000_000
@@ -41,7 +39,6 @@ _SCALES: dict[str, Callable[[float], float]] = {
 }
 _COLUMNS = (*_SCALES, "point", "date")
 _HEADER = "station_m,elevation_m,temperature_degC"
-_DATE = re.compile(r"[0-9]{4}-[0-9]{2}-[0-9]{2}")
 _EXAMPLES = {"station": "120.0", "elevation": "17.25", "offset": "0.05", "sigma": "0.02", "temperature": "18.5"}
 
 
@@ -255,7 +252,7 @@ class _Reader(CsvLines):
         return value
 
     def word(self, number: int, kind: str, cell: str) -> str | None:
-        if kind == "date" and cell and not _is_date(cell):
+        if kind == "date" and cell and strict_day(cell) is None:
             self.fault(number, f'"{shown(cell)}" is no date', "year-month-day", "2026-05-03", kind)
         if kind == "point" and (len(cell) > NAME_MOST or not cell.isprintable()):
             self.fault(number, f'"{shown(cell)}" is no name', f"up to {NAME_MOST} characters", "B-12", kind)
@@ -292,13 +289,6 @@ def survey_from(given: object, temperature: float | str | None) -> Survey:
 
 def _kind(column: str) -> str:
     return column.split("_")[0]
-
-
-def _is_date(text: str) -> bool:
-    try:
-        return bool(_DATE.fullmatch(text) and date.fromisoformat(text))
-    except ValueError:
-        return False
 
 
 def _maybe(value: float | None) -> float | None:

@@ -130,6 +130,11 @@ class Line(Table):
         """The parts of a curved law; none on a linear line."""
         return tuple(part for part in (self.curve, self.core, self.outer) if part is not None)
 
+    @property
+    def stretches(self) -> bool:
+        """Whether loads leave a permanent stretch in it."""
+        return bool(self.parts or self.bedding_in)
+
     def part_area_m2(self, part: Part) -> float:
         """The area that a part's stresses are on, m2."""
         return part.area_m2 or self.area_m2 or math.nan

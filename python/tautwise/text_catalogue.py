@@ -12,7 +12,8 @@ from tautwise.ropes import EXAMPLE, GRADES, factors
 from tautwise.rulepacks import RuleItem, RulePack
 from tautwise.size_records import Size, size_table
 from tautwise.sources import NOT_STATED, sources_lines
-from tautwise.text import caution, next_steps
+from tautwise.strict import toml_text
+from tautwise.text import caution, next_steps, quoted
 
 if TYPE_CHECKING:
     from tautwise.text import Ink
@@ -36,7 +37,10 @@ def sizes_text(sizes: Sequence[Size], ink: Ink, *, sources: bool, ropes: bool) -
     if ropes:
         lines += ["", *_rope_lines(ink)]
     first = sizes[0].name
-    steps = [("use it", f'size = "{first}" under [line]'), ("see its sources", f"tautwise sizes '{first}' --sources")]
+    steps = [
+        ("use it", f"size = {toml_text(first)} under [line]"),
+        ("see its sources", f"tautwise sizes {quoted(first)} --sources"),
+    ]
     return [*lines, *next_steps(steps[: 1 if sources else 2], ink), *caution(CAUTION, ink)]
 
 

@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 from tautwise.errors import Fault, InputError
 from tautwise.fields import Kind, Name, Prose, Words
 from tautwise.results_vet import FAILS, LimitState, WaiverState
-from tautwise.strict import Refused, described, did_you_mean, shown
+from tautwise.strict import Refused, described, did_you_mean, shown, strict_day
 from tautwise.tables import Table
 
 if TYPE_CHECKING:
@@ -38,12 +38,10 @@ class Day(Kind):
             raise Refused("a time of day where a date is needed")
         if isinstance(value, datetime.date):
             return value
-        try:
-            if not isinstance(value, str) or len(value) != len(self.example):
-                raise ValueError
-            return datetime.date.fromisoformat(value)
-        except ValueError:
-            raise Refused(f"{described(value)} is no date") from None
+        day = strict_day(value) if isinstance(value, str) else None
+        if day is None:
+            raise Refused(f"{described(value)} is no date")
+        return day
 
     def json_schema(self) -> dict[str, Any]:
         """A date as JSON writes it."""
