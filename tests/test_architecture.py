@@ -24,7 +24,7 @@ CORE_LAYERS = (
     {"check", "material", "load", "hold", "route", "vee"},
     {"span", "uniform"},
     {"section", "stringing", "wave"},
-    {"ground", "energy", "history", "pulling", "course", "spacing"},
+    {"ground", "energy", "history", "pulling", "course", "spacing", "crossing"},
     {"limit"},
     {"trial"},
     {"crew"},

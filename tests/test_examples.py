@@ -20,6 +20,7 @@ NUMBER = re.compile(r"(?<![\w.])[+-]?\d+(?:\.\d+)?(?:e[+-]?\d+)?(?![\w])")
 PROOF = re.compile(
     r"(.*energies enclose the exact one, )(?:less than )?(\S+)( of it apart \(\d+ elements, )(\d+) evaluations?\)\."
 )
+NOTED = {"yard_messenger": "the rule conditions"}  # what is said on stderr, too; a linear line has one state
 GAP_MOST = 1e-6
 EVALUATIONS_MOST = 40
 OPEN = [name for name in example_names() if name != "shut_window"]
@@ -30,7 +31,8 @@ OPEN = [name for name in example_names() if name != "shut_window"]
 def test_prints_what_is_expected(name, command):
     code, out, err = printed(name, command)
     expected = expected_file(name, command).read_text(encoding="utf-8")
-    assert err == ""
+    noted = f"warning: {name}{ENDING}: {NOTED[name]}" if name in NOTED else ""
+    assert (err.count("\n"), err[: len(noted)]) == (bool(noted), noted)
     assert code == (1 if name == "shut_window" and command in ("window", "vet") else 0)
     assert_alike(out, expected)
 
@@ -131,7 +133,7 @@ def test_bend_is_held_by_twice_the_pull_times_the_sine_of_half_the_turn():
             sine = math.sin(toward - turn)
             square = 500.0 * 18.8e-3 * span.natural_length_m * sine * abs(sine)
             push += square * np.array([-math.sin(turn), math.cos(turn)])
-        push += 0.5 * 500.0 * 0.35 * np.array([math.cos(toward), math.sin(toward)])
+        push += 500.0 * 0.35 * np.array([math.cos(toward), math.sin(toward)])
         met = np.zeros(2)
         for support, turn in zip(state.supports, np.radians([0.0, 10.0, 20.0, 20.0]), strict=True):
             met += support.along_N * np.array([math.cos(turn), math.sin(turn)])

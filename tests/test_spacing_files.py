@@ -131,7 +131,7 @@ def test_places_name_both_lines(tmp_path):
     report = project.vet()
     (limit,) = report.limits
     assert limit.place.startswith("A to B, station ")
-    assert limit.other_place.startswith("upper.taut.toml: P to Q, station ")
+    assert limit.other_place.startswith("upper.taut.toml, cold: P to Q, station ")
     here, there = (float(text.split()[-2]) for text in (limit.place, limit.other_place))
     assert here - there == pytest.approx(30.0, abs=2.0)
     assert json.loads(report.to_json())["files"][0]["limits"][0]["other_place"] == limit.other_place
@@ -143,7 +143,7 @@ def test_the_text_of_vet(tmp_path, capsys):
     assert run(["vet", str(file)]) == 0
     out = capsys.readouterr().out
     assert "apart" in out
-    assert "; upper.taut.toml: P to Q, station" in out
+    assert "; upper.taut.toml, cold: P to Q, station" in out
 
 
 def test_an_other_line_in_a_folder_below(tmp_path):

@@ -42,6 +42,39 @@ static PyObject *rows(field_table table, const void *in, size_t size, size_t cou
     return list;
 }
 
+static PyObject *lived_part(const tw_lived *lived)
+{
+    PyObject *dict = Py_BuildValue("{s:O,s:d}", "crept", lived->crept ? Py_True : Py_False, "permanent",
+                                   lived->permanent);
+    if (!dict || tw_fields_put(dict, "strain", tw_fields_number(lived->strain)) < 0
+        || tw_fields_put(dict, "met", tw_fields_number(lived->met)) < 0
+        || tw_fields_put(dict, "condition", tw_fields_index(lived->condition)) < 0) {
+        Py_CLEAR(dict);
+    }
+    return dict;
+}
+
+/* The spans, each with what its parts have lived through. */
+static PyObject *span_rows(const tw_project *project, const tw_settled *settled)
+{
+    size_t spans = project->support_count - 1;
+    PyObject *list = rows(tw_span_state_table, settled->spans, sizeof(tw_span_state), spans, TW_NONE);
+    for (size_t k = 0; list && k < spans; k++) {
+        PyObject *parts = PyList_New(0);
+        for (size_t i = 0; parts && settled->status == TW_OK && i < project->line.part_count; i++) {
+            PyObject *part = lived_part(&settled->spans[k].lived[i]);
+            if (!part || PyList_Append(parts, part) < 0) {
+                Py_CLEAR(parts);
+            }
+            Py_XDECREF(part);
+        }
+        if (!parts || tw_fields_put(PyList_GET_ITEM(list, (Py_ssize_t)k), "lived", parts) < 0) {
+            Py_CLEAR(list);
+        }
+    }
+    return list;
+}
+
 PyObject *tw_answer_settled(const tw_project *project, size_t condition, const tw_settled *settled)
 {
     PyObject *dict = tw_fields_dict(tw_settled_table, settled);
@@ -52,8 +85,7 @@ PyObject *tw_answer_settled(const tw_project *project, size_t condition, const t
         || tw_fields_put(dict, "evaluations", PyLong_FromSize_t(settled->evaluations)) < 0
         || tw_fields_put(dict, "newton_steps", PyLong_FromSize_t(settled->newton_steps)) < 0
         || tw_fields_put(dict, "exact_steps", PyLong_FromSize_t(settled->exact_steps)) < 0
-        || tw_fields_put(dict, "spans",
-                         rows(tw_span_state_table, settled->spans, sizeof(tw_span_state), supports - 1, TW_NONE)) < 0
+        || tw_fields_put(dict, "spans", span_rows(project, settled)) < 0
         || tw_fields_put(dict, "supports", rows(tw_support_state_table, settled->supports, sizeof(tw_support_state),
                                                 supports, offsetof(tw_support_state, position_m))) < 0
         || tw_fields_put(dict, "marks", rows(tw_mark_state_table, settled->marks, sizeof(tw_mark_state),
@@ -88,6 +120,8 @@ static PyObject *window_end(const tw_window_end *end)
 {
     PyObject *dict = tw_answer_verdict(&end->verdict);
     if (!dict || put_row(dict, end->limit, end->condition) < 0
+        || tw_fields_put(dict, "why", PyUnicode_FromString(tw_status_name(end->why))) < 0
+        || tw_fields_put(dict, "why_text", PyUnicode_FromString(tw_status_text(end->why))) < 0
         || tw_fields_put(dict, "pull_N", tw_fields_number(end->pull_N)) < 0) {
         Py_CLEAR(dict);
     }

@@ -173,6 +173,8 @@ static const field crew_support_fields[] = {
     F(tw_crew_support, offset_stretched_m, NAN),
     F(tw_crew_support, block_swing_rad, NAN),
     F(tw_crew_support, block_down_N, NAN),
+    F(tw_crew_support, block_across_N, NAN),
+    F(tw_crew_support, block_resultant_N, NAN),
 };
 const field_table tw_crew_support_table = TABLE(crew_support_fields);
 

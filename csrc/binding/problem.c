@@ -30,7 +30,8 @@ static const char *const condition_keys[] = {"loads", "ice_share", "state", NULL
 static const char *const load_keys[] = {"is_point", "is_run", "place", "frame", "vector", "vector_to", "covers",
                                         "carriage", "carriage_span", NULL};
 static const char *const mark_keys[] = {"place", NULL};
-static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", "courses", NULL};
+static const char *const limit_keys[] = {"kind", "crossing", "direction", "applies", "covers", "courses", "strung_course",
+                                         NULL};
 static const char *const stringing_keys[] = {"rule", "index", "lengths_m", "method", "clip", NULL};
 
 void tw_problem_free(problem *in)
@@ -402,6 +403,11 @@ static int read_limit(PyObject *row, size_t index, problem *out)
     if (kind < 0 || direction < 0 || read_index(row, "crossing", &limit->crossing) < 0) {
         return -1;
     }
+    size_t strung;
+    if (read_index(row, "strung_course", &strung) < 0) {
+        return -1;
+    }
+    limit->strung_course = strung == TW_NONE ? 0 : strung + 1;
     limit->kind = (tw_limit_kind)kind;
     limit->direction = (tw_direction)direction;
     unsigned char *applies = PyMem_Realloc(out->applies, (index + 1) * conditions + 1);

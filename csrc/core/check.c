@@ -353,6 +353,9 @@ static tw_status check_spacing(const tw_project *p, size_t i, tw_fault *fault)
             return fail(fault, "limits", i, "courses", "another line's course for every condition of the limit");
         }
     }
+    if (limit->strung_course > p->course_count) {
+        return fail(fault, "limits", i, "strung_course", "the number of a course, or none");
+    }
     return TW_OK;
 }
 

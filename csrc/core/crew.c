@@ -142,6 +142,8 @@ static void fill_supports(crew_run *run)
         out->offset_stretched_m = out->offset_m * tw_material_stretch(&blocks->materials[span], tw_norm(beside));
         out->block_swing_rad = ends ? (double)NAN : state.swing_rad;
         out->block_down_N = state.down_N;
+        out->block_across_N = state.across_N;
+        out->block_resultant_N = state.resultant_N;
         plumb = ends ? blocks->start_m[j] : plumb;
         plumb += j < run->crew->span_count ? run->trial->length_m[j] : 0.0;
     }
@@ -218,7 +220,7 @@ static tw_status fill_over(crew_run *run)
 
 static void forget_all(tw_crew *crew)
 {
-    static const tw_crew_support nothing = {NAN, NAN, NAN, NAN};
+    static const tw_crew_support nothing = {NAN, NAN, NAN, NAN, NAN, NAN};
     size_t rows = (crew->temperature_count + 1) * crew->span_count;
     forget_spans(crew->over, rows);
     forget_spans(crew->clamped, rows);

@@ -30,6 +30,8 @@ typedef struct tw_crew_support {
     double offset_stretched_m; /* the same as measured along the line on its sheaves */
     double block_swing_rad;    /* of the swinging sheave from the vertical; NaN where there is none */
     double block_down_N;       /* on the support, line and half the link; negative is uplift; NaN but over sheaves */
+    double block_across_N;     /* ... across, positive to the left (route.h); NaN but over sheaves */
+    double block_resultant_N;  /* ... all of it, with what acts along; NaN but over sheaves */
 } tw_crew_support;
 
 typedef struct tw_crew {

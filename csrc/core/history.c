@@ -30,7 +30,8 @@ tw_history *tw_history_create(const tw_project *project)
     history->section = tw_section_create(project);
     history->heaviest = tw_calloc(project->support_count - 1, sizeof *history->heaviest);
     history->crept = tw_calloc(project->support_count - 1, sizeof *history->crept);
-    if (!history->section || !history->heaviest || !history->crept) {
+    history->lived = tw_calloc(2 * TW_PARTS_MOST * (project->support_count - 1), sizeof *history->lived);
+    if (!history->section || !history->heaviest || !history->crept || !history->lived) {
         tw_history_free(history);
         return NULL;
     }
@@ -43,15 +44,21 @@ void tw_history_free(tw_history *history)
         tw_section_free(history->section);
         tw_free(history->heaviest);
         tw_free(history->crept);
+        tw_free(history->lived);
         tw_free(history);
     }
 }
 
 void tw_history_begin(tw_history *history)
 {
+    static const tw_lived nothing = {NAN, NAN, 0.0, TW_NONE, 0};
+    size_t spans = history->project->support_count - 1;
     history->ready = 0;
-    for (size_t k = 0; k + 1 < history->project->support_count; k++) {
+    for (size_t k = 0; k < spans; k++) {
         history->heaviest[k] = tw_permanent_none();
+    }
+    for (size_t i = 0; i < 2 * TW_PARTS_MOST * spans; i++) {
+        history->lived[i] = nothing;
     }
 }
 
@@ -73,22 +80,29 @@ static double mean_stretch(const tw_section *section, size_t span)
     return length / section->length_m[span];
 }
 
-static void take(tw_permanent *permanent, const tw_section *section, double temperature_degC, int creeping)
+/* lived: where what is permanent is from, written anew where this leaves more. */
+static void take(tw_permanent *permanent, tw_lived *lived, const tw_section *section, size_t condition, int creeping)
 {
     const tw_line *line = &section->project->line;
     double reference = section->project->stringing.temperature_degC;
+    double temperature = condition == TW_NONE ? reference : section->project->conditions[condition].temperature_degC;
     for (size_t k = 0; k < section->span_count; k++) {
         double stretch = mean_stretch(section, k);
         for (size_t i = 0; i < line->part_count; i++) {
-            double strain = tw_part_strain(line, i, stretch, temperature_degC, reference);
+            double strain = tw_part_strain(line, i, stretch, temperature, reference);
+            double before = permanent[k].part[i];
             tw_permanent_take(&permanent[k], line, i, strain, creeping);
+            if (permanent[k].part[i] > before) {
+                const tw_lived now = {NAN, strain, permanent[k].part[i], condition, creeping};
+                lived[k * TW_PARTS_MOST + i] = now;
+            }
         }
     }
 }
 
 void tw_history_meet(tw_history *history, const tw_section *section, size_t condition)
 {
-    take(history->heaviest, section, history->project->conditions[condition].temperature_degC, 0);
+    take(history->heaviest, history->lived, section, condition, 0);
 }
 
 void tw_history_end(tw_history *history, int crept)
@@ -96,16 +110,26 @@ void tw_history_end(tw_history *history, int crept)
     const tw_project *project = history->project;
     size_t everyday = project->history.creep_condition;
     size_t spans = project->support_count - 1;
+    tw_lived *lived = history->lived + spans * TW_PARTS_MOST;
     memcpy(history->crept, history->heaviest, spans * sizeof *history->crept);
+    memcpy(lived, history->lived, spans * TW_PARTS_MOST * sizeof *lived);
     if (crept) {
-        take(history->crept, history->section,
-             everyday == TW_NONE ? project->stringing.temperature_degC : project->conditions[everyday].temperature_degC, 1);
+        take(history->crept, lived, history->section, everyday, 1);
     }
     for (size_t k = 0; k < spans; k++) {
         history->heaviest[k].strain = project->line.bedding_in_strain;
         history->crept[k].strain = project->line.bedding_in_strain + tw_curve_given_creep(&project->line);
     }
     history->ready = 1;
+}
+
+const tw_lived *tw_history_lived(const tw_history *history, tw_state state, size_t span)
+{
+    if (!history->ready || state == TW_STATE_INITIAL) {
+        return NULL;
+    }
+    size_t after_creep = state == TW_STATE_AFTER_CREEP ? history->project->support_count - 1 : 0;
+    return history->lived + (after_creep + span) * TW_PARTS_MOST;
 }
 
 const tw_permanent *tw_history_of(const tw_history *history, tw_state state)

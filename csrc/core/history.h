@@ -15,6 +15,8 @@ typedef struct tw_history {
     tw_section *section;     /* where what has to be settled apart is settled; owned */
     tw_permanent *heaviest;  /* [support_count - 1] of state final; owned */
     tw_permanent *crept;     /* [support_count - 1] of state after creep; owned */
+    tw_lived *lived;         /* [2][support_count - 1][TW_PARTS_MOST] where each part's stretch is from, final then after
+                                creep; its `strain` is not set; owned */
     int ready;               /* 1: they are those of the present natural lengths */
 } tw_history;
 
@@ -38,6 +40,9 @@ void tw_history_meet(tw_history *history, const tw_section *section, size_t cond
 
 /* Takes in the everyday condition as it stands in the history's section, and adds what is given as strain. */
 void tw_history_end(tw_history *history, int crept);
+
+/* Where the stretch of each part of a span is from, [TW_PARTS_MOST]; NULL as strung, or before the history is ready. */
+const tw_lived *tw_history_lived(const tw_history *history, tw_state state, size_t span);
 
 /* [support_count - 1] for a state; NULL as strung. */
 const tw_permanent *tw_history_of(const tw_history *history, tw_state state);

@@ -2,6 +2,7 @@
 
 #include <math.h>
 
+#include "crossing.h"
 #include "ground.h"
 #include "hold.h"
 #include "route.h"
@@ -242,4 +243,26 @@ tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condit
         }
     }
     return worst;
+}
+
+void tw_limit_judge_swap(const tw_project *project, size_t limit, size_t condition, const tw_section *section,
+                         const tw_section *strung, tw_verdict *verdict)
+{
+    const tw_limit *rule = &project->limits[limit];
+    const unsigned char *covers = project->limit_covers + limit * project->support_count;
+    const tw_course *other = course_of(project, limit, condition);
+    const tw_course *before = &project->courses[rule->strung_course - 1];
+    for (size_t k = 0; other && verdict->judged && k < section->span_count; k++) {
+        tw_crossing_place found;
+        if (!covers[k] || !tw_crossing_swapped(section, other, strung, before, k, &found)
+            || -fabs(found.gap_m) >= verdict->value) {
+            continue;
+        }
+        offer_least(verdict, -fabs(found.gap_m), rule->least, 1.0);
+        const tw_route_leg leg = tw_route_leg_of(project, k);
+        verdict->span = k;
+        verdict->station_m = tw_route_station(&leg, found.position);
+        verdict->other_at_m = found.other_at_m;
+        tw_copy(found.other_position, verdict->other_position_m);
+    }
 }

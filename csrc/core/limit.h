@@ -30,6 +30,11 @@ typedef struct tw_verdict {
 tw_verdict tw_limit_judge(const tw_project *project, size_t limit, size_t condition, const tw_section *section,
                           const tw_section *bare);
 
+/* A spacing judged: fails, with the gap below zero, where the lines have passed through each other since they were strung, bare
+ * (section `strung`). */
+void tw_limit_judge_swap(const tw_project *project, size_t limit, size_t condition, const tw_section *section,
+                         const tw_section *strung, tw_verdict *verdict);
+
 /* Same rule, its utilisation alone, from a value and an allowed value. */
 double tw_limit_utilisation_most(double value, double most);
 double tw_limit_utilisation_least(double value, double least, double scale);

@@ -206,6 +206,7 @@ typedef struct tw_limit {
     double from_m;          /* clearance: stations; NaN: the whole route */
     double to_m;
     tw_direction direction; /* support load */
+    size_t strung_course; /* of a spacing: 1 + number of the other line's course as strung, bare; 0: not known */
 } tw_limit;
 
 /* A stretch of another line, natural length at_m[0] to at_m[1], as a cubic with these ends and derivatives. */
@@ -300,6 +301,15 @@ tw_condition tw_line_bare(double temperature_degC);
 /* Capacity of a support in a direction, N; NaN where none is given, and for the resultant. */
 double tw_line_capacity(const tw_support *support, tw_direction direction);
 
+/* What its history has left in one part of a span on a curved law. */
+typedef struct tw_lived {
+    double strain;    /* of the part now, at the span's mean stretch, without what is given as strain */
+    double met;       /* greatest strain, of the span's mean stretch, from which it has unloaded; NaN: none */
+    double permanent; /* the strain it kept of that; 0: none */
+    size_t condition; /* the one that left it; TW_NONE: none, or creep on the bare line */
+    int crept;        /* 1: creep left it */
+} tw_lived;
+
 /* One span in one condition. Tensions are magnitudes unless "horizontal". */
 typedef struct tw_span_state {
     double span_m;                /* plan distance between the clamps */
@@ -319,6 +329,7 @@ typedef struct tw_span_state {
     double slope_max;             /* |dz| over plan distance */
     double permanent_strain;      /* what history has added to the strain at this temperature and horizontal tension */
     double small_deflection_sag_m;/* taut-string sag under the same loads and horizontal tension */
+    tw_lived lived[TW_PARTS_MOST]; /* of a curved law, part by part; filled by report */
 } tw_span_state;
 
 /* Force of the line and hold on the support in its axes (route.h), and where the line is held. */

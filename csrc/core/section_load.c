@@ -51,6 +51,26 @@ static tw_status place_length(tw_place place, double at_m, double whole, double 
     return TW_ERROR_PLACE;
 }
 
+/* One end of a stretch. Where the pull draws the line's own end inwards, a station between that clamp and its support is the
+ * end of the line. */
+static tw_status stretch_end(const loading *on, const tw_load *load, int far, double total, double *s)
+{
+    double at_m = far ? load->to_m : load->from_m, whole = far ? total : 0.0;
+    tw_status status = place_length(load->place, at_m, whole, total, on->strung, s);
+    if (status != TW_ERROR_PLACE || load->place != TW_PLACE_STATION || !on->strung) {
+        return status;
+    }
+    size_t n = on->strung->span_count, end = far ? n : 0;
+    const tw_route_leg leg = tw_route_leg_of(on->strung->project, far ? n - 1 : 0);
+    double clamp_m = tw_route_station(&leg, on->strung->clamp + 3 * end);
+    double support_m = tw_route_support_station(on->strung->project, end);
+    if (far ? at_m < clamp_m || at_m > support_m : at_m > clamp_m || at_m < support_m) {
+        return status;
+    }
+    *s = whole;
+    return TW_OK;
+}
+
 /* A place within a thousand-millionth of a span of a clamp, or of a place of an earlier load, is that place to the last
  * digit: from here on places are compared exactly, so that each load acts once. */
 static double snapped(const tw_section *section, size_t load, double s)
@@ -100,11 +120,11 @@ static tw_status place_load(tw_section *section, const loading *on, size_t i, do
     if (load->carriage != TW_CARRIAGE_NONE) {
         return place_carriage(section, load, total, on->strung, from);
     }
-    tw_status status = place_length(load->place, load->from_m, 0.0, total, on->strung, from);
-    if (status == TW_OK && !load->is_point) {
-        status = place_length(load->place, load->to_m, total, total, on->strung, &section->load_to_m[i]);
+    if (load->is_point) {
+        return place_length(load->place, load->from_m, 0.0, total, on->strung, from);
     }
-    return status;
+    tw_status status = stretch_end(on, load, 0, total, from);
+    return status == TW_OK ? stretch_end(on, load, 1, total, &section->load_to_m[i]) : status;
 }
 
 static tw_status place_loads(tw_section *section, const loading *on)

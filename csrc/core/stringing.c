@@ -196,18 +196,41 @@ static tw_status measure(strung *line, double pull_N, double *miss)
     return TW_OK;
 }
 
+/* A bracket inside pulls that can be strung: too slack a line cannot, nor one whose springs bring its supports together. */
+static tw_status reach_rule(strung *line, double *low, double *high, double *miss_low, double *miss_high)
+{
+    tw_status status = measure(line, *low, miss_low);
+    while (status == TW_NOT_SETTLED && *low < 0.5 * *high) {
+        *low *= 1.5;
+        status = measure(line, *low, miss_low);
+    }
+    if (status != TW_OK) {
+        return status;
+    }
+    double broken = *high;
+    status = measure(line, *high, miss_high);
+    while (status != TW_OK && *high > 1.5 * *low) {
+        broken = *high;
+        *high /= 1.5;
+        status = measure(line, *high, miss_high);
+    }
+    for (int i = 0; i < 40 && status == TW_OK && *miss_high > 0.0 && *high < broken; i++) {
+        double further, middle = 0.5 * (*high + broken);
+        if (measure(line, middle, &further) == TW_OK) {
+            *high = middle;
+            *miss_high = further;
+        } else {
+            broken = middle;
+        }
+    }
+    return status;
+}
+
 /* The bracket narrows by the Illinois rule on the logarithm of the pull; it keeps a sign change, so it cannot leave. */
 static tw_status solve_rule(strung *line, double low, double high, double *pull_N)
 {
     double miss_low, miss_high, miss;
-    tw_status status = measure(line, low, &miss_low);
-    while (status == TW_NOT_SETTLED && low < 0.5 * high) {
-        low *= 1.5; /* too slack to be strung at all */
-        status = measure(line, low, &miss_low);
-    }
-    if (status == TW_OK) {
-        status = measure(line, high, &miss_high);
-    }
+    tw_status status = reach_rule(line, &low, &high, &miss_low, &miss_high);
     if (status != TW_OK) {
         return status;
     }

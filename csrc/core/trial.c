@@ -250,5 +250,13 @@ tw_status tw_trial_judge(tw_trial *trial, size_t limit, size_t condition, const 
     if (status == TW_OK) {
         *verdict = tw_limit_judge(trial->project, limit, condition, section, bare);
     }
+    const tw_limit *rule = &trial->project->limits[limit];
+    if (status == TW_OK && rule->kind == TW_LIMIT_SPACING && rule->strung_course > 0) {
+        const tw_section *strung;
+        status = tw_trial_strung(trial, options, &strung);
+        if (status == TW_OK) {
+            tw_limit_judge_swap(trial->project, limit, condition, section, strung, verdict);
+        }
+    }
     return status;
 }

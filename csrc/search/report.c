@@ -84,6 +84,25 @@ static tw_status report_supports(tw_trial *trial, size_t condition, const tw_sec
     return status;
 }
 
+/* What each part of a span has kept of its history, and how far it is strained now. */
+static void report_lived(const tw_trial *trial, const tw_section *section, size_t condition, size_t span,
+                         tw_span_state *out)
+{
+    static const tw_lived nothing = {NAN, NAN, 0.0, TW_NONE, 0};
+    const tw_project *project = trial->project;
+    const tw_condition *state = &project->conditions[condition];
+    const tw_lived *lived = trial->history ? tw_history_lived(trial->history, state->state, span) : NULL;
+    double given = section->permanent ? section->permanent[span].strain : 0.0;
+    double stretch = out->line_length_m / out->natural_length_m - given;
+    for (size_t i = 0; i < TW_PARTS_MOST; i++) {
+        out->lived[i] = lived ? lived[i] : nothing;
+        if (i < project->line.part_count) {
+            out->lived[i].strain = tw_part_strain(&project->line, i, stretch, state->temperature_degC,
+                                                  project->stringing.temperature_degC);
+        }
+    }
+}
+
 tw_status tw_report_condition(tw_trial *trial, size_t condition, const tw_options *options, tw_settled *out)
 {
     const tw_section *section;
@@ -100,6 +119,7 @@ tw_status tw_report_condition(tw_trial *trial, size_t condition, const tw_option
     }
     for (size_t k = 0; k < section->span_count; k++) {
         tw_section_span_state(section, k, &out->spans[k]);
+        report_lived(trial, section, condition, k, &out->spans[k]);
     }
     report_loads(section, trial->project->conditions[condition].load_count, out);
     out->exact_steps = section->steps;

@@ -11,6 +11,9 @@
 #include "window_search.h"
 
 static const double STILL_HOLDS = 1.0 + 2e-9; /* utilisation of an answer judged again */
+static const double USED_UP = 1.0 - 1e-6;     /* utilisation of a limit that may be named for an end */
+static const double BEYOND = 1e-6;            /* step past an end, of the range's logarithm: longer than what is left
+                                                 before a jump */
 
 static size_t count_rows(const tw_project *project)
 {
@@ -154,6 +157,7 @@ static double govern(tw_window_run *run, double pull_N, size_t *limit, size_t *c
 static double fill_end(tw_window_run *run, double pull_N, int at_range_end, tw_window_end *end)
 {
     end->pull_N = pull_N;
+    end->why = TW_OK;
     double f = govern(run, pull_N, &end->limit, &end->condition, &end->verdict);
     if (at_range_end) {
         end->limit = end->condition = TW_NONE;
@@ -161,11 +165,53 @@ static double fill_end(tw_window_run *run, double pull_N, int at_range_end, tw_w
     return f;
 }
 
+/* What becomes of the line at a pull: TW_OK if every row can be judged, and the row that fails there, or TW_NONE; else why
+ * not, and the row that cannot be. */
+static tw_status fate(tw_window_run *run, double pull_N, size_t *row)
+{
+    const tw_window *w = run->window;
+    tw_status status = tw_trial_string(run->trial, pull_N, run->options);
+    double worst = TW_WINDOW_HOLDS;
+    *row = TW_NONE;
+    for (size_t r = 0; r < w->row_count && status == TW_OK; r++) {
+        tw_verdict own = {0};
+        status = tw_trial_judge(run->trial, w->row_limit[r], w->row_condition[r], run->options, &own);
+        if (status != TW_OK || (own.judged && own.utilisation > worst)) {
+            worst = own.utilisation;
+            *row = r;
+        }
+    }
+    tw_window_latch(run, status);
+    return status;
+}
+
+/* An end inside the range at which no limit is used up: pulls beyond it cannot be judged, or a limit jumps there. */
+static void explain_end(tw_window_run *run, double side, tw_window_end *end)
+{
+    const tw_window *w = run->window;
+    size_t row;
+    if (end->limit == TW_NONE || end->verdict.utilisation > USED_UP) {
+        return;
+    }
+    tw_status status = fate(run, end->pull_N * pow(w->range_high_N / w->range_low_N, side * BEYOND), &row);
+    if (status == TW_OK && row != TW_NONE) {
+        end->limit = w->row_limit[row];
+        end->condition = w->row_condition[row];
+        tw_window_try(run, end->pull_N, run->u);
+        tw_window_row(run, row, &end->verdict);
+        return;
+    }
+    end->limit = TW_NONE;
+    end->condition = row == TW_NONE ? TW_NONE : w->row_condition[row];
+    end->why = status == TW_OK ? TW_NOT_SETTLED : status;
+}
+
 static void no_end(tw_window_end *end)
 {
     const tw_window_end nothing = {
         NAN, TW_NONE, TW_NONE,
-        {.value = NAN, .allowed = NAN, .margin = NAN, .utilisation = NAN, .span = TW_NONE, .support = TW_NONE, .station_m = NAN}};
+        {.value = NAN, .allowed = NAN, .margin = NAN, .utilisation = NAN, .span = TW_NONE, .support = TW_NONE, .station_m = NAN},
+        TW_OK};
     *end = nothing;
 }
 
@@ -190,6 +236,8 @@ static tw_status choose(tw_window_run *run)
     double low = w->interval_N[2 * chosen], high = w->interval_N[2 * chosen + 1];
     double f = fill_end(run, low, low <= w->range_low_N, &w->low);
     f = fmax(f, fill_end(run, high, high >= w->range_high_N * (1.0 - 1e-12), &w->high));
+    explain_end(run, -1.0, &w->low);
+    explain_end(run, 1.0, &w->high);
     f = fmax(f, tw_window_try(run, w->specify.pull_N, run->u));
     fill_end(run, w->specify.pull_N * (1.0 - tolerance), 0, &w->specify.edge[0]);
     fill_end(run, w->specify.pull_N * (1.0 + tolerance), 0, &w->specify.edge[1]);

@@ -20,8 +20,9 @@
 typedef struct tw_window_end {
     double pull_N;
     size_t limit; /* TW_NONE: no limit bounds this side within the range searched */
-    size_t condition;
+    size_t condition; /* of the limit, or the one that cannot be settled beyond */
     tw_verdict verdict;
+    tw_status why; /* where limit is TW_NONE and pulls beyond cannot be judged: what becomes of them; else TW_OK */
 } tw_window_end;
 
 typedef struct tw_window_specify {

@@ -49,6 +49,12 @@ static void test_offsets_add_up(void)
     CHECK(fabs(crew->supports[2].offset_m) > 0.05);
     CHECK_REL(crew->supports[2].offset_stretched_m / crew->supports[2].offset_m - 1.0,
               tw_norm(blocks->pull + 6) / 34.7e6, 1e-9);
+    for (size_t j = 1; j < 5; j++) {
+        tw_support_state state;
+        tw_section_support_state(blocks, j, &state);
+        CHECK(crew->supports[j].block_across_N == state.across_N);
+        CHECK_REL(crew->supports[j].block_resultant_N, hypot(state.along_N, crew->supports[j].block_down_N), 1e-12);
+    }
     CHECK(isnan(crew->supports[3].block_swing_rad) && crew->supports[1].block_swing_rad > 0.01);
     for (size_t k = 0; k < 5; k++) {
         CHECK(crew->lengths[k].natural_m == trial->length_m[k]);

@@ -86,6 +86,11 @@ static void test_the_heaviest_met_condition_decides(void)
         double force = tw_part_force(&line->parts[0], strain, 0);
         CHECK_REL(left[k].part[0], strain - force / line->parts[0].final_stiffness_N, 1e-12);
         CHECK(left[k].strain == 1e-4);
+        const tw_lived *lived = tw_history_lived(trial->history, TW_STATE_FINAL, k);
+        CHECK(lived[0].condition == 1 && !lived[0].crept);
+        CHECK_REL(lived[0].met, strain, 1e-12);
+        CHECK(lived[0].permanent == left[k].part[0]);
+        CHECK(tw_history_lived(trial->history, TW_STATE_INITIAL, k) == NULL);
     }
     tw_trial_free(trial);
 }

@@ -63,6 +63,8 @@ static void test_stations_and_axes(void)
     const double place[3] = {c.supports[1].station_m + 100.0 * cos(h) - 5.0 * sin(h),
                              c.supports[1].offset_m + 100.0 * sin(h) + 5.0 * cos(h), 12.0};
     CHECK_NEAR(tw_route_station(&leg, place), 400.0, 1e-12);
+    const double aside[3] = {place[0] - 3.0 * leg.ahead[1], place[1] + 3.0 * leg.ahead[0], place[2]};
+    CHECK_NEAR(tw_route_left(&leg, aside) - tw_route_left(&leg, place), 3.0, 1e-12);
 }
 
 /* Without route stations it is the x of today, to the last bit, whatever the offsets. */

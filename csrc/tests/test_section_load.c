@@ -131,7 +131,9 @@ static void test_half_of_a_hanger_acts_at_its_clamp(void)
         CHECK_REL(g[2], -275.0, 1e-14);
         tw_support_state state;
         tw_section_support_state(s, 1, &state);
-        CHECK_REL(state.down_N, s->hold_force[5] + 275.0, 1e-14);
+        CHECK_REL(state.down_N, s->hold_force[5] + 275.0, 1e-14); /* the support takes the other half */
+        CHECK_REL(state.along_N, -s->hold_force[3] + 100.0 * cos(0.5), 1e-14);
+        CHECK_REL(state.across_N, -s->hold_force[4] + 100.0 * sin(0.5), 1e-14);
     }
     tw_section_free(s);
 }

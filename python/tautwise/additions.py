@@ -19,7 +19,7 @@ from tautwise.reader import Document, WrittenNumber, inside_folder, read_text
 from tautwise.rulepacks import PRESSURE, clause_of, filled, leaves, pack_names, parameters, raw_pack, value_sources
 from tautwise.size_files import BYTES_MOST, read_sizes
 from tautwise.size_records import Size, SizeValue
-from tautwise.sources import NOT_STATED, SourceLine
+from tautwise.sources import NOT_STATED, ONE_STATE, SourceLine
 from tautwise.strict import Refused, described, did_you_mean, nearest, shown
 from tautwise.units import number_and_unit, read_unit
 
@@ -31,7 +31,6 @@ PACKS_MOST = 32
 KEYWORDS = "the keyword arguments"
 LACKING, FAILED = "lacking", "failed"
 
-_STATE = "the line is linear and without bedding_in, so that initial and final are judged on the same one"
 _STRETCHES = ("curve", "core", "outer", "bedding_in")  # keys of a line that is another in its final state
 _RULES_EXAMPLE = 'rules = ["nesc-250b-heavy", "nesc-261h"]'
 _INSTEAD = {  # which keys of the file stand in for a size's
@@ -306,7 +305,7 @@ def _add_conditions(document: Document, uses: Iterable[_Use], added: Additions) 
         table["name"] = f"{use.prefix} {row['name']}"
         if "state" in table and not stretches:
             del table["state"]
-            added.origins.append(SourceLine(f"{table['name']} state", row["state"], _STATE, ""))
+            added.origins.append(SourceLine(f"{table['name']} state", row["state"], ONE_STATE, ""))
         if _append(document, "condition", "name", table, use, added):
             added.origins += _origins(use, row, table["name"], table)
 

@@ -169,9 +169,6 @@ def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
     from tautwise.solve import window as search
     from tautwise.sources import with_sources
 
-    for project in projects:
-        if not project.limits:
-            tell([f"warning: {project.source}: no [[limit]], so every pull is in the window"])
     done, failed = _each(projects, lambda project: search(project))
     if as_json:
         print_documents([with_sources(found, project, sources) for project, found in done], many=len(files) > 1)
@@ -179,6 +176,8 @@ def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
         from tautwise.text_limits import window_text
 
         print_texts([*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done)
+    for project, found in done:
+        tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
     tell(failed)
     if not all(found.open for _, found in done):
         return FAILS
@@ -203,7 +202,6 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
     options = {} if day is None else {"today": day_of(day)}
     projects = _loaded(unfolded(files))
     from tautwise.errors import NotSettledError
-    from tautwise.findings import slack_finding
     from tautwise.results import VetReport
     from tautwise.solve import undecided
     from tautwise.solve import vet as check
@@ -214,15 +212,13 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
         except NotSettledError as error:
             tell([str(error)])
             return undecided(project, str(error), pull=pull)
-        tell(f"warning: {text}" for text in slack_finding(project, report.files[0].pull_N))
         return report
 
     done, _ = _each(projects, judged)
     verdicts = (with_sources(file, project, sources) for project, each in done for file in each.files)
     report = VetReport.of(verdicts, done[0][1].program)
-    for project in projects:
-        if not project.limits:
-            tell([f"warning: {project.source}: no [[limit]], so there is nothing to vet"])
+    for project, file in zip([project for project, _ in done], report.files, strict=True):
+        tell(f"warning: {text}" for text in file.findings[len(project.warnings) :])
     if as_json:
         print_documents([report])
     else:

@@ -26,6 +26,8 @@ from tautwise.figure_style import (
     LEGEND_POINTS,
     STYLES,
     axes_or_new,
+    carriage_marker,
+    carriages_of,
     columns_of_legend,
     margins,
     plain,
@@ -98,6 +100,8 @@ def plot_line(lines: Sequence[Equilibrium], ax: Any = None, *, chord: bool = Fal
             label=plain(line.name),
             zorder=5,
         )
+        for mark in carriages_of(line):
+            ax.plot(mark.station_m, mark.position_m[2], label="_carriage", **carriage_marker(colour))
     for (label, places), style in zip(others.items(), cycle(STYLES)):
         ax.plot(*places.T, color=FAINT, linestyle=style, linewidth=1.0, zorder=4.5, label=plain(label))
     tightest = tightest_of(scenery, shapes)

@@ -9,7 +9,17 @@ from typing import Any
 import numpy as np
 
 from tautwise.errors import TautwiseError
-from tautwise.figure_style import CURVES, FAINT, INK, LEGEND_POINTS, STYLES, axes_or_new, plain
+from tautwise.figure_style import (
+    CURVES,
+    FAINT,
+    INK,
+    LEGEND_POINTS,
+    STYLES,
+    axes_or_new,
+    carriage_marker,
+    carriages_of,
+    plain,
+)
 from tautwise.results_line import Equilibrium
 
 LONGEST_SHARE = 0.12  # of the route: the arrow of the largest force
@@ -36,6 +46,8 @@ def plot_plan(lines: Sequence[Equilibrium], ax: Any = None, *, points: int = 60)
     for line, colour, style in zip(lines, cycle(CURVES), cycle(STYLES)):
         x, y, _ = np.asarray(line.shape(points)["position_m"]).T
         ax.plot(x, y, color=colour, linestyle=style, linewidth=1.6, label=plain(line.name), zorder=5)
+        for mark in carriages_of(line):
+            ax.plot(*mark.position_m[:2], label="_carriage", **carriage_marker(colour))
     places = np.array([state.position_m[:2] for state in first.supports])
     ax.plot(*places.T, color=FAINT, linewidth=0.8, zorder=3)
     forces = _draw_forces(ax, first, places)
@@ -44,7 +56,13 @@ def plot_plan(lines: Sequence[Equilibrium], ax: Any = None, *, points: int = 60)
         above = number in forces and forces[number][1] < 0.0  # out of the way of the arrow
         ax.annotate(plain(state.name), place, xytext=(0, 7 if above else -13), textcoords="offset points", ha="center",
                     fontsize=8, color=INK, zorder=8)  # fmt: skip
-    turns = first._line().scenery().turns
+    scenery = first._line().scenery()
+    turns = scenery.turns
+    if forces:
+        ax.plot([], [], linestyle="none", marker=r"$\rightarrow$", markersize=12, color=INK,
+                label=f"horizontal force on a support, {plain(first.name)}")  # fmt: skip
+    if scenery.title:
+        ax.set_title(plain(scenery.title), loc="left", fontsize=11, fontweight="bold", color=INK)
     ax.set_xlabel("east, m" if turns else "station, m")
     ax.set_ylabel("north, m" if turns else "offset, m")
     ax.set_aspect("equal", adjustable="datalim")

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from tautwise.errors import TautwiseError
+from tautwise.results_line import Equilibrium, MarkState
 from tautwise.strict import inert
 
 CURVES = ("#1b4f8a", "#c8601a", "#12807a", "#7d3c86", "#8a7400", "#4b5560")
@@ -60,3 +61,15 @@ def margins(ax: Any, labels: list[str]) -> dict[str, float]:
         "top": 1.0 - 0.6 / high,
         "bottom": (0.65 + 0.2 * rows) / high,
     }
+
+
+def carriage_marker(colour: str) -> dict[str, Any]:
+    """How a carriage is drawn on a curve."""
+    look = {"marker": "v", "markersize": 7, "markerfacecolor": "white", "linestyle": "none"}
+    return {**look, "color": colour, "zorder": 6}
+
+
+def carriages_of(line: Equilibrium) -> list[MarkState]:
+    """The marks of a settled line that are carriages."""
+    names = line._line().scenery().carriages
+    return [mark for mark in line.marks if mark.name in names]

@@ -142,13 +142,14 @@ def _exact_ends(window: PullWindow, limit: str) -> list[float]:
 
 
 def _range_shown(window: PullWindow, rows: dict[str, list[Stretch]]) -> tuple[float, float]:
-    """The pulls worth seeing: all ends of bars near the window or the conflict, with some room around."""
+    """The pulls worth seeing: every open stretch, the ends of bars near it or the conflict, some room around."""
     ends = [end for bars in rows.values() for bar in bars for end in _bounded_ends(bar)]
     ends += [end for interval in window.intervals for end in interval]
     ends += [each.needs_N for each in window.conflict if each.needs_N is not None]
     ends = ends or list(window.searched_N)
-    middle = window.specify.horizontal_tension_N if window.specify else float(np.median(ends))
+    middle = window.least_used.horizontal_tension_N if window.least_used else float(np.median(ends))
     near = [end for end in ends if middle / 4.0 <= end <= 4.0 * middle] or ends
+    near += [end for interval in window.intervals for end in interval]
     low, high = min(near), max(near)
     room = 0.25 * max(high - low, 0.2 * middle)
     return max(low - room, window.searched_N[0]), min(high + room, window.searched_N[1])

@@ -61,7 +61,7 @@ def fit(
         raise InputError([Fault(None, None, "unknown", f"{described(unknown)} is not known", "pull or lengths")])
     sheave = next((one.name for one in project.supports if one.hold == "sheave"), None)
     if unknown == "lengths" and sheave is not None:
-        problem = f'natural length runs over the sheave "{shown(sheave)}", so the spans beside it have none of their own'
+        problem = f'natural length runs over the sheave "{shown(sheave)}"; the spans beside it have none of their own'
         raise InputError([Fault(project.source, None, "unknown", problem, "pull")])
     points = survey_from(survey, temperature)
     _refuse_stations(project, points)

@@ -157,11 +157,21 @@ class ConditionPairs(Kind):
 
 
 class Shift(Table):
-    """How the axes of another line stand in this line's: where its station 0, offset 0, elevation 0 lies."""
+    """How the axes of another line stand in this line's: where its station 0, offset 0, elevation 0 lies.
+
+    Of lines that are given by east and north: where its east 0, north 0, elevation 0 lies.
+    """
 
     station_m: Coordinate = Field(0.0, alias="station")
     offset_m: Coordinate = Field(0.0, alias="offset")
+    east_m: Coordinate = Field(0.0, alias="east")
+    north_m: Coordinate = Field(0.0, alias="north")
     elevation_m: Coordinate = Field(0.0, alias="elevation")
+
+    @property
+    def vector_m(self) -> tuple[float, float, float]:
+        """In plan and up; one of the two ways to say it is 0."""
+        return self.station_m + self.east_m, self.offset_m + self.north_m, self.elevation_m
 
 
 class SpacingLimit(BaseLimit):

@@ -111,7 +111,7 @@ class Project(BaseModel):
     _document: Document = PrivateAttr()
     _warnings: tuple[str, ...] = PrivateAttr(default=())
     _others: dict[int, Project] = PrivateAttr(default_factory=dict)
-    _neighbours: dict[tuple[str, str], Any] = PrivateAttr(default_factory=dict)
+    _neighbours: dict[tuple[str, str | None], Any] = PrivateAttr(default_factory=dict)
 
     def __init__(self, **tables: Any) -> None:
         document = Document(_without_none(tables), sources=[_keyword_source(tables)])
@@ -200,6 +200,16 @@ class Project(BaseModel):
 
             self._neighbours[key] = neighbour_of(other, condition)
         return cast("Neighbour", self._neighbours[key])
+
+    def neighbour_as_strung(self, number: int, near: Neighbour) -> Neighbour | None:
+        """The same line as strung, bare; settled once."""
+        other = self._others[number]
+        key = (other.source or "", None)
+        if key not in self._neighbours:
+            from tautwise.neighbours import as_strung
+
+            self._neighbours[key] = as_strung(other, near)
+        return cast("Neighbour | None", self._neighbours[key])
 
     def to_core(self, judging: bool = True) -> dict[str, Any]:
         """The problem as ``tautwise._core.Project`` takes it: plain values in SI, names resolved to indices.

@@ -13,7 +13,9 @@ import numpy as np
 
 from tautwise.errors import NotSettledError
 from tautwise.limits import GROUND, ClearanceLimit, SpacingLimit
+from tautwise.neighbours import stations_beside
 from tautwise.places import Scenery
+from tautwise.solve_line import load_label
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -124,6 +126,11 @@ def scenery_of(project: Project, condition: int) -> Scenery:
         title=project.title,
         others=_other_lines(project, condition),
         turns=project.turns,
+        carriages=tuple(
+            load_label(load, number)
+            for number, load in enumerate(project.conditions[condition].loads)
+            if load.carriage is not None
+        ),
     )
 
 
@@ -140,5 +147,6 @@ def _other_lines(project: Project, condition: int) -> tuple[tuple[str, tuple[tup
         except NotSettledError:
             continue
         label = f"{project.others[number].title or limit.other}: {beside}"
-        drawn[label] = tuple((float(x), float(z)) for x, _, z in places)
+        stations = stations_beside(project, places)
+        drawn[label] = tuple((float(x), float(z)) for x, z in zip(stations, places[:, 2], strict=True))
     return tuple(drawn.items())

@@ -58,6 +58,7 @@ def _read_others(checked: Checked, family: dict[Path, Project | None]) -> None:
         if other is not None:
             _count_sources(checked, other)
             checked.others[number] = other
+            _axes_rule(checked, number, other)
             _pull_rule(checked, path, other)
             _condition_rule(checked, number, limit, other)
 
@@ -106,6 +107,23 @@ def _read(checked: Checked, name: str, family: dict[Path, Project | None]) -> Pr
 def _count_sources(checked: Checked, other: Project) -> None:
     known = {source.name for source in checked.document.sources}
     checked.document.sources.extend(source for source in other._document.sources if source.name not in known)
+
+
+def _axes_rule(checked: Checked, number: int, other: Project) -> None:
+    """Both lines in one kind of axes, and a shift in those."""
+    turning = checked.turning()
+    names = {True: "east and north", False: "station and offset"}
+    if turning != other.turns:
+        problem = f'the supports of "{shown(other.source or "")}" are given by {names[other.turns]}, those here are not'
+        expected = f"both lines by {names[True]}, or both by {names[False]}"
+        checked.fault(("limit", number, "other"), problem, expected)
+        return
+    raw = checked.raw("limit", number).get("shift")
+    for key in ("station", "offset") if turning else ("east", "north"):
+        if isinstance(raw, dict) and raw.get(key) is not None:
+            problem = f"the lines are given by {names[turning]}"
+            example = 'shift = { east = "12 m" }' if turning else 'shift = { offset = "1.5 m" }'
+            checked.fault(("limit", number, "shift", key), problem, names[turning], example)
 
 
 def _pull_rule(checked: Checked, path: KeyPath, other: Project) -> None:

@@ -27,6 +27,7 @@ class Scenery(Record):
     title: of the project.
     others: label and (station, elevation) along each other line that a limit keeps from.
     turns: the route turns in plan, given by east and north.
+    carriages: the marks of a line in this condition that are carriages.
     """
 
     ground: tuple[tuple[float, float], ...]
@@ -36,6 +37,7 @@ class Scenery(Record):
     title: str = ""
     others: tuple[tuple[str, tuple[tuple[float, float], ...]], ...] = ()
     turns: bool = False
+    carriages: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)

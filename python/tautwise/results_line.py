@@ -22,6 +22,7 @@ from tautwise.columns import (
     text_column,
 )
 from tautwise.errors import NotSettledError, TautwiseError
+from tautwise.history import HistoryState
 from tautwise.places import Origin, Places
 from tautwise.records import Record
 from tautwise.sources import SourceLine
@@ -63,6 +64,7 @@ class SpanState(Record):
     low_point: lowest point between the clamps.
     slope_max: greatest rise over run of the line.
     permanent_strain: what the line's history has added to its strain at this temperature and horizontal tension.
+    part_strains: of each part of a curved law, at the span's mean stretch, without what is given as strain.
     small_deflection_sag_m: sag of a taut string under the same loads and horizontal tension, the usual shortcut.
     small_deflection_off_percent: how far that is off the exact sag; None where there is no sag.
     """
@@ -88,6 +90,7 @@ class SpanState(Record):
     small_deflection_sag_m: float | None
     small_deflection_off_percent: float | None
     permanent_strain: float = 0.0
+    part_strains: tuple[float, ...] = ()
 
     @property
     def name(self) -> str:
@@ -175,6 +178,7 @@ class Equilibrium(Record):
     elements, evaluations: of the discretised line, and of its energy by the optimiser.
     newton_steps, exact_steps: Newton steps of the discretised and of the exact line.
     spans, supports, marks: along the line; marks hold the condition's point loads too.
+    state, history: of the line, and what it has lived through; None in the state initial.
 
     >>> empty = Equilibrium.from_json(Equilibrium.failed("hot", 60.0, "slack", "the line carries no tension").to_json())
     >>> empty
@@ -205,6 +209,7 @@ class Equilibrium(Record):
     supports: tuple[SupportState, ...]
     marks: tuple[MarkState, ...]
     state: str = "initial"
+    history: HistoryState | None = None
     origin: Origin | None = field(default=None, compare=False, repr=False)
 
     @classmethod

@@ -18,6 +18,7 @@ RETURNS = (1, 3, 5)
 """How many returns of a wave a crew counts."""
 
 OVER, CLAMPED = "over sheaves", "clamped"
+SHEAVE = "sheave"
 
 
 @dataclass(frozen=True, slots=True)
@@ -95,6 +96,7 @@ class CrewSupport(Record):
     clip_offset_m: natural length from where the line lies on the sheave to where it is clamped, positive ahead.
     clip_offset_stretched_m: as a tape along the hung line shows it.
     block_swing_deg: the sheave's link from the vertical. block_down_N: on the support; negative is uplift.
+    block_across_N, block_resultant_N: of the same load, across (positive to the left), and all of it.
     """
 
     name: str
@@ -103,6 +105,13 @@ class CrewSupport(Record):
     clip_offset_stretched_m: float | None
     block_swing_deg: float | None
     block_down_N: float | None
+    block_across_N: float | None = None
+    block_resultant_N: float | None = None
+
+    @property
+    def lifts(self) -> bool:
+        """Whether the line lifts out of the sheave while it is strung."""
+        return (self.block_down_N or 0.0) < 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -148,6 +157,11 @@ class CrewSheet(Record):
     at_stringing: CrewTemperature
     temperatures: tuple[CrewTemperature, ...]
     warnings: tuple[str, ...] = ()
+
+    @property
+    def in_service(self) -> tuple[str, ...]:
+        """The sheaves that the line runs over for good."""
+        return tuple(support.name for support in self.supports if support.hold == SHEAVE)
 
     @property
     def over_sheaves(self) -> bool:

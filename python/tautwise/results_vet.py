@@ -70,8 +70,9 @@ class LimitState(Record):
 class FileVerdict(Record):
     """The limits of one project, worst first; `file` is its name, `pull_N` the pull it was judged at.
 
-    It holds if every limit holds or is waived. `findings`: waivers that are expired or excuse nothing. `sources`: where
-    its numbers come from, where asked for.
+    It holds if every limit holds or is waived. `findings`: what is hardly meant in the
+    input, waivers that are expired or excuse nothing, what the line shows that is hardly meant, what no limit judges.
+    `sources`: where its numbers come from, where asked for.
     """
 
     file: str
@@ -159,7 +160,8 @@ def limit_table(limits: Iterable[LimitState]) -> Table:
 
 
 def _row(limit: LimitState) -> tuple[float | str | None, ...]:
-    numbers = shown_values(limit.unit, limit.allowed, limit.value, limit.allowed, limit.margin)
+    unit = None if limit.allowed is None else limit.unit  # which of N and kN it would be, nobody knows
+    numbers = shown_values(unit, limit.allowed, limit.value, limit.allowed, limit.margin)
     used = None if limit.utilisation is None else 100.0 * limit.utilisation
     return (limit.id, limit.word.upper() if limit.word == FAILS else limit.word, used, *numbers,
             limit.condition, both_places(limit.place, limit.other_place))  # fmt: skip

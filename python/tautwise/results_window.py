@@ -15,6 +15,7 @@ from tautwise.records import Record
 from tautwise.sources import SourceLine
 
 OPEN_ENDED = "none"
+NEAR_END = 1e-3  # a pull to specify that near an end where nothing can be settled stands on that end
 AT_LEAST, NEVER = "at least", "never"
 LEAST_PRICE_SHOWN = 0.005  # of the end's pull for each metre
 
@@ -24,7 +25,8 @@ class WindowEnd(Record):
     """One end of the window and the limit that governs it.
 
     `limit` None: no limit bounds this side within the pulls searched. The end is then open, which deserves a second
-    look: a limit may be missing. `other_place`: of a spacing, where the other line is closest.
+    look: a limit may be missing. `reason`: why the line cannot be settled beyond an end that no limit sets; the window
+    is open on that side as well. `other_place`: of a spacing, where the other line is closest.
     """
 
     horizontal_tension_N: float
@@ -37,9 +39,11 @@ class WindowEnd(Record):
     utilisation: float | None = None
     station_m: float | None = None
     other_place: str | None = None
+    reason: str | None = None
 
     def __repr__(self) -> str:
         where = f"{self.limit} in {self.condition}" if self.limit else "no limit"
+        where = f"cannot be settled beyond: {self.reason}" if self.reason else where
         return f"WindowEnd {force_text(self.horizontal_tension_N)}: {where}"
 
 
@@ -141,7 +145,10 @@ class PullWindow(Record):
 
     Fields
     ------
-    open: whether there is such a pull. low, high, specify: None where there is none.
+    open: whether there is such a pull. low, high, specify: None where there is none. `specify` is also None where an
+    end has no limit of its own, as no pull can be specified on the strength of that end.
+    least_used: the pull of those searched whose worst use of a limit over the tolerance is smallest; as `specify`.
+    findings: what in this window deserves a second look.
     intervals: every open stretch found, N; `low` and `high` end the one that holds the pull to specify.
     searched_N: the pulls that the search looked at.
     prices: what the pull, a support's height or its station buys at each end.
@@ -178,6 +185,8 @@ class PullWindow(Record):
     origin: WindowOrigin | None = field(default=None, compare=False, repr=False)
     warnings: tuple[str, ...] = ()
     sources: tuple[SourceLine, ...] = ()
+    least_used: PullToSpecify | None = None
+    findings: tuple[str, ...] = ()
 
     def require_open(self) -> PullWindow:
         """The same window.
@@ -207,23 +216,83 @@ class PullWindow(Record):
             text_column("place"),
         )
         rows = (
-            (name, end.horizontal_tension_N, end.limit or OPEN_ENDED, end.condition, end.place)
-            for name, end in ends
-            if end
+            (name, end.horizontal_tension_N, governed_by(end), end.condition, end.place) for name, end in ends if end
         )
         return Table(columns, tuple(rows))
 
     def _head(self) -> str:
-        if not self.open or self.specify is None:
+        if not self.open:
             return f"PullWindow {self.project!r}: shut, {conflict_text(self.conflict)}"
+        if self.specify is None:
+            return f"PullWindow {self.project!r}: open, specify none: an end has no limit"
         return f"PullWindow {self.project!r}: open, specify {force_text(self.specify.horizontal_tension_N)}"
 
     def __repr__(self) -> str:
         lines = self._table().lines() if self.open else conflict_table(self.conflict[:8]).lines()
-        return "\n".join([self._head(), *lines])
+        return "\n".join([self._head(), *lines, *(f"Look again: {text}" for text in self.findings)])
 
     def _repr_html_(self) -> str:
         return (self._table() if self.open else conflict_table(self.conflict)).html(self._head())
+
+
+def governed_by(end: WindowEnd) -> str:
+    """The limit at an end, or that there is none.
+
+    >>> governed_by(WindowEnd(4221.0, None, None, None, reason="everyday: no equilibrium"))
+    'none: cannot be settled beyond'
+    """
+    return end.limit or (f"{OPEN_ENDED}: cannot be settled beyond" if end.reason else OPEN_ENDED)
+
+
+def stands_on_open_end(window: PullWindow) -> bool:
+    """Whether the pull used least means nothing, because an end has no limit of its own.
+
+    Where pulls beyond an end cannot be settled, it still means something between two different limits: the far end has
+    one, another is used most at this end, and the pull with its tolerance keeps clear of it.
+    """
+    ends = (window.low, window.high)
+    for end, far in (ends, ends[::-1]):
+        if end is None or end.limit is not None:
+            continue
+        best, between = window.least_used, far is not None and far.limit is not None
+        if end.reason is None or best is None or far is None or not between or _worst_at(window, end) == far.limit:
+            return True
+        edge = best.least_pull_N if end is window.low else best.most_pull_N
+        if abs(edge / end.horizontal_tension_N - 1.0) < NEAR_END:
+            return True
+    return False
+
+
+def _worst_at(window: PullWindow, end: WindowEnd) -> str | None:
+    """The limit used most at the pull tried last before an end."""
+    low, high = sorted((end.horizontal_tension_N, (window.least_used or end).horizontal_tension_N))
+    inside = [k for k, pull in enumerate(window.pulls_N) if low <= pull <= high]
+    if not inside:
+        return None
+    at = inside[0] if end is window.low else inside[-1]
+    worst = max(window.curves, key=lambda curve: curve.utilisation[at] or 0.0, default=None)
+    return worst.limit if worst else None
+
+
+def second_looks(window: PullWindow) -> tuple[str, ...]:
+    """What in an open window deserves a second look."""
+    looks = []
+    low, high = window.searched_N
+    for end, which, further in ((window.low, "lowest", "lower"), (window.high, "highest", "higher")):
+        if end is not None and end.reason is not None:
+            looks.append(f"no limit sets the {which} pull: a {further} one cannot be settled ({end.reason}).")
+    if window.low and window.low.limit is None and window.low.reason is None:
+        looks.append(f"open-ended below: no limit stops the pull down to {force_text(low)}, the lowest one tried.")
+    if window.low and window.low.limit is None:
+        looks.append("a slack line breaks most clearances; is a clearance or a sag limit missing?")
+    if window.high and window.high.limit is None and window.high.reason is None:
+        looks.append(f"open-ended above: no limit stops the pull up to {force_text(high)}, the highest one tried.")
+        looks.append("a pull always costs strength; is a limit on tension or on a support's load missing?")
+    if len(window.intervals) > 1:
+        looks.append(
+            "the pulls between these stretches break a limit; the ends shown are of the stretch to specify from."
+        )
+    return tuple(looks)
 
 
 def conflict_text(conflict: tuple[Conflict, ...]) -> str:

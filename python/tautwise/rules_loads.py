@@ -191,16 +191,28 @@ def _stretch_places(checked: Checked, path: KeyPath) -> None:
         checked.fault((*path, given[0]), problem, expected, 'from = "10 m", to = "60 m"')
     elif given and sides:
         checked.fault((*path, sides[0]), f"{sides[0]} beside {given[0]}", "a stretch, or spans, not both")
-    elif not given and raw.get("per_length_to") is not None:
-        problem = "a ramp that neither begins nor ends"
+    elif not given and not sides and raw.get("per_length_to") is not None:
         checked.fault(
-            (*path, "per_length_to"), problem, "from and to, or from_length and to_length", 'from = "10 m", to = "60 m"'
+            (*path, "per_length_to"),
+            "a ramp that neither begins nor ends",
+            "from and to, from_length and to_length, or spans",
+            'from = "10 m", to = "60 m"',
         )
     at_most_one(checked, path, Load, _SPAN_KEYS)
     span_names(checked, (*path, "spans"))
+    if raw.get("per_length_to") is not None:
+        _adjoining(checked, (*path, "spans"))
     for key in ("beyond", "before"):
         if isinstance(raw.get(key), str):
             _support_name(checked, (*path, key), raw[key], last=key)
+
+
+def _adjoining(checked: Checked, path: KeyPath) -> None:
+    """A ramp runs over spans that follow one another."""
+    supports = checked.names("support")
+    numbers = sorted({supports.index(name) for name in checked.listed(*path) if name in supports[:-1]})
+    if numbers and numbers[-1] - numbers[0] >= len(numbers):
+        checked.fault(path, "a ramp over spans that do not adjoin", "spans that follow one another, or a ramp for each")
 
 
 def _load_values(checked: Checked, path: KeyPath, load: Load) -> None:

@@ -9,6 +9,7 @@ from __future__ import annotations
 import datetime
 import math
 import os
+import re
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import replace
@@ -17,7 +18,7 @@ from typing import TYPE_CHECKING, Any, NoReturn
 
 from tautwise import _core
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
-from tautwise.findings import findings_of
+from tautwise.findings import changed_places, findings_of, judging_findings
 from tautwise.origins import Judge, LineOrigin
 from tautwise.outcomes import AS_STRUNG, chords_m, explained, refuse_slack
 from tautwise.records import finite
@@ -44,6 +45,7 @@ if TYPE_CHECKING:
     from tautwise.model import Project
 
 Pull = float | str | None
+_COARSE = {"elements_per_span": 4, "gap_relative": 1.0}
 
 
 def settle(project: Project, condition: str | None = None, *, pull: Pull = None, **options: Any) -> Equilibrium:
@@ -131,7 +133,34 @@ def window(project: Project, **options: Any) -> PullWindow:
         raise _undecided(project, found)
     relax = relaxations_of(project, found["relax"])
     answer = window_of(project, found, program(), _core.NLOPT_VERSION, Judge(project, core), relax)
-    return replace(answer, warnings=project.warnings)
+    lines = _window_findings(project, core, answer) if project.limits else ()
+    judging = judging_findings(project, "every pull is in the window")
+    return replace(answer, warnings=(*project.warnings, *lines, *judging))
+
+
+def _window_findings(project: Project, core: _core.Project, answer: PullWindow) -> tuple[str, ...]:
+    """What the line shows at the pull to specify, and what more at the ends that a limit governs.
+
+    Nobody specifies the pull of a window that is open-ended, so nothing is said of it there.
+    """
+    if answer.specify is None:
+        return ()
+    bounded = all(end is not None and end.limit is not None for end in (answer.low, answer.high))
+    found = list(line_findings(project, core, answer.specify.horizontal_tension_N)) if bounded else []
+    said = {_without_numbers(text) for text in found}
+    head = f"{project.source}: " if project.source else ""
+    for word, end in (("lowest", answer.low), ("highest", answer.high)):
+        if end is None or end.limit is None:
+            continue
+        texts = line_findings(project, core, end.horizontal_tension_N)
+        new = [text for text in texts if _without_numbers(text) not in said]
+        found += [f"{head}at the {word} pull, {text.removeprefix(head)}" for text in new]
+    return tuple(found)
+
+
+def _without_numbers(text: str) -> str:
+    """The same for two pulls that differ in nothing but how much."""
+    return re.sub(r"\d[\d.e+-]* ?(?:%|k?N)?", "", text)
 
 
 def vet(project: Project, *, pull: Pull = None, every: bool = False, today: datetime.date | None = None) -> VetReport:
@@ -154,13 +183,34 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False, today: date
     book = WaiverBook(project, today or datetime.date.today())
     states = limit_states(project, rows, every=True, reason=_reasons(project, newtons), excused=book.excused)
     limits = states if every else worst_of_each(states)
-    return _verdict(project, limits, strung(project, pull=pull).horizontal_tension_N, tuple(book.findings(states)))
+    strung_to = strung(project, pull=pull).horizontal_tension_N
+    findings = (*changed_places(states), *book.findings(states))
+    findings += (*line_findings(project, core, newtons), *_vet_findings(project))
+    return _verdict(project, limits, strung_to, (*project.warnings, *findings))
+
+
+def _vet_findings(project: Project) -> tuple[str, ...]:
+    return judging_findings(project, "there is nothing to vet")
+
+
+def line_findings(project: Project, core: _core.Project, pull: float | None) -> tuple[str, ...]:
+    """What the line shows that is hardly meant, in the conditions in which it settles; `pull` in N.
+
+    A coarse mesh does: findings are read off the exact line, which is in balance whatever the mesh.
+    """
+    with errors_of(project, pull):
+        found = [core.settle(index, pull=pull, **_COARSE) for index in range(len(project.conditions))]
+    origin = [LineOrigin(project, index, pull, core) for index in range(len(found))]
+    lines = [equilibrium_of(project, *each) for each in zip(range(len(found)), found, origin, strict=True)]
+    strung_to = pull if pull is not None else project.stringing.horizontal_tension_N
+    return findings_of(project, lines, strung_to)
 
 
 def undecided(project: Project, reason: str, *, pull: Pull = None) -> VetReport:
     """The report of a project whose line could not be settled at all: every limit undecided, for one reason."""
     given = project.stringing.horizontal_tension_N if pull is None else pull_of(project, pull)
-    return _verdict(project, limit_states(project, (), every=False, reason=lambda row: reason), given)
+    findings = (*project.warnings, *_vet_findings(project))  # the reason says why the line did not settle
+    return _verdict(project, limit_states(project, (), every=False, reason=lambda row: reason), given, findings)
 
 
 def core_of(project: Project) -> _core.Project:
@@ -311,13 +361,27 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
     raise InputError(faults or [Fault(project.source, None, "", words, "marks and loads that lie on the line")])
 
 
-def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
-    """First and last station, m, of the line as strung, bare: posts lean."""
+def course_as_strung(project: Project) -> Any:
+    """The exact line as strung, bare: arcs (n, 14), as another project's course.
+
+    Raises
+    ------
+    InputError, NotSettledError: it has no equilibrium.
+    """
+    with errors_of(project, None, AS_STRUNG):
+        return _core.Project(_as_strung(project)).course(0)
+
+
+def _as_strung(project: Project) -> dict[str, Any]:
     bare = {"temperature_degC": project.stringing.temperature_degC}
     core = project.to_core(judging=False)
-    problem = {**core, "conditions": [bare], "marks": [], "limits": [], "history": None}
+    return {**core, "conditions": [bare], "marks": [], "limits": [], "history": None}
+
+
+def _strung_range(project: Project, pull: float | None) -> tuple[float, float]:
+    """First and last station, m, of the line as strung, bare: posts lean."""
     with errors_of(project, pull, AS_STRUNG):
-        supports = _core.Project(problem).settle(0, pull=pull)["supports"]
+        supports = _core.Project(_as_strung(project)).settle(0, pull=pull)["supports"]
     if not supports:
         return -math.inf, math.inf
     if project.turns:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 from tautwise.columns import forces_text
@@ -20,6 +21,8 @@ from tautwise.results_window import (
     UtilisationCurve,
     WindowEnd,
     WindowOrigin,
+    second_looks,
+    stands_on_open_end,
 )
 
 if TYPE_CHECKING:
@@ -77,13 +80,14 @@ def window_of(
     """The record of a searched window; `relax` for one that is shut."""
     is_open = bool(found["open"])
     low, high = found["range_N"]
-    return PullWindow(
+    best = _specify(project, found["specify"]) if found["status"] != "shut" else None
+    window = PullWindow(
         open=is_open,
         project=project.title,
         input_sha256=project.input_sha256,
         low=_end(project, found["low"]) if is_open else None,
         high=_end(project, found["high"]) if is_open else None,
-        specify=_specify(project, found["specify"]) if found["status"] != "shut" else None,
+        specify=best,
         prices=tuple(_price(project, row) for row in found["prices"]) if is_open else (),
         conflict=() if is_open else tuple(_conflict(project, row) for row in found["conflict"]),
         relax=() if is_open else relax,
@@ -100,7 +104,11 @@ def window_of(
         nlopt=nlopt,
         caution=CAUTION,
         origin=origin,
+        least_used=best,
     )
+    if not is_open:
+        return window
+    return replace(window, specify=None if stands_on_open_end(window) else best, findings=second_looks(window))
 
 
 def place_of(project: Project, row: Row) -> str | None:
@@ -119,23 +127,26 @@ def place_of(project: Project, row: Row) -> str | None:
 
 
 def other_place_of(project: Project, row: Row) -> str | None:
-    """Where another line is closest, in words: its file, and a station in one of its spans."""
+    """Where another line is closest, in words: its file and condition, and a station in one of its spans."""
     number, at = row.get("limit"), finite(row.get("other_at_m"))
     limit = None if number is None else project.limits[number]
     if at is None or number is None or not isinstance(limit, SpacingLimit):
         return None
-    condition = project.conditions[row["condition"]].name
-    near = project.neighbour(number, limit.other_condition_for(condition))
-    return f"{limit.other}: {near.place(at, row['other_position_m'], limit.shift)}"
+    beside = limit.other_condition_for(project.conditions[row["condition"]].name)
+    near = project.neighbour(number, beside)
+    return f"{limit.other}, {beside}: {near.place(at, row['other_position_m'], limit.shift)}"
 
 
 def _held_at(project: Project, row: Row, station: float) -> str | None:
-    """The support at whose clamp a station is; hangers swing and posts lean by less than this allows."""
+    """The support at whose clamp a station is; hangers swing, posts and springs give by less than this allows."""
     ends = project.supports[row["span"]], project.supports[row["span"] + 1]
     span = ends[1].station_m - ends[0].station_m
     reach = {"anchor": 1e-6 * span, "post": POST_LEANS_MOST * span}
     for support in ends:
-        if abs(station - support.station_m) <= reach.get(support.hold, support.hanger_length_m or 0.0):
+        springs = support.stiffness_along_N_per_m or support.stiffness_across_N_per_m
+        springs = springs or support.stiffness_vertical_N_per_m
+        hold = "post" if support.hold == "anchor" and springs else support.hold
+        if abs(station - support.station_m) <= reach.get(hold, support.hanger_length_m or 0.0):
             return support.name
     return None
 
@@ -207,7 +218,7 @@ def _end(project: Project, row: Row | None) -> WindowEnd | None:
         return None
     limit, condition = _names(project, row)
     if limit is None:
-        return WindowEnd(float(row["pull_N"]), None, None, None)
+        return WindowEnd(float(row["pull_N"]), None, None, None, reason=_beyond(row, condition))
     kind, unit = _unit(project, row)
     return WindowEnd(
         float(row["pull_N"]),
@@ -221,6 +232,15 @@ def _end(project: Project, row: Row | None) -> WindowEnd | None:
         finite(row.get("station_m")),
         other_place_of(project, row),
     )
+
+
+def _beyond(row: Row, condition: str | None) -> str | None:
+    """Why pulls beyond an end cannot be settled, and in which condition."""
+    status = row.get("why", "ok")
+    if status == "ok":
+        return None
+    text = "a load, a mark or a limit's place is off the line" if status == "error_place" else str(row["why_text"])
+    return f"{condition}: {text}" if condition else text
 
 
 def _specify(project: Project, row: Row | None) -> PullToSpecify | None:

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from tautwise.columns import force_text
+from tautwise.history import history_of
 from tautwise.places import Origin
 from tautwise.records import finite
 from tautwise.results_line import SETTLED, Equilibrium, LowPoint, MarkState, SpanState, SupportState
@@ -48,7 +49,8 @@ def equilibrium_of(project: Project, index: int, found: Mapping[str, Any], origi
     supports = tuple(_support(name, state) for name, state in zip(names, found["supports"], strict=True))
     return Equilibrium(
         head[0], SETTLED, head[2], head[3], **energies, **counts,
-        state=condition.state, spans=spans, supports=supports, marks=_marks(project, index, found), origin=origin,
+        state=condition.state, history=history_of(project, condition, found["spans"]),
+        spans=spans, supports=supports, marks=_marks(project, index, found), origin=origin,
     )  # fmt: skip
 
 
@@ -80,6 +82,7 @@ def _span(start: str, end: str, state: Mapping[str, Any]) -> SpanState:
         slope_max=finite(state["slope_max"]),
         small_deflection_sag_m=small,
         permanent_strain=float(state["permanent_strain"]),
+        part_strains=tuple(float(part["strain"]) for part in state["lived"]),
         small_deflection_off_percent=_off_percent(small, float(state["sag_m"]), float(state["span_m"])),
     )
 

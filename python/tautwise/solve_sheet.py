@@ -23,7 +23,7 @@ from tautwise.results_sheet import (
     CrewTemperature,
     SpanReading,
 )
-from tautwise.solve import Pull, errors_of, line_core_of, program, pull_of
+from tautwise.solve import Pull, errors_of, line_core_of, line_findings, program, pull_of
 from tautwise.strict import Refused
 from tautwise.units import quantity
 
@@ -53,9 +53,10 @@ def sheet(project: Project, temperatures_degC: Temperatures = None, *, pull: Pul
     """
     degC = _temperatures(project, temperatures_degC)
     newtons = pull_of(project, pull)
+    core = line_core_of(project)
     with errors_of(project, newtons, AS_STRUNG):
-        found = line_core_of(project).sheet(np.array(degC, dtype=np.float64), pull=newtons, **options)
-    return _sheet_of(project, found)
+        found = core.sheet(np.array(degC, dtype=np.float64), pull=newtons, **options)
+    return _sheet_of(project, found, line_findings(project, core, newtons))
 
 
 def _temperatures(project: Project, given: Temperatures) -> list[float]:
@@ -83,7 +84,7 @@ def _bad(problem: str, expected: str) -> InputError:
     return InputError([Fault(None, None, "temperature", problem, expected, '"25 degC"')])
 
 
-def _sheet_of(project: Project, found: Mapping[str, Any]) -> CrewSheet:
+def _sheet_of(project: Project, found: Mapping[str, Any], findings: tuple[str, ...]) -> CrewSheet:
     stringing = project.stringing
     spans = _spans(project, found)
     states = [_temperature(row, over=found["over_sheaves"]) for row in found["temperatures"]]
@@ -104,7 +105,7 @@ def _sheet_of(project: Project, found: Mapping[str, Any]) -> CrewSheet:
         supports=supports,
         at_stringing=states[-1],
         temperatures=tuple(states[:-1]),
-        warnings=(*project.warnings, *_lifted(project, supports), *_unsettled(project, states)),
+        warnings=(*project.warnings, *_lifted(project, supports), *_unsettled(project, states), *findings),
     )
 
 
@@ -146,6 +147,8 @@ def _support(support: Any, row: Mapping[str, Any]) -> CrewSupport:
         finite(row["offset_stretched_m"]) if clamped else None,
         None if swing is None else math.degrees(swing),
         finite(row["block_down_N"]),
+        finite(row["block_across_N"]),
+        finite(row["block_resultant_N"]),
     )
 
 
@@ -182,7 +185,7 @@ def _lifted(project: Project, supports: Iterable[CrewSupport]) -> list[str]:
         f"{head}the line lifts out of the sheave at {each.name!r} while it is strung: it pulls up with "
         f"{force_text(-(each.block_down_N or 0.0))}"
         for each in list(supports)[1:-1]
-        if each.hold != "anchor" and (each.block_down_N or 0.0) < 0.0
+        if each.hold != "anchor" and each.lifts
     ]
 
 

@@ -16,9 +16,19 @@ if TYPE_CHECKING:
 T = TypeVar("T")
 
 NOT_STATED = "not stated"
+ONE_STATE = "the line is linear and without bedding_in, so that initial and final are judged on the same one"
 
 _ELASTIC = "elastic catenary: H. M. Irvine, Cable Structures, MIT Press 1981, chapter 1"
 _PROOF = "complementary energy, the Legendre dual of the potential energy; convex, since a line bears no compression"
+_CURVES = "stress-strain curves up to the fourth power, the parts under one stretch: strain summation, CIGRE TB 324"
+_QUADRATURE = "stretch along the line by quadrature, cut where the law changes: Gauss, Legendre"
+_CURVE_EXPANSION = "each part's own thermal strain, from the test temperature of the curves: strain summation"
+_HISTORY = "unloading along the final modulus from the greatest mean strain of each span in its history"
+_CREEP = "creep curve in place of the loading curve, in the everyday condition; the larger of load and creep stays"
+_CREEP_LAW = "creep strain c t^n at time t, n = 0 where it is given as one strain: power law"
+_BEDDING = "bedding-in strain added to every state but the initial one: as given"
+_SHEAVES = "natural length runs over sheaves until the tension is equal on both sides: balance of moments"
+_FRICTION = "T_1 = T_2 exp(mu theta) on a sheave with friction, for the crew sheet's range: Euler, Eytelwein"
 _EXPANSION = "strain T / EA + expansion (t - t0) on the natural length, t0 the stringing temperature: Hooke's law"
 _GRAVITY = "mass times 9.80665 m/s2, standard gravity: CGPM 1901"
 _ICE = "exact ring of ice, pi t (d + t) rho g, t radial: geometry"
@@ -71,7 +81,7 @@ def _waivers(project: Project) -> Iterator[SourceLine]:
 
 
 def _methods(project: Project) -> Iterator[SourceLine]:
-    uses = [_ELASTIC, _PROOF, _EXPANSION]
+    uses = [_ELASTIC, _PROOF, *_law(project), *_sheaves(project)]
     if project.line.given_weight_N_per_m is None:
         uses.append(_GRAVITY)
     if any(one.ice is not None for one in project.conditions):
@@ -86,6 +96,34 @@ def _methods(project: Project) -> Iterator[SourceLine]:
     for text in (*uses, _WINDOW):
         method, _, source = text.partition(": ")
         yield SourceLine("method", "", f"{method}: {source}" if source else method, "")
+
+
+def _law(project: Project) -> Iterator[str]:
+    """How the line stretches, and what of it stays."""
+    line = project.line
+    if line.parts:
+        yield from (_CURVES, _QUADRATURE, _CURVE_EXPANSION)
+    else:
+        yield _EXPANSION
+    states = {condition.state for condition in project.conditions} - {"initial"}
+    if not states:
+        return
+    if line.parts:
+        yield _HISTORY
+    if "after creep" in states and any(part.creep_Pa is not None for part in line.parts):
+        yield _CREEP
+    if "after creep" in states and (line.creep_strain or line.creep_law is not None):
+        yield _CREEP_LAW
+    if line.bedding_in:
+        yield _BEDDING
+
+
+def _sheaves(project: Project) -> Iterator[str]:
+    in_service = [support for support in project.supports if support.hold == "sheave"]
+    if in_service or project.stringing.over_sheaves:
+        yield _SHEAVES
+        if project.stringing.friction or any(support.sheave_friction for support in in_service):
+            yield _FRICTION
 
 
 def _adds(condition: Condition) -> bool:

@@ -73,6 +73,7 @@ temperature = "-30 degC"
 [[condition]]
 name = "ice and wind"
 temperature = "-5 degC"                                    # state = "final" | "after creep": after a [history]
+                                                           # (default: after every condition, creep as strung)
 ice = { thickness = "10 mm", density = "900 kg/m^3" }     # radial thickness
 wind = { pressure = "300 Pa", drag = 1.0 }                # or speed = "22 m/s"; square across the line
 # load = [ { force = "500 N", at = "150 m" }, { per_length = "20 N/m", from = "40 m", to = "80 m" } ]

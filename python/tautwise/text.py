@@ -11,6 +11,8 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from tautwise.columns import Table, force_column, force_text, length_column, number_column, plural, text_column
+from tautwise.findings import bare_texts
+from tautwise.history import history_words
 from tautwise.results_line import Equilibrium, SettleReport, SupportState
 from tautwise.strict import shown
 from tautwise.words import condition_words
@@ -20,6 +22,8 @@ if TYPE_CHECKING:
 
 GAP_IN_ROUNDING = 1e-14  # below it the two energies differ by rounding alone
 BLOWN_M = 5e-4  # blow-out below half a millimetre is not worth a column
+LOOKS_MOST = 8
+TEXT_MOST = 400  # of a finding, which holds names from the file
 LOADED_SHARE = 1e-3  # of the tension: a difference across a mark that is worth a column
 
 Row = tuple[float | str | None, ...]
@@ -73,6 +77,13 @@ def quoted(name: object) -> str:
     return shlex.quote(shown(str(name), 200))
 
 
+def look_again_lines(project: Project, findings: Sequence[str]) -> list[str]:
+    """What deserves a second look; the file stands in the heading already."""
+    texts = bare_texts(project, findings)
+    more = [f"  and {plural(len(texts) - LOOKS_MOST, 'more warning')}."] if len(texts) > LOOKS_MOST else []
+    return ["", *(f"  Look again: {shown(text, TEXT_MOST)}" for text in texts[:LOOKS_MOST]), *more] if texts else []
+
+
 def caution(text: str, ink: Ink) -> list[str]:
     """The caution, at the foot of every answer."""
     return ["", ink.quiet(text)]
@@ -84,6 +95,7 @@ def settle_text(report: SettleReport, project: Project, ink: Ink, pull: str | No
     lines = [*heading(project, ink), *_strung_lines(report, project), "", *_summary(ranked, project, ink)]
     for each in ranked:
         lines += ["", *condition_text(each, project, ink)]
+    lines += look_again_lines(project, report.warnings)
     file = quoted(project.source or "FILE")
     at_pull = f" --pull {quoted(pull)}" if pull else ""
     steps = [("judge every limit at this pull", f"tautwise vet {file}{at_pull}")] if project.limits else []
@@ -110,7 +122,10 @@ def _stretch_lines(found: Equilibrium) -> list[str]:
     longer = [100.0 * span.permanent_strain for span in found.spans]
     least, most = f"{min(longer):.4f}", f"{max(longer):.4f}"
     much = most if least == most else f"{least} to {most}"
-    return [f"  Stretched for good: {much} % longer at this tension and temperature than as strung."]
+    lines = [f"  Stretched for good: {much} % longer at this tension and temperature than as strung."]
+    if found.history is not None:
+        lines += [f"  History: {history_words(found.history)}."]
+    return lines
 
 
 def _strung_lines(report: SettleReport, project: Project) -> list[str]:
@@ -140,7 +155,7 @@ def _summary(ranked: Sequence[Equilibrium], project: Project, ink: Ink) -> list[
         text_column("state"),
     ]
     rows: list[Row] = [
-        (each.name, each.temperature_degC, each.tension_max_N, share, each.sag_max_m, _deepest(each), each.status)
+        (each.name, each.temperature_degC, each.tension_max_N, share, each.sag_max_m, _deepest(each), _words(each))
         for each, share in zip(ranked, shares, strict=True)
     ]
     if strength is None:
@@ -155,6 +170,11 @@ def _broken_lines(ranked: Sequence[Equilibrium], strength: float | None, ink: In
     if strength is None or not broken:
         return []
     return [ink.alarm(f"  Above its breaking strength of {force_text(strength)}: {', '.join(broken)}.")]
+
+
+def _words(found: Equilibrium) -> str:
+    """The status of a condition as words."""
+    return found.status.replace("_", " ")
 
 
 def _deepest(found: Equilibrium) -> str | None:

@@ -32,15 +32,15 @@ from tautwise.results_vet import (
 from tautwise.results_window import (
     AT_LEAST,
     NEVER,
-    OPEN_ENDED,
     PullToSpecify,
     PullWindow,
     Relaxation,
     WindowEnd,
     conflict_table,
+    governed_by,
     price_table,
 )
-from tautwise.text import Ink, caution, heading, next_steps, quoted
+from tautwise.text import Ink, caution, heading, look_again_lines, next_steps, quoted
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -60,7 +60,7 @@ def vet_text(report: VetReport, projects: Sequence[Project], ink: Ink) -> list[s
     if len(pairs) > 1:
         lines += [_files_head(report, ink), *_file_table([file for file, _ in pairs]).lines(), ""]
     for file, project in pairs:
-        lines += [*heading(project, ink), *_verdict_lines(file, ink), ""]
+        lines += [*heading(project, ink), *_verdict_lines(file, project, ink), ""]
     failing = [project for file, project in pairs if not file.holds]
     meant = quoted((failing or list(projects))[0].source or "FILE") if projects else "FILE"
     aim = "find the pulls that keep every limit" if failing else "see how far the pull may move"
@@ -78,16 +78,17 @@ def best_so_far(window: PullWindow | None) -> str:
 
 def _open_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [_open_head(window, ink), "", *_end_table(window).lines(), *_second_looks(window)]
-    if window.specify:
+    lines += look_again_lines(project, window.warnings)
+    if window.least_used:
         lines += ["", *_specify_lines(window, ink)]
     prices = price_table(window)
     if prices.rows:
         head = "What moves the ends, pull for each metre, until another limit takes over"
         lines += ["", ink.strong(head), *prices.lines()]
     file = quoted(project.source or "FILE")
-    if _is_open_ended(window):
+    if window.specify is None:
         return [*lines, *next_steps([("add the limit that is missing, then", f"tautwise window {file}")], ink)]
-    pull = f'"{_specified(window.specify)[0]}"' if window.specify else '"... kN"'
+    pull = f'"{_specified(window.specify)[0]}"'
     steps = [
         ("judge every limit at this pull", f"tautwise vet {file} --pull {pull}"),
         ("see the line hang at this pull", f"tautwise settle {file} --pull {pull}"),
@@ -130,7 +131,7 @@ def _end_table(window: PullWindow) -> Table:
         (
             name,
             cut(end.horizontal_tension_N / divisor, decimals, up=name == "lowest"),
-            end.limit or OPEN_ENDED,
+            governed_by(end),
             *shown_values(end.unit, end.allowed, end.value, end.allowed),
             end.condition,
             both_places(end.place, end.other_place),
@@ -140,34 +141,18 @@ def _end_table(window: PullWindow) -> Table:
     return Table(columns, rows)
 
 
-def _is_open_ended(window: PullWindow) -> bool:
-    return any(end is not None and end.limit is None for end in (window.low, window.high))
-
-
 def _second_looks(window: PullWindow) -> list[str]:
-    looks = []
-    low, high = window.searched_N
-    if window.low and window.low.limit is None:
-        looks.append(f"open-ended below: no limit stops the pull down to {force_text(low)}, the lowest one tried.")
-        looks.append("a slack line breaks most clearances; is a clearance or a sag limit missing?")
-    if window.high and window.high.limit is None:
-        looks.append(f"open-ended above: no limit stops the pull up to {force_text(high)}, the highest one tried.")
-        looks.append("a pull always costs strength; is a limit on tension or on a support's load missing?")
-    if len(window.intervals) > 1:
-        looks.append(
-            "the pulls between these stretches break a limit; the ends shown are of the stretch to specify from."
-        )
-    return ["", *(f"  Look again: {text}" for text in looks)] if looks else []
+    return ["", *(f"  Look again: {text}" for text in window.findings)] if window.findings else []
 
 
 def _specify_lines(window: PullWindow, ink: Ink) -> list[str]:
-    best = window.specify
+    best = window.specify or window.least_used
     if best is None:
         return []
     pull, band = _specified(best)
-    word = "Of the pulls tried, the limits are used least at" if _is_open_ended(window) else "Specify"
+    word = "Specify" if window.specify else "Of the pulls tried, the limits are used least at"
     lines = [ink.strong(f"{word} {pull} {band}, bare line at {best.temperature_degC:.4g} degC"), *_edge_lines(best)]
-    if _is_open_ended(window):
+    if window.specify is None:
         lines.append(ink.alarm("  Specify none before the open-ended side has its limit."))
     if best.worst_utilisation > 1.0:
         lines.append(ink.alarm("  The window is narrower than the tolerance: at its edges a limit fails."))
@@ -206,7 +191,7 @@ def _shut_lines(window: PullWindow, project: Project, ink: Ink) -> list[str]:
     lines = [
         ink.alarm("SHUT: no pull keeps every limit") + f" (tried {tried}, bare at {window.temperature_degC:.4g} degC)"
     ]
-    lines += _conflict_lines(window, ink)
+    lines += [*_conflict_lines(window, ink), *look_again_lines(project, window.warnings)]
     file = quoted(project.source or "FILE")
     if not window.relax:
         lines += ["", "No single change of a limit or a support was found that opens it."]
@@ -281,9 +266,9 @@ def _near(window: PullWindow, each: Relaxation, divisor: float, decimals: int) -
     return cut(each.pull_N / divisor, decimals, up=bound.side == AT_LEAST)
 
 
-def _verdict_lines(file: FileVerdict, ink: Ink) -> list[str]:
+def _verdict_lines(file: FileVerdict, project: Project, ink: Ink) -> list[str]:
     lines = [_verdict_head(file, ink)]
-    findings = [f"Look again: {text}" for text in file.findings]
+    findings = look_again_lines(project, file.findings)
     if not file.limits:
         return [*lines, *findings]
     lines += ["", *(_accented(line, ink) for line in limit_table(file.limits).lines())]

@@ -8,9 +8,10 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from tautwise.columns import Column, Table, force_column, force_text, number_column, text_column
-from tautwise.results_sheet import CrewSheet, CrewTemperature
+from tautwise.results_sheet import CrewSheet, CrewTemperature, SpanReading
 from tautwise.strict import inert
-from tautwise.text import Ink, caution, heading, next_steps, quoted
+from tautwise.tables import PLUMB
+from tautwise.text import Ink, caution, heading, look_again_lines, next_steps, quoted
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -18,14 +19,16 @@ if TYPE_CHECKING:
 SPANS_IN_A_ROW = 6
 FLAT_M = 1.0  # sags below it are measured to the millimetre
 FROM = ("from first", "from last")
+MARKED = "  Marked under the pull: the same piece as a tape shows it while the pull at that temperature stretches it."
 FORMULA_SIGNS = ("=", "+", "-", "@")
 
 Row = tuple[float | str | None, ...]
+Readings = tuple[SpanReading, ...]
 
 
 def sheet_text(sheet: CrewSheet, project: Project, ink: Ink) -> list[str]:
     """The sheet: lengths, pull, sags at each temperature, clipping offsets, return waves."""
-    lines = [*heading(project, ink), *_pull_lines(sheet, ink), ""]
+    lines = [*heading(project, ink), *_pull_lines(sheet, project, ink), ""]
     lines += [ink.strong("Lengths to cut, unstressed at the stringing temperature"), *_section_lines(sheet)]
     lines += ["", *_span_lines(sheet)]
     if sheet.over_sheaves:
@@ -33,6 +36,7 @@ def sheet_text(sheet: CrewSheet, project: Project, ink: Ink) -> list[str]:
     if any(span.pulled_from_first for span in sheet.spans):
         lines += ["", *_friction_lines(sheet, ink)]
     lines += ["", *_clamped_lines(sheet, ink), "", *_wave_lines(sheet, ink)]
+    lines += look_again_lines(project, sheet.warnings)
     file = quoted(project.source or "FILE")
     steps = [
         ("every condition in full", f"tautwise settle {file}"),
@@ -62,19 +66,32 @@ def _cell(value: float | str | None) -> str:
     return "" if value is None else repr(value)
 
 
-def _pull_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
-    plumb = ", hangers plumb" if any(support.hold == "hanger" for support in sheet.supports) else ""
-    where = "pulled in over sheaves" if sheet.over_sheaves else f"strung clamped{plumb}"
-    then = f", then clamped {sheet.clip}" if sheet.over_sheaves else ""
-    head = ink.strong(f"Bare line at {sheet.stringing_degC:.4g} degC, {where}{then}")
+def _pull_lines(sheet: CrewSheet, project: Project, ink: Ink) -> list[str]:
+    head = ink.strong(f"Bare line at {sheet.stringing_degC:.4g} degC, {_method_words(sheet, project)}")
     if sheet.horizontal_tension_N is None:
         return [head, "  Pull until the sags are those below."]
     pull = force_text(sheet.horizontal_tension_N)
     keep = f" +/- {sheet.tolerance_percent:.4g} %" if sheet.tolerance_percent else ""
     first = ", ".join(section.from_support for section in sheet.sections)
-    span = "in the first span" if sheet.over_sheaves else "in every span"
-    after = f" after {first}" if sheet.over_sheaves and len(sheet.sections) > 1 else ""
+    differs = sheet.over_sheaves or bool(sheet.in_service)
+    span = "in the first span" if differs else "in every span"
+    after = f" after {first}" if differs and len(sheet.sections) > 1 else ""
     return [head, f"  Pull: {pull} horizontal tension{keep} {span}{after}."]
+
+
+def _method_words(sheet: CrewSheet, project: Project) -> str:
+    """How the line is strung, and what is clamped in the end; hangers at an angle lean and are not called plumb."""
+    straight = not project.turns and len({support.offset_m for support in project.supports}) == 1
+    clamped = any(support.hold in ("hanger", "post") for support in sheet.supports)
+    runs = f"runs over sheaves in service ({', '.join(sheet.in_service[:SPANS_IN_A_ROW])})" if sheet.in_service else ""
+    if sheet.over_sheaves:
+        clip = sheet.clip if straight or sheet.clip != PLUMB else "with one horizontal tension"
+        then = f"then clamped {clip}" if clamped or not runs else ""
+        return ", ".join(filter(None, ("pulled in over sheaves", then, runs)))
+    if runs and not clamped:
+        return runs
+    hung = straight and any(support.hold == "hanger" for support in sheet.supports)
+    return ", ".join(filter(None, ("strung clamped", "hangers plumb" if hung else "", runs)))
 
 
 def _section_lines(sheet: CrewSheet) -> list[str]:
@@ -99,7 +116,7 @@ def _span_lines(sheet: CrewSheet) -> list[str]:
         number_column("natural length", "m", 3),
         number_column("marked under the pull", "m", 3),
     )
-    return Table(columns, tuple(rows)).lines()
+    return [*Table(columns, tuple(rows)).lines(), MARKED]
 
 
 def _day_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
@@ -108,12 +125,19 @@ def _day_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
 
 
 def _clamped_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
+    if sheet.in_service:
+        pulls, sags = (ink.strong(f"In service: {what}") for what in ("horizontal tension of each span", "sags"))
+        by_span = _by_temperature(sheet, on_sheaves=False, pulls=True)
+        return [pulls, *by_span, "", sags, *_by_temperature(sheet, on_sheaves=False, pulls=False)]
     head = ink.strong("Clamped: horizontal tension of a section's first span, and sags")
     return [head, *_by_temperature(sheet, on_sheaves=False)]
 
 
-def _by_temperature(sheet: CrewSheet, *, on_sheaves: bool) -> list[str]:
-    """Temperatures down, spans across, a few spans in a row of the page."""
+def _by_temperature(sheet: CrewSheet, *, on_sheaves: bool, pulls: bool | None = None) -> list[str]:
+    """Temperatures down, spans across, a few spans in a row of the page.
+
+    pulls: None is the first span's tension and every sag, True every tension alone, False every sag alone.
+    """
     states = sorted({*sheet.temperatures, sheet.at_stringing}, key=lambda state: state.temperature_degC)
     lines: list[str] = []
     begin = 0
@@ -122,16 +146,21 @@ def _by_temperature(sheet: CrewSheet, *, on_sheaves: bool) -> list[str]:
         for first in range(begin, end, SPANS_IN_A_ROW):
             numbers = range(first, min(first + SPANS_IN_A_ROW, end))
             lines += [""] if lines else []
-            lines += _block(sheet, states, begin, numbers, on_sheaves=on_sheaves)
+            readings = [state.over_sheaves if on_sheaves else state.clamped for state in states]
+            lines += (
+                _pull_block(sheet, states, numbers, readings)
+                if pulls
+                else _block(sheet, states, numbers, readings, None if pulls is False else begin)
+            )
         begin = end
     return lines
 
 
 def _block(
-    sheet: CrewSheet, states: Sequence[CrewTemperature], begin: int, numbers: range, *, on_sheaves: bool
+    sheet: CrewSheet, states: Sequence[CrewTemperature], numbers: range, readings: Sequence[Readings], first: int | None
 ) -> list[str]:
-    readings = [state.over_sheaves if on_sheaves else state.clamped for state in states]
-    pulls = [each[begin].horizontal_tension_N if each else None for each in readings]
+    """Sags of some spans, beside the tension of the section's first one where it is asked for."""
+    pulls = [each[first].horizontal_tension_N if each and first is not None else None for each in readings]
     columns: list[Column] = [number_column("line at", "degC", 1), force_column("tension", pulls)]
     for number in numbers:
         flat = all(each[number].sag_m < FLAT_M for each in readings if each)
@@ -140,26 +169,51 @@ def _block(
         (state.temperature_degC, pull, *(each[number].sag_m if each else None for number in numbers))
         for state, pull, each in zip(states, pulls, readings, strict=True)
     ]
+    if first is None:
+        del columns[1]
+        rows = [(row[0], *row[2:]) for row in rows]
     return Table(tuple(columns), tuple(rows)).lines()
 
 
-def _offset_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
+def _pull_block(
+    sheet: CrewSheet, states: Sequence[CrewTemperature], numbers: range, readings: Sequence[Readings]
+) -> list[str]:
+    """Horizontal tensions of some spans."""
+    every = [each[number].horizontal_tension_N for each in readings if each for number in numbers]
+    columns = (
+        number_column("line at", "degC", 1),
+        *(force_column(sheet.spans[number].name, every) for number in numbers),
+    )
     rows: list[Row] = [
-        (s.name, s.clip_offset_stretched_m, _side(s.clip_offset_stretched_m), s.block_swing_deg, s.block_down_N)
-        for s in sheet.supports
-        if s.clip_offset_m is not None
+        (state.temperature_degC, *(each[number].horizontal_tension_N if each else None for number in numbers))
+        for state, each in zip(states, readings, strict=True)
     ]
+    return Table(columns, tuple(rows)).lines()
+
+
+def _offset_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
+    listed = [each for each in sheet.supports if each.clip_offset_m is not None]
+    lifts = any(each.lifts for each in listed)
+    rows: list[Row] = [
+        (s.name, None if s.clip_offset_stretched_m is None else abs(s.clip_offset_stretched_m),
+         _side(s.clip_offset_stretched_m), s.block_swing_deg, s.block_down_N, s.block_across_N, s.block_resultant_N,
+         *(["LIFTS" if s.lifts else None] if lifts else []))
+        for s in listed
+    ]  # fmt: skip
+    loads = [each.block_resultant_N for each in listed]
     columns = (
         text_column("support"),
         number_column("clip at", "m", 3),
         text_column("of the mark at the sheave"),
         number_column("sheave leans", "deg", 1),
-        force_column("load on it", [s.block_down_N for s in sheet.supports]),
+        *(force_column(part, loads) for part in ("load down", "across", "in all")),
+        *([text_column("look again")] if lifts else []),
     )
     head = ink.strong(f"Clip off, along the line from where it lies on the sheave (at {sheet.stringing_degC:.4g} degC)")
     if not rows:
         return [head, "  Nothing is clamped between the ends."]
-    return [head, *Table(columns, tuple(rows)).lines(), "  Mark every sheave before the first is clamped."]
+    note = "  Mark every sheave before the first is clamped. Loads are on the sheave's hold; across, to the left."
+    return [head, *Table(columns, tuple(rows)).lines(), note]
 
 
 def _side(offset: float | None) -> str:
@@ -188,7 +242,8 @@ def _friction_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
 
 def _wave_lines(sheet: CrewSheet, ink: Ink) -> list[str]:
     readings = sheet.at_stringing.over_sheaves or sheet.at_stringing.clamped
-    state = "on the sheaves" if sheet.at_stringing.over_sheaves else "clamped"
+    state = "in service" if sheet.in_service else "clamped"
+    state = "on the sheaves" if sheet.at_stringing.over_sheaves else state
     rows: list[Row] = [
         (span.name, reading.sag_m, *reading.return_wave_s, reading.return_wave_parabola_s[2])
         for span, reading in zip(sheet.spans, readings, strict=bool(readings))

@@ -164,6 +164,10 @@ def _courses(project: Project, limits: list[dict[str, Any]], judging: bool) -> l
                 near = project.neighbour(number, limit.other_condition_for(condition.name))
                 row["courses"][index] = len(courses)
                 courses.append(near.moved(limit.shift))
+        strung = project.neighbour_as_strung(number, near) if any(row["applies"]) else None
+        if strung is not None:
+            row["strung_course"] = len(courses)
+            courses.append(strung.moved(limit.shift))
     return courses
 
 

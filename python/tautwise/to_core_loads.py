@@ -98,7 +98,12 @@ def _load(project: Project, load: Load) -> dict[str, Any]:
         core["vector_to"] = tuple(part * load.per_length_to_N_per_m for part in direction)
     if load.spans is not None or load.beyond is not None or load.before is not None:
         names = [support.name for support in project.supports]
-        core["covers"] = covered(names, load.spans, load.beyond, load.before)
+        there = covered(names, load.spans, load.beyond, load.before)
+        core["covers"] = there
+        if load.per_length_to_N_per_m is not None:
+            stations = [support.station_m for support in project.supports]
+            begins, ends = there.index(True), len(there) - there[::-1].index(True)
+            core |= {"place": "station", "from_m": stations[begins], "to_m": stations[ends]}
     if load.carriage is not None:
         core |= {"carriage": load.carriage, "carriage_span": _carriage_span(project, load)}
     for place, first, second, last in (

@@ -37,7 +37,12 @@ def condition_words(condition: Condition) -> str:
 
 
 def _from_words(wind: Wind) -> str:
-    return "" if wind.bearing_rad is None else f" from a bearing of {math.degrees(wind.bearing_rad):.4g} deg"
+    """Where it blows from, and what else differs from plain: drag, and the air that a speed is taken in."""
+    where = "" if wind.bearing_rad is None else f" from a bearing of {math.degrees(wind.bearing_rad):.4g} deg"
+    own = [f"drag {wind.drag:.4g}"] if wind.drag != 1.0 else []
+    if wind.altitude_m is not None:
+        own.append(f"air at {wind.altitude_m:.4g} m")
+    return f"{where} ({', '.join(own)})" if own else where
 
 
 def _pattern_words(pattern: tuple[float, ...] | SharesOf | None) -> str:

@@ -17,9 +17,7 @@ MARGIN = 1e-6
 """A carriage nearer to a support than this share of the span is at it."""
 
 
-def settle(
-    twin: Twin, condition: int, pull_N: float | None, section_at: Callable[[float | None], Section]
-) -> Settled:
+def settle(twin: Twin, condition: int, pull_N: float | None, section_at: Callable[[float | None], Section]) -> Settled:
     """A condition in equilibrium, its carriage where it rests or is held.
 
     section_at: the loaded section with the carriage at a natural length from the first support; None: there is none.

@@ -237,8 +237,21 @@ class Twin:
             return 0.0, sum(lengths), load
         ends = [load["from_m"], load["from_m"] if load.get("is_point") else load["to_m"]]
         if place == "station":
-            ends = [length_at_station(self.settle(-1, pull_N), x) for x in ends]
+            strung = self.settle(-1, pull_N)
+            point = bool(load.get("is_point"))
+            within = [None if point else self.drawn_in(strung, far, x) for far, x in enumerate(ends)]
+            ends = [length_at_station(strung, x) if s is None else s for x, s in zip(ends, within, strict=True)]
         return ends[0], ends[1], load
+
+    def drawn_in(self, strung: Settled, far: int, station_m: float) -> float | None:
+        """The line's end on one side, where a station lies between the support there and its clamp, drawn inwards."""
+        span = len(strung.spans) - 1 if far else 0
+        clamp = strung.station(span, strung.clamps[-1 if far else 0])
+        support = self.route.support_station(len(strung.spans) if far else 0)
+        between = clamp < station_m <= support if far else support <= station_m < clamp
+        if not between:
+            return None
+        return sum(hung.length_m for hung in strung.spans) if far else 0.0
 
     def vector(self, load: Mapping[str, Any], span: int) -> Array:
         """A load's vector in route axes."""
