@@ -42,8 +42,8 @@ def order_findings(project: Project, arcs: Floats) -> Iterator[str]:
                 yield (
                     f"{limit.id}: as strung, {near.names[m]} to {near.names[m + 1]} of {limit.other} hangs "
                     f"{abs(gap):.2f} m {'below' if gap > 0.0 else 'above'} {mine} where they cross, though the "
-                    f"straight line between its supports passes {'above' if gap > 0.0 else 'below'}: it is taken to have "
-                    "been strung so."
+                    f"straight line between its supports passes {'above' if gap > 0.0 else 'below'}: it is taken to "
+                    "have been strung so."
                 )
 
 
