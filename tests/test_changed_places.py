@@ -84,6 +84,18 @@ def test_lines_in_their_order_are_judged_as_before(tmp_path, make):
     assert not any("passed through" in finding for finding in project.vet().files[0].findings)
 
 
+def test_a_line_strung_beneath_lower_supports_is_pointed_at(tmp_path):
+    """Its supports stand half a metre higher, its sag of 7.5 m takes it below: right as strung, but hardly meant."""
+    assert across(tmp_path, "0 mm").vet().files[0].findings == ()
+    file = tmp_path / "U.taut.toml"
+    file.write_text(file.read_text(encoding="utf-8").replace("18.5 m", "10.5 m"), encoding="utf-8")
+    (finding,) = tw.load(tmp_path / "L.taut.toml").vet().files[0].findings
+    assert "U0 to U1 of U.taut.toml hangs" in finding
+    apart = float(finding.partition("hangs ")[2].split()[0])
+    assert apart == pytest.approx(10.0 - 0.53 - (10.5 - 7.5), abs=0.05)  # parabolas; arcs of 20 m taken straight: 3 cm
+    assert "below L0 to L1 where they cross" in finding
+
+
 def test_the_window_keeps_the_side_that_the_lines_were_strung_on(tmp_path):
     window = across(tmp_path, "40 mm").window()
     assert len(window.intervals) == 1, "no second stretch of pulls at which it would hang above the ice"

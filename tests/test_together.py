@@ -216,3 +216,77 @@ def test_a_bearing_pushes_lines_square_and_hangers_as_it_blows(bearing, pushed):
     by_hand[0] += 400.0 * 0.02 * lengths[0] * east * abs(east)  # the span north is pushed east or west alone
     by_hand[1] += 400.0 * 0.02 * lengths[1] * north * abs(north)
     np.testing.assert_allclose(total[:2], by_hand, rtol=0, atol=1e-6)
+
+
+# --- a project of everything, in other units
+
+
+def everything() -> dict:
+    """A route that turns over a V, a sheave on a link and a post, a curve with its history, two winds, all loads."""
+    loads = [
+        {"per_run": "12 N/m"},
+        {"per_length": "4 N/m", "per_length_to": "20 N/m", "from": "30 m", "to": "120 m"},
+        {"force": "800 N", "at": "60 m", "direction": "across"},
+        {"force": "1.2 kN", "carriage": "held", "at": "330 m"},
+    ]
+    return {
+        "line": {
+            "diameter": "20 mm",
+            "weight": "14 N/m",
+            "breaking_strength": "120 kN",
+            "curve": {
+                "area": "300 mm^2",
+                "initial": ["0 MPa", "700 MPa", "-150 MPa"],
+                "final_modulus": "75 GPa",
+                "expansion": "18e-6 / K",
+            },
+        },
+        "support": [
+            {"name": "A", "east": "0 m", "north": "0 m", "elevation": "30 m", "stiffness_along": "900 kN/m"},
+            {"name": "B", "east": "150 m", "north": "90 m", "elevation": "34 m", "hold": "hanger", "length": "2.5 m",
+             "form": "V", "spread": "2 m", "weight": "500 N", "wind_area": "0.3 m^2"},
+            {"name": "C", "east": "330 m", "north": "130 m", "elevation": "33 m", "hold": "sheave", "length": "1.2 m",
+             "weight": "300 N"},
+            {"name": "D", "east": "520 m", "north": "90 m", "elevation": "31 m", "hold": "post",
+             "stiffness_along": "500 kN/m", "stiffness_across": "300 kN/m"},
+        ],
+        "stringing": {"temperature": "15 degC", "horizontal_tension": "16 kN", "method": "over sheaves"},
+        "condition": [
+            {"name": "laden", "temperature": "-5 degC", "wind": {"pressure": "300 Pa", "bearing": "200 deg"},
+             "ice": {"thickness": "8 mm", "density": "900 kg/m^3", "pattern": [1, 0]}, "load": loads},
+            {"name": "later", "temperature": "40 degC", "state": "final",
+             "wind": {"speed": "20 m/s", "angle": "60 deg", "altitude": "900 m"}},
+        ],
+        "history": {"conditions": ["laden"]},
+    }  # fmt: skip
+
+
+UNITS = {"m": ("ft", 0.3048), "N": ("lbf", 4.4482216152605), "kN": ("lbf", 4.4482216152605e-3), "mm": ("in", 25.4),
+         "N/m": ("lbf/ft", 4.4482216152605 / 0.3048), "MPa": ("psi", 4.4482216152605 / 25.4**2),
+         "m^2": ("ft^2", 0.3048**2), "mm^2": ("in^2", 25.4**2), "Pa": ("psi", 4.4482216152605e6 / 25.4**2)}  # fmt: skip
+
+
+def in_feet(value):
+    """Every length, force and stress of a table in feet, pounds and inches."""
+    if isinstance(value, dict):
+        return {key: in_feet(part) for key, part in value.items()}
+    if isinstance(value, list):
+        return [in_feet(part) for part in value]
+    number, _, unit = value.partition(" ") if isinstance(value, str) else ("", "", "")
+    if unit not in UNITS:
+        return value
+    other, factor = UNITS[unit]
+    return f"{float(number) / factor!r} {other}"
+
+
+@pytest.mark.parametrize("name", ["laden", "later"])
+def test_a_project_of_everything_in_other_units(name):
+    """Numbers rounded once more: 1e-15 of a length moves a tension by EA/T of that."""
+    here, there = tw.Project(**everything()).settle(name), tw.Project(**in_feet(everything())).settle(name)
+    for mine, theirs in zip(here.spans, there.spans, strict=True):
+        assert theirs.tension_from_N == pytest.approx(mine.tension_from_N, rel=1e-10)
+        assert theirs.sag_m == pytest.approx(mine.sag_m, rel=1e-10)
+        assert theirs.natural_length_m == pytest.approx(mine.natural_length_m, rel=1e-12)
+    for mine, theirs in zip(here.supports, there.supports, strict=True):
+        assert theirs.across_N == pytest.approx(mine.across_N, abs=1e-9 * here.spans[0].tension_max_N)
+    assert here.gap_relative <= 1e-6

@@ -1,29 +1,14 @@
 /* project: the heap type Project, an immutable deep copy of a problem with the calls that run on it. */
-#include "python_api.h"
+#include "project.h"
 
 #include <math.h>
-#include <numpy/arrayobject.h>
 
 #include "answer.h"
 #include "check.h"
-#include "courses.h"
-#include "crew.h"
 #include "fields.h"
 #include "module.h"
-#include "places.h"
-#include "problem.h"
 #include "report.h"
-#include "run.h"
-#include "survey.h"
-#include "trial.h"
 #include "window.h"
-
-typedef struct project_object {
-    PyObject_HEAD
-    problem problem;
-    PyObject *range_error;
-    PyObject *settle_error;
-} project_object;
 
 static PyObject *project_new(PyTypeObject *type, PyObject *args, PyObject *keywords)
 {
@@ -74,8 +59,7 @@ static void project_dealloc(PyObject *object)
     Py_DECREF(type);
 }
 
-/* Takes `pull` out of a copy of the keywords; the rest are options. 0, or -1 and raises. */
-static int split_keywords(project_object *self, PyObject *keywords, double *pull, tw_options *options)
+int tw_project_keywords(project_object *self, PyObject *keywords, double *pull, tw_options *options)
 {
     PyObject *rest = keywords ? PyDict_Copy(keywords) : PyDict_New();
     PyObject *value = rest ? PyDict_GetItemString(rest, "pull") : NULL;
@@ -98,7 +82,7 @@ static int split_keywords(project_object *self, PyObject *keywords, double *pull
     return result;
 }
 
-static int condition_index(project_object *self, Py_ssize_t index)
+int tw_project_condition(project_object *self, Py_ssize_t index)
 {
     if (index < 0 || (size_t)index >= self->problem.project.condition_count) {
         PyErr_SetString(PyExc_IndexError, "no such condition");
@@ -107,8 +91,7 @@ static int condition_index(project_object *self, Py_ssize_t index)
     return 0;
 }
 
-/* Raises SettleError with .status, or MemoryError. */
-static PyObject *raise_status(project_object *self, tw_status status)
+PyObject *tw_project_raise(project_object *self, tw_status status)
 {
     if (status == TW_ERROR_MEMORY) {
         return PyErr_NoMemory();
@@ -138,8 +121,7 @@ static PyObject *lengths_of(const tw_trial *trial)
     return list;
 }
 
-/* A trial strung to a pull, or by the project's rule; NULL and raises. */
-static tw_trial *strung_trial(project_object *self, double pull, run_state *run, const tw_options *options)
+tw_trial *tw_project_strung(project_object *self, double pull, run_state *run, const tw_options *options)
 {
     tw_trial *trial = tw_trial_create(&self->problem.project);
     if (!trial) {
@@ -153,7 +135,7 @@ static tw_trial *strung_trial(project_object *self, double pull, run_state *run,
         return trial;
     }
     if (!run->raised) {
-        raise_status(self, status);
+        tw_project_raise(self, status);
     }
     tw_trial_free(trial);
     return NULL;
@@ -165,11 +147,11 @@ static PyObject *project_string(PyObject *object, PyObject *args, PyObject *keyw
     double pull;
     tw_options options;
     run_state run;
-    if (!PyArg_ParseTuple(args, ":string") || split_keywords(self, keywords, &pull, &options) < 0) {
+    if (!PyArg_ParseTuple(args, ":string") || tw_project_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
     tw_run_open(&run, &options);
-    tw_trial *trial = strung_trial(self, pull, &run, &options);
+    tw_trial *trial = tw_project_strung(self, pull, &run, &options);
     if (!trial) {
         return NULL;
     }
@@ -220,8 +202,8 @@ static PyObject *project_settle(PyObject *object, PyObject *args, PyObject *keyw
     run_state run;
     tw_settled settled;
     PyObject *result = NULL;
-    if (!PyArg_ParseTuple(args, "n:settle", &condition) || condition_index(self, condition) < 0
-        || split_keywords(self, keywords, &pull, &options) < 0) {
+    if (!PyArg_ParseTuple(args, "n:settle", &condition) || tw_project_condition(self, condition) < 0
+        || tw_project_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
     tw_trial *trial = tw_trial_create(project);
@@ -240,7 +222,7 @@ static PyObject *project_settle(PyObject *object, PyObject *args, PyObject *keyw
         goto done;
     }
     if (settled.status < 0) {
-        raise_status(self, settled.status);
+        tw_project_raise(self, settled.status);
     } else {
         result = tw_answer_settled(project, (size_t)condition, &settled);
     }
@@ -293,11 +275,11 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     double pull;
     tw_options options;
     run_state run;
-    if (!PyArg_ParseTuple(args, ":judge") || split_keywords(self, keywords, &pull, &options) < 0) {
+    if (!PyArg_ParseTuple(args, ":judge") || tw_project_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
     tw_run_open(&run, &options);
-    tw_trial *trial = strung_trial(self, pull, &run, &options);
+    tw_trial *trial = tw_project_strung(self, pull, &run, &options);
     if (!trial) {
         return NULL;
     }
@@ -312,97 +294,6 @@ static PyObject *project_judge(PyObject *object, PyObject *args, PyObject *keywo
     }
     tw_trial_free(trial);
     return list;
-}
-
-/* 0, or -1 and raises. */
-static int solve_exact(project_object *self, tw_trial *trial, double pull, size_t condition, tw_options *options,
-                       const tw_section **section)
-{
-    run_state run;
-    tw_run_open(&run, options);
-    tw_run_begin(&run);
-    tw_status status = tw_trial_string(trial, pull, options);
-    if (status == TW_OK) {
-        status = tw_trial_section(trial, condition, options, section);
-    }
-    tw_run_end(&run);
-    if (!run.raised && status != TW_OK) {
-        raise_status(self, status);
-    }
-    return !run.raised && status == TW_OK ? 0 : -1;
-}
-
-static PyObject *project_shape(PyObject *object, PyObject *args, PyObject *keywords)
-{
-    project_object *self = (project_object *)object;
-    Py_ssize_t condition, points = 200;
-    double pull;
-    tw_options options;
-    const tw_section *section = NULL;
-    if (!PyArg_ParseTuple(args, "n|n:shape", &condition, &points) || condition_index(self, condition) < 0
-        || split_keywords(self, keywords, &pull, &options) < 0) {
-        return NULL;
-    }
-    if (points < 1 || points > 1000000) {
-        PyErr_SetString(PyExc_ValueError, "points: expected 1 to 1,000,000 a span");
-        return NULL;
-    }
-    tw_trial *trial = tw_trial_create(&self->problem.project);
-    if (!trial) {
-        return PyErr_NoMemory();
-    }
-    int solved = solve_exact(self, trial, pull, (size_t)condition, &options, &section) == 0;
-    PyObject *result = solved ? tw_places_along(section, (size_t)points) : NULL;
-    tw_trial_free(trial);
-    return result;
-}
-
-static PyObject *project_course(PyObject *object, PyObject *args, PyObject *keywords)
-{
-    project_object *self = (project_object *)object;
-    Py_ssize_t condition;
-    double pull;
-    tw_options options;
-    const tw_section *section = NULL;
-    if (!PyArg_ParseTuple(args, "n:course", &condition) || condition_index(self, condition) < 0
-        || split_keywords(self, keywords, &pull, &options) < 0) {
-        return NULL;
-    }
-    tw_trial *trial = tw_trial_create(&self->problem.project);
-    if (!trial) {
-        return PyErr_NoMemory();
-    }
-    int solved = solve_exact(self, trial, pull, (size_t)condition, &options, &section) == 0;
-    PyObject *result = solved ? tw_courses_along(section) : NULL;
-    tw_trial_free(trial);
-    return result;
-}
-
-static PyObject *project_at(PyObject *object, PyObject *args, PyObject *keywords)
-{
-    project_object *self = (project_object *)object;
-    Py_ssize_t condition;
-    PyObject *given;
-    double pull;
-    tw_options options;
-    const tw_section *section = NULL;
-    if (!PyArg_ParseTuple(args, "nO:at", &condition, &given) || condition_index(self, condition) < 0
-        || split_keywords(self, keywords, &pull, &options) < 0) {
-        return NULL;
-    }
-    PyArrayObject *stations = (PyArrayObject *)PyArray_FROM_OTF(given, NPY_DOUBLE, NPY_ARRAY_IN_ARRAY);
-    tw_trial *trial = stations ? tw_trial_create(&self->problem.project) : NULL;
-    PyObject *result = NULL;
-    if (stations && !trial) {
-        PyErr_NoMemory();
-    } else if (stations && PyArray_NDIM(stations) != 1) {
-        PyErr_SetString(PyExc_ValueError, "stations: expected a one-dimensional array");
-    } else if (stations && solve_exact(self, trial, pull, (size_t)condition, &options, &section) == 0) {
-        result = tw_places_at(section, PyArray_DATA(stations), (size_t)PyArray_DIM(stations, 0));
-    }
-    tw_trial_free(trial);
-    Py_XDECREF(stations);
-    return result;
 }
 
 /* Puts what was found so far on the pending KeyboardInterrupt, as .best; other exceptions pass as they are. */
@@ -429,7 +320,7 @@ static PyObject *project_window(PyObject *object, PyObject *args, PyObject *keyw
     tw_options options;
     run_state run;
     PyObject *result = NULL;
-    if (!PyArg_ParseTuple(args, ":window") || split_keywords(self, keywords, &pull, &options) < 0) {
+    if (!PyArg_ParseTuple(args, ":window") || tw_project_keywords(self, keywords, &pull, &options) < 0) {
         return NULL;
     }
     if (!isnan(pull)) {
@@ -447,109 +338,11 @@ static PyObject *project_window(PyObject *object, PyObject *args, PyObject *keyw
     if (run.raised) {
         attach_best(window);
     } else if (status < 0) {
-        raise_status(self, status);
+        tw_project_raise(self, status);
     } else {
         result = tw_answer_window(window);
     }
     tw_window_free(window);
-    return result;
-}
-
-/* Temperatures of a sheet: a copy of the array, with room for one more; NULL and raises. */
-static tw_crew *crew_at(const tw_project *project, PyObject *given)
-{
-    PyArrayObject *degC = (PyArrayObject *)PyArray_FROM_OTF(given, NPY_DOUBLE, NPY_ARRAY_IN_ARRAY);
-    tw_crew *crew = NULL;
-    if (degC && (PyArray_NDIM(degC) != 1 || PyArray_DIM(degC, 0) > 10000)) {
-        PyErr_SetString(PyExc_ValueError, "temperatures: expected a one-dimensional array of up to 10,000");
-    } else if (degC) {
-        size_t count = (size_t)PyArray_DIM(degC, 0);
-        crew = tw_crew_create(project, count);
-        if (crew) {
-            memcpy(crew->temperature_degC, PyArray_DATA(degC), count * sizeof(double));
-        } else {
-            PyErr_NoMemory();
-        }
-    }
-    Py_XDECREF(degC);
-    return crew;
-}
-
-static PyObject *project_sheet(PyObject *object, PyObject *args, PyObject *keywords)
-{
-    project_object *self = (project_object *)object;
-    PyObject *given, *result = NULL;
-    double pull;
-    tw_options options;
-    run_state run;
-    if (!PyArg_ParseTuple(args, "O:sheet", &given) || split_keywords(self, keywords, &pull, &options) < 0) {
-        return NULL;
-    }
-    tw_crew *crew = crew_at(&self->problem.project, given);
-    tw_run_open(&run, &options);
-    tw_trial *trial = crew ? strung_trial(self, pull, &run, &options) : NULL;
-    if (trial) {
-        tw_run_begin(&run);
-        tw_status status = tw_crew_fill(crew, trial, &options);
-        tw_run_end(&run);
-        if (!run.raised) {
-            result = status == TW_OK ? tw_answer_crew(crew) : raise_status(self, status);
-        }
-    }
-    tw_trial_free(trial);
-    tw_crew_free(crew);
-    return result;
-}
-
-/* Takes `unknown` out of the keywords, "pull" where it is missing. */
-static int take_unknown(PyObject *keywords, PyObject **rest, tw_fit_unknown *unknown)
-{
-    static const char *const names[] = {"pull", "lengths", NULL};
-    *rest = keywords ? PyDict_Copy(keywords) : PyDict_New();
-    int word = *rest ? tw_fields_choice(*rest, "unknown", names, TW_FIT_PULL) : -1;
-    if (word < 0 || (PyDict_GetItemString(*rest, "unknown") && PyDict_DelItemString(*rest, "unknown") < 0)) {
-        Py_CLEAR(*rest);
-        return -1;
-    }
-    *unknown = (tw_fit_unknown)word;
-    return 0;
-}
-
-static PyObject *run_fit(project_object *self, const survey *points, tw_fit_unknown unknown, tw_options *options)
-{
-    run_state run;
-    PyObject *result = NULL;
-    tw_fit *fit = tw_fit_create(&self->problem.project, points->observations, points->count, unknown);
-    if (!fit) {
-        return PyErr_NoMemory();
-    }
-    tw_run_open(&run, options);
-    tw_run_begin(&run);
-    tw_status status = tw_fit_search(&self->problem.project, points->observations, points->count, unknown, options, fit);
-    tw_run_end(&run);
-    if (!run.raised) {
-        result = status < 0 ? raise_status(self, status) : tw_survey_answer(fit);
-    }
-    tw_fit_free(fit);
-    return result;
-}
-
-static PyObject *project_fit(PyObject *object, PyObject *args, PyObject *keywords)
-{
-    project_object *self = (project_object *)object;
-    PyObject *given, *rest = NULL, *result = NULL;
-    tw_fit_unknown unknown;
-    tw_options options;
-    survey points = {0};
-    if (!PyArg_ParseTuple(args, "O!:fit", &PyDict_Type, &given) || take_unknown(keywords, &rest, &unknown) < 0) {
-        return NULL;
-    }
-    if (tw_run_options(rest, self->range_error, &options) == 0
-        && tw_survey_read(given, &self->problem.project, self->range_error, &points) == 0) {
-        result = run_fit(self, &points, unknown, &options);
-    }
-    tw_survey_free(&points);
-    Py_DECREF(rest);
     return result;
 }
 
@@ -560,17 +353,17 @@ static PyMethodDef project_methods[] = {
      "settle(condition, *, pull=None, **options) -> dict of the settled condition, with its bracket."},
     {"judge", (PyCFunction)(void (*)(void))project_judge, METH_VARARGS | METH_KEYWORDS,
      "judge(*, pull=None, **options) -> list of dicts, one per limit and condition it applies to."},
-    {"shape", (PyCFunction)(void (*)(void))project_shape, METH_VARARGS | METH_KEYWORDS,
+    {"shape", (PyCFunction)(void (*)(void))tw_project_shape, METH_VARARGS | METH_KEYWORDS,
      "shape(condition, points=200, *, pull=None) -> dict of arrays along the exact line, points a span."},
-    {"course", (PyCFunction)(void (*)(void))project_course, METH_VARARGS | METH_KEYWORDS,
+    {"course", (PyCFunction)(void (*)(void))tw_project_course, METH_VARARGS | METH_KEYWORDS,
      "course(condition, *, pull=None) -> array (arcs, 14): the exact line as another project's `courses`."},
-    {"at", (PyCFunction)(void (*)(void))project_at, METH_VARARGS | METH_KEYWORDS,
+    {"at", (PyCFunction)(void (*)(void))tw_project_at, METH_VARARGS | METH_KEYWORDS,
      "at(condition, stations, *, pull=None) -> dict of arrays at the stations; NaN where the line does not pass."},
     {"window", (PyCFunction)(void (*)(void))project_window, METH_VARARGS | METH_KEYWORDS,
      "window(**options) -> dict of the pretension window. On Ctrl-C the KeyboardInterrupt carries .best."},
-    {"sheet", (PyCFunction)(void (*)(void))project_sheet, METH_VARARGS | METH_KEYWORDS,
+    {"sheet", (PyCFunction)(void (*)(void))tw_project_sheet, METH_VARARGS | METH_KEYWORDS,
      "sheet(temperatures, *, pull=None, **options) -> dict of what a crew needs, at the temperatures in degC."},
-    {"fit", (PyCFunction)(void (*)(void))project_fit, METH_VARARGS | METH_KEYWORDS,
+    {"fit", (PyCFunction)(void (*)(void))tw_project_fit, METH_VARARGS | METH_KEYWORDS,
      "fit(points, *, unknown=\"pull\", **options) -> dict of the line that fits measured points; points: dict of arrays."},
     {NULL, NULL, 0, NULL},
 };

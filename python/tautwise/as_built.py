@@ -61,7 +61,7 @@ def rewritten(text: str, table: Sequence[str], comment: str) -> str:
 
     Parameters
     ----------
-    table: the new one's lines. comment: a line put in front of it.
+    table: the new one's lines. comment: lines put in front of it.
 
     Raises
     ------
@@ -84,7 +84,7 @@ def rewritten(text: str, table: Sequence[str], comment: str) -> str:
         end += 1
     while end > heads[0] + 1 and (not lines[end - 1].strip() or lines[end - 1].lstrip().startswith("#")):
         end -= 1  # comments and blanks before the next table belong to that
-    new = "\n".join([*lines[: heads[0]], f"# {comment}", *table, *lines[end:]])
+    new = "\n".join([*lines[: heads[0]], *(f"# {line}" for line in comment.split("\n")), *table, *lines[end:]])
     if _others(new) != _others(text):
         raise Refused("its [stringing] table does not stand by itself in that file")
     return new
@@ -108,7 +108,7 @@ def as_built_text(found: SurveyFit, project: Project, target: str) -> str:
     points = os.path.basename(found.survey or "") or "a survey"
     try:
         comment = f"As built: natural lengths fitted to the points of {inert(points)}.{_unstretched(project)}"
-        return rewritten(text, table, comment)
+        return rewritten(text, table, comment + sureness(found))
     except Refused as refused:
         problem = f"it is not written: {refused.problem}; put this in by hand: {' '.join(table)}"
         raise InputError([Fault(name, None, "stringing", problem)]) from None
@@ -116,6 +116,23 @@ def as_built_text(found: SurveyFit, project: Project, target: str) -> str:
 
 def _unstretched(project: Project) -> str:
     return " The line was taken as never stretched." if project.line.stretches else ""
+
+
+def sureness(found: SurveyFit) -> str:
+    """How sure the lengths are, as further lines of the comment: points, intervals, spans without points, doubts."""
+    lines = [f"{len(found.points)} points, {1e3 * found.rms_m:.1f} mm off the line (root mean square)."]
+    if found.pull is not None and found.pull.low_N is not None and found.pull.high_N is not None:
+        low, high = found.pull.low_N / 1e3, found.pull.high_N / 1e3
+        lines.append(f"Pull {found.pull.horizontal_tension_N / 1e3:.3f} kN, from {low:.3f} to {high:.3f} kN (95 %).")
+    lines += [
+        f"{inert(span.name)}: +/- {5e2 * (span.high_m - span.low_m):.1f} mm (95 %)."
+        for span in found.spans
+        if span.low_m is not None and span.high_m is not None and found.pull is None
+    ]
+    bare = [span.name for span in found.spans if not span.points]
+    lines += [f"No points in {inert(', '.join(bare))}."] if bare else []
+    lines += [inert(text) for text in found.warnings if text.startswith("these points do not fit")]
+    return "".join(f"\n{line}" for line in lines)
 
 
 def _same_folder(one: str, other: str) -> bool:

@@ -68,7 +68,9 @@ class Catalogue:
         key = name_key(text)
         found = [size for size in self.sizes if key in map(name_key, (size.name, *size.aliases))]
         if found:
-            return found[-1], tuple(found[:-1])
+            name = name_key(found[-1].name)  # an alias means that name, which a later file may hold without the alias
+            same = [size for size in self.sizes if name_key(size.name) == name]
+            return same[-1], tuple(size for size in self.sizes if size in (*same[:-1], *found) and size is not same[-1])
         if looks_like_rope(text):
             return rope(text), ()
         raise Refused(f'there is no size "{shown(text)}"; {self._guess(text)}')

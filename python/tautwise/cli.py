@@ -10,26 +10,29 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Callable, Iterable, Sequence
-from contextlib import suppress
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
 
+from tautwise.cli_output import (
+    NoOutput,
+    flushed,
+    print_documents,
+    print_json,
+    print_text,
+    print_texts,
+    silence_stdout,
+    tell,
+)
 from tautwise.files import ENDING, not_to_be_written, there_already, unfolded, write_whole
-from tautwise.strict import inert
 
 if TYPE_CHECKING:
     from tautwise.model import Project
-    from tautwise.records import Record
     from tautwise.text import Ink
 
 T = TypeVar("T")
 
 DONE, FAILS, BAD_INPUT, FAILED = 0, 1, 2, 3
-
-
-class NoOutput(Exception):
-    """What a command prints cannot be written."""
 
 
 class Careful(click.Command):
@@ -42,18 +45,18 @@ class Careful(click.Command):
         try:
             code = super().invoke(ctx)
         except InputError as error:
-            _tell(str(fault) for fault in error.faults)
+            tell(str(fault) for fault in error.faults)
             code = BAD_INPUT
         except SearchCancelled as stop:
             from tautwise.text_limits import best_so_far
 
-            _tell([best_so_far(stop.best)])  # type: ignore[arg-type]
+            tell([best_so_far(stop.best)])  # type: ignore[arg-type]
             code = FAILED
         except KeyboardInterrupt:
-            _tell(["cancelled"])
+            tell(["cancelled"])
             code = FAILED
         except TautwiseError as error:
-            _tell([str(error)])
+            tell([str(error)])
             code = FAILED
         ctx.exit(code or DONE)
 
@@ -96,21 +99,21 @@ def start(file: str, force: bool, as_json: bool) -> int:
     from tautwise.start import start_text
 
     if file == "-":
-        _print(start_text())
+        print_text(start_text())
         return DONE
     if refusal := not_to_be_written(file, force=force):
-        _tell([refusal])
+        tell([refusal])
         return BAD_INPUT
     try:
         write_whole(file, start_text(), force=force)
     except FileExistsError:
-        _tell([there_already(file)])
+        tell([there_already(file)])
         return BAD_INPUT
     except OSError as error:
-        _tell([f"{file}: cannot be written: {error.strerror}"])
+        tell([f"{file}: cannot be written: {error.strerror}"])
         return FAILED
     if as_json:
-        _print_json({"format": "tautwise-start 1", "file": file})
+        print_json({"format": "tautwise-start 1", "file": file})
         return DONE
     from tautwise.text import Ink, next_steps, quoted
 
@@ -118,7 +121,7 @@ def start(file: str, force: bool, as_json: bool) -> int:
         ("read it and change every value to yours", quoted(file)),
         ("find the pulls that keep every limit", f"tautwise window {quoted(file)}"),
     ]
-    _tell([f"Wrote {file}.", *next_steps(steps, Ink(False))])
+    tell([f"Wrote {file}.", *next_steps(steps, Ink(False))])
     return DONE
 
 
@@ -137,18 +140,18 @@ def settle(files: Sequence[str], pull: str | None, sources: bool, as_json: bool)
 
     done, failed = _each(_loaded(files), lambda project: settle_report(project, pull=pull))
     if as_json:
-        _print_documents([with_sources(report, project, sources) for project, report in done], many=len(files) > 1)
+        print_documents([with_sources(report, project, sources) for project, report in done], many=len(files) > 1)
     else:
         from tautwise.text import settle_text
 
-        _print_texts(
+        print_texts(
             [*settle_text(report, project, _ink(), pull), *_source_lines(project, sources)] for project, report in done
         )
     for project, report in done:
-        _tell(f"warning: {text}" for text in report.warnings[len(project.warnings) :])
+        tell(f"warning: {text}" for text in report.warnings[len(project.warnings) :])
         head = f"{project.source}: " if project.source else ""
         failed += [head + each.unsettled_text() for each in report.conditions if not each.settled]
-    _tell(failed)
+    tell(failed)
     return FAILED if failed else DONE
 
 
@@ -168,16 +171,14 @@ def window(files: Sequence[str], sources: bool, as_json: bool) -> int:
 
     done, failed = _each(projects, lambda project: search(project))
     if as_json:
-        _print_documents([with_sources(found, project, sources) for project, found in done], many=len(files) > 1)
+        print_documents([with_sources(found, project, sources) for project, found in done], many=len(files) > 1)
     else:
         from tautwise.text_limits import window_text
 
-        _print_texts(
-            [*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done
-        )
+        print_texts([*window_text(found, project, _ink()), *_source_lines(project, sources)] for project, found in done)
     for project, found in done:
-        _tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
-    _tell(failed)
+        tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
+    tell(failed)
     if not all(found.open for _, found in done):
         return FAILS
     return FAILED if failed else DONE
@@ -209,7 +210,7 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
         try:
             report = check(project, pull=pull, every=every, **options)
         except NotSettledError as error:
-            _tell([str(error)])
+            tell([str(error)])
             return undecided(project, str(error), pull=pull)
         return report
 
@@ -217,14 +218,14 @@ def vet(files: Sequence[str], every: bool, day: str | None, pull: str | None, so
     verdicts = (with_sources(file, project, sources) for project, each in done for file in each.files)
     report = VetReport.of(verdicts, done[0][1].program)
     for project, file in zip([project for project, _ in done], report.files, strict=True):
-        _tell(f"warning: {text}" for text in file.findings[len(project.warnings) :])
+        tell(f"warning: {text}" for text in file.findings[len(project.warnings) :])
     if as_json:
-        _print_documents([report])
+        print_documents([report])
     else:
         from tautwise.text_limits import vet_text
 
         lines = [line for project in projects for line in _source_lines(project, sources)]
-        _print_texts([[*vet_text(report, projects, _ink()), *lines]])
+        print_texts([[*vet_text(report, projects, _ink()), *lines]])
     if report.holds:
         return DONE
     return FAILS if any(limit.word == "fails" for limit in report.limits) else FAILED
@@ -250,11 +251,11 @@ def sizes(text: Sequence[str], sources: bool, as_csv: bool, as_json: bool, **ask
 
     found = listed(" ".join(text) or None, **asked)
     if as_json:
-        _print_documents([SizeList(found)])
+        print_documents([SizeList(found)])
     elif as_csv:
-        _print(sizes_csv(found))
+        print_text(sizes_csv(found))
     else:
-        _print_texts([sizes_text(found, _ink(), sources=sources, ropes=not text and not asked["kind"])])
+        print_texts([sizes_text(found, _ink(), sources=sources, ropes=not text and not asked["kind"])])
     return DONE
 
 
@@ -268,9 +269,9 @@ def rules(names: Sequence[str], as_json: bool) -> int:
 
     packs = packs_of(names)
     if as_json:
-        _print_documents([packs[0] if len(names) == 1 else RulePackList(packs)])
+        print_documents([packs[0] if len(names) == 1 else RulePackList(packs)])
     else:
-        _print_texts([pack_text(each, _ink()) for each in packs] if names else [rules_text(packs, _ink())])
+        print_texts([pack_text(each, _ink()) for each in packs] if names else [rules_text(packs, _ink())])
     return DONE
 
 
@@ -292,18 +293,18 @@ def sheet(files: Sequence[str], temperatures: Sequence[str], pull: str | None, a
 
     done, failed = _each(_loaded(files), lambda project: crew_sheet(project, temperatures or None, pull=pull))
     if as_json:
-        _print_documents([found for _, found in done], many=len(files) > 1)
+        print_documents([found for _, found in done], many=len(files) > 1)
     elif as_csv:
         from tautwise.text_sheet import sheet_csv
 
-        _print(sheet_csv([found for _, found in done]))
+        print_text(sheet_csv([found for _, found in done]))
     else:
         from tautwise.text_sheet import sheet_text
 
-        _print_texts(sheet_text(found, project, _ink()) for project, found in done)
+        print_texts(sheet_text(found, project, _ink()) for project, found in done)
     for project, found in done:
-        _tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
-    _tell(failed)
+        tell(f"warning: {text}" for text in found.warnings[len(project.warnings) :])
+    tell(failed)
     return FAILED if failed else DONE
 
 
@@ -330,7 +331,7 @@ def fit(
     (project,) = _loaded([file])
     refusal = "" if target is None else not_to_be_written(target, force=force)
     if refusal:
-        _tell([refusal])
+        tell([refusal])
         return BAD_INPUT
     found = search(project, survey, unknown=unknown, temperature=temperature)
     if target is not None:
@@ -338,20 +339,20 @@ def fit(
         try:
             write_whole(target, text, force=force)
         except FileExistsError:
-            _tell([there_already(target)])
+            tell([there_already(target)])
             return BAD_INPUT
         except OSError as error:
-            _tell([f"{target}: cannot be written: {error.strerror}"])
+            tell([f"{target}: cannot be written: {error.strerror}"])
             return FAILED
     if as_json:
-        _print_documents([found])
+        print_documents([found])
     else:
         from tautwise.text_fit import fit_text
 
-        _print_texts([fit_text(found, project, _ink(), target, temperature)])
+        print_texts([fit_text(found, project, _ink(), target, temperature)])
     if target is not None:
-        _tell([f"Wrote {target}."])
-    _tell(f"warning: {text}" for text in found.warnings)
+        tell([f"Wrote {target}."])
+    tell(f"warning: {text}" for text in found.warnings)
     return DONE
 
 
@@ -361,7 +362,7 @@ def schema(as_json: bool) -> int:
     """Print the JSON Schema of the project file, for editors and checks (always JSON)."""
     from tautwise.schema import project_schema
 
-    _print_json(project_schema())
+    print_json(project_schema())
     return DONE
 
 
@@ -382,14 +383,14 @@ def run(arguments: Sequence[str] | None = None) -> int:
     """Run the command line; the exit code."""
     try:
         code = commands.main(arguments, prog_name="tautwise", standalone_mode=False)
-        return _flushed(int(code or DONE))
+        return flushed(int(code or DONE))
     except click.exceptions.Exit as stop:
         try:
-            return _flushed(stop.exit_code)
+            return flushed(stop.exit_code)
         except NoOutput as error:
             return _unwritten(error)
     except SystemExit:  # how click leaves where the reader of a help text has closed the pipe
-        _silence_stdout()
+        silence_stdout()
         return DONE
     except NoOutput as error:
         return _unwritten(error)
@@ -399,12 +400,12 @@ def run(arguments: Sequence[str] | None = None) -> int:
         error.show()
         return BAD_INPUT
     except (click.Abort, KeyboardInterrupt):
-        _tell(["cancelled"])
+        tell(["cancelled"])
     except MemoryError:
-        _tell(["out of memory"])
+        tell(["out of memory"])
     except Exception as error:
         words = " ".join(f"{type(error).__name__}: {error}".split())
-        _tell([f"tautwise failed, which is its own fault and not the input's: {words}"])
+        tell([f"tautwise failed, which is its own fault and not the input's: {words}"])
     return FAILED
 
 
@@ -412,7 +413,7 @@ def _version(ctx: click.Context, option: click.Parameter, asked: bool) -> None:
     if asked and not ctx.resilient_parsing:
         import tautwise
 
-        _print(f"tautwise {tautwise.__version__}\n")
+        print_text(f"tautwise {tautwise.__version__}\n")
         ctx.exit()
 
 
@@ -429,7 +430,7 @@ def _loaded(files: Iterable[str]) -> list[Project]:
         except InputError as error:
             faults += error.faults
     for project in projects:
-        _tell(f"warning: {warning}" for warning in project.warnings)
+        tell(f"warning: {warning}" for warning in project.warnings)
     if faults:
         raise InputError(dict.fromkeys(faults))
     return projects
@@ -469,68 +470,7 @@ def _ink() -> Ink:
     return Ink(sys.stdout is not None and sys.stdout.isatty() and not plain)
 
 
-def _tell(lines: Iterable[str]) -> None:
-    """Print to stderr, a line each; nobody is left to tell where that is closed."""
-    with suppress(OSError, ValueError):
-        for line in lines:
-            for part in line.splitlines():
-                click.echo(inert(part), err=True)
-
-
-def _print(text: str) -> None:
-    """Print to stdout; a reader who has closed the pipe has seen enough, and the exit code stays what it is."""
-    if sys.stdout is None:
-        raise NoOutput("there is no standard output")
-    try:
-        sys.stdout.write(text)
-    except BrokenPipeError:
-        _silence_stdout()
-    except OSError as error:
-        raise NoOutput(error.strerror) from None
-
-
-def _flushed(code: int) -> int:
-    """An exit code, once everything printed has gone out."""
-    try:
-        if sys.stdout is not None:
-            sys.stdout.flush()
-    except BrokenPipeError:
-        _silence_stdout()
-    except OSError as error:
-        raise NoOutput(error.strerror) from None
-    return code
-
-
-def _print_texts(texts: Iterable[list[str]]) -> None:
-    from tautwise.text import joined
-
-    _print("\n".join(joined(lines) for lines in texts))
-
-
-def _print_documents(records: Sequence[Record], *, many: bool = False) -> None:
-    """One document, or a list of them where several files were given; nothing where there is no answer."""
-    documents = [record.to_dict() for record in records]
-    if many or documents:
-        _print_json(documents if many else documents[0])
-
-
-def _print_json(document: Any) -> None:
-    from tautwise.records import readable_json
-
-    _print(readable_json(document) + "\n")
-
-
 def _unwritten(error: NoOutput) -> int:
-    _silence_stdout()
-    _tell([f"the output cannot be written: {error}"])
+    silence_stdout()
+    tell([f"the output cannot be written: {error}"])
     return FAILED
-
-
-def _silence_stdout() -> None:
-    """Let the exit not stumble over what cannot be written any more."""
-    if sys.stdout is None:
-        return
-    try:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-    except (OSError, ValueError):
-        sys.stdout = None

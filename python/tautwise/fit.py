@@ -15,7 +15,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
-from tautwise.fit_judge import as_built_findings, deviations, findings_of
+from tautwise.fit_judge import as_built_findings, deviations, findings_of, misfit
 from tautwise.results_fit import FittedPoint, FittedPull, FittedSpan, SurveyFit
 from tautwise.results_line import CAUTION
 from tautwise.solve import errors_of, line_core_of, program, settled_bare
@@ -154,16 +154,19 @@ def _result(project: Project, points: Survey, unknown: str, found: Mapping[str, 
     deviation = None if points.has_sigmas or variance is None else math.sqrt(variance)
     spans = _spans(project, points, found, states, variance, factor)
     pull = _pull(found, variance, factor) if unknown == "pull" else None
-    findings = (*findings_of(points, pull, spans, listed, found["chi2"], left), *as_built_findings(project))
+    rms = math.sqrt(math.fsum(r * r for r in residuals) / len(residuals))
+    warnings = misfit(points, pull, spans, rms, found["chi2"], left)
+    warnings += findings_of(points, pull, spans, listed, found["chi2"], left)
+    warnings += as_built_findings(project)
     return SurveyFit(
         program=program(), project=project.title, input_sha256=project.input_sha256, survey=points.source,
         survey_sha256=points.sha256, unknown=unknown, temperature_degC=project.stringing.temperature_degC,
         pull=pull, spans=spans, points=listed,
         temperatures_degC=temperatures, measurements=count, unknowns=unknowns, sigmas_given=points.has_sigmas,
-        rms_m=math.sqrt(math.fsum(r * r for r in residuals) / len(residuals)), chi2=found["chi2"],
+        rms_m=rms, chi2=found["chi2"],
         standard_deviation_m=deviation, confidence=CONFIDENCE, factor=factor, gap_relative=gap,
         step_relative=found["step_relative"], steps=found["steps"], evaluations=found["evaluations"],
-        warnings=findings, caution=CAUTION, origin=project,
+        warnings=warnings, caution=CAUTION, origin=project,
     )  # fmt: skip
 
 

@@ -19,6 +19,8 @@ UNSEEN_M = 1e-6  # no survey sees a micrometre: residuals below are rounding
 RARE = 1e-3
 NAMED = 3
 WIDE = 0.2
+NO_FIT = "these points do not fit this line"
+NO_FIT_SAG, NO_FIT_INTERVAL, NO_FIT_SIGMAS = 0.1, 0.3, 3.0  # of the greatest sag measured, of the pull, of the sigmas
 
 
 def deviations(points: Survey, found: Mapping[str, Any], left: int) -> list[tuple[float | None, bool]]:
@@ -108,6 +110,23 @@ def as_built_findings(project: Project) -> tuple[str, ...]:
             "how the line came over its sheaves"
         )
     return tuple(found)
+
+
+def misfit(
+    points: Survey, pull: FittedPull | None, spans: Sequence[FittedSpan], rms_m: float, chi2: float, left: int
+) -> tuple[str, ...]:
+    """That the points are hardly those of this line, and by what that shows; before all other findings."""
+    sag = max((span.sag_m for span in spans if span.points), default=0.0)
+    found = []
+    if rms_m > NO_FIT_SAG * sag > 0.0:
+        found.append(f"they lie {rms_m:.3g} m off it, beside a sag of {sag:.3g} m")
+    if points.has_sigmas and left > 0 and chi2 > NO_FIT_SIGMAS**2 * left:
+        found.append(f"they lie {math.sqrt(chi2 / left):.1f} times as far off as their sigmas say")
+    if pull is not None and pull.high_N is not None:
+        share = pull.high_N / pull.horizontal_tension_N - 1.0
+        if share > NO_FIT_INTERVAL:
+            found.append(f"its pull is known to {100.0 * share:.0f} % only")
+    return (f"{NO_FIT}: {', and '.join(found)}; is it the right line, span and unit?",) if found else ()
 
 
 def _far_off(listed: Sequence[FittedPoint]) -> list[str]:

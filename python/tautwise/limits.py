@@ -90,7 +90,7 @@ class UpliftLimit(BaseLimit):
 
 
 class SwingLimit(BaseLimit):
-    """The most swing of a hanger from the vertical, rad."""
+    """The most swing of a hanger from the vertical, an angle."""
 
     looks_at: ClassVar[str] = "supports"
 

@@ -7,10 +7,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from dataclasses import replace
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from tautwise.errors import Fault, InputError
+from tautwise.strict import described
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -18,6 +20,8 @@ if TYPE_CHECKING:
 AS_STRUNG = "the line as strung, bare"
 SLACK_SAG_SHARE = 0.5  # of the span: a parabola that deep is no tensioned line
 _PATIENCE = {"deadline": "seconds_most", "evaluation_limit": "evaluations_most"}
+TURN_EXPECTED = "a turn of less than 179 degrees"
+CURVE_EXPECTED = "a curve that grows from 0 to valid_to"
 _NEARLY_SLACK = ("not_settled", "not_finite", "gap_too_wide", "slack", "deadline", "evaluation_limit")
 
 
@@ -48,6 +52,28 @@ def explained(
 
 def _swinging_sheave(project: Project) -> bool:
     return any(support.hold == "sheave" and support.hanger_length_m for support in project.supports)
+
+
+def range_fault(project: Project, path: str, expected: str) -> Fault:
+    """A number that the core refuses, with what the file holds and an example."""
+    raw = project.core_raw(path)
+    plain = isinstance(raw, str | int | float) and not isinstance(raw, bool)
+    problem = f"{described(raw)} is outside its range" if plain else "outside its range"
+    fault = project.core_fault(path, problem, expected)
+    if expected == TURN_EXPECTED:
+        number = int(path.partition("[")[2].partition("]")[0])
+        before, at, after = (project.supports[number + step].plan_m for step in (-1, 0, 1))
+        turn = math.atan2(after[1] - at[1], after[0] - at[0]) - math.atan2(at[1] - before[1], at[0] - before[0])
+        degrees = abs(math.degrees(math.remainder(turn, math.tau)))
+        problem = f"the route turns by {degrees:.4g} deg here"
+        return replace(fault, problem=problem, example="two supports a few metres apart, each for half of the turn")
+    if expected == CURVE_EXPECTED:
+        line = project.line
+        part = line.curve or (line.core if "[0]" in path else line.outer) or line.core
+        valid = None if part is None else part.valid_to
+        problem = "the curve falls somewhere" + (f" from 0 to valid_to, {100.0 * valid:.4g} %" if valid else "")
+        return replace(fault, problem=problem, example='a smaller valid_to, such as valid_to = "0.4 %"')
+    return fault
 
 
 def slack_words(project: Project, pull: float | None) -> str:

@@ -41,10 +41,42 @@ TURN_MOST_DEG = 90.0
 def warnings_of(project: Project, document: Document) -> tuple[str, ...]:
     """One line for each value that is hardly meant: file, line, key, why, and what it may have been meant to be."""
     slips = [*_line(project), *_parts(project), *_stringing(project), *_supports(project), *_sheaves(project)]
-    slips += [*_crossings(project), *_limits(project)]
+    slips += [*_crossings(project), *_limits(project), *_history(project)]
     for number, condition in enumerate(project.conditions):
         slips += [((*("condition", number), *path), text) for path, text in _condition(project, condition)]
     return tuple(str(document.fault(path, text)) for path, text in slips)
+
+
+def _history(project: Project) -> Iterator[Slip]:
+    """A history that leaves out a heavier condition: what is permanent is then too little."""
+    history = project.history
+    if history.conditions is None:
+        return
+    loads = {condition.name: _per_metre(project, condition) for condition in project.conditions}
+    met = max((loads[name] for name in history.conditions if name in loads), default=0.0)
+    left = [name for name, load in loads.items() if name not in history.conditions and load > 1.02 * met]
+    if left:
+        name = max(left, key=lambda each: loads[each])
+        text = (
+            f'leaves out "{shown(name)}", which loads the line by {loads[name]:.4g} N/m, those listed by {met:.4g} N/m '
+            "at most: its permanent stretch is not counted"
+        )
+        yield ("history", "conditions"), text
+
+
+def _per_metre(project: Project, condition: Condition) -> float:
+    """Weight, ice and wind square across, N for each metre: near enough to compare conditions."""
+    diameter, thickness = project.line.diameter_m or 0.0, condition.ice.thickness_m if condition.ice else 0.0
+    density = condition.ice.density_kg_per_m3 if condition.ice else 0.0
+    ice = math.pi * density * STANDARD_GRAVITY_M_PER_S2 * thickness * (diameter + thickness)
+    down = project.line.weight_N_per_m + ice + sum(load.per_length_N_per_m or 0.0 for load in condition.loads)
+    pressure = 0.0
+    if condition.wind is not None:
+        wind = condition.wind
+        speed = wind.speed_m_per_s or 0.0
+        pressure = wind.drag * (wind.pressure_Pa or 0.5 * wind.air_density_kg_per_m3 * speed**2)
+    across = pressure * (diameter + 2.0 * thickness)
+    return math.hypot(down, across) + condition.resultant_addition_N_per_m
 
 
 def _line(project: Project) -> Iterator[Slip]:

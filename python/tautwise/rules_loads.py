@@ -60,15 +60,9 @@ def _wind_rules(checked: Checked, wind: KeyPath) -> None:
             checked.fault((*wind, key), f"a pressure needs no {key.replace('_', ' ')}", "speed instead of pressure")
     at_most_one(checked, wind, Wind, ("air_density", "altitude"))
     at_most_one(checked, wind, Wind, ("angle", "bearing"))
-    if raw.get("bearing") is not None and not _is_mapped(checked):
+    if raw.get("bearing") is not None and not checked.turning():
         problem = "a bearing needs supports that are given by east and north"
         checked.fault((*wind, "bearing"), problem, "angle, from the span's direction", 'angle = "60 deg"')
-
-
-def _is_mapped(checked: Checked) -> bool:
-    """Whether the supports say where north is."""
-    supports = [support for support in checked.supports if support is not None]
-    return all(getattr(support, "east_m", getattr(support, "east", None)) is not None for support in supports)
 
 
 def _pattern_rules(checked: Checked, path: KeyPath, pattern: tuple[float, ...] | SharesOf) -> None:
@@ -155,6 +149,11 @@ def _no_stretch(checked: Checked, path: KeyPath) -> None:
 
 def _carriage_rules(checked: Checked, path: KeyPath) -> None:
     raw = checked.raw(*path)
+    sides = [key for key in _SPAN_KEYS if raw.get(key) is not None]
+    if sides:
+        problem = "a carriage stands in one span"
+        checked.fault((*path, sides[0]), problem, "span, by the support where it starts", 'span = "West mast"')
+        return
     _no_stretch(checked, path)
     if raw.get("at_length") is not None:
         problem = "a carriage is no place of the natural line"

@@ -35,15 +35,16 @@ def _plan_rule(checked: Checked, number: int) -> None:
     raw = checked.raw("support", number)
     path = ("support", number)
     expected, example = "east and north of every support", 'east = "431.2 m"\nnorth = "118.6 m"'.replace("\n", ", ")
+    given = [key for key in ROUTE_KEYS if raw.get(key) is not None]
     for key, other in (PLAN_KEYS, PLAN_KEYS[::-1]):
-        if raw.get(key) is not None and raw.get(other) is None:
+        if raw.get(key) is not None and raw.get(other) is None and not given:
             problem = f"angle point without coordinates: {key} is given without {other}"
             checked.fault((*path, key), problem, "both of them", example_of(Support, other))
-    given = [key for key in ROUTE_KEYS if raw.get(key) is not None]
     planned = any(raw.get(key) is not None for key in PLAN_KEYS)
     if given and planned:
-        problem = f"{given[0]} is given together with east and north"
-        checked.fault((*path, given[0]), problem, "either station (and offset), or east and north")
+        beside = " and ".join(key for key in PLAN_KEYS if raw.get(key) is not None)
+        problem = f"{given[0]} is given together with {beside}"
+        checked.fault((*path, given[0]), problem, "either station (and offset), or east and north", example)
     elif not planned:
         where = (*path, given[0]) if given else path
         problem = "angle point without coordinates: other supports of this route are given by east and north"

@@ -66,6 +66,7 @@ def project_schema() -> dict[str, Any]:
     schema = _without_null(ProjectFile.model_json_schema(by_alias=True, mode="validation"))
     for name, rule in _GIVEN_ONCE.items():
         schema["$defs"][name].update(rule)
+    schema["$defs"]["Wind"]["properties"]["angle"]["default"] = "90 deg"  # held in rad, written as text
     schema["required"] = ["format", *schema["required"]]
     schema["anyOf"] = [{"required": ["condition"]}, {"required": ["rules"]}]
     packs = {"type": "string", "enum": list(pack_names())}

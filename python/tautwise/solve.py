@@ -19,8 +19,9 @@ from typing import TYPE_CHECKING, Any, NoReturn
 from tautwise import _core
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
 from tautwise.findings import changed_places, findings_of, judging_findings
+from tautwise.order import order_findings
 from tautwise.origins import Judge, LineOrigin
-from tautwise.outcomes import AS_STRUNG, chords_m, explained, refuse_slack
+from tautwise.outcomes import AS_STRUNG, chords_m, explained, range_fault, refuse_slack
 from tautwise.records import finite
 from tautwise.results import (
     CAUTION,
@@ -183,7 +184,7 @@ def vet(project: Project, *, pull: Pull = None, every: bool = False, today: date
     states = limit_states(project, rows, every=True, reason=_reasons(project, newtons), excused=book.excused)
     limits = states if every else worst_of_each(states)
     strung_to = strung(project, pull=pull).horizontal_tension_N
-    findings = (*changed_places(states), *book.findings(states))
+    findings = (*changed_places(states), *_order(project, newtons), *book.findings(states))
     findings += (*line_findings(project, core, newtons), *_vet_findings(project))
     return _verdict(project, limits, strung_to, (*project.warnings, *findings))
 
@@ -315,8 +316,8 @@ def errors_of(project: Project, pull: float | None = None, where: str = "") -> I
         yield
     except _core.RangeError as error:
         path, expected = getattr(error, "path", ""), getattr(error, "expected", "")
-        problem = "outside its range" if path else str(error)
-        raise InputError([project.core_fault(path, problem, expected)]) from None
+        fault = range_fault(project, path, expected) if path else project.core_fault("", str(error), expected)
+        raise InputError([fault]) from None
     except _core.SettleError as error:
         status = getattr(error, "status", "not_settled")
         if status == OFF_THE_LINE:
@@ -360,15 +361,24 @@ def refuse_places(project: Project, pull: float | None) -> NoReturn:
     raise InputError(faults or [Fault(project.source, None, "", words, "marks and loads that lie on the line")])
 
 
-def course_as_strung(project: Project) -> Any:
+def _order(project: Project, pull: float | None) -> tuple[str, ...]:
+    if not project.others:
+        return ()
+    try:
+        return tuple(order_findings(project, course_as_strung(project, pull)))
+    except (NotSettledError, InputError):
+        return ()  # limits that need that line say so themselves
+
+
+def course_as_strung(project: Project, pull: float | None = None) -> Any:
     """The exact line as strung, bare: arcs (n, 14), as another project's course.
 
     Raises
     ------
     InputError, NotSettledError: it has no equilibrium.
     """
-    with errors_of(project, None, AS_STRUNG):
-        return _core.Project(_as_strung(project)).course(0)
+    with errors_of(project, pull, AS_STRUNG):
+        return _core.Project(_as_strung(project)).course(0, pull=pull)
 
 
 def _as_strung(project: Project) -> dict[str, Any]:

@@ -8,6 +8,7 @@ START_TEXT = """\
 
 format = "tautwise 1"
 title  = "Inlet crossing"
+# include = "conditions.toml"         # tables of another file in this folder, read as if they stood here
 
 # rules = ["nesc-250b-heavy"]         # conditions and limits of published rules: `tautwise rules` lists them
 
@@ -19,6 +20,7 @@ area = "150 mm^2"
 weight = "11.9 N/m"                   # or mass = "1.21 kg/m"
 modulus = "150 GPa"                   # or stiffness = "22.5 MN" (modulus times area); or a stress-strain curve:
                                       # [line.curve], or [line.core] and [line.outer] (initial, final_modulus, creep)
+                                      # Ropes: bedding_in = "0.1 %"; creep_strain = "0.02 %", or creep_law
 expansion = "11.5e-6 / K"
 breaking_strength = "190 kN"
 
@@ -42,7 +44,8 @@ top = "3.0 m"                         # elevation of the highest water
 name = "West mast"
 station = "0 m"                       # on a route that turns: east and north instead, of every support
 height = "15 m"                       # above the ground; or elevation = "21 m"
-hold = "anchor"                       # anchor: the line ends here. In between also: hanger (length, weight;
+hold = "anchor"                       # anchor: the line ends here; stiffness_along = "500 kN/m" and
+                                      # the like, where it yields. In between also: hanger (length, weight;
                                       # form = "V" with its spread), sheave (length, weight, friction),
                                       # post (stiffness_along, stiffness_across)
 capacity = { along = "90 kN", down = "30 kN" }
@@ -60,7 +63,12 @@ horizontal_tension = "20 kN"          # the pull. Or instead: tension = { suppor
                                       # natural_length = "300.1 m". `tautwise window` searches the pull by itself.
 tolerance = "3 %"                     # how well the crew can keep it
 # method = "over sheaves"             # pulled in over sheaves, then clamped; `tautwise sheet` tells the crew where
+# clip = "where it lies"              # clamped where the sheaves let it rest; or "plumb", the default
 # end_allowance = "2 m"               # added to what is cut, at each end of a section
+
+# [history]                           # what the line has met before a condition in the state final or after creep,
+# conditions = ["ice and wind"]       # each met as strung; all of them unless named
+# creep_condition = "hot"             # the everyday one; bare, at the stringing temperature, unless named
 
 [[condition]]
 name = "hot"
@@ -79,10 +87,13 @@ wind = { pressure = "300 Pa", drag = 1.0 }                # or speed = "22 m/s";
 # load = [ { force = "500 N", at = "150 m" }, { per_length = "20 N/m", from = "40 m", to = "80 m" } ]
 # Also: { per_length = "20 N/m", per_length_to = "5 N/m", from = "40 m", to = "80 m" }, a ramp;
 # { per_run = "200 N/m", spans = ["West mast"] }, per horizontal metre, on spans named by their first support;
-# { force = "2 kN", carriage = "free" }, which rolls to its lowest place, or carriage = "held" with at.
+# { force = "2 kN", carriage = "free" }, which rolls to its lowest place, or carriage = "held" with at;
+# span = "West mast" beside it names the span where a free one rolls.
 # factors = { weight = 1.0, ice = 1.2, wind = 1.5 }        # each action times its factor
-# In ice: pattern = [1, 0] for every second span shed, or { beyond = "West mast", share = 0.5 }. In wind, with speed:
-# altitude = "1200 m", for the density of the air. A hanger's wind_area is the drag area of its string.
+# In ice: pattern = [1, 0] for every second span shed, or { beyond = "West mast", share = 0.5 },
+# or before = "East mast" instead. In wind: bearing = "225 deg", from where it blows, where supports are given
+# by east and north; with speed also altitude = "1200 m", for the density of the air.
+# A hanger's wind_area is the drag area of its string.
 
 [[mark]]                              # a place on the line whose position is reported
 name = "marker ball"

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from tautwise.columns import plural
+from tautwise.fit_judge import NO_FIT
 from tautwise.results_fit import SurveyFit, fitted_table, point_table, pull_words
 from tautwise.strict import shown
 from tautwise.text import Ink, caution, heading, next_steps, quoted
@@ -29,6 +30,8 @@ def fit_text(
     lines = heading(project, ink)
     if found.survey:
         lines.insert(-1, shown(found.survey, 200))
+    doubts = [text for text in found.warnings if text.startswith(NO_FIT)]
+    lines += [ink.alarm(f"{text[:1].upper()}{text[1:]}") for text in doubts]
     lines += [ink.strong(f"{answer[:1].upper()}{answer[1:]}{sure}") + f", bare line at {_degrees(found)}", ""]
     lines += [*_off_lines(found), "", *fitted_table(found).lines(), "", *_point_lines(found, ink)]
     if written:

@@ -247,7 +247,7 @@ class Twin:
         """The line's end on one side, where a station lies between the support there and its clamp, drawn inwards."""
         span = len(strung.spans) - 1 if far else 0
         clamp = strung.station(span, strung.clamps[-1 if far else 0])
-        support = self.route.support_station(len(strung.spans) if far else 0)
+        support = strung.station(span, self.supports[-1 if far else 0].place)
         between = clamp < station_m <= support if far else support <= station_m < clamp
         if not between:
             return None
