@@ -125,7 +125,7 @@ share = 0.8                           # of capacity; or most = "72 kN"
 # in this folder; other_condition = "iced", or other_conditions = { hot = "iced" }; shift = { offset = "1.5 m" }).
 # Limits on spans take spans = ["West mast"], the support where a span starts; every limit takes conditions = ["hot"],
 # clause = "...", why = "...".
-# Tables of another file in this folder are read as if they stood here by include = "conditions.toml", above beside format.
+# include = "conditions.toml", above beside format, reads tables of another file in this folder as if they stood here.
 """
 
 
