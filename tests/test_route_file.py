@@ -140,7 +140,7 @@ NO_PLACE += 'north of every support, for example east = "431.2 m", north = "118.
             PLAN_B,
             PLAN_B + 'offset = "3 m"\n',
             "23: support.B.offset: offset is given together with east and north; expected either station (and offset), "
-            "or east and north",
+            'or east and north, for example east = "431.2 m", north = "118.6 m"',
         ),
         (
             PLAN_B,
@@ -168,7 +168,8 @@ NO_PLACE += 'north of every support, for example east = "431.2 m", north = "118.
         (
             '"5.2 m"',
             '"7 m"',
-            "27: support.B.spread: outside its range; expected a spread of less than twice the hanger's length",
+            '27: support.B.spread: "7 m" is outside its range; expected a spread of less than twice '
+            "the hanger's length",
         ),
         (
             'stiffness_across = "100 kN/m"',

@@ -13,6 +13,7 @@ from test_results import make
 from tautwise import solve
 from tautwise.columns import Column, Table, cut, force_column, forces_text, length_column, text_column, width
 from tautwise.results import VetReport
+from tautwise.results_window import second_looks
 from tautwise.text import Ink, condition_text, settle_text
 from tautwise.text_limits import best_so_far, vet_text, window_text
 from tautwise.words import condition_words
@@ -161,6 +162,7 @@ def test_open_ended_window_asks_for_a_second_look():
 def test_several_stretches_are_said_to_be_several(window, project):
     low, high = window.intervals[0]
     split = dataclasses.replace(window, intervals=((low, 0.9 * high), (0.95 * high, high)))
+    split = dataclasses.replace(split, findings=second_looks(split))
     text = "\n".join(window_text(split, project, PLAIN))
     assert "OPEN, in 2 stretches" in text
     assert "between these stretches break a limit" in text

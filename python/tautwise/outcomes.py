@@ -12,7 +12,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from tautwise.errors import Fault, InputError
-from tautwise.strict import described
+from tautwise.strict import shown
 
 if TYPE_CHECKING:
     from tautwise.model import Project
@@ -58,7 +58,8 @@ def range_fault(project: Project, path: str, expected: str) -> Fault:
     """A number that the core refuses, with what the file holds and an example."""
     raw = project.core_raw(path)
     plain = isinstance(raw, str | int | float) and not isinstance(raw, bool)
-    problem = f"{described(raw)} is outside its range" if plain else "outside its range"
+    value = f'"{shown(raw)}"' if isinstance(raw, str) else f"{raw}"
+    problem = f"{value} is outside its range" if plain else "outside its range"
     fault = project.core_fault(path, problem, expected)
     if expected == TURN_EXPECTED:
         number = int(path.partition("[")[2].partition("]")[0])

@@ -8,7 +8,6 @@ START_TEXT = """\
 
 format = "tautwise 1"
 title  = "Inlet crossing"
-# include = "conditions.toml"         # tables of another file in this folder, read as if they stood here
 
 # rules = ["nesc-250b-heavy"]         # conditions and limits of published rules: `tautwise rules` lists them
 
@@ -127,6 +126,7 @@ share = 0.8                           # of capacity; or most = "72 kN"
 # in this folder; other_condition = "iced", or other_conditions = { hot = "iced" }; shift = { offset = "1.5 m" }).
 # Limits on spans take spans = ["West mast"], the support where a span starts; every limit takes conditions = ["hot"],
 # clause = "...", why = "...".
+# include = "conditions.toml", above beside format, reads tables of another file in this folder as if they stood here.
 """
 
 
