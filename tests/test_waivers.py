@@ -218,7 +218,7 @@ def test_sources_of_the_example(command, capsys, monkeypatch):
     out = capsys.readouterr().out
     for words in (
         "yard_messenger.taut.toml:13, instead of 0.375 in of the size",
-        "ASTM A475, 7-wire strand, edition not noted",
+        "ASTM A475, 7-wire strand; table and edition not noted",
         "NESC Rule 250B; edition not noted",
         "H. M. Irvine, Cable Structures, MIT Press 1981",
         "until 2035-12-31",
