@@ -160,7 +160,7 @@ def test_every_fault_of_every_file_on_its_own_line(folder, run):
     assert (code, out) == (2, "")
     lines = err.splitlines()
     assert len(lines) == 3
-    assert lines[0].startswith("bad.taut.toml:13: line.diameter: ")
+    assert lines[0].startswith("bad.taut.toml:12: line.diameter: ")
     assert lines[2].startswith("missing.taut.toml: ")
 
 
