@@ -203,7 +203,12 @@ def test_a_pattern_is_loads_on_some_spans():
     ]
     a, b = (settled(one) for one in made)
     for mine, theirs in zip(a["spans"], b["spans"], strict=True):
-        assert mine == pytest.approx(theirs, rel=1e-11)
+        assert numbers(mine) == pytest.approx(numbers(theirs), rel=1e-11)
+
+
+def numbers(span):
+    """A span's state without what its history has left, which is none here."""
+    return {key: value for key, value in span.items() if key != "lived"}
 
 
 def by_length(problem, lengths):
@@ -233,7 +238,7 @@ def unfactored(problem):
 def test_a_factor_is_the_load_so_many_times():
     heavy = by_length(drawn(3), Twin(drawn(3)).lengths_m())
     for mine, theirs in zip(settled(heavy)["spans"], settled(unfactored(heavy))["spans"], strict=True):
-        assert mine == pytest.approx(theirs, rel=1e-10, abs=1e-8)
+        assert numbers(mine) == pytest.approx(numbers(theirs), rel=1e-10, abs=1e-8)
 
 
 def test_a_bearing_is_an_angle_from_the_span():
@@ -243,7 +248,7 @@ def test_a_bearing_is_an_angle_from_the_span():
     for wind in ({"wind_bearing_rad": math.radians(270.0)}, {"wind_angle_rad": math.radians(-45.0)}):
         condition = cases.condition(wind_pressure_Pa=500.0, **wind)
         made.append(settled(cases.problem(supports, cases.rule("pull", 15e3), conditions=[condition])))
-    assert made[0]["spans"][0] == pytest.approx(made[1]["spans"][0], rel=1e-12)
+    assert numbers(made[0]["spans"][0]) == pytest.approx(numbers(made[1]["spans"][0]), rel=1e-12)
     assert (
         sum(row["across_N"] for row in made[0]["supports"]) < 0.0 < sum(row["along_N"] for row in made[0]["supports"])
     )
@@ -271,7 +276,7 @@ def test_a_ramp_split_in_two_is_the_same_ramp():
         )
         for loads in ([whole], halves)
     ]
-    assert made[0]["spans"][0] == pytest.approx(made[1]["spans"][0], rel=1e-11)
+    assert numbers(made[0]["spans"][0]) == pytest.approx(numbers(made[1]["spans"][0]), rel=1e-11)
 
 
 def mirrored(problem):
