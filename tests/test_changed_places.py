@@ -94,6 +94,7 @@ def test_a_line_strung_beneath_lower_supports_is_pointed_at(tmp_path):
     apart = float(finding.partition("hangs ")[2].split()[0])
     assert apart == pytest.approx(10.0 - 0.53 - (10.5 - 7.5), abs=0.05)  # parabolas; arcs of 20 m taken straight: 3 cm
     assert "below L0 to L1 where they cross" in finding
+    assert any("U0 to U1 of U.taut.toml hangs" in text for text in tw.load(tmp_path / "L.taut.toml").window().warnings)
 
 
 def test_the_window_keeps_the_side_that_the_lines_were_strung_on(tmp_path):

@@ -17,6 +17,7 @@ from numbers import Real
 from typing import TYPE_CHECKING, Any, NoReturn
 
 from tautwise import _core
+from tautwise.columns import force_text
 from tautwise.errors import Fault, InputError, NotSettledError, SearchCancelled
 from tautwise.findings import changed_places, findings_of, judging_findings
 from tautwise.order import order_findings
@@ -147,6 +148,9 @@ def _window_findings(project: Project, core: _core.Project, answer: PullWindow) 
     best = answer.specify
     bounded = all(end is not None and end.limit is not None for end in (answer.low, answer.high))
     found = list(line_findings(project, core, best.horizontal_tension_N)) if best is not None and bounded else []
+    for low, high in answer.intervals:
+        stretch = f"at pulls of {force_text(low)} to {force_text(high)}, "
+        found += [stretch + text for text in _order(project, math.sqrt(low * high))]
     said = {_without_numbers(text) for text in found}
     head = f"{project.source}: " if project.source else ""
     for word, end in (("lowest", answer.low), ("highest", answer.high)):
