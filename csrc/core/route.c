@@ -4,8 +4,7 @@
 
 #include "vector.h"
 
-/* Plan direction between two neighbouring supports; returns their distance. */
-static double direction(const tw_support *near, double d[2])
+double tw_route_direction(const tw_support *near, double d[2])
 {
     double x = near[1].station_m - near[0].station_m;
     double y = near[1].offset_m - near[0].offset_m;
@@ -20,7 +19,7 @@ void tw_route_measure(const tw_support *supports, size_t count, double *station_
     double d[2];
     station_m[0] = 0.0;
     for (size_t j = 1; j < count; j++) {
-        station_m[j] = station_m[j - 1] + direction(&supports[j - 1], d);
+        station_m[j] = station_m[j - 1] + tw_route_direction(&supports[j - 1], d);
     }
 }
 
@@ -37,7 +36,7 @@ tw_route_leg tw_route_leg_of(const tw_project *project, size_t span)
         leg.origin_m = project->route_station_m[span];
         leg.at[0] = near->station_m;
         leg.at[1] = near->offset_m;
-        direction(near, leg.ahead);
+        tw_route_direction(near, leg.ahead);
     }
     return leg;
 }
@@ -66,8 +65,8 @@ void tw_route_ahead(const tw_project *project, size_t support, double ahead[2])
         return;
     }
     size_t last = project->support_count - 1;
-    direction(&project->supports[support > 0 ? support - 1 : 0], behind);
-    direction(&project->supports[support < last ? support : last - 1], next);
+    tw_route_direction(&project->supports[support > 0 ? support - 1 : 0], behind);
+    tw_route_direction(&project->supports[support < last ? support : last - 1], next);
     double x = behind[0] + next[0], y = behind[1] + next[1];
     double size = hypot(x, y);
     ahead[0] = x / size;
@@ -87,8 +86,8 @@ double tw_route_turn_cosine(const tw_project *project, size_t support)
     if (!project->route_station_m || support == 0 || support + 1 == project->support_count) {
         return 1.0;
     }
-    direction(&project->supports[support - 1], behind);
-    direction(&project->supports[support], next);
+    tw_route_direction(&project->supports[support - 1], behind);
+    tw_route_direction(&project->supports[support], next);
     return behind[0] * next[0] + behind[1] * next[1];
 }
 

@@ -45,6 +45,9 @@ void tw_route_ahead_all(const tw_project *project, double *ahead);
 /* Cosine of the angle by which the route turns at a support; 1 at its ends and on a straight route. */
 double tw_route_turn_cosine(const tw_project *project, size_t support);
 
+/* Plan direction from a support to its neighbour ahead; returns their distance. */
+double tw_route_direction(const tw_support *near, double d[2]);
+
 /* A vector (x, y, up) in a support's axes (along, across, up), and back; out is not the vector. */
 void tw_route_into_axes(const double ahead[2], const double vector[3], double out[3]);
 void tw_route_out_of_axes(const double ahead[2], const double vector[3], double out[3]);

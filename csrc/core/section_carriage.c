@@ -78,12 +78,13 @@ double tw_section_runs_off(const tw_section *section)
 
 double tw_section_follow_runs(tw_section *section)
 {
-    double most = tw_section_runs_off(section);
+    double most = 0.0;
     for (size_t k = 0; k < section->span_count; k++) {
         for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
             double *now = section->run_share + 2 * p, share[2];
             const double *vector = section->run_vector + 3 * p;
-            run_off(section, k, p, share);
+            double off = run_off(section, k, p, share);
+            most = off > most || isnan(off) ? off : most;
             tw_axpy(section->pieces[p].load, share[0] - now[0], vector, section->pieces[p].load);
             tw_axpy(section->pieces[p].ramp, share[1] - now[1], vector, section->pieces[p].ramp);
             now[0] = share[0];

@@ -17,26 +17,14 @@ typedef struct loading {
     int with_addition;
 } loading;
 
-/* Plan direction of a span between its supports: the frame of "along" and "across". */
-static void plan_direction(const tw_section *section, size_t span, double u[2])
-{
-    const tw_support *near = &section->project->supports[span];
-    double x = near[1].station_m - near[0].station_m;
-    double y = near[1].offset_m - near[0].offset_m;
-    double run = hypot(x, y);
-    u[0] = x / run;
-    u[1] = y / run;
-}
-
-static void into_route(tw_frame frame, const double u[2], const double vector[3], double out[3])
+/* A load's vector in the plan's axes; d: the span's direction. */
+static void into_route(tw_frame frame, const double d[2], const double vector[3], double out[3])
 {
     if (frame == TW_FRAME_ROUTE) {
         tw_copy(vector, out);
-        return;
+    } else {
+        tw_route_out_of_axes(d, vector, out);
     }
-    out[0] = u[0] * vector[0] - u[1] * vector[1];
-    out[1] = u[1] * vector[0] + u[0] * vector[1];
-    out[2] = vector[2];
 }
 
 /* Natural length of one end of a load's stretch. */
@@ -247,7 +235,7 @@ static void load_span(tw_section *section, const loading *on, size_t span)
     double u[2], vector[3], basic[3];
     size_t cuts = cut_span(section, on, span);
     double from = 0.0;
-    plan_direction(section, span, u);
+    tw_route_direction(&section->project->supports[span], u);
     tw_load_basic(&section->project->line, on->state, tw_load_ice_share(on->state, span), tw_load_wind_angle(on->state, u),
                   on->with_addition, basic);
     into_route(TW_FRAME_SPAN, u, basic, vector);
@@ -274,7 +262,7 @@ static void load_clamps(tw_section *section, const loading *on)
         double *g = section->clamp_load + 3 * j;
         size_t span = j < section->span_count ? j : j - 1;
         double u[2], vector[3];
-        plan_direction(section, span, u);
+        tw_route_direction(&section->project->supports[span], u);
         g[0] = g[1] = g[2] = 0.0;
         if (tw_hold_link_m(support) > 0.0) {
             tw_load_hanger(support, on->state, tw_load_wind_angle(on->state, u), vector);
@@ -295,8 +283,7 @@ static void put_runs(tw_section *section)
 {
     int known = section->run_pieces == section->piece_count;
     for (size_t k = 0; section->run_vector && k < section->span_count; k++) {
-        const tw_support *near = &section->project->supports[k];
-        double run = hypot(near[1].station_m - near[0].station_m, near[1].offset_m - near[0].offset_m);
+        double d[2], run = tw_route_direction(&section->project->supports[k], d);
         for (size_t p = section->piece_first[k]; p < section->piece_first[k + 1]; p++) {
             double *share = section->run_share + 2 * p;
             const double *vector = section->run_vector + 3 * p;
@@ -315,7 +302,7 @@ static void put_runs(tw_section *section)
 void tw_section_load_vector(const tw_section *section, size_t condition, const tw_load *load, size_t span, double out[3])
 {
     double u[2];
-    plan_direction(section, span, u);
+    tw_route_direction(&section->project->supports[span], u);
     into_route(load->frame, u, load->vector, out);
     double factor = section->project->conditions[condition].factor_load;
     for (int i = 0; i < 3; i++) {

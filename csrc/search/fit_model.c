@@ -17,9 +17,8 @@ static void plumb_chord(const tw_project *project, size_t span, double near[3], 
     const tw_support *a = &project->supports[span];
     tw_hold_attachment(a, near);
     tw_hold_chord(a, a + 1, chord);
-    double drop = a->hold == TW_HOLD_HANGER ? a->hanger_length_m : 0.0;
-    near[2] -= drop;
-    chord[2] += drop - (a[1].hold == TW_HOLD_HANGER ? a[1].hanger_length_m : 0.0);
+    near[2] -= tw_hold_drop(a);
+    chord[2] += tw_hold_drop(a) - tw_hold_drop(a + 1);
 }
 
 static tw_uniform lone_span(const tw_project *project, size_t span)

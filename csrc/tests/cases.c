@@ -281,3 +281,17 @@ double case_complementary(tw_section *section, const double *pull)
     }
     return lower;
 }
+
+void case_hill(tw_case *c)
+{
+    case_begin(c);
+    case_anchor(c, 0.0, 100.0);
+    case_hanger(c, 260.0, 125.0, 1.6, 450.0);
+    case_hanger(c, 545.0, 170.0, 1.6, 450.0);
+    case_anchor(c, 840.0, 214.0);
+    case_hanger(c, 985.0, 238.0, 1.6, 450.0);
+    case_anchor(c, 1255.0, 220.0);
+    case_condition(c, 15.0);
+    c->project.stringing.method = TW_METHOD_OVER_SHEAVES;
+    case_ready(c);
+}

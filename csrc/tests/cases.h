@@ -48,6 +48,9 @@ tw_limit *case_limit(tw_case *c, tw_limit_kind kind, double least, double most);
 void case_ground(tw_case *c, double station_m, double elevation_m);
 void case_mark(tw_case *c, tw_place place, double at_m);
 
+/* Six supports up and over a hill, an anchor in the middle; strung over sheaves. */
+void case_hill(tw_case *c);
+
 /* Solved on c->lengths_m in a condition (TW_NONE: bare); NULL when that fails. */
 tw_section *case_hung(const tw_case *c, size_t condition);
 

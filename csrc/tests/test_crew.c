@@ -8,20 +8,6 @@
 #include "vector.h"
 #include "wave.h"
 
-static void hill(tw_case *c)
-{
-    case_begin(c);
-    case_anchor(c, 0.0, 100.0);
-    case_hanger(c, 260.0, 125.0, 1.6, 450.0);
-    case_hanger(c, 545.0, 170.0, 1.6, 450.0);
-    case_anchor(c, 840.0, 214.0);
-    case_hanger(c, 985.0, 238.0, 1.6, 450.0);
-    case_anchor(c, 1255.0, 220.0);
-    case_condition(c, 15.0);
-    c->project.stringing.method = TW_METHOD_OVER_SHEAVES;
-    case_ready(c);
-}
-
 static tw_crew *sheet(const tw_case *c, tw_trial *trial, const double *degC, size_t count)
 {
     tw_crew *crew = tw_crew_create(&c->project, count);
@@ -33,7 +19,7 @@ static tw_crew *sheet(const tw_case *c, tw_trial *trial, const double *degC, siz
 static void test_offsets_add_up(void)
 {
     tw_case c;
-    hill(&c);
+    case_hill(&c);
     tw_trial *trial = case_trial(&c, 18e3);
     const double at[] = {-10.0, 15.0};
     tw_crew *crew = sheet(&c, trial, at, 2);
@@ -72,7 +58,7 @@ static void test_offsets_add_up(void)
 static void test_clamped_states(void)
 {
     tw_case c;
-    hill(&c);
+    case_hill(&c);
     case_condition(&c, -10.0);
     case_ready(&c);
     tw_trial *trial = case_trial(&c, 18e3);
@@ -98,7 +84,7 @@ static void test_clamped_states(void)
 static void test_friction(void)
 {
     tw_case c;
-    hill(&c);
+    case_hill(&c);
     c.project.stringing.friction = 0.03;
     case_ready(&c);
     tw_trial *trial = case_trial(&c, 18e3);
@@ -127,7 +113,7 @@ static void test_without_sheaves_and_cancelled(void)
 {
     tw_case c;
     int now = 1;
-    hill(&c);
+    case_hill(&c);
     c.project.stringing.method = TW_METHOD_CLAMPED;
     tw_trial *trial = case_trial(&c, 18e3);
     tw_crew *crew = sheet(&c, trial, &(double){0.0}, 0);

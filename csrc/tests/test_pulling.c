@@ -8,21 +8,6 @@
 #include "section_feed.h"
 #include "vector.h"
 
-/* Six supports up and over a hill, an anchor in the middle. */
-static void hill(tw_case *c)
-{
-    case_begin(c);
-    case_anchor(c, 0.0, 100.0);
-    case_hanger(c, 260.0, 125.0, 1.6, 450.0);
-    case_hanger(c, 545.0, 170.0, 1.6, 450.0);
-    case_anchor(c, 840.0, 214.0);
-    case_hanger(c, 985.0, 238.0, 1.6, 450.0);
-    case_anchor(c, 1255.0, 220.0);
-    case_condition(c, 15.0);
-    c->project.stringing.method = TW_METHOD_OVER_SHEAVES;
-    case_ready(c);
-}
-
 static double sum(const double *values, size_t from, size_t to)
 {
     double total = 0.0;
@@ -46,7 +31,7 @@ static void far_tension(const tw_section *section, size_t span, double t[3])
 static void test_both_states(void)
 {
     tw_case c;
-    hill(&c);
+    case_hill(&c);
     tw_pulling *pulling = tw_pulling_create(&c.project);
     double lengths[5], pull = 18e3;
     CHECK(pulling && tw_pulling_lengths(pulling, &pull, lengths, &c.options) == TW_OK);
@@ -78,7 +63,7 @@ static void test_clamped_as_the_plumb_rule_has_it(void)
     static const double pulls[] = {18e3, 60e3, 1e5, 4e5}; /* the last two lift a hanger */
     for (size_t i = 0; i < 4; i++) {
         tw_case c;
-        hill(&c);
+        case_hill(&c);
         c.supports[3].hold = TW_HOLD_HANGER;
         c.supports[3].hanger_length_m = 1.6;
         tw_trial *over = case_trial(&c, pulls[i]);
@@ -101,7 +86,7 @@ static void test_every_rule(void)
 {
     tw_case c;
     tw_span_state span;
-    hill(&c);
+    case_hill(&c);
     tw_trial *trial = case_trial(&c, 18e3);
     const tw_section *blocks = trial->pulling->blocks;
     tw_section_span_state(blocks, 1, &span);
@@ -137,7 +122,7 @@ static void test_every_rule(void)
 static void test_clamped_where_it_lies(void)
 {
     tw_case c;
-    hill(&c);
+    case_hill(&c);
     c.project.stringing.clip = TW_CLIP_LIES;
     tw_trial *trial = case_trial(&c, 18e3);
     for (size_t k = 0; k < 5; k++) {
@@ -151,7 +136,7 @@ static void test_sheaves_in_service(void)
 {
     for (int over = 0; over < 2; over++) {
         tw_case c;
-        hill(&c);
+        case_hill(&c);
         c.supports[2].hold = TW_HOLD_SHEAVE;
         c.project.stringing.method = over ? TW_METHOD_OVER_SHEAVES : TW_METHOD_CLAMPED;
         tw_trial *trial = case_trial(&c, 18e3);
@@ -171,7 +156,7 @@ static void test_sheaves_in_service(void)
 static void test_given_lengths_are_kept(void)
 {
     tw_case c;
-    hill(&c);
+    case_hill(&c);
     c.supports[2].hold = TW_HOLD_SHEAVE;
     c.project.stringing.method = TW_METHOD_CLAMPED;
     tw_trial *by_pull = case_trial(&c, 18e3);
@@ -194,7 +179,7 @@ static void test_what_a_pull_cannot_do(void)
     static const double bad[] = {1e-9, 1e-3, 1.0, 1e12, 1e300};
     for (size_t i = 0; i < sizeof bad / sizeof bad[0]; i++) {
         tw_case c;
-        hill(&c);
+        case_hill(&c);
         tw_trial *trial = case_trial(&c, 18e3);
         tw_status status = tw_trial_string(trial, bad[i], &c.options);
         int finite = 1;
@@ -221,7 +206,7 @@ static void test_a_search_over_sheaves_can_be_stopped(void)
         for (int granted = 0; granted < 40; granted += 13) {
             tw_case c;
             int left_then[2] = {granted, (int)ends[i]};
-            hill(&c);
+            case_hill(&c);
             tw_trial *trial = case_trial(&c, 18e3);
             c.project.stringing.rule = TW_STRING_SAG;
             c.project.stringing.index = 1;
